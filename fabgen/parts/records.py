@@ -1,0 +1,95 @@
+"""What a part is: flat pattern, wire path and solid are views of the same sizes.
+
+Depends on: parts.contour, stock records.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING, Literal
+
+from fabgen.parts.contour import FoldLine, Outline
+
+if TYPE_CHECKING:
+    import cadquery
+
+Process = Literal["laser", "fold", "roll", "turn", "drill", "print", "wire", "foil", "buy"]
+
+
+@dataclass(frozen=True)
+class FlatPattern:
+    """One part as it lies on the sheet, seen from the face named ``face``."""
+
+    outline: Outline
+    holes: tuple[Outline, ...] = ()
+    folds: tuple[FoldLine, ...] = ()
+    thickness_mm: float = 1.0
+    face: str = "top"
+
+
+@dataclass(frozen=True)
+class WireBend:
+    """One bend of a wire, in order along the straight piece. ``plane_deg``: turn of the wire about its own axis
+    before this bend, relative to the bend before."""
+
+    number: int
+    start_mm: float
+    end_mm: float
+    angle_deg: float
+    radius_mm: float
+    mandrel_mm: float
+    plane_deg: float
+    order: int
+    name: str
+
+
+@dataclass(frozen=True)
+class WirePath:
+    """A bent wire: cut length, bends, and the axis as points in the feed's frame for drawing."""
+
+    diameter_mm: float
+    cut_length_mm: float
+    bends: tuple[WireBend, ...]
+    end_preparation: str
+
+
+@dataclass(frozen=True)
+class Place:
+    """Where a part sits in the feed's frame: rotation about z (degrees), then shift. Solids that are already in
+    the feed's frame use the default."""
+
+    x_mm: float = 0.0
+    y_mm: float = 0.0
+    z_mm: float = 0.0
+    turn_deg: float = 0.0
+
+
+@dataclass(frozen=True)
+class Part:
+    """One part of the feed.
+
+    ``key`` is ASCII and names the files; ``solid`` builds the B-rep in the feed's frame when called (imports the
+    CAD kernel); ``print_solid`` builds it in print position, z = 0 on the bed. ``sizes`` are the sizes that make
+    the part, by name, for the page and the consistency check.
+    """
+
+    key: str
+    name: str
+    process: tuple[Process, ...]
+    material: str
+    material_name: str
+    temper: str
+    colour: tuple[float, float, float]
+    quantity: int
+    sizes: tuple[tuple[str, float], ...]
+    tolerance: str
+    finish: str
+    flat: FlatPattern | None = None
+    wire: WirePath | None = None
+    thickness_mm: float | None = None
+    solid: Callable[[], cadquery.Shape] | None = field(default=None, compare=False)
+    print_solid: Callable[[], cadquery.Shape] | None = field(default=None, compare=False)
+    places: tuple[Place, ...] = (Place(),)
+    mass_kg: float = 0.0
+    notes: tuple[str, ...] = ()

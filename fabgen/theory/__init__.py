@@ -1,0 +1,4 @@
+"""Closed forms: skin effect, lines, waveguide modes, dish illumination, noise, intermodulation, bending.
+
+Depends on: units, errors, stock.
+"""
