@@ -1,0 +1,197 @@
+"""Where the holes of the floor and the bolts of the flange are: one plan for every make of can.
+
+Seen from the aperture (from +z), x to the gap of the loop::
+
+        y                 drain
+        ^            o           o          flange holes on bolt_circle
+        |       o    .-----------.   o
+        |           /   (coax)    \\
+        |          |     o bar +y  |
+        |          |     o bar -y  |-- gap of the loop, +x
+        |           \\             /
+        |       o    '-----------'   o
+        |            o           o
+        +-----> x
+
+Depends on: errors, stock, parts.contour, sizing.records.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import Literal
+
+from fabgen.errors import GeometryError
+from fabgen.parts.contour import Circle, Contour, Outline, Point, Vertex, split_arc
+from fabgen.sizing.records import Feed
+from fabgen.stock import tables
+
+Purpose = Literal["coax", "connector screw", "loop foot", "drain"]
+DRAIN_HOLE_MM = 3.0
+"""Large enough that a drop does not bridge it; far under a wavelength. Common practice, no source."""
+FOOT_CLEARANCE_MM = 0.2
+"""On the diameter of a wire's foot hole: the wire goes in and solder draws in. Common practice, no source."""
+COAX_CLEARANCE_MM = 0.2
+"""On the diameter of a hole for the coax alone. Common practice, no source."""
+HEAD_CLEARANCE_MM = 2.0
+"""Room for a washer's rim and a socket key between a screw head and the wall. Common practice, no source."""
+
+
+@dataclass(frozen=True)
+class FloorHole:
+    """An opening through the floor and what it is for."""
+
+    purpose: Purpose
+    outline: Outline
+
+
+@dataclass(frozen=True)
+class FlangePlan:
+    """The mounting flange: its outline, thickness, screw and hole centres (none: no flange)."""
+
+    outline: Outline
+    width_mm: float
+    thickness_mm: float
+    bolt_circle_mm: float
+    screw: str
+    holes: tuple[Circle, ...]
+
+
+def coax_axis(feed: Feed) -> Point:
+    """Axis of the coax: it touches the bar at +y on the side away from the axis of the can.
+
+    The foot of a sheet loop lies on the other side. For bars of strip the coax stands near the strip's inner
+    edge, so that the crossing is as short as between round bars.
+    """
+    sizes, coax = feed.sizes, tables.coax(feed.job.cable.coax)
+    depth = sizes.wire_mm if sizes.conductor == "wire" else sizes.sheet_mm
+    x = sizes.leg_x_mm + (float(depth or 0.0) + coax.outer_mm) / 2
+    y = sizes.leg_pitch_mm / 2
+    if sizes.conductor != "wire":
+        y -= max(0.0, (sizes.leg_width_mm - coax.outer_mm) / 2)
+    return x, y
+
+
+def on_spacer(feed: Feed) -> bool:
+    """Whether the connector stands on a spacer: its bore is so much wider than the coax that the floor around
+    the bar's foot would be gone."""
+    cable = feed.job.cable
+    return tables.connector(cable.connector).panel_bore_mm > tables.coax(cable.coax).outer_mm + 1.0
+
+
+def coax_bore_mm(feed: Feed) -> float:
+    """Diameter of the hole that the coax comes through."""
+    cable = feed.job.cable
+    if on_spacer(feed):
+        return tables.coax(cable.coax).outer_mm + COAX_CLEARANCE_MM
+    return tables.connector(cable.connector).panel_bore_mm
+
+
+def connector_screw_holes(feed: Feed) -> tuple[FloorHole, ...]:
+    """Screw holes of the connector's flange about the coax. Two holes lie along y, clear of the bar's foot."""
+    connector = tables.connector(feed.job.cable.connector)
+    x, y = coax_axis(feed)
+    half = connector.hole_pitch_mm / 2
+    four: tuple[Point, ...] = ((half, half), (-half, half), (-half, -half), (half, -half))
+    two: tuple[Point, ...] = ((0.0, half), (0.0, -half))
+    offsets = {4: four, 2: two}.get(connector.hole_count, ())
+    return tuple(
+        FloorHole("connector screw", Circle(x + u, y + v, connector.hole_mm)) for u, v in offsets
+    )
+
+
+def coax_holes(feed: Feed) -> tuple[FloorHole, ...]:
+    """What the coax and the feet of a wire loop need.
+
+    The coax touches the bar at +y, so its hole and the hole of that bar's foot are one slot with round ends.
+    """
+    sizes = feed.sizes
+    x, y = coax_axis(feed)
+    bore = coax_bore_mm(feed)
+    if sizes.wire_mm is None:
+        return (FloorHole("coax", Circle(x, y, bore)),)
+    foot = sizes.wire_mm + FOOT_CLEARANCE_MM
+    width = max(bore, foot)
+    slot = (
+        *split_arc((x, y), width / 2, -90.0, 180.0),
+        Vertex(x, y + width / 2),
+        *split_arc((sizes.leg_x_mm, y), width / 2, 90.0, 180.0),
+        Vertex(sizes.leg_x_mm, y - width / 2),
+    )
+    return (
+        FloorHole("coax", Contour(slot)),
+        FloorHole("loop foot", Circle(sizes.leg_x_mm, -y, foot)),
+    )
+
+
+def drain_holes(feed: Feed) -> tuple[FloorHole, ...]:
+    """Four holes close to the wall, half way between the axes so that no seam meets them."""
+    if not feed.job.can.drain_holes:
+        return ()
+    radius = feed.sizes.can_bore_mm / 2 - 1.5 * DRAIN_HOLE_MM
+    at = radius * math.sqrt(0.5)
+    signs = ((1, 1), (-1, 1), (-1, -1), (1, -1))
+    return tuple(FloorHole("drain", Circle(a * at, b * at, DRAIN_HOLE_MM)) for a, b in signs)
+
+
+def flange_plan(feed: Feed, outer_mm: float) -> FlangePlan | None:
+    """The flange around a body ``outer_mm`` wide (across corners where it has flats)."""
+    flange = feed.job.can.flange
+    if flange.pattern == "none":
+        return None
+    screw = tables.screw(flange.screw)
+    room = screw.head_mm + 2 * HEAD_CLEARANCE_MM
+    edge = max(1.5 * screw.clearance_medium_mm, screw.head_mm / 2 + 1.0)
+    least = outer_mm + room
+    if flange.pattern == "square" and flange.count > 4:
+        least *= math.sqrt(2)
+    circle = flange.bolt_circle_mm or math.ceil(least)
+    if circle < outer_mm + screw.head_mm:
+        raise GeometryError(
+            f"can.flange.bolt_circle_mm = {circle:g} puts the heads of {screw.key} into a can "
+            f"{outer_mm:.1f} mm wide; give {math.ceil(least)} mm or more, or leave it out"
+        )
+    thickness = flange.thickness_mm or feed.sizes.floor_mm
+    layout = _circle_holes if flange.pattern == "circle" else _square
+    holes = layout(flange.count, circle)
+    drilled = tuple(Circle(x, y, screw.clearance_medium_mm) for x, y in holes)
+    if flange.pattern == "circle":
+        width = circle + 2 * edge
+        return FlangePlan(Circle(0, 0, width), width, thickness, circle, screw.key, drilled)
+    width = max(circle / math.sqrt(2) + 2 * edge, outer_mm + 2.0)
+    return FlangePlan(_rounded_square(width, edge), width, thickness, circle, screw.key, drilled)
+
+
+def _circle_holes(count: int, circle_mm: float) -> tuple[Point, ...]:
+    # Half a pitch off the x axis: the gap's marker on +x stays free.
+    angles = (2 * math.pi * (i + 0.5) / count for i in range(count))
+    return tuple((circle_mm / 2 * math.cos(a), circle_mm / 2 * math.sin(a)) for a in angles)
+
+
+def _square(count: int, circle_mm: float) -> tuple[Point, ...]:
+    if count % 4:
+        raise GeometryError(
+            f"can.flange.pattern = 'square' with count = {count}: a square has the same number of screws on "
+            "each side; give count = 4, 8, 12 or 16, or pattern = 'circle'"
+        )
+    side, per_side = circle_mm / math.sqrt(2), count // 4
+    points: list[Point] = []
+    for quarter in range(4):
+        turn = quarter * math.pi / 2
+        for i in range(per_side):
+            x, y = side / 2, side / 2 - side * i / per_side
+            points.append((x * math.cos(turn) - y * math.sin(turn), x * math.sin(turn) + y * math.cos(turn)))
+    return tuple(points)
+
+
+def _rounded_square(width_mm: float, radius_mm: float) -> Contour:
+    inner = width_mm / 2 - radius_mm
+    vertices: list[Vertex] = []
+    for i, (a, b) in enumerate(((1, 1), (-1, 1), (-1, -1), (1, -1))):
+        vertices += split_arc((a * inner, b * inner), radius_mm, 90.0 * i, 90.0)
+        end = math.radians(90.0 * (i + 1))
+        vertices.append(
+            Vertex(a * inner + radius_mm * math.cos(end), b * inner + radius_mm * math.sin(end))
+        )
+    return Contour(tuple(vertices))
