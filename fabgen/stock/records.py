@@ -18,7 +18,8 @@ class Source:
 
 @dataclass(frozen=True)
 class Temper:
-    """A temper of a metal. ``bend_ratio`` rows: (thickness up to mm, inside radius / thickness, 90 degrees)."""
+    """A temper of a metal. ``bend_ratio`` rows: (thickness up to mm, least inside radius / thickness at 90 degrees),
+    across the rolling direction; ``mandrel_ratio``: least mandrel / wire diameter."""
 
     key: str
     name: str
@@ -33,7 +34,8 @@ class Temper:
 
 @dataclass(frozen=True)
 class Metal:
-    """A metal by its standard designation."""
+    """A metal by its standard designation. ``coating_um``: thickness of a coating whose conductivity the row
+    states (zinc), or that hides a worse metal (tin); None for bare metal."""
 
     key: str
     name: str
@@ -48,6 +50,7 @@ class Metal:
     solderable: bool
     tempers: tuple[Temper, ...]
     source: Source
+    coating_um: float | None = None
 
     @property
     def default_temper(self) -> Temper:
@@ -82,6 +85,8 @@ class Plastic:
     relative_permittivity: float
     colour: tuple[float, float, float]
     source: Source
+    uv_resistant: bool = False
+    swelling_percent: float = 0.0
 
 
 @dataclass(frozen=True)
@@ -147,3 +152,36 @@ class Limit:
     meaning: str
     source: Source
     overridden: bool = False
+
+
+@dataclass(frozen=True)
+class Die:
+    """A V-die of a press brake: opening, shortest outside flange, inside radius in mild steel at 90 degrees."""
+
+    key: str
+    opening_mm: float
+    min_flange_mm: float
+    inside_radius_mm: float
+    source: Source
+
+
+@dataclass(frozen=True)
+class Band:
+    """A frequency band and who it is for; the national table of allocations decides."""
+
+    key: str
+    low_mhz: float
+    high_mhz: float
+    kind: str
+    meaning: str
+    source: Source
+
+
+@dataclass(frozen=True)
+class Tolerance:
+    """Tolerances by size. ``rows``: (size up to and including mm, plus-minus mm)."""
+
+    key: str
+    meaning: str
+    rows: tuple[tuple[float, float], ...]
+    source: Source
