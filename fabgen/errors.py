@@ -52,3 +52,15 @@ class NotCoveredError(FabgenError, NotImplementedError):
     """Valid, but this version does not build it."""
 
     exit_status = 7
+
+
+class TimeLimitError(FabgenError, TimeoutError):
+    """The user's own time limit was reached."""
+
+    exit_status = 8
+
+
+class MemoryLimitError(FabgenError, MemoryError):
+    """The computation needs more memory than this machine or its limits give."""
+
+    exit_status = 9

@@ -1,13 +1,15 @@
 """The job file: what the user has and wants. Strict schema, bounds, one message per fault.
 
-Millimetres and megahertz; every key that has a unit says it in its name. ``read_job`` reads the TOML text,
-the models refuse unknown keys. The frozen models serve as the resolved job everywhere above.
+Millimetres and megahertz; every key that has a unit says it in its name. The models refuse unknown keys;
+``fabgen.job_reader`` reads the TOML text into them. The frozen models serve as the resolved job everywhere above.
 
 Depends on: errors, units, stock.
 """
 
 from __future__ import annotations
 
+import math
+from collections.abc import Iterator
 from typing import Annotated, Literal
 
 from pydantic import BaseModel, ConfigDict, Field, model_validator
@@ -152,6 +154,14 @@ class Rates(Section):
     material_per_kg: float | None = None
 
 
+class AsWritten(Section):
+    """A value that the job file gave with its own unit; filled in by the reader, never by the user."""
+
+    key: str
+    text: str
+    value: float
+
+
 class Job(Section):
     """A whole job file, defaults filled in."""
 
@@ -165,16 +175,111 @@ class Job(Section):
     fixed: Fixed = Fixed()
     rates: Rates = Rates()
     overrides: dict[str, float] = Field(default_factory=dict)
+    as_written: tuple[AsWritten, ...] = ()
 
     @model_validator(mode="after")
-    def _stock_of_one_form(self) -> Job:
-        if self.loop.form == "wire" and self.loop.wire_mm is None:
-            raise ValueError("loop.form is 'wire': give loop.wire_mm, the wire's diameter")
-        if self.loop.form == "sheet" and self.loop.sheet_mm is None:
-            raise ValueError("loop.form is 'sheet': give loop.sheet_mm, the sheet's thickness")
+    def _agrees_with_itself(self) -> Job:
+        fault = next(contradictions(self), None)
+        if fault is not None:
+            raise ValueError(fault)
         return self
 
     @property
     def wavelength_mm(self) -> float:
         """Free-space wavelength at the target."""
         return 299_792.458 / self.target.frequency_mhz
+
+
+def contradictions(job: Job) -> Iterator[str]:
+    """What in the job cannot go together: each text says what was given, what is allowed and what to do."""
+    yield from _loop_stock(job)
+    yield from _loop_against_wavelength(job)
+    yield from _fixed_sizes(job)
+    yield from _can(job)
+
+
+def _loop_stock(job: Job) -> Iterator[str]:
+    loop = job.loop
+    if loop.form == "wire":
+        if loop.wire_mm is None:
+            yield "loop.form is 'wire': give loop.wire_mm, the wire's diameter"
+        for name in ("sheet_mm", "strip_width_mm"):
+            if getattr(loop, name) is not None:
+                yield f"loop.form is 'wire' but loop.{name} is given; take it out, or write form = \"sheet\""
+    else:
+        if loop.sheet_mm is None:
+            yield "loop.form is 'sheet': give loop.sheet_mm, the sheet's thickness"
+        if loop.wire_mm is not None:
+            yield "loop.form is 'sheet' but loop.wire_mm is given; take it out, or write form = \"wire\""
+
+
+def _loop_against_wavelength(job: Job) -> Iterator[str]:
+    tenth = job.wavelength_mm / 10
+    at = f"at {job.target.frequency_mhz:g} MHz (a tenth of the wavelength is {tenth:.2f} mm)"
+    wire, sheet, strip = job.loop.wire_mm, job.loop.sheet_mm, job.loop.strip_width_mm
+    if wire is not None and wire > tenth:
+        yield f"loop.wire_mm = {wire:g} is thicker than allowed {at}; use wire of {tenth:.2f} mm or less"
+    if sheet is not None and sheet > tenth / 2:
+        yield f"loop.sheet_mm = {sheet:g} is thicker than allowed {at}; use sheet of {tenth / 2:.2f} mm or less"
+    if strip is not None and strip > tenth:
+        yield f"loop.strip_width_mm = {strip:g} is wider than allowed {at}; use {tenth:.2f} mm or less"
+
+
+# Each row: smaller key, larger key, why.
+_ORDER = (
+    ("loop_diameter_mm", "can_bore_mm", "the loop lies inside the can"),
+    ("loop_height_mm", "can_depth_mm", "the loop lies below the rim"),
+    ("tap_height_mm", "loop_height_mm", "the tap is on the bars, below the loop"),
+    ("tap_height_mm", "can_depth_mm", "the tap is inside the can"),
+    ("leg_pitch_mm", "loop_diameter_mm", "both bars stand at the gap of the loop"),
+    ("leg_pitch_mm", "can_bore_mm", "both bars stand inside the can"),
+)
+
+
+def _fixed_sizes(job: Job) -> Iterator[str]:
+    for small, large, why in _ORDER:
+        low, high = getattr(job.fixed, small), getattr(job.fixed, large)
+        if low is not None and high is not None and low >= high:
+            yield (
+                f"fixed.{small} = {low:g} and fixed.{large} = {high:g} contradict each other: {why}, so "
+                f"{small} must be less than {large}; change one, or leave one out to have it found"
+            )
+    wire, pitch = job.loop.wire_mm, job.fixed.leg_pitch_mm
+    if wire is not None and pitch is not None and pitch <= wire:
+        yield (
+            f"fixed.leg_pitch_mm = {pitch:g} lets the bars of {wire:g} mm wire touch; allowed: more than "
+            f"{wire:g} (centre to centre); give a larger pitch or leave it out"
+        )
+    yield from _fixed_can(job)
+
+
+def _fixed_can(job: Job) -> Iterator[str]:
+    wl, bore, loop = job.wavelength_mm, job.fixed.can_bore_mm, job.fixed.loop_diameter_mm
+    cutoff = 1.8412 / math.pi * wl  # TE11 of a round guide: bore = 1.8412 wavelength / pi (Pozar, table 3.5)
+    if bore is not None and not cutoff < bore < 3 * wl:
+        yield (
+            f"fixed.can_bore_mm = {bore:g} does not suit {job.target.frequency_mhz:g} MHz; allowed: more than "
+            f"{cutoff:.1f} (below it the can passes no wave) and less than {3 * wl:.1f} (three wavelengths)"
+        )
+    if loop is not None and not 0.15 * wl < loop < 0.6 * wl:
+        yield (
+            f"fixed.loop_diameter_mm = {loop:g} is no one-wavelength-class loop at {job.target.frequency_mhz:g} "
+            f"MHz; allowed {0.15 * wl:.1f} to {0.6 * wl:.1f} (round one wavelength of circumference)"
+        )
+
+
+def _can(job: Job) -> Iterator[str]:
+    can = job.can
+    if can.make == "tube" and job.fixed.can_bore_mm is None:
+        yield (
+            "can.make is 'tube' but its bore is not given: write the inner diameter of the tube or tin as "
+            "can_bore_mm under [fixed]"
+        )
+    if not isinstance(can.choke, Choke) or can.choke.bore_mm is None or job.fixed.can_bore_mm is None:
+        return
+    least = job.fixed.can_bore_mm + 2 * (can.wall_mm or 0.0)
+    if can.choke.bore_mm <= least:
+        yield (
+            f"can.choke.bore_mm = {can.choke.bore_mm:g} does not clear the can; allowed: more than {least:g} "
+            "(fixed.can_bore_mm and twice the wall)"
+        )
