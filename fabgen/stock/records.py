@@ -18,8 +18,11 @@ class Source:
 
 @dataclass(frozen=True)
 class Temper:
-    """A temper of a metal. ``bend_ratio`` rows: (thickness up to mm, least inside radius / thickness at 90 degrees),
-    across the rolling direction; ``mandrel_ratio``: least mandrel / wire diameter."""
+    """A temper of a metal.
+
+    ``bend_ratio`` rows: (thickness up to mm, least inside radius / thickness at 90 degrees), fold line across the
+    rolling direction; ``mandrel_ratio``: least mandrel / wire diameter.
+    """
 
     key: str
     name: str
@@ -156,7 +159,7 @@ class Limit:
 
 @dataclass(frozen=True)
 class Die:
-    """A V-die of a press brake: opening, shortest outside flange, inside radius in mild steel at 90 degrees."""
+    """A V-die of a press brake: opening, shortest outside flange and inside radius in mild steel."""
 
     key: str
     opening_mm: float

@@ -62,8 +62,8 @@ def _value(name: str, hint: Any, value: Any, place: str) -> Any:
     if isinstance(value, bool) or not isinstance(value, int | float) or not math.isfinite(value):
         raise JobError(f"{place}: '{name}' is {value!r}; it must be a finite number")
     zero_allowed = hint is None or name in MAY_BE_ZERO
-    if value < 0 or (value == 0 and not zero_allowed):
-        raise JobError(f"{place}: '{name}' is {value!r}; it must be {'zero or ' if zero_allowed else ''}above zero")
+    if (value < 0 and name != "value") or (value == 0 and not zero_allowed):
+        raise JobError(f"{place}: '{name}' is {value!r}; it must be above zero{', or zero' * zero_allowed}")
     return value if hint is int else float(value)
 
 

@@ -84,7 +84,7 @@ def load_user_rows(path: Path | str) -> tuple[Any, ...]:
     try:
         data = tomllib.loads(file.read_text(encoding="utf-8"))
     except FileNotFoundError:
-        raise JobError(f"stock file {file}: no such file; give a TOML file with rows like [[metal]]") from None
+        raise JobError(f"stock file {file}: no such file; give a TOML file with [[metal]] rows") from None
     except (OSError, UnicodeDecodeError, tomllib.TOMLDecodeError) as error:
         raise JobError(f"stock file {file}: cannot be read as TOML ({error})") from None
     added: list[Any] = []
