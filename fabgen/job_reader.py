@@ -19,8 +19,8 @@ from pydantic_core import ErrorDetails
 
 from fabgen.errors import JobError
 from fabgen.job import Job
+from fabgen.job_units import AS_WRITTEN, UnitReader, model_of
 from fabgen.stock import tables
-from fabgen.units import Written, parse_frequency_mhz, parse_length_mm
 
 MAX_BYTES = 256 * 1024
 _MAX_FAULTS = 8
@@ -73,23 +73,19 @@ def parse_job(text: str, where: str = "job") -> Job:
 
 def job_from_data(raw: dict[str, Any], where: str = "job") -> Job:
     """The job of a parsed TOML table."""
-    faults: list[str] = []
-    written: list[Written] = []
-    if "as_written" in raw:
-        faults.append(_unknown_key(("as_written",), Job))
-    data = {key: value for key, value in raw.items() if key != "as_written"}
-    data = _with_units(data, Job, (), written, faults)
-    if not faults:
-        try:
-            job = Job.model_validate(data, strict=True)
-        except ValidationError as error:
-            faults.extend(_faults(error))
-        else:
-            faults.extend(unknown_names(job))
+    faults = [_unknown_key((AS_WRITTEN,), Job)] if AS_WRITTEN in raw else []
+    reader = UnitReader(raw)
+    faults.extend(reader.faults)
     if faults:
         raise JobError(_message(where, faults))
-    notes = tuple({"key": w.key, "text": w.text, "value": w.value} for w in written)
-    return Job.model_validate({**data, "as_written": notes}, strict=True) if notes else job
+    try:
+        job = Job.model_validate({**reader.data, AS_WRITTEN: tuple(reader.written)}, strict=True)
+    except ValidationError as error:
+        raise JobError(_message(where, _faults(error))) from None
+    faults.extend(unknown_names(job))
+    if faults:
+        raise JobError(_message(where, faults))
+    return job
 
 
 def unknown_names(job: Job) -> Iterator[str]:
@@ -130,59 +126,6 @@ def _message(where: str, faults: list[str]) -> str:
     if rest:
         lines.append(f"  - and {rest} more")
     return "\n".join(lines)
-
-
-def _model_of(annotation: Any) -> type[BaseModel] | None:
-    """The section model behind a field's annotation, also inside a union or a tuple."""
-    if isinstance(annotation, type) and issubclass(annotation, BaseModel):
-        return annotation
-    for part in getattr(annotation, "__args__", ()):
-        model = _model_of(part)
-        if model is not None:
-            return model
-    return None
-
-
-def _with_units(
-    data: dict[str, Any], model: type[BaseModel], path: tuple[str, ...], written: list[Written], faults: list[str]
-) -> dict[str, Any]:
-    """The same table with texts that carry a unit turned into numbers, and lists into tuples."""
-    result: dict[str, Any] = {}
-    for key, value in data.items():
-        field = model.model_fields.get(key)
-        inner = None if field is None else _model_of(field.annotation)
-        here = (*path, key)
-        if isinstance(value, dict) and inner is not None:
-            result[key] = _with_units(value, inner, here, written, faults)
-        elif isinstance(value, list):
-            result[key] = tuple(
-                _with_units(item, inner, (*here, str(i + 1)), written, faults)
-                if isinstance(item, dict) and inner is not None
-                else _number_of(item, key, (*here, str(i + 1)), written, faults)
-                for i, item in enumerate(value)
-            )
-        else:
-            result[key] = value if field is None else _number_of(value, key, here, written, faults)
-    return result
-
-
-def _number_of(value: Any, key: str, path: tuple[str, ...], written: list[Written], faults: list[str]) -> Any:
-    if not isinstance(value, str):
-        return value
-    try:
-        if key.endswith("_mhz"):
-            number = parse_frequency_mhz(value)
-        elif key.endswith("_mm"):
-            number = parse_length_mm(value)
-        elif key.endswith("_m"):
-            number = parse_length_mm(value) / 1000
-        else:
-            return value
-    except JobError as error:
-        faults.append(f"{'.'.join(path)}: {error}")
-        return value
-    written.append(Written(".".join(path), value, number))
-    return number
 
 
 def _faults(error: ValidationError) -> list[str]:
@@ -256,7 +199,7 @@ def _bounds(path: tuple[str, ...]) -> str:
         if model is None or name not in model.model_fields:
             continue
         field = model.model_fields[name]
-        model = _model_of(field.annotation)
+        model = model_of(field.annotation)
     if field is None:
         return ""
     marks = list(field.metadata)
@@ -294,9 +237,9 @@ def _nearest(name: str, known: Any) -> str:
 def _keys(model: type[BaseModel], path: tuple[str, ...] = ()) -> Iterator[tuple[str, ...]]:
     """Every key of the schema as a path."""
     for name, field in model.model_fields.items():
-        if name != "as_written":
+        if name != AS_WRITTEN:
             yield (*path, name)
-            inner = _model_of(field.annotation)
+            inner = model_of(field.annotation)
             if inner is not None:
                 yield from _keys(inner, (*path, name))
 
