@@ -1,0 +1,235 @@
+"""A flat pattern as a view: outline, holes, fold lines, the dimensions that make it, and its tables.
+
+Coordinates are those of the cutting file, so a table here can be checked against it. Corners are numbered along
+the contour; an arc is given by its radius and its turn, which is enough because no arc is longer than 90 degrees.
+
+Depends on: drawing.model, drawing.dimension, drawing.texts, parts.contour, parts.records.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, leader, marks
+from fabgen.drawing.model import Arc, Item, Line, Point, Text, number
+from fabgen.drawing.texts import say
+from fabgen.parts import contour as c
+from fabgen.parts.records import FlatPattern
+
+LABELLED_CORNERS = 60
+
+
+@dataclass(frozen=True)
+class HoleRow:
+    """A round hole as listed: number, centre and diameter."""
+
+    label: str
+    x_mm: float
+    y_mm: float
+    diameter_mm: float
+
+
+def outline_items(outline: c.Outline, role: str = "outline") -> tuple[Item, ...]:
+    """A contour as lines and arcs."""
+    if isinstance(outline, c.Circle):
+        return (Arc(outline.x_mm, outline.y_mm, outline.diameter_mm / 2, outline.diameter_mm / 2, role=role),)
+    items: list[Item] = []
+    for a, b in c.pairs(outline):
+        if a.bulge == 0.0:
+            items.append(Line(a.x_mm, a.y_mm, b.x_mm, b.y_mm, role))
+        else:
+            arc = c.arc_between(a, b)
+            r = arc.radius_mm
+            items.append(Arc(*arc.centre, r, r, arc.start_deg, arc.sweep_deg, role=role))
+    return tuple(items)
+
+
+def flat_items(flat: FlatPattern) -> tuple[Item, ...]:
+    """Outline, holes and fold lines in model mm."""
+    items = list(outline_items(flat.outline))
+    for hole in flat.holes:
+        items += outline_items(hole)
+    items += [Line(*f.start, *f.end, "fold") for f in flat.folds]
+    return tuple(items)
+
+
+def round_holes(flat: FlatPattern) -> tuple[HoleRow, ...]:
+    """Round holes, numbered by diameter, then by angle about the origin."""
+    circles = [h for h in flat.holes if isinstance(h, c.Circle)]
+    order = sorted(
+        circles,
+        key=lambda h: (
+            round(h.diameter_mm, 3),
+            round(math.hypot(h.x_mm, h.y_mm), 2),
+            round(math.degrees(math.atan2(h.y_mm, h.x_mm)) % 360, 3),
+        ),
+    )
+    return tuple(HoleRow(str(i + 1), h.x_mm, h.y_mm, h.diameter_mm) for i, h in enumerate(order))
+
+
+def contours(flat: FlatPattern) -> tuple[tuple[str, c.Contour], ...]:
+    """Contours that need a corner table: the outline as "A", holes that are not round as "B", "C" and so on."""
+    shaped = [o for o in (flat.outline, *flat.holes) if isinstance(o, c.Contour)]
+    return tuple((_letters(i), o) for i, o in enumerate(shaped))
+
+
+def _letters(index: int) -> str:
+    name = ""
+    index += 1
+    while index:
+        index, rest = divmod(index - 1, 26)
+        name = chr(65 + rest) + name
+    return name
+
+
+def corner_rows(letter: str, contour: c.Contour) -> tuple[tuple[str, str, str, str], ...]:
+    """Rows: corner, x, y, and the way to the next corner."""
+    rows = []
+    for i, (a, b) in enumerate(c.pairs(contour)):
+        if a.bulge == 0.0:
+            way = say("flat.line")
+        else:
+            arc = c.arc_between(a, b)
+            turn = "flat.arc_left" if a.bulge > 0 else "flat.arc_right"
+            way = say(turn, radius=f"{arc.radius_mm:.2f}")
+        rows.append((f"{letter}{i + 1}", f"{_plain(a.x_mm)}", f"{_plain(a.y_mm)}", way))
+    return tuple(rows)
+
+
+def _plain(value: float) -> str:
+    text = f"{value:.2f}"
+    return "0.00" if text == "-0.00" else text
+
+
+def hole_rows(flat: FlatPattern) -> tuple[tuple[str, str, str, str], ...]:
+    """Rows of the hole table: number, x, y, diameter."""
+    return tuple((h.label, _plain(h.x_mm), _plain(h.y_mm), f"{DIAMETER}{h.diameter_mm:.2f}") for h in round_holes(flat))
+
+
+def fold_rows(flat: FlatPattern) -> tuple[tuple[str, ...], ...]:
+    """Rows of the bend table: number, order, angle, direction, inside radius, K, allowance, deduction, ends."""
+    return tuple(
+        (
+            str(f.number),
+            str(f.order),
+            f"{abs(f.angle_deg):g}°",
+            say("flat.up") if f.angle_deg > 0 else say("flat.down"),
+            number(f.inside_radius_mm),
+            number(f.k_factor, 3),
+            number(f.allowance_mm, 2),
+            number(f.deduction_mm, 2),
+            f"{_plain(f.start[0])}; {_plain(f.start[1])}",
+            f"{_plain(f.end[0])}; {_plain(f.end[1])}",
+        )
+        for f in flat.folds
+    )
+
+
+def labels(flat: FlatPattern, scale: float, items: Sequence[Item]) -> tuple[Text, ...]:
+    """Numbers of holes, corners and folds set beside them."""
+    wanted: list[tuple[str, Point]] = [(f"F{f.number}", _middle(f.start, f.end)) for f in flat.folds]
+    wanted += [(h.label, _edge_point(h)) for h in round_holes(flat)]
+    for letter, contour in contours(flat):
+        corners = [(v.x_mm, v.y_mm) for v in contour.vertices]
+        step = max(1, math.ceil(len(corners) / LABELLED_CORNERS))
+        wanted += [(f"{letter}{i + 1}", p) for i, p in enumerate(corners) if i % step == 0]
+    return marks(wanted, items, scale)
+
+
+def _middle(a: Point, b: Point) -> Point:
+    return ((a[0] + b[0]) / 2, (a[1] + b[1]) / 2)
+
+
+def _edge_point(hole: HoleRow) -> Point:
+    s = hole.diameter_mm / 2 * math.sqrt(0.5)
+    return (hole.x_mm + s, hole.y_mm + s)
+
+
+def asks(flat: FlatPattern) -> list[Ask]:
+    """Dimensions of the pattern: overall sizes, folds from the edges, hole groups, bolt circles, arc radii."""
+    x0, y0, x1, y1 = c.bounds_mm(flat.outline)
+    wanted: list[Ask] = []
+    if isinstance(flat.outline, c.Circle):
+        d = flat.outline.diameter_mm
+        wanted.append(along_x("outline", x0, x1, (y0 + y1) / 2, "bottom", f"{DIAMETER}{number(d)}"))
+    else:
+        wanted += [along_x("width", x0, x1, y0, "bottom"), along_y("height", y0, y1, x0, "left")]
+        wanted += _fold_asks(flat, x0, y0, x1, y1)
+        wanted += _radius_asks(flat)
+    return [*wanted, *_hole_asks(flat)]
+
+
+def _fold_asks(flat: FlatPattern, x0: float, y0: float, x1: float, y1: float) -> list[Ask]:
+    uprights = sorted({round(f.start[0], 3) for f in flat.folds if abs(f.start[0] - f.end[0]) < 1e-6})
+    levels = sorted({round(f.start[1], 3) for f in flat.folds if abs(f.start[1] - f.end[1]) < 1e-6})
+    out: list[Ask] = []
+    if len(uprights) <= 9:
+        out += [along_x("fold", x0, x, y1, "top") for x in uprights]
+    if len(levels) <= 9:
+        out += [along_y("fold", y0, y, x1, "right") for y in levels]
+    return out
+
+
+def _radius_asks(flat: FlatPattern) -> list[Ask]:
+    groups: dict[float, list[c.Arc]] = {}
+    for _, contour in contours(flat):
+        for a, b in c.pairs(contour):
+            if a.bulge:
+                arc = c.arc_between(a, b)
+                groups.setdefault(round(arc.radius_mm, 2), []).append(arc)
+    out = []
+    for radius, arcs in sorted(groups.items())[:6]:
+        arc = arcs[0]
+        angle = arc.start_deg + arc.sweep_deg / 2
+        t = math.radians(angle)
+        at = (arc.centre[0] + arc.radius_mm * math.cos(t), arc.centre[1] + arc.radius_mm * math.sin(t))
+        out.append(leader("radius", radius, f"R{number(radius)}", at, angle))
+    return out
+
+
+def _hole_asks(flat: FlatPattern) -> list[Ask]:
+    groups: dict[tuple[float, float], list[HoleRow]] = {}
+    for hole in round_holes(flat):
+        key = (round(hole.diameter_mm, 3), round(math.hypot(hole.x_mm, hole.y_mm), 2))
+        groups.setdefault(key, []).append(hole)
+    out: list[Ask] = []
+    for (diameter, radius), holes in sorted(groups.items()):
+        first = holes[0]
+        angle = math.degrees(math.atan2(first.y_mm, first.x_mm)) if radius > 0.01 else 45.0
+        t = math.radians(angle)
+        at = (first.x_mm + diameter / 2 * math.cos(t), first.y_mm + diameter / 2 * math.sin(t))
+        text = f"{len(holes)} × {DIAMETER}{number(diameter)}" if len(holes) > 1 else f"{DIAMETER}{number(diameter)}"
+        if is_bolt_circle(holes):
+            text += " " + say("flat.on_circle", diameter=f"{DIAMETER}{number(2 * radius)}")
+        out.append(leader("hole", diameter, text, at, angle))
+    return out
+
+
+def is_bolt_circle(holes: Sequence[HoleRow]) -> bool:
+    """Three holes or more of one diameter at equal angles and one distance from the origin."""
+    if len(holes) < 3:
+        return False
+    angles = sorted(math.degrees(math.atan2(h.y_mm, h.x_mm)) % 360 for h in holes)
+    steps = [(b - a) % 360 for a, b in zip(angles, [*angles[1:], angles[0]], strict=True)]
+    return max(steps) - min(steps) < 0.1 and math.hypot(holes[0].x_mm, holes[0].y_mm) > 1
+
+
+def centre_lines(flat: FlatPattern, scale: float) -> tuple[Item, ...]:
+    """Crosses in holes, bolt circles, and the cross of a round outline, in paper mm."""
+    items: list[Item] = []
+    groups: dict[tuple[float, float], list[HoleRow]] = {}
+    for h in round_holes(flat):
+        half = h.diameter_mm / 2 * scale + 1.5
+        x, y = h.x_mm * scale, h.y_mm * scale
+        items += [Line(x - half, y, x + half, y, "centre"), Line(x, y - half, x, y + half, "centre")]
+        groups.setdefault((round(h.diameter_mm, 3), round(math.hypot(h.x_mm, h.y_mm), 2)), []).append(h)
+    for (_, radius), holes in sorted(groups.items()):
+        if is_bolt_circle(holes):
+            items.append(Arc(0, 0, radius * scale, radius * scale, role="centre"))
+    if isinstance(flat.outline, c.Circle):
+        x, y = flat.outline.x_mm * scale, flat.outline.y_mm * scale
+        half = flat.outline.diameter_mm / 2 * scale + 3
+        items += [Line(x - half, y, x + half, y, "centre"), Line(x, y - half, x, y + half, "centre")]
+    return tuple(items)

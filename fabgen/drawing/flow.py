@@ -1,0 +1,232 @@
+"""Blocks of text, tables and pictures set down the columns of as many sheets as they need.
+
+A block is drawn from its upper left corner: x from 0 to its width, y from 0 down to minus its height.
+
+Depends on: drawing.model, drawing.fonts, drawing.paper.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field, replace
+
+from fabgen.drawing.fonts import text_width_mm, wrap
+from fabgen.drawing.model import BLACK, Box, Colour, Dimension, Item, Line, Polyline, Table, Text, View, moved
+from fabgen.drawing.paper import TITLE_HEIGHT_MM, Paper
+
+LINE_PITCH = 1.72  # base line to base line over the capital height
+COLUMN_GAP_MM = 10.0
+COLUMN_WIDTH_MM = 180.0
+
+
+@dataclass(frozen=True)
+class Block:
+    """Something to set. ``repeat`` is set again when a break falls right before this block; ``stay`` keeps the
+    block together with the next one."""
+
+    height: float
+    items: tuple[Item, ...]
+    dimensions: tuple[Dimension, ...] = ()
+    views: tuple[View, ...] = ()
+    tables: tuple[Table, ...] = ()
+    repeat: Block | None = None
+    stay: bool = False
+
+
+@dataclass
+class Page:
+    """A sheet while it is being filled."""
+
+    items: list[Item] = field(default_factory=list)
+    dimensions: list[Dimension] = field(default_factory=list)
+    views: list[View] = field(default_factory=list)
+    tables: list[Table] = field(default_factory=list)
+
+
+@dataclass(frozen=True)
+class Column:
+    """Where blocks go: left edge, upper and lower limit."""
+
+    x: float
+    top: float
+    bottom: float
+
+
+def columns(paper: Paper) -> tuple[Column, ...]:
+    """One column above the title block; on landscape sheets a full-height one on its left too."""
+    box = paper.frame
+    above_title = box.y0 + TITLE_HEIGHT_MM + 4
+    if not paper.landscape:
+        return (Column(box.x1 - COLUMN_WIDTH_MM, box.y1 - 5, above_title),)
+    left = box.x1 - 2 * COLUMN_WIDTH_MM - COLUMN_GAP_MM
+    return (
+        Column(left, box.y1 - 5, box.y0 + 6),
+        Column(box.x1 - COLUMN_WIDTH_MM - 2, box.y1 - 5, above_title),
+    )
+
+
+def column_height(paper: Paper) -> float:
+    """Height that every column has."""
+    return min(c.top - c.bottom for c in columns(paper))
+
+
+def flow(paper: Paper, blocks: Sequence[Block]) -> list[Page]:
+    """Set the blocks; a block higher than a column is set alone and the caller must have made it fit."""
+    pages = [Page()]
+    spots = columns(paper)
+    index, y = 0, spots[0].top
+    fresh = True
+    for n, block in enumerate(blocks):
+        need = _need(blocks, n)
+        if not fresh and y - need < spots[index].bottom:
+            index += 1
+            if index == len(spots):
+                pages.append(Page())
+                index = 0
+            y, fresh = spots[index].top, True
+            if block.repeat is not None:
+                _set(pages[-1], block.repeat, spots[index].x, y)
+                y -= block.repeat.height
+        _set(pages[-1], block, spots[index].x, y)
+        y -= block.height
+        fresh = False
+    return pages
+
+
+def _need(blocks: Sequence[Block], n: int) -> float:
+    """Height of a block with those it must stay with."""
+    total = blocks[n].height
+    while blocks[n].stay and n + 1 < len(blocks):
+        n += 1
+        total += blocks[n].height
+    return total
+
+
+def _set(page: Page, block: Block, x: float, y: float) -> None:
+    page.items += moved(block.items, x, y)
+    page.dimensions += [d.moved(x, y) for d in block.dimensions]
+    page.views += [v.moved(x, y) for v in block.views]
+    page.tables += block.tables
+
+
+def gap(height: float = 4.0) -> Block:
+    """Empty space."""
+    return Block(height, ())
+
+
+def heading(text: str, size: float = 3.5) -> Block:
+    """A heading that stays with what follows."""
+    return Block(size * 2.2, (Text(0, -size * 1.35, text, size, bold=True),), stay=True)
+
+
+def paragraph(
+    text: str,
+    size: float = 2.5,
+    width: float = COLUMN_WIDTH_MM,
+    bold: bool = False,
+    colour: Colour = BLACK,
+    bullet: str = "",
+) -> list[Block]:
+    """Wrapped text, one block a line so that it may break over sheets; ``bullet`` hangs at the left."""
+    indent = text_width_mm(bullet + " ", size, bold) + 1.0 if bullet else 0.0
+    pitch = size * LINE_PITCH
+    blocks = []
+    for i, line in enumerate(wrap(text, width - indent, size, bold)):
+        items: list[Item] = [Text(indent, -size * 1.3, line, size, bold=bold, colour=colour)]
+        if bullet and i == 0:
+            items.append(Text(0, -size * 1.3, bullet, size, bold=bold, colour=colour))
+        blocks.append(Block(pitch, tuple(items)))
+    if len(blocks) > 1:
+        blocks[0] = replace(blocks[0], stay=True)
+    if len(blocks) > 3:
+        blocks[-2] = replace(blocks[-2], stay=True)
+    return [*blocks, gap(size * 0.5)]
+
+
+def shares(head: Sequence[str], rows: Sequence[Sequence[str]], width: float, size: float) -> list[float]:
+    """Column widths: each at least its longest word, the rest shared by the width of the whole texts."""
+    natural, least = [], []
+    for c in range(len(head)):
+        cells = [head[c], *(row[c] for row in rows)]
+        natural.append(max(text_width_mm(cell, size) for cell in cells) + 2.4)
+        words = [word for cell in cells for word in cell.split()] or [""]
+        least.append(min(max(text_width_mm(word, size) for word in words) + 2.4, width * 0.45))
+    if sum(natural) <= width:
+        spare = (width - sum(natural)) / len(head)
+        return [n + spare for n in natural]
+    over = max(width - sum(least), 0.0)
+    wish = [max(n - low, 0.0) for n, low in zip(natural, least, strict=True)]
+    widths = [low + over * w / max(sum(wish), 1e-9) for low, w in zip(least, wish, strict=True)]
+    return [w * width / sum(widths) for w in widths]
+
+
+def table(
+    name: str,
+    head: Sequence[str],
+    rows: Sequence[Sequence[str]],
+    size: float = 2.5,
+    width: float = COLUMN_WIDTH_MM,
+    red: Sequence[int] = (),
+    widths: Sequence[float] | None = None,
+) -> list[Block]:
+    """A ruled table; its head is repeated after a break. Rows listed in ``red`` are set bold and red."""
+    cols = list(widths) if widths else shares(head, rows, width, size)
+    record = Table(name, tuple(head), tuple(tuple(row) for row in rows))
+    top = _row_block(head, cols, size, bold=True, colour=BLACK, rule="outline")
+    blocks = [replace(top, tables=(record,), stay=True)]
+    for i, row in enumerate(rows):
+        colour = (0.75, 0.0, 0.0) if i in red else BLACK
+        blocks.append(replace(_row_block(row, cols, size, i in red, colour, "fine"), repeat=top))
+    return [*blocks, gap(3)]
+
+
+def _row_block(
+    cells: Sequence[str], widths: Sequence[float], size: float, bold: bool, colour: Colour, rule: str
+) -> Block:
+    items: list[Item] = []
+    height, x = 0.0, 0.0
+    pitch = size * 1.55
+    for cell, width in zip(cells, widths, strict=True):
+        lines = wrap(cell, width - 2.0, size, bold)
+        for i, line in enumerate(lines):
+            items.append(Text(x + 1.0, -size * 1.45 - i * pitch, line, size, bold=bold, colour=colour))
+        height = max(height, len(lines) * pitch + size * 0.5)
+        x += width
+    items.append(Line(0, -height, x, -height, rule))
+    if rule == "outline":
+        items.insert(0, Polyline(((0, 0), (x, 0), (x, -height), (0, -height)), None, True, (0.93, 0.93, 0.93)))
+    return Block(height, tuple(items))
+
+
+def beside(blocks: Sequence[Block], offsets: Sequence[float]) -> Block:
+    """Blocks set side by side at the given left edges, as one block."""
+    items: list[Item] = []
+    dims: list[Dimension] = []
+    views: list[View] = []
+    for block, x in zip(blocks, offsets, strict=True):
+        items += moved(block.items, x, 0)
+        dims += [d.moved(x, 0) for d in block.dimensions]
+        views += [v.moved(x, 0) for v in block.views]
+    tables = tuple(t for b in blocks for t in b.tables)
+    return Block(max(b.height for b in blocks), tuple(items), tuple(dims), tuple(views), tables)
+
+
+def stack(blocks: Sequence[Block]) -> Block:
+    """Blocks set one under the other, as one block that never breaks."""
+    items: list[Item] = []
+    dims: list[Dimension] = []
+    views: list[View] = []
+    y = 0.0
+    for block in blocks:
+        items += moved(block.items, 0, y)
+        dims += [d.moved(0, y) for d in block.dimensions]
+        views += [v.moved(0, y) for v in block.views]
+        y -= block.height
+    return Block(-y, tuple(items), tuple(dims), tuple(views), tuple(t for b in blocks for t in b.tables))
+
+
+def framed(block: Block, width: float = COLUMN_WIDTH_MM) -> Block:
+    """The block with a thin frame."""
+    box = Box(0, -block.height, width, 0)
+    line = Polyline(((box.x0, box.y0), (box.x1, box.y0), (box.x1, box.y1), (box.x0, box.y1)), "thin", closed=True)
+    return replace(block, items=(*block.items, line))

@@ -1,0 +1,85 @@
+"""What every page gets and gives.
+
+Depends on: drawing.flow, drawing.paper, drawing.picture, parts.records, checks.records, sizing.records.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+from fabgen.checks.records import Finding
+from fabgen.drawing.flow import Block, Page, flow, heading, table
+from fabgen.drawing.model import number
+from fabgen.drawing.paper import Paper
+from fabgen.drawing.picture import Body
+from fabgen.drawing.texts import say, size_name
+from fabgen.parts.records import Part
+from fabgen.sizing.records import Feed
+
+
+@dataclass(frozen=True)
+class Context:
+    """Everything that pages are made from."""
+
+    feed: Feed
+    parts: tuple[Part, ...]
+    findings: tuple[Finding, ...]
+    bodies: tuple[Body, ...]
+    paper: Paper
+
+
+@dataclass(frozen=True)
+class Draft:
+    """One or more sheets of a kind, before numbers, frame and title block."""
+
+    kind: str
+    title: str
+    pages: tuple[Page, ...]
+    part_key: str = ""
+    scale: str = ""
+    material: str = ""
+    finish: str = ""
+    tolerance: str = ""
+    group: str = ""
+
+
+def draft(context: Context, kind: str, title: str, blocks: list[Block], **fields: str) -> Draft:
+    """Blocks set on as many sheets as they need."""
+    return Draft(kind, title, tuple(flow(context.paper, blocks)), **fields)
+
+
+def tolerance_of(feed: Feed, size: str) -> float | None:
+    """Tolerance of a size that the sensitivities name, mm."""
+    return next((s.tolerance_mm for s in feed.sensitivities if s.size == size), None)
+
+
+def toleranced(feed: Feed, size: str, value: float, prefix: str = "") -> str:
+    """The size as written, with its own tolerance where it has one."""
+    tolerance = tolerance_of(feed, size)
+    text = prefix + number(value)
+    return f"{text} ±{number(tolerance)}" if tolerance else text
+
+
+def quantity(key: str, value: object) -> str:
+    """A record's value with the unit that its key ends in."""
+    units = {"_mm": "mm", "_mhz": "MHz", "_deg": "°", "_ohm": "Ω", "_db": "dB", "_dbi": "dBi", "_pf": "pF", "_k": "K"}
+    if isinstance(value, float | int) and not isinstance(value, bool):
+        unit = next((u for tail, u in units.items() if key.endswith(tail)), "")
+        return f"{number(float(value), 3 if unit == 'pF' else 2)} {unit}".strip()
+    return str(value)
+
+
+def sizes_table(part: Part, general: str) -> list[Block]:
+    """The sizes that make a part, as a table."""
+    rows = [(size_name(key), quantity(key if "_" in key else f"{key}_mm", value), general)
+            for key, value in part.sizes]
+    if not rows:
+        return []
+    head = (say("table.size"), say("table.value"), say("table.tolerance"))
+    blocks = table(f"sizes:{part.key}", head, rows)
+    return [heading(say("part.sizes"), 2.5), *blocks]
+
+
+def own_height(block: Block, height: float) -> Block:
+    """The block with another height."""
+    return replace(block, height=height)

@@ -1,0 +1,181 @@
+"""General arrangement: section in the E-plane, view into the aperture, key sizes, what it does, result of checks.
+
+Depends on: drawing, checks.records.
+"""
+
+from __future__ import annotations
+
+from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, arrow
+from fabgen.drawing.flow import Block, gap, heading, paragraph, table
+from fabgen.drawing.flow import column_height as height_of
+from fabgen.drawing.hidden import APERTURE, SIDE
+from fabgen.drawing.model import RED, SCALES, Arc, Item, Line, Text, bounds, number, scale_text
+from fabgen.drawing.pages.base import Context, Draft, draft, quantity, toleranced
+from fabgen.drawing.picture import Set, cut, dimensioned, outside, shifted, together
+from fabgen.drawing.texts import say, size_name
+
+WIDTH_MM = 180.0
+SIZE_KEYS = (
+    "can_bore_mm", "can_depth_mm", "wall_mm", "floor_mm", "can_flats", "loop_diameter_mm", "loop_height_mm",
+    "wire_mm", "strip_width_mm", "sheet_mm", "leg_x_mm", "leg_pitch_mm", "leg_width_mm", "leg_bend_radius_mm",
+    "tap_height_mm", "crossing_width_mm", "series_capacitor_pf",
+)  # fmt: skip
+
+
+def drafts(context: Context) -> list[Draft]:
+    """The general arrangement with its tables."""
+    views, scale = arrangement(context)
+    blocks = [
+        views,
+        *_purpose(context),
+        *_sizes(context),
+        *_performance(context),
+        *checks_result(context),
+    ]
+    return [draft(context, "general", say("page.general"), blocks, scale=scale)]
+
+
+def arrangement(context: Context) -> tuple[Block, str]:
+    """Section over the view into the aperture (first angle; third angle the other way round), one scale."""
+    section = cut(say("view.section_e"), context.bodies, SIDE)
+    front = outside(say("view.aperture"), context.bodies, APERTURE)
+    room = height_of(context.paper) - 1
+    for scale in SCALES:
+        if scale > 1:
+            continue
+        a = dimensioned(section, section_asks(context), scale, lambda s, i: _axis_and_focus(context, s, i))
+        b = dimensioned(front, front_asks(context), scale, _cutting_plane)
+        if max(a.box.width, b.box.width) <= WIDTH_MM and a.box.height + b.box.height + 8 <= room:
+            break
+    upper, lower = (a, b) if context.feed.job.limits.projection == "first" else (b, a)
+    return _stacked(upper, lower), scale_text(scale)
+
+
+def _stacked(upper: Set, lower: Set) -> Block:
+    """Two views on one vertical axis, so that they project onto each other."""
+    left = min(upper.box.x0, lower.box.x0)
+    width = max(upper.box.x1, lower.box.x1) - left
+    x = (WIDTH_MM - width) / 2 - left
+    first = shifted(upper, x, -upper.box.y1)
+    second = shifted(lower, x, -upper.box.height - 6 - lower.box.y1)
+    return together((first, second), upper.box.height + lower.box.height + 8)
+
+
+def section_asks(context: Context) -> list[Ask]:
+    """Dimensions of the section; paper x is -y of the feed, paper y is z."""
+    feed, s = context.feed, context.feed.sizes
+    bore, depth = s.can_bore_mm / 2, s.can_depth_mm
+    sign = DIAMETER if s.can_flats == 0 else say("view.across_flats") + " "
+    r = s.loop_diameter_mm / 2
+    asks = [
+        along_x("can_bore_mm", -bore, bore, depth, "top", toleranced(feed, "can_bore_mm", 2 * bore, sign)),
+        along_y("can_depth_mm", 0, depth, -bore, "left", toleranced(feed, "can_depth_mm", depth)),
+        along_y("loop_height_mm", 0, s.loop_height_mm, bore, "right",
+                toleranced(feed, "loop_height_mm", s.loop_height_mm), x1=r),
+        along_y("tap_height_mm", 0, s.tap_height_mm, bore, "right",
+                toleranced(feed, "tap_height_mm", s.tap_height_mm), x1=s.leg_pitch_mm / 2),
+        along_x("leg_pitch_mm", -s.leg_pitch_mm / 2, s.leg_pitch_mm / 2, 0, "bottom",
+                toleranced(feed, "leg_pitch_mm", s.leg_pitch_mm)),
+        along_x("loop_diameter_mm", -r, r, s.loop_height_mm, "bottom",
+                toleranced(feed, "loop_diameter_mm", 2 * r, DIAMETER)),
+    ]  # fmt: skip
+    if s.choke is not None:
+        c = s.choke
+        rim = c.floor_z_mm + c.depth_mm
+        asks += [
+            along_x("choke.bore_mm", -c.bore_mm / 2, c.bore_mm / 2, rim, "top", f"{DIAMETER}{number(c.bore_mm)}"),
+            along_y("choke.depth_mm", c.floor_z_mm, rim, -c.bore_mm / 2, "left", number(c.depth_mm)),
+            along_y("choke.floor_z_mm", 0, c.floor_z_mm, -c.bore_mm / 2, "left", number(c.floor_z_mm), x1=-bore),
+        ]
+    return asks
+
+
+def front_asks(context: Context) -> list[Ask]:
+    """Dimensions of the view into the aperture; paper x is -y, paper y is x of the feed."""
+    s = context.feed.sizes
+    return [along_y("leg_x_mm", 0, s.leg_x_mm, s.can_bore_mm / 2, "right", number(s.leg_x_mm), x1=-s.leg_pitch_mm / 2)]
+
+
+def _axis_and_focus(context: Context, scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
+    """The axis as a centre line and the phase centre as a cross in a circle."""
+    box = bounds(items)
+    z = context.feed.predicted.phase_centre_mm * scale
+    return (
+        Line(0, box.y0 - 4, 0, box.y1 + 4, "centre"),
+        Arc(0, z, 1.2, 1.2, role="thin"),
+        Line(-2.2, z, 2.2, z, "thin"),
+    )
+
+
+def _cutting_plane(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
+    """Cutting plane A-A: ends wide, arrows looking to +x, and centre lines."""
+    del scale
+    box = bounds(items)
+    left, right = box.x0 - 7, box.x1 + 7
+    out: list[Item] = [Line(left, 0, right, 0, "centre"), Line(0, box.y0 - 3, 0, box.y1 + 3, "centre")]
+    for x, way in ((left, 1), (right, -1)):
+        out += [Line(x, 0, x + 4 * way, 0, "outline"), Line(x, -5.5, x, 0, "thin"), arrow((x, -0.3), (x, -5.5))]
+        out.append(Text(x, -9.5, "A", 3.5, "middle"))
+    return tuple(out)
+
+
+def _purpose(context: Context) -> list[Block]:
+    job, p = context.feed.job, context.feed.predicted
+    text = say(
+        "general.purpose",
+        frequency=number(job.target.frequency_mhz, 3),
+        diameter=number(job.dish.diameter_m),
+        ratio=number(job.dish.focal_ratio, 3),
+        form=say(f"form.{job.loop.form}"),
+        make=say(f"make.{job.can.make}"),
+        efficiency=number(100 * p.aperture_efficiency, 0),
+    )
+    return [heading(say("general.purpose_head")), *paragraph(text)]
+
+
+def _sizes(context: Context) -> list[Block]:
+    feed = context.feed
+    rows = []
+    for key in SIZE_KEYS:
+        value = getattr(feed.sizes, key)
+        if value is None or (key == "can_flats" and value == 0):
+            continue
+        tolerance = next((f"±{number(s.tolerance_mm)} mm" for s in feed.sensitivities if s.size == key), "")
+        rows.append((size_name(key), quantity(key, value), tolerance or say("table.general")))
+    if feed.sizes.choke is not None:
+        for key in ("bore_mm", "depth_mm", "floor_z_mm"):
+            value = getattr(feed.sizes.choke, key)
+            rows.append((size_name(f"choke.{key}"), quantity(key, value), say("table.general")))
+    head = (say("table.size"), say("table.value"), say("table.tolerance"))
+    return [heading(say("general.sizes_head")), *table("sizes", head, rows, widths=(90, 45, 45))]
+
+
+def _performance(context: Context) -> list[Block]:
+    p, u = context.feed.predicted, context.feed.settings
+    rows = [
+        (say("perf.return_loss"), f"{number(p.return_loss_db, 1)} dB", f"±{number(u.return_loss_uncertainty_db, 1)} dB"),
+        (say("perf.bandwidth", level=number(p.bandwidth_return_loss_db, 0)), f"{number(p.bandwidth_mhz, 1)} MHz",
+         say("perf.resonance", value=number(u.resonance_uncertainty_mhz, 1))),
+        (say("perf.efficiency"), f"{number(100 * p.aperture_efficiency, 1)} %",
+         say("perf.spillover", value=number(100 * p.spillover, 1))),
+        (say("perf.taper"), f"{number(p.edge_taper_db, 1)} dB", ""),
+        (say("perf.width"), f"{number(p.half_power_beamwidth_e_deg, 1)}° / {number(p.half_power_beamwidth_h_deg, 1)}°", ""),
+        (say("perf.directivity"), f"{number(p.directivity_dbi, 2)} dBi",
+         say("perf.loss", value=number(p.ohmic_loss_db, 3))),
+        (say("perf.phase_centre"), f"z = {number(p.phase_centre_mm, 1)} mm", say("perf.above_floor")),
+        (say("perf.system"), f"{number(p.system_noise_k, 1)} K", f"G/T {number(p.g_over_t_db_per_k, 1)} dB/K"),
+    ]  # fmt: skip
+    head = (say("perf.head"), say("table.value"), say("perf.remark"))
+    return [heading(say("general.performance_head")), *table("performance", head, rows, widths=(80, 45, 55))]
+
+
+def checks_result(context: Context) -> list[Block]:
+    """One line on the checks: the worst severity in words, red when it is stop."""
+    counts = {s: sum(f.severity == s for f in context.findings) for s in ("stop", "caution", "note")}
+    words = say("checks.counts", stop=counts["stop"], caution=counts["caution"], note=counts["note"])
+    blocks = [heading(say("checks.head"))]
+    if counts["stop"]:
+        return [*blocks, *paragraph(say("checks.stop") + " " + words, bold=True, colour=RED), gap(2)]
+    verdict = say("checks.caution") if counts["caution"] else say("checks.clear")
+    return [*blocks, *paragraph(f"{verdict} {words}"), gap(2)]
+
