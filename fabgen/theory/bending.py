@@ -15,7 +15,6 @@ Depends on: errors, stock records.
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
 
 from fabgen.errors import JobError
 from fabgen.stock.records import Temper
@@ -23,20 +22,6 @@ from fabgen.theory.limits import require_between, require_positive
 
 HANDBOOK_Y = {0.35: 0.55, 0.41: 0.64, 0.45: 0.71}
 """K by temper -> factor Y of L = Y T + 1.57 R at 90 degrees. Machinery's Handbook 28th ed., Bending Sheet Metal."""
-
-
-@dataclass(frozen=True)
-class Bend:
-    """A bend's figures in mm. ``definition`` says in words which K it is and where it comes from."""
-
-    angle_deg: float
-    inside_radius_mm: float
-    thickness_mm: float
-    k_factor: float
-    allowance_mm: float
-    setback_mm: float
-    deduction_mm: float
-    definition: str
 
 
 def din_k(inside_radius_mm: float, thickness_mm: float) -> float:
@@ -48,6 +33,11 @@ def din_k(inside_radius_mm: float, thickness_mm: float) -> float:
     if ratio < 0.1:
         raise JobError(f"inside radius {inside_radius_mm:g} mm in {thickness_mm:g} mm sheet: give 0.1 t or more")
     return 1.0 if ratio > 5 else 0.65 + 0.5 * math.log10(ratio)
+
+
+def din_k_factor(inside_radius_mm: float, thickness_mm: float) -> float:
+    """Engineering K of DIN 6935, k/2: the neutral line lies at inside radius + K t."""
+    return din_k(inside_radius_mm, thickness_mm) / 2
 
 
 def din_compensation_mm(inside_radius_mm: float, thickness_mm: float, opening_deg: float) -> float:
@@ -64,7 +54,7 @@ def din_compensation_mm(inside_radius_mm: float, thickness_mm: float, opening_de
     return arc - 2 * (inside_radius_mm + thickness_mm) * share
 
 
-def allowance_mm(angle_deg: float, inside_radius_mm: float, thickness_mm: float, k_factor: float) -> float:
+def bend_allowance(angle_deg: float, inside_radius_mm: float, k_factor: float, thickness_mm: float) -> float:
     """Arc length of the neutral line, beta (r + K t), mm. Angle 0 to 180 degrees, K 0 to 1."""
     require_between(0, 180, angle_deg=angle_deg)
     require_between(0, 1, k_factor=k_factor)
@@ -72,16 +62,16 @@ def allowance_mm(angle_deg: float, inside_radius_mm: float, thickness_mm: float,
     return math.radians(angle_deg) * (inside_radius_mm + k_factor * thickness_mm)
 
 
-def setback_mm(angle_deg: float, inside_radius_mm: float, thickness_mm: float) -> float:
+def outside_setback(angle_deg: float, inside_radius_mm: float, thickness_mm: float) -> float:
     """Outside setback, tangent point to virtual outer corner: (r + t) tan(beta/2), mm. Angle under 180."""
     require_between(0, 179, angle_deg=angle_deg)
     return (inside_radius_mm + thickness_mm) * math.tan(math.radians(angle_deg) / 2)
 
 
-def deduction_mm(angle_deg: float, inside_radius_mm: float, thickness_mm: float, k_factor: float) -> float:
+def bend_deduction(angle_deg: float, inside_radius_mm: float, k_factor: float, thickness_mm: float) -> float:
     """Bend deduction, 2 setback - allowance, mm: outside legs less this give the flat length."""
-    double = 2 * setback_mm(angle_deg, inside_radius_mm, thickness_mm)
-    return double - allowance_mm(angle_deg, inside_radius_mm, thickness_mm, k_factor)
+    double = 2 * outside_setback(angle_deg, inside_radius_mm, thickness_mm)
+    return double - bend_allowance(angle_deg, inside_radius_mm, k_factor, thickness_mm)
 
 
 def handbook_length_mm(inside_radius_mm: float, thickness_mm: float, handbook_k: float) -> float:
@@ -112,45 +102,6 @@ def k_from_test_bend(
             f"{second_leg_mm:g} mm to the outside, inside radius {inside_radius_mm:g} mm; measure again"
         )
     return k
-
-
-def k_factor(
-    rule: str, temper: Temper, inside_radius_mm: float, thickness_mm: float, test_bend_k: float | None = None
-) -> tuple[float, str]:
-    """K by the job's ``limits.bend_rule`` and its definition in words.
-
-    ``din6935``: k/2 by r/s. ``handbook``: constant by temper. ``test-bend``: ``test_bend_k``, else JobError."""
-    if rule == "din6935":
-        return din_k(inside_radius_mm, thickness_mm) / 2, "K = k/2, k after DIN 6935; neutral line at r + K t"
-    if rule == "handbook":
-        return temper.handbook_k, "K by temper, Machinery's Handbook 28th ed.; neutral line at r + K t"
-    if rule != "test-bend":
-        raise JobError(f"bend rule '{rule}' is unknown; allowed: din6935, handbook, test-bend")
-    if test_bend_k is None:
-        raise JobError("limits.bend_rule is 'test-bend': give limits.test_bend_k, the K of your own test strip")
-    return test_bend_k, "K of the shop's own test bend; neutral line at r + K t"
-
-
-def bend(  # noqa: PLR0917
-    angle_deg: float,
-    inside_radius_mm: float,
-    thickness_mm: float,
-    temper: Temper,
-    rule: str = "din6935",
-    test_bend_k: float | None = None,
-) -> Bend:
-    """All figures of one bend by the chosen rule. Angle above 0 and under 180 degrees."""
-    k, definition = k_factor(rule, temper, inside_radius_mm, thickness_mm, test_bend_k)
-    return Bend(
-        angle_deg=angle_deg,
-        inside_radius_mm=inside_radius_mm,
-        thickness_mm=thickness_mm,
-        k_factor=k,
-        allowance_mm=allowance_mm(angle_deg, inside_radius_mm, thickness_mm, k),
-        setback_mm=setback_mm(angle_deg, inside_radius_mm, thickness_mm),
-        deduction_mm=deduction_mm(angle_deg, inside_radius_mm, thickness_mm, k),
-        definition=definition,
-    )
 
 
 def min_inside_radius_mm(temper: Temper, thickness_mm: float, parallel: bool = False) -> float:
