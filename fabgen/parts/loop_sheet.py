@@ -1,0 +1,272 @@
+"""The loop of sheet metal: a flat ring with a gap and two tabs that fold down into bars and end in feet.
+
+Flat, seen from the aperture (top side), tabs inward; tabs outward leave the ring's outer edge instead::
+
+              .-----------.          loop_diameter   centreline of the band
+            /   .-------.   \\        strip_width     width of the band
+           |  /  ________ \\__|_ y    leg_pitch       tab middle to tab middle
+           | |  |foot|bar :  |       leg_width       width of a tab
+           | |   ~~~~~~~~    |_      ' : ' fold lines, inside radius leg_bend_radius
+           | |  |foot|bar :  |       gap between the tabs = leg_pitch - leg_width
+           |  \\  ~~~~~~~~ /~~|
+            \\   '-------'   /
+              '-----------'
+
+Folded: the bars' middle at x = leg_x, ring's middle at z = loop_height, feet on the floor and towards -x (the
+coax stands on the other side). Where a fold comes closer to the ring than the process' corner radius, a relief
+is cut beside the tab.
+
+Depends on: errors, stock, parts (contour, folding, records, bend_rule, floor_plan), sizing.records.
+"""
+
+from __future__ import annotations
+
+import itertools
+import math
+from dataclasses import dataclass
+from functools import partial
+
+from fabgen.errors import GeometryError
+from fabgen.parts.bend_rule import chosen_k, rule_text
+from fabgen.parts.contour import (
+    Circle,
+    Contour,
+    Vertex,
+    reversed_contour,
+    rounded,
+    split_arc,
+)
+from fabgen.parts.floor_plan import FloorHole, coax_axis, on_spacer
+from fabgen.parts.folding import (
+    LEVEL,
+    Bend,
+    Face,
+    FoldedSheet,
+    Frame,
+    allowance_mm,
+    box_face,
+    edge_of,
+    flat_pattern,
+    folded_solid,
+    folded_volume_mm3,
+)
+from fabgen.parts.kernel import once
+from fabgen.parts.making import metal_part
+from fabgen.parts.records import Part
+from fabgen.sizing.records import Feed
+from fabgen.stock import tables
+from fabgen.stock.records import Screw
+
+FOOT_SCREWS = ("M4", "M3", "M2.5", "M2")
+"""Screws for the feet, the largest that the bar's width takes."""
+
+
+@dataclass(frozen=True)
+class TabPlan:
+    """One tab, all lengths of its folded form. ``sign`` is -1 for tabs inward, +1 outward."""
+
+    sign: float
+    root_x_mm: float
+    near_y_mm: float
+    far_y_mm: float
+    bar_mm: float
+    foot_mm: float
+    foot_hole_mm: float
+    hole_from_bend_mm: float
+    screw: str
+
+
+def foot_screw(feed: Feed) -> Screw:
+    """Largest screw whose hole leaves 1.5 t, and at least 1 mm, of the bar's width on each side."""
+    thickness = feed.sizes.sheet_mm or 0.0
+    for key in FOOT_SCREWS:
+        screw = tables.screw(key)
+        if screw.clearance_medium_mm + 2 * max(1.0, 1.5 * thickness) <= feed.sizes.leg_width_mm:
+            return screw
+    least = tables.screw(FOOT_SCREWS[-1]).clearance_medium_mm + 2 * max(1.0, 1.5 * thickness)
+    raise GeometryError(
+        f"bars {feed.sizes.leg_width_mm:g} mm wide take no foot screw; make loop.strip_width_mm at least "
+        f"{math.ceil(least * 10) / 10:g} mm, or use a wire loop"
+    )
+
+
+def tab_plan(feed: Feed) -> TabPlan:
+    """Lengths of the tabs from the feed's sizes.
+
+    Raises GeometryError when the loop stands too low for two bends and a straight bar between.
+    """
+    s = feed.sizes
+    if s.sheet_mm is None or s.tabs is None:
+        raise GeometryError("this feed has a wire loop; a sheet loop needs loop.form = 'sheet'")
+    t, r = s.sheet_mm, s.leg_bend_radius_mm
+    mid = r + t / 2
+    sign = -1.0 if s.tabs == "inward" else 1.0
+    bar = s.loop_height_mm - 2 * mid - t / 2
+    if bar < 2 * t:
+        raise GeometryError(
+            f"a loop {s.loop_height_mm:g} mm above the floor leaves {bar:.2f} mm of straight bar between two bends "
+            f"of {r:g} mm inside radius; use a bend radius of {max(0.0, r - (2 * t - bar) / 2):.2f} mm or thinner sheet"
+        )
+    screw = foot_screw(feed)
+    hole = screw.clearance_medium_mm
+    from_bend = max(hole / 2 + 2 * t, screw.head_mm / 2 + 0.5)
+    if not on_spacer(feed):
+        # The nut below must clear the connector's flange.
+        flange = tables.connector(feed.job.cable.connector).flange_width_mm / 2
+        nut = screw.nut_across_flats_mm / math.sqrt(3)
+        from_bend = max(from_bend, s.leg_x_mm - mid - (coax_axis(feed)[0] - flange - nut - 0.5))
+    foot = from_bend + max(hole / 2 + 1.5 * t, screw.head_mm / 2)
+    half = s.leg_width_mm / 2
+    return TabPlan(
+        sign, s.leg_x_mm - sign * mid, s.leg_pitch_mm / 2 - half, s.leg_pitch_mm / 2 + half, bar, foot, hole,
+        from_bend, screw.key,
+    )
+
+
+def foot_holes(feed: Feed) -> tuple[FloorHole, ...]:
+    """Screw holes of the feet in the floor."""
+    plan, s = tab_plan(feed), feed.sizes
+    x = s.leg_x_mm - s.leg_bend_radius_mm - (s.sheet_mm or 0.0) / 2 - plan.hole_from_bend_mm
+    y = s.leg_pitch_mm / 2
+    return tuple(FloorHole("loop foot", Circle(x, side * y, plan.foot_hole_mm)) for side in (1, -1))
+
+
+def _beside_tab(feed: Feed, plan: TabPlan, edges: tuple[float, float], zone_mm: float) -> list[Vertex]:
+    """From the tab's root along its far side to the ring's edge of radius ``edges[0]``, on the +y half; the last
+    vertex lies on the ring's edge.
+
+    A fillet of the process' corner radius where the bend zone keeps clear of it; else a relief slot with a round
+    end, as wide as the thickness or 1 mm, that reaches past the fold line by r + t.
+    """
+    corner, g = feed.job.limits.corner_radius_mm, plan.sign
+    across, reach = plan.far_y_mm + corner, edges[0] + g * corner
+    if 0 < corner and across < reach:
+        # The fillet's centre is ``corner`` away from the tab's side and from the ring's edge.
+        x = math.sqrt(reach**2 - across**2)
+        if g * (plan.root_x_mm - x) >= 0:
+            angle = math.degrees(math.atan2(across, x))
+            sweep = angle + 90.0 if g < 0 else angle - 90.0
+            touch = Vertex(edges[0] * x / reach, edges[0] * across / reach)
+            return [*split_arc((x, across), corner, -90.0, sweep), touch]
+    return _relief(feed, plan, edges, zone_mm)
+
+
+def _relief(feed: Feed, plan: TabPlan, edges: tuple[float, float], zone_mm: float) -> list[Vertex]:
+    s, g = feed.sizes, plan.sign
+    t = s.sheet_mm or 0.0
+    least = tables.limit("relief_min_mm", feed.job.overrides).value
+    slot = max(t, least, 2 * feed.job.limits.corner_radius_mm)
+    across = plan.far_y_mm + slot
+    if across >= edges[0]:
+        raise GeometryError(
+            f"the relief beside a tab at y = {plan.far_y_mm:.1f} mm does not fit a ring edge of {edges[0]:.1f} mm "
+            "radius; use a smaller leg pitch or a narrower strip"
+        )
+    edge_x = math.sqrt(edges[0] ** 2 - across**2)
+    fold = plan.root_x_mm + g * zone_mm / 2
+    past = fold - g * (s.leg_bend_radius_mm + t)
+    tips = (past, plan.root_x_mm - g * slot / 2, edge_x - g * (slot / 2 + 0.2))
+    tip = min(tips) if g > 0 else max(tips)
+    room = g * (tip - math.sqrt(max(0.0, edges[1] ** 2 - plan.far_y_mm**2)))
+    width = s.strip_width_mm or 0.0
+    if room < max(0.4 * width, 2 * t):
+        raise GeometryError(
+            f"the relief of the fold leaves {room:.2f} mm of a band {width:g} mm wide and it needs "
+            f"{max(0.4 * width, 2 * t):.2f} mm; move the bars away from the band or use a wider strip"
+        )
+    centre = (tip + g * slot / 2, plan.far_y_mm + slot / 2)
+    arc = split_arc(centre, slot / 2, -90.0, -180.0 * g)
+    return [*arc, Vertex(centre[0], across), Vertex(edge_x, across)]
+
+
+def _ring(feed: Feed, plan: TabPlan, zone_mm: float) -> Contour:
+    """Outline of the ring with the tabs' roots, counter-clockwise."""
+    s = feed.sizes
+    width = s.strip_width_mm or 0.0
+    inner, outer = s.loop_diameter_mm / 2 - width / 2, s.loop_diameter_mm / 2 + width / 2
+    edges = (inner, outer) if plan.sign < 0 else (outer, inner)
+    near, root = plan.near_y_mm, plan.root_x_mm
+    side = _beside_tab(feed, plan, edges, zone_mm)
+    touch = side[-1]
+    start = math.degrees(math.atan2(touch.y_mm, touch.x_mm))
+    half = [Vertex(root, near), Vertex(root, plan.far_y_mm), *side[:-1]]
+    half += [*split_arc((0.0, 0.0), edges[0], start, 180.0 - start), Vertex(-edges[0], 0.0)]
+    # The same path mirrored in the x axis and run backwards keeps its bulges.
+    steps = list(itertools.pairwise(half))
+    back = [Vertex(b.x_mm, -b.y_mm, a.bulge) for a, b in reversed(steps)]
+    gap = math.degrees(math.asin(near / edges[1]))
+    plain = split_arc((0.0, 0.0), edges[1], -gap, 2 * gap - 360.0)
+    end = Vertex(edges[1] * math.cos(math.radians(gap)), near)
+    ring = Contour((*half[:-1], *back, Vertex(root, -near), *plain, end))
+    return ring if plan.sign > 0 else reversed_contour(ring)
+
+
+def folded_loop(feed: Feed) -> FoldedSheet:
+    """Faces and bends of the loop: ring, and for each side a bar and a foot."""
+    s, plan = feed.sizes, tab_plan(feed)
+    t, r, width = s.sheet_mm or 0.0, s.leg_bend_radius_mm, s.leg_width_mm
+    temper = tables.temper(feed.job.loop.metal, feed.job.loop.temper)
+    k = chosen_k(feed.job.limits, temper, r, t)
+    down = Bend(-90.0, r, k, 2)
+    zone = allowance_mm(down, t)
+    _refuse_crossing(feed, plan, zone)
+    ring = _ring(feed, plan, zone)
+    out = Bend(90.0 if plan.sign < 0 else -90.0, r, k, 1)
+    corner = min(2.0, width / 4)
+    foot = rounded([(0, 0, 0), (width, 0, 0), (width, plan.foot_mm, corner), (0, plan.foot_mm, corner)])
+    hole = Circle(width / 2, plan.hole_from_bend_mm, plan.foot_hole_mm)
+    faces = [Face("ring", ring)]
+    root, near, far = plan.root_x_mm, plan.near_y_mm, plan.far_y_mm
+    for name, a, b in (("+y", near, far), ("-y", -far, -near)):
+        ends = ((root, a), (root, b)) if plan.sign > 0 else ((root, b), (root, a))
+        edge = edge_of(ring, *ends)
+        faces.append(Face(f"bar {name}", box_face(width, plan.bar_mm), (), "ring", (0, edge), down))
+        faces.append(Face(f"foot {name}", foot, (hole,), f"bar {name}", (0, 2), out))
+    return FoldedSheet(tuple(faces), t)
+
+
+def _refuse_crossing(feed: Feed, plan: TabPlan, zone_mm: float) -> None:
+    """A tab that leaves the ring inwards must end before the ring's far side."""
+    if plan.sign > 0:
+        return
+    s = feed.sizes
+    inner = (s.loop_diameter_mm - (s.strip_width_mm or 0.0)) / 2
+    web = max(1.0, s.sheet_mm or 0.0)
+    need = 2 * zone_mm + plan.bar_mm + plan.foot_mm
+    have = plan.root_x_mm + math.sqrt(max(0.0, inner**2 - plan.far_y_mm**2)) - web
+    if need > have:
+        raise GeometryError(
+            f"a tab inward needs {need:.1f} mm of flat length but the ring has {have:.1f} mm of room; "
+            f"lower the loop by {need - have:.1f} mm or put the tabs outward"
+        )
+
+
+def loop_sheet(feed: Feed) -> Part:
+    """The sheet loop as a part in the feed's frame; the top side is the one seen from the aperture."""
+    s, plan = feed.sizes, tab_plan(feed)
+    sheet = folded_loop(feed)
+    base = Frame((0.0, 0.0, s.loop_height_mm), LEVEL.u, LEVEL.v, LEVEL.n)
+    sizes = (
+        ("loop_diameter_mm", s.loop_diameter_mm),
+        ("strip_width_mm", s.strip_width_mm or 0.0),
+        ("loop_height_mm", s.loop_height_mm),
+        ("leg_x_mm", s.leg_x_mm),
+        ("leg_pitch_mm", s.leg_pitch_mm),
+        ("leg_width_mm", s.leg_width_mm),
+        ("leg_bend_radius_mm", s.leg_bend_radius_mm),
+        ("foot_mm", plan.foot_mm),
+        ("foot_hole_mm", plan.foot_hole_mm),
+    )
+    return metal_part(
+        "loop",
+        "loop with bars",
+        ("laser", "fold"),
+        (feed.job.loop.metal, feed.job.loop.temper),
+        feed,
+        volume_mm3=folded_volume_mm3(sheet),
+        sizes=sizes,
+        flat=flat_pattern(sheet, "side towards the aperture"),
+        thickness_mm=s.sheet_mm,
+        solid=once(partial(folded_solid, sheet, base, "loop")),
+        notes=(rule_text(feed.job.limits), f"feet: {plan.screw} screws from below, nuts on the feet"),
+    )
