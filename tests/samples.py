@@ -39,6 +39,8 @@ def sample_job(
             "dish": {"diameter_m": 2.4, "focal_ratio": 0.4},
             "loop": loop,
             "can": {"make": make, "choke": choke, **can},
+            # A job for a can of stock tube must give the bore.
+            "fixed": {"can_bore_mm": round(1.05 * 299_792.458 / frequency_mhz, 1)} if make == "tube" else {},
         }
     )
 

@@ -31,9 +31,11 @@ Purpose = Literal["coax", "connector screw", "loop foot", "drain"]
 DRAIN_HOLE_MM = 3.0
 """Large enough that a drop does not bridge it; far under a wavelength. Common practice, no source."""
 FOOT_CLEARANCE_MM = 0.2
-"""On the diameter of a wire's foot hole: the wire goes in and solder draws in. Common practice, no source."""
+"""On the diameter of a wire's foot hole: the wire goes in and solder draws in. Common practice."""
 COAX_CLEARANCE_MM = 0.2
 """On the diameter of a hole for the coax alone. Common practice, no source."""
+MARK_MM = 2.0
+"""Depth and half width of the notch that marks the gap's side. Common practice, no source."""
 HEAD_CLEARANCE_MM = 2.0
 """Room for a washer's rim and a socket key between a screw head and the wall. Common practice, no source."""
 
@@ -48,9 +50,11 @@ class FloorHole:
 
 @dataclass(frozen=True)
 class FlangePlan:
-    """The mounting flange: its outline, thickness, screw and hole centres (none: no flange)."""
+    """The mounting flange: its outline, thickness, screw and holes. ``mark`` is the notch in the edge on +x
+    that shows where the loop's gap is; it is not in ``outline``, ``marked_outline`` has both."""
 
     outline: Outline
+    mark: Contour
     width_mm: float
     thickness_mm: float
     bolt_circle_mm: float
@@ -58,19 +62,39 @@ class FlangePlan:
     holes: tuple[Circle, ...]
 
 
+def leg_depth_mm(feed: Feed) -> float:
+    """Thickness of a bar along x: the wire's diameter or the sheet."""
+    sizes = feed.sizes
+    return float(sizes.wire_mm if sizes.wire_mm is not None else sizes.sheet_mm or 0.0)
+
+
 def coax_axis(feed: Feed) -> Point:
     """Axis of the coax: it touches the bar at +y on the side away from the axis of the can.
 
     The foot of a sheet loop lies on the other side. For bars of strip the coax stands near the strip's inner
-    edge, so that the crossing is as short as between round bars.
+    edge, so that the crossing is as short as between round bars. The capacitor's tube, which lies on the other
+    bar in line with the coax, may be the thicker of the two and then sets the distance.
     """
-    sizes, coax = feed.sizes, tables.coax(feed.job.cable.coax)
-    depth = sizes.wire_mm if sizes.conductor == "wire" else sizes.sheet_mm
-    x = sizes.leg_x_mm + (float(depth or 0.0) + coax.outer_mm) / 2
+    sizes, coax, capacitor = feed.sizes, tables.coax(feed.job.cable.coax), feed.capacitor
+    sleeve = capacitor.outer_mm + 2 * capacitor.tube_wall_mm if capacitor.form == "sleeve" else 0.0
+    x = sizes.leg_x_mm + (leg_depth_mm(feed) + max(coax.outer_mm, sleeve)) / 2
     y = sizes.leg_pitch_mm / 2
     if sizes.conductor != "wire":
         y -= max(0.0, (sizes.leg_width_mm - coax.outer_mm) / 2)
     return x, y
+
+
+def lining_mm(feed: Feed) -> float:
+    """Thickness of the lining with its adhesive; 0 for a can of metal."""
+    if feed.job.can.make != "printed":
+        return 0.0
+    lining = tables.lining(feed.job.can.lining)
+    return lining.thickness_mm + lining.adhesive_mm
+
+
+def floor_bottom_mm(feed: Feed) -> float:
+    """Height of the floor's outer face, which the connector stands against."""
+    return -lining_mm(feed) - feed.sizes.floor_mm
 
 
 def on_spacer(feed: Feed) -> bool:
@@ -158,9 +182,31 @@ def flange_plan(feed: Feed, outer_mm: float) -> FlangePlan | None:
     drilled = tuple(Circle(x, y, screw.clearance_medium_mm) for x, y in holes)
     if flange.pattern == "circle":
         width = circle + 2 * edge
-        return FlangePlan(Circle(0, 0, width), width, thickness, circle, screw.key, drilled)
+        return FlangePlan(Circle(0, 0, width), _notch(width), width, thickness, circle, screw.key, drilled)
     width = max(circle / math.sqrt(2) + 2 * edge, outer_mm + 2.0)
-    return FlangePlan(_rounded_square(width, edge), width, thickness, circle, screw.key, drilled)
+    return FlangePlan(_rounded_square(width, edge), _notch(width), width, thickness, circle, screw.key, drilled)
+
+
+def marked_outline(plan: FlangePlan) -> Contour:
+    """The flange's outline with the notch, for cutting from sheet."""
+    tip = Vertex(plan.width_mm / 2 - MARK_MM, 0.0)
+    if isinstance(plan.outline, Circle):
+        radius = plan.width_mm / 2
+        # Where the notch's 45 degree sides meet the circle: (tip + t)^2 + t^2 = radius^2.
+        half = (math.sqrt(2 * radius**2 - tip.x_mm**2) - tip.x_mm) / 2
+        half_deg = math.degrees(math.asin(half / radius))
+        end = math.radians(-half_deg)
+        arcs = split_arc((0.0, 0.0), radius, half_deg, 360.0 - 2 * half_deg)
+        return Contour((*arcs, Vertex(radius * math.cos(end), radius * math.sin(end)), tip))
+    edge = plan.width_mm / 2
+    return Contour((*plan.outline.vertices, Vertex(edge, -MARK_MM), tip, Vertex(edge, MARK_MM)))
+
+
+def _notch(width_mm: float) -> Contour:
+    """A right-angled notch whose corners lie on the flange's edge; for a round edge it reaches beyond it."""
+    edge = width_mm / 2 + 1.0
+    half = MARK_MM + 1.0
+    return Contour((Vertex(width_mm / 2 - MARK_MM, 0.0), Vertex(edge, -half), Vertex(edge, half)))
 
 
 def _circle_holes(count: int, circle_mm: float) -> tuple[Point, ...]:

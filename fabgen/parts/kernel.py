@@ -1,8 +1,8 @@
 """The few CAD-kernel operations that the parts need; the kernel is imported when the first solid is built.
 
 All lengths in millimetres, angles in degrees, z up. Every function returns a new shape. Booleans take all
-their tools at once, since the kernel is faster that way, and a result that is not one valid solid is an error,
-never a silent repair.
+their tools at once, since the kernel is faster that way, and a result that is not one valid solid is an
+error, never a silent repair.
 
 Depends on: errors, parts.contour, parts.records.
 """

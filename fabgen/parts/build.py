@@ -1,0 +1,72 @@
+"""All parts of a feed, in the order in which they go together.
+
+Depends on: errors, parts, sizing.records. Importing this module does not import the CAD kernel; calling a
+part's ``solid`` does.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from fabgen.errors import GeometryError, NotCoveredError
+from fabgen.parts.can_printed import can_printed
+from fabgen.parts.can_tube import can_tube
+from fabgen.parts.can_turned import can_turned
+from fabgen.parts.capacitor import capacitor_parts, coax_stub
+from fabgen.parts.connector import connector, spacer
+from fabgen.parts.fastening import connector_fasteners, foot_fasteners
+from fabgen.parts.kernel import placed
+from fabgen.parts.loop_sheet import loop_sheet
+from fabgen.parts.records import Part, Place
+from fabgen.sizing.records import Feed
+
+if TYPE_CHECKING:
+    import cadquery
+
+
+@dataclass(frozen=True)
+class Placement:
+    """One copy of a part in the assembly; ``number`` counts the copies from 1."""
+
+    part: Part
+    place: Place
+    number: int
+
+    def solid(self) -> cadquery.Shape:
+        """The copy's solid in the feed's frame."""
+        if self.part.solid is None:
+            raise GeometryError(f"{self.part.name} has no solid to place")
+        return placed(self.part.solid(), self.place)
+
+
+def build_parts(feed: Feed) -> tuple[Part, ...]:
+    """Every part of the feed, can first, in assembly order; keys are unique.
+
+    Raises GeometryError where sizes do not fit together, NotCoveredError for a make that is not built.
+    """
+    parts: list[Part | None] = [*_can(feed), *_loop(feed), *foot_fasteners(feed)]
+    parts += [spacer(feed), connector(feed), *connector_fasteners(feed)]
+    parts += [coax_stub(feed), *capacitor_parts(feed)]
+    return tuple(part for part in parts if part is not None)
+
+
+def assembly(parts: Sequence[Part]) -> Iterator[Placement]:
+    """All copies of all parts that have a solid, in order."""
+    for part in parts:
+        if part.solid is not None:
+            for number, place in enumerate(part.places, start=1):
+                yield Placement(part, place, number)
+
+
+def _can(feed: Feed) -> tuple[Part, ...]:
+    makers = {"printed": can_printed, "tube": can_tube, "turned": can_turned}
+    make = feed.job.can.make
+    if make not in makers:
+        raise NotCoveredError(f"can.make = {make!r} has no parts yet; use one of {', '.join(sorted(makers))}")
+    return makers[make](feed)
+
+
+def _loop(feed: Feed) -> tuple[Part, ...]:
+    return (loop_sheet(feed),) if feed.sizes.conductor == "strip" else ()

@@ -1,0 +1,136 @@
+"""The turned can: floor, wall and flange from one piece of bar, for the lathe; the holes are drilled after.
+
+Section through the axis::
+
+            |<----- can_bore ----->|        z = can_depth
+            | |                    | |
+       wall | |                    | |
+            | |____________________| |      z = 0
+     .------'                        '----.
+     '------------------------------------'  z = -floor
+     |<------------- flange ------------->|
+
+Depends on: errors, parts.contour, parts.kernel, parts.making, parts.shell, parts.floor_plan,
+parts.floor_holes, parts.records, sizing.records.
+"""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from fabgen.errors import GeometryError
+from fabgen.parts import kernel
+from fabgen.parts.contour import Outline, area_mm2
+from fabgen.parts.floor_holes import floor_holes
+from fabgen.parts.floor_plan import flange_plan
+from fabgen.parts.making import metal_part
+from fabgen.parts.records import Part
+from fabgen.parts.shell import Body, profile, revolved_volume_mm3, shell_solid
+from fabgen.sizing.records import Feed
+from fabgen.stock import tables
+
+if TYPE_CHECKING:
+    import cadquery
+
+HUB_SCREW = "M4"
+HUB_SCREWS = 3
+HUB_FIT_MM = 0.1
+"""On the diameter between can and choke hub: slides on by hand. Common practice, no source."""
+
+
+def body_of(feed: Feed) -> Body:
+    """The turned body's radii and heights."""
+    sizes = feed.sizes
+    outer = sizes.can_bore_mm / 2 + sizes.wall_mm
+    return Body(
+        inner_radius_mm=sizes.can_bore_mm / 2,
+        outer_radius_mm=outer,
+        floor_top_mm=0.0,
+        floor_bottom_mm=-sizes.floor_mm,
+        rim_mm=sizes.can_depth_mm,
+        flange=flange_plan(feed, 2 * outer),
+    )
+
+
+def can_turned(feed: Feed) -> tuple[Part, ...]:
+    """The can as one turned part and, where asked for, the turned choke ring."""
+    sizes, body = feed.sizes, body_of(feed)
+    openings = tuple(h.outline for h in floor_holes(feed))
+    flange_holes: tuple[Outline, ...] = body.flange.holes if body.flange else ()
+    widest = max(2 * body.outer_radius_mm, body.flange.width_mm if body.flange else 0.0)
+    can = metal_part(
+        "can",
+        "turned can",
+        ("turn", "drill"),
+        (feed.job.can.metal, feed.job.can.temper),
+        feed,
+        volume_mm3=_volume(body, openings, flange_holes),
+        sizes=(
+            ("can_bore_mm", sizes.can_bore_mm),
+            ("can_depth_mm", sizes.can_depth_mm),
+            ("wall_mm", sizes.wall_mm),
+            ("floor_mm", sizes.floor_mm),
+            ("outer_mm", widest),
+            ("length_mm", body.rim_mm - body.floor_bottom_mm),
+        ),
+        solid=kernel.once(lambda: shell_solid(body, openings, flange_holes, "turned can")),
+        notes=("inside corner radius 0.4 mm at most", "bore and floor turned in one setting"),
+    )
+    return (can,) if sizes.choke is None else (can, _choke(feed, body))
+
+
+def _volume(body: Body, openings: tuple[Outline, ...], flange_holes: tuple[Outline, ...]) -> float:
+    volume = revolved_volume_mm3(profile(body))
+    volume -= sum(area_mm2(o) for o in openings) * (body.floor_top_mm - body.floor_bottom_mm)
+    if body.flange is None:
+        return volume
+    return volume - sum(area_mm2(o) for o in flange_holes) * body.flange.thickness_mm
+
+
+def _choke(feed: Feed, body: Body) -> Part:
+    sizes = feed.sizes
+    choke = sizes.choke
+    if choke is None:
+        raise GeometryError("this feed has no choke; set can.choke = true in the job")
+    screw = tables.screw(HUB_SCREW)
+    bore = 2 * body.outer_radius_mm + HUB_FIT_MM
+    low = choke.floor_z_mm - sizes.floor_mm
+    hub = min(3 * screw.diameter_mm, low - body.flange_top_mm - 0.5)
+    if hub < 2 * screw.diameter_mm:
+        need = 2 * screw.diameter_mm - hub
+        raise GeometryError(
+            f"the choke's hub has {hub:.1f} mm of height and needs {2 * screw.diameter_mm:g} mm for its "
+            f"{HUB_SCREW} screws; raise can.choke.floor_z_mm by {need:.1f} mm"
+        )
+    inner, hub_outer = bore / 2, bore / 2 + 2 * screw.diameter_mm
+    wall = choke.bore_mm / 2
+    rim = choke.floor_z_mm + choke.depth_mm
+    points = (
+        (inner, low - hub), (hub_outer, low - hub), (hub_outer, low), (wall + sizes.wall_mm, low),
+        (wall + sizes.wall_mm, rim), (wall, rim), (wall, choke.floor_z_mm), (inner, choke.floor_z_mm),
+    )
+    return metal_part(
+        "choke",
+        "turned choke ring",
+        ("turn", "drill"),
+        (feed.job.can.metal, feed.job.can.temper),
+        feed,
+        volume_mm3=revolved_volume_mm3(points),
+        sizes=(
+            ("choke_bore_mm", choke.bore_mm), ("choke_depth_mm", choke.depth_mm), ("hub_bore_mm", bore),
+            ("hub_mm", hub), ("wall_mm", sizes.wall_mm), ("floor_mm", sizes.floor_mm),
+        ),
+        solid=kernel.once(lambda: _choke_solid(points, low - hub / 2, hub_outer, screw.tap_drill_mm)),
+        notes=(f"{HUB_SCREWS} radial {HUB_SCREW} set screws in the hub", "hub face bare, bright and greased"),
+    )
+
+
+def _choke_solid(
+    points: tuple[tuple[float, float], ...], z_mm: float, reach_mm: float, drill_mm: float
+) -> cadquery.Shape:
+    ring = kernel.revolved(points)
+    # One screw on +x, where the gap's marker is.
+    ends = kernel.circle_points(HUB_SCREWS, reach_mm + 1.0, 0.0)
+    tools = [kernel.rod((x * 0.5, y * 0.5, z_mm), (x, y, z_mm), drill_mm) for x, y in ends]
+    return kernel.cut(ring, *tools, what="turned choke ring")
+

@@ -1,0 +1,216 @@
+"""The coax stub and the series capacitor at its crossing from bar to bar.
+
+Seen along -x, bars cut::
+
+      bar -y      brass tube        coax core     bar +y
+       | |====================..........----.      | |
+       | |  tube, open end ->  core, overlap  \\    | |     z = tap_height
+       | |====================..........----.  |   | |
+       | |                                   | |coax| |
+     =======================================| |====|=|==  z = 0
+
+``form`` "sleeve": the coax's own dielectric and centre conductor slide in a tube that lies on the other bar.
+``form`` "plates": a plate on the centre conductor and one on the bar overlap with a film between them.
+
+Depends on: errors, stock, parts.records, parts.kernel, parts.floor_plan, sizing.records.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from fabgen.errors import GeometryError
+from fabgen.parts import kernel
+from fabgen.parts.floor_plan import coax_axis, floor_bottom_mm, leg_depth_mm
+from fabgen.parts.records import Part
+from fabgen.sizing.records import Feed
+from fabgen.stock import tables
+
+if TYPE_CHECKING:
+    import cadquery
+
+END_GAP_MM = 1.0
+"""From the coax's bend to the open end of the tube: a blade's width to measure the overlap. Common practice."""
+PLATE_MM = 0.5
+"""Thickness of a capacitor plate. Common practice, no source."""
+FILM_COLOUR = (0.93, 0.93, 0.90)
+
+
+@dataclass(frozen=True)
+class Crossing:
+    """Where the crossing runs: the coax's axis, its bend, and the ends along y."""
+
+    x_mm: float
+    coax_y_mm: float
+    tap_z_mm: float
+    bend_mm: float
+    jacket_top_mm: float
+    open_end_y_mm: float
+    core_end_y_mm: float
+    far_end_y_mm: float
+
+
+def crossing_of(feed: Feed) -> Crossing:
+    """Lay out the crossing. Raises GeometryError when the bars stand too close for coax and overlap."""
+    sizes, coax, capacitor = feed.sizes, tables.coax(feed.job.cable.coax), feed.capacitor
+    x, y = coax_axis(feed)
+    bend = coax.dielectric_mm
+    if sizes.tap_height_mm - bend <= 0:
+        raise GeometryError(
+            f"tap_height_mm = {sizes.tap_height_mm:g} leaves no room to bend the core of {coax.key} "
+            f"({coax.dielectric_mm:g} mm thick); choose a thinner coax"
+        )
+    bar = -sizes.leg_pitch_mm / 2
+    open_end = y - bend - END_GAP_MM
+    inner_edge = bar + sizes.leg_width_mm / 2
+    if open_end <= inner_edge:
+        raise GeometryError(
+            f"leg_pitch_mm = {sizes.leg_pitch_mm:g} leaves no room between the bars for {coax.key} and the "
+            f"capacitor; choose a thinner coax or fix leg_pitch_mm at {sizes.leg_pitch_mm + bend:.1f} or more"
+        )
+    far = min(open_end - capacitor.overlap_max_mm - END_GAP_MM, bar - leg_depth_mm(feed) / 2)
+    return Crossing(
+        x_mm=x,
+        coax_y_mm=y,
+        tap_z_mm=sizes.tap_height_mm,
+        bend_mm=bend,
+        jacket_top_mm=sizes.tap_height_mm - bend,
+        open_end_y_mm=open_end,
+        core_end_y_mm=open_end - capacitor.overlap_mm,
+        far_end_y_mm=far,
+    )
+
+
+def coax_stub(feed: Feed) -> Part:
+    """The piece of coax from the connector up the bar and across, one body: jacket, then bared core."""
+    row, metal, run = tables.coax(feed.job.cable.coax), tables.metal("cu-etp"), crossing_of(feed)
+    bottom = floor_bottom_mm(feed)
+    jacket = run.jacket_top_mm - bottom
+    core = math.pi / 2 * run.bend_mm + (run.coax_y_mm - run.bend_mm) - run.core_end_y_mm
+    volume = math.pi / 4 * (row.outer_mm**2 * jacket + row.dielectric_mm**2 * core)
+    return Part(
+        key="coax-stub",
+        name=f"coax stub {row.key}",
+        process=("buy", "wire"),
+        material=row.key,
+        material_name=row.name,
+        temper="",
+        colour=metal.colour,
+        quantity=1,
+        sizes=(
+            ("outer_mm", row.outer_mm),
+            ("jacket_mm", round(jacket, 2)),
+            ("bared_mm", round(core, 2)),
+            ("cut_length_mm", round(jacket + core, 2)),
+            ("overlap_mm", feed.capacitor.overlap_mm),
+        ),
+        tolerance="bared length +0.5/0 mm, cut after the first measurement",
+        finish="jacket soldered along the bar at +y",
+        solid=kernel.once(lambda: _stub_solid(feed)),
+        mass_kg=volume * 1e-9 * 5500.0,
+        notes=(f"bend the bared core by {run.bend_mm:g} mm radius at the tap height",),
+    )
+
+
+def capacitor_parts(feed: Feed) -> tuple[Part, ...]:
+    """The parts of the series capacitor other than the coax's core."""
+    if feed.capacitor.form == "sleeve":
+        return (_sleeve(feed),)
+    return _plates(feed)
+
+
+def _stub_solid(feed: Feed) -> cadquery.Shape:
+    import cadquery as cq
+
+    row, run = tables.coax(feed.job.cable.coax), crossing_of(feed)
+    start = cq.Vector(run.x_mm, run.coax_y_mm, run.jacket_top_mm)
+    centre_y, s = run.coax_y_mm - run.bend_mm, run.bend_mm * math.sqrt(0.5)
+    middle = cq.Vector(run.x_mm, centre_y + s, run.jacket_top_mm + s)
+    level = cq.Vector(run.x_mm, centre_y, run.tap_z_mm)
+    end = cq.Vector(run.x_mm, run.core_end_y_mm, run.tap_z_mm)
+    path = cq.Wire.assembleEdges(
+        [cq.Edge.makeThreePointArc(start, middle, level), cq.Edge.makeLine(level, end)]
+    )
+    ring = cq.Wire.makeCircle(row.dielectric_mm / 2, start, cq.Vector(0, 0, 1))
+    core = cq.Solid.sweep(ring, [], path)
+    jacket = kernel.rod(
+        (run.x_mm, run.coax_y_mm, floor_bottom_mm(feed)), start.toTuple(), row.outer_mm
+    )
+    return kernel.fused(jacket, core, what="coax stub")
+
+
+def _sleeve(feed: Feed) -> Part:
+    capacitor, metal, run = feed.capacitor, tables.metal("cuzn37"), crossing_of(feed)
+    length = run.open_end_y_mm - run.far_end_y_mm
+    outer = capacitor.outer_mm + 2 * capacitor.tube_wall_mm
+    start = (run.x_mm, run.open_end_y_mm, run.tap_z_mm)
+    end = (run.x_mm, run.far_end_y_mm, run.tap_z_mm)
+    volume = math.pi / 4 * (outer**2 - capacitor.outer_mm**2) * length
+    return Part(
+        key="capacitor-tube",
+        name="capacitor tube",
+        process=("buy", "wire"),
+        material=metal.key,
+        material_name=metal.name,
+        temper=metal.default_temper.key,
+        colour=metal.colour,
+        quantity=1,
+        sizes=(
+            ("bore_mm", capacitor.outer_mm),
+            ("outer_mm", outer),
+            ("length_mm", round(length, 2)),
+            ("overlap_mm", capacitor.overlap_mm),
+        ),
+        tolerance="length +-0.5 mm; bore a sliding fit on the coax's dielectric",
+        finish="deburred, soldered along the bar at -y",
+        solid=kernel.once(lambda: kernel.tube(start, end, outer, capacitor.outer_mm)),
+        mass_kg=volume * 1e-9 * metal.density_kg_per_m3,
+        notes=("slide to trim; set with a drop of varnish once the reflection is right",),
+    )
+
+
+def _plates(feed: Feed) -> tuple[Part, ...]:
+    capacitor, run = feed.capacitor, crossing_of(feed)
+    half, film = capacitor.plate_width_mm / 2, capacitor.film_mm
+    low, high = run.tap_z_mm - half, run.tap_z_mm + half
+    # Films lie in planes x = const: a screwdriver from the aperture then slides the plates along y.
+    inner = run.x_mm - film / 2
+    reach = run.open_end_y_mm - run.core_end_y_mm
+    boxes = (
+        ("capacitor-plate-coax", "capacitor plate on the coax",
+         (inner + film, run.core_end_y_mm, low), (inner + film + PLATE_MM, run.open_end_y_mm, high)),
+        ("capacitor-plate-bar", "capacitor plate on the bar",
+         (inner - PLATE_MM, run.far_end_y_mm, low), (inner, run.open_end_y_mm, high)),
+        ("capacitor-film", "capacitor film",
+         (inner, run.core_end_y_mm - 1.0, low), (inner + film, run.open_end_y_mm, high)),
+    )
+    return tuple(_plate(key, name, a, b, reach) for key, name, a, b in boxes)
+
+
+def _plate(key: str, name: str, low: kernel.Point3, high: kernel.Point3, overlap_mm: float) -> Part:
+    film = key == "capacitor-film"
+    metal = tables.metal("cuzn37")
+    x, y, z = (b - a for a, b in zip(low, high, strict=True))
+    return Part(
+        key=key,
+        name=name,
+        process=("buy",) if film else ("laser",),
+        material="ptfe" if film else metal.key,
+        material_name="PTFE film" if film else metal.name,
+        temper="" if film else metal.default_temper.key,
+        colour=FILM_COLOUR if film else metal.colour,
+        quantity=1,
+        sizes=(
+            ("thickness_mm", round(x, 3)),
+            ("length_mm", round(y, 2)),
+            ("width_mm", round(z, 2)),
+            ("overlap_mm", round(overlap_mm, 2)),
+        ),
+        tolerance="length and width +-0.2 mm",
+        finish="deburred",
+        thickness_mm=x,
+        solid=kernel.once(lambda: kernel.box(low, high)),
+        mass_kg=x * y * z * 1e-9 * (2200.0 if film else metal.density_kg_per_m3),
+    )

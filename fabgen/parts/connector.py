@@ -1,0 +1,139 @@
+"""The panel connector as a plain envelope from its dimension table, and its spacer where it needs one.
+
+Section along the coax; the floor's outer face is up::
+
+    ====floor====[ coax ]====floor====     z = floor_bottom
+       | spacer |  bore  | spacer |        only for connectors with a wide bore
+       '--------+ flange +--------'        flange_width x flange_height x flange_thickness
+                |  body  |                 body diameter, body_length
+                '--------'
+
+Depends on: errors, stock, parts.contour, parts.records, parts.kernel, parts.floor_plan, sizing.records.
+"""
+
+from __future__ import annotations
+
+import math
+from typing import TYPE_CHECKING
+
+from fabgen.parts import kernel
+from fabgen.parts.contour import Circle, Contour, Vertex
+from fabgen.parts.floor_plan import (
+    coax_axis,
+    connector_screw_holes,
+    floor_bottom_mm,
+    on_spacer,
+)
+from fabgen.parts.records import FlatPattern, Part
+from fabgen.sizing.records import Feed
+from fabgen.stock import tables
+
+if TYPE_CHECKING:
+    import cadquery
+
+SPACER_MM = 6.0
+"""Room for the solder cup behind the connector's flange. From memory of maker drawings; measure the part."""
+NICKEL_COLOUR = (0.75, 0.74, 0.70)
+
+
+def flange_face_mm(feed: Feed) -> float:
+    """Height of the face of the connector's flange that looks at the floor."""
+    return floor_bottom_mm(feed) - (SPACER_MM if on_spacer(feed) else 0.0)
+
+
+def connector(feed: Feed) -> Part:
+    """The connector: bought, drawn as flange and body only."""
+    row = tables.connector(feed.job.cable.connector)
+    volume = _flange_area(feed) * row.flange_thickness_mm
+    volume += math.pi / 4 * row.body_mm**2 * row.body_length_mm
+    return Part(
+        key="connector",
+        name=f"connector {row.key}",
+        process=("buy",),
+        material="connector",
+        material_name=row.name,
+        temper="",
+        colour=NICKEL_COLOUR,
+        quantity=1,
+        sizes=(
+            ("flange_width_mm", row.flange_width_mm),
+            ("flange_height_mm", row.flange_height_mm),
+            ("hole_pitch_mm", row.hole_pitch_mm),
+            ("panel_bore_mm", row.panel_bore_mm),
+        ),
+        tolerance="as bought",
+        finish="as bought",
+        solid=kernel.once(lambda: _solid(feed)),
+        mass_kg=volume * 1e-9 * tables.metal("cuzn37").density_kg_per_m3,
+        notes=("envelope only: the part in hand decides, measure it before drilling",),
+    )
+
+
+def spacer(feed: Feed) -> Part | None:
+    """The spacer between floor and connector, or None where the connector sits on the floor itself."""
+    if not on_spacer(feed):
+        return None
+    row, metal = tables.connector(feed.job.cable.connector), tables.metal("en-aw-5754")
+    flat = FlatPattern(
+        outline=_flange_outline(feed),
+        holes=(_bore(feed), *_screw_circles(feed)),
+        thickness_mm=SPACER_MM,
+        face="floor side",
+    )
+    face = floor_bottom_mm(feed)
+    solid = kernel.once(lambda: kernel.prism(flat.outline, flat.holes, face - SPACER_MM, SPACER_MM))
+    area = _flange_area(feed) - math.pi / 4 * row.panel_bore_mm**2
+    return Part(
+        key="connector-spacer",
+        name="connector spacer",
+        process=("drill",),
+        material=metal.key,
+        material_name=metal.name,
+        temper=metal.default_temper.key,
+        colour=metal.colour,
+        quantity=1,
+        sizes=(("thickness_mm", SPACER_MM), ("panel_bore_mm", row.panel_bore_mm)),
+        tolerance="m",
+        finish="bare, both faces flat",
+        flat=flat,
+        thickness_mm=SPACER_MM,
+        solid=solid,
+        mass_kg=area * SPACER_MM * 1e-9 * metal.density_kg_per_m3,
+        notes=("keeps the solder cup of the connector clear of the floor",),
+    )
+
+
+def _solid(feed: Feed) -> cadquery.Shape:
+    row = tables.connector(feed.job.cable.connector)
+    x, y = coax_axis(feed)
+    top = flange_face_mm(feed)
+    bottom = top - row.flange_thickness_mm
+    plate = kernel.prism(_flange_outline(feed), _screw_circles(feed), bottom, row.flange_thickness_mm)
+    body = kernel.rod((x, y, bottom), (x, y, bottom - row.body_length_mm), row.body_mm)
+    return kernel.fused(plate, body, what="connector envelope")
+
+
+def _screw_circles(feed: Feed) -> tuple[Circle, ...]:
+    return tuple(h.outline for h in connector_screw_holes(feed) if isinstance(h.outline, Circle))
+
+
+def _bore(feed: Feed) -> Circle:
+    x, y = coax_axis(feed)
+    return Circle(x, y, tables.connector(feed.job.cable.connector).panel_bore_mm)
+
+
+def _flange_outline(feed: Feed) -> Contour:
+    row = tables.connector(feed.job.cable.connector)
+    x, y = coax_axis(feed)
+    # A flange with two screws lies with its long side along y, as its holes do.
+    sides = (row.flange_width_mm, row.flange_height_mm)
+    along_x, along_y = sides if row.hole_count == 4 else sides[::-1]
+    corners = ((-1, -1), (1, -1), (1, 1), (-1, 1))
+    return Contour(tuple(Vertex(x + a * along_x / 2, y + b * along_y / 2) for a, b in corners))
+
+
+def _flange_area(feed: Feed) -> float:
+    row = tables.connector(feed.job.cable.connector)
+    holes = row.hole_count * math.pi / 4 * row.hole_mm**2
+    return row.flange_width_mm * row.flange_height_mm - holes
+

@@ -1,0 +1,122 @@
+"""A can as one body of revolution with its flange, shared by the printed and the turned can.
+
+Section, right half; ``ledge`` carries a printed choke, ``bead`` holds a radome cap::
+
+             rim     .--.
+            bead     |  <
+                     |  |
+       ledge_top     |  '----.
+                     |       |  ledge_height
+                     |     .'   45 degrees
+       flange_top    |  .-'-------------.
+     floor_top ------'                  |
+     floor_bottom ----------------------'
+                     inner  outer       flange width / 2
+
+Depends on: errors, parts.contour, parts.kernel, parts.floor_plan.
+"""
+
+from __future__ import annotations
+
+import itertools
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from fabgen.errors import GeometryError
+from fabgen.parts import kernel
+from fabgen.parts.contour import Circle, Outline, Point
+from fabgen.parts.floor_plan import FlangePlan
+
+if TYPE_CHECKING:
+    import cadquery
+
+
+@dataclass(frozen=True)
+class Ledge:
+    """A ring around the can: top face, width beyond the wall, height before the 45 degree cone."""
+
+    top_mm: float
+    width_mm: float
+    height_mm: float
+
+
+@dataclass(frozen=True)
+class Body:
+    """Radii and heights of the body; for a printed can that is behind the lining."""
+
+    inner_radius_mm: float
+    outer_radius_mm: float
+    floor_top_mm: float
+    floor_bottom_mm: float
+    rim_mm: float
+    flange: FlangePlan | None
+    ledge: Ledge | None = None
+    bead_mm: float = 0.0
+    bead_z_mm: float = 0.0
+
+    @property
+    def flange_top_mm(self) -> float:
+        """Upper face of the flange; the floor's outer face where there is none."""
+        return self.floor_bottom_mm + (self.flange.thickness_mm if self.flange else 0.0)
+
+
+def profile(body: Body) -> tuple[Point, ...]:
+    """The section's outline in (radius, z), counter-clockwise from the axis at the floor's outer face.
+
+    Raises GeometryError when the ledge does not stand clear of the flange.
+    """
+    outer, flange = body.outer_radius_mm, body.flange
+    round_flange = flange is not None and isinstance(flange.outline, Circle)
+    base = body.flange_top_mm if round_flange else body.floor_bottom_mm
+    points: list[Point] = [(0.0, body.floor_bottom_mm)]
+    if flange is not None and round_flange:
+        points += [(flange.width_mm / 2, body.floor_bottom_mm), (flange.width_mm / 2, base)]
+    points += _ledge(body, base) if body.ledge else [(outer, base)]
+    if body.bead_mm > 0:
+        z, bead = body.bead_z_mm, body.bead_mm
+        points += [(outer, z - bead), (outer + bead, z), (outer, z + bead)]
+    inner = body.inner_radius_mm
+    points += [(outer, body.rim_mm), (inner, body.rim_mm), (inner, body.floor_top_mm), (0.0, body.floor_top_mm)]
+    return tuple(points)
+
+
+def _ledge(body: Body, base_mm: float) -> list[Point]:
+    ledge, outer = body.ledge, body.outer_radius_mm
+    if ledge is None:
+        return []
+    low, edge = ledge.top_mm - ledge.height_mm, outer + ledge.width_mm
+    if low < body.flange_top_mm + 0.5:
+        need = body.flange_top_mm + 0.5 - low
+        raise GeometryError(
+            f"the choke's floor is too close to the flange for the ledge and inserts that carry it; "
+            f"raise can.choke.floor_z_mm by {need:.1f} mm"
+        )
+    start = low - ledge.width_mm
+    foot = [(outer, base_mm), (outer, start)] if start > base_mm else [(edge - (low - base_mm), base_mm)]
+    return [*foot, (edge, low), (edge, ledge.top_mm), (outer, ledge.top_mm)]
+
+
+def shell_solid(
+    body: Body, openings: Sequence[Outline], flange_holes: Sequence[Outline], what: str
+) -> cadquery.Shape:
+    """The body with all openings of the floor and of the flange, as one solid."""
+    shell = kernel.revolved(profile(body))
+    flange = body.flange
+    if flange is not None and not isinstance(flange.outline, Circle):
+        bore = Circle(0.0, 0.0, body.inner_radius_mm + body.outer_radius_mm)
+        ring = kernel.prism(flange.outline, (bore,), body.floor_bottom_mm, flange.thickness_mm)
+        shell = kernel.fused(shell, ring, what=what)
+    cutters = [*openings, *flange_holes, *((flange.mark,) if flange else ())]
+    top = max(body.floor_top_mm, body.flange_top_mm) + 1.0
+    low = body.floor_bottom_mm - 1.0
+    return kernel.cut(shell, *(kernel.prism(o, (), low, top - low) for o in cutters), what=what)
+
+
+def revolved_volume_mm3(points: Sequence[Point]) -> float:
+    """Volume of a polygon in (radius, z) turned about z: the sum of its edges' frusta (Pappus)."""
+    total = 0.0
+    for (r1, z1), (r2, z2) in itertools.pairwise((*points, points[0])):
+        total += (z2 - z1) * (r1 * r1 + r1 * r2 + r2 * r2)
+    return abs(math.pi / 3 * total)
