@@ -140,7 +140,7 @@ def _beside_tab(feed: Feed, plan: TabPlan, edges: tuple[float, float], zone_mm: 
     """
     corner, g = feed.job.limits.corner_radius_mm, plan.sign
     across, reach = plan.far_y_mm + corner, edges[0] + g * corner
-    if 0 < corner and across < reach:
+    if corner > 0 and across < reach:
         # The fillet's centre is ``corner`` away from the tab's side and from the ring's edge.
         x = math.sqrt(reach**2 - across**2)
         if g * (plan.root_x_mm - x) >= 0:
