@@ -89,10 +89,10 @@ def write_pack(
     require_no_stop(findings, options.despite)
     with new_folder(target) as folder:
         content = Content(feed, parts, findings, options, folder)
-        for count, group in enumerate(chosen):
+        for count, group in enumerate(chosen, start=1):
             progress.step(GROUPS[group].doing)
-            progress.share(count, len(chosen))
             GROUPS[group].write(content)
+            progress.share(count, len(chosen))
         files = {name: sha256_of(folder / name) for name in files_in(folder)}
         record = record_data(feed, parts, findings, files, options.despite)
         content.write(RECORD_NAME, record_text(record))
@@ -131,13 +131,20 @@ def require_no_stop(findings: Sequence[Finding], despite: Sequence[str]) -> None
 
 
 def _write_cut(content: Content) -> None:
-    from fabgen.writers.dxf import write_dxf
+    from fabgen.writers.dxf import file_name, write_dxf
 
-    revision = content.feed.job.target.revision
+    job = content.feed.job
+    folder = content.folder / "cut"
+    folder.mkdir()
     for part in content.parts:
-        if part.flat is not None:
-            (content.folder / "cut").mkdir(exist_ok=True)
-            write_dxf(part, content.folder / "cut", revision)
+        if part.flat is None:
+            continue
+        kerf = job.limits.kerf_mm if "laser" in part.process else 0.0
+        name = functools.partial(file_name, part, job.target.revision)
+        write_dxf(part, folder / name(), kerf_mm=kerf)
+        write_dxf(part, folder / name("r12"), version="R12", kerf_mm=kerf)
+        if part.flat.folds:
+            write_dxf(part, folder / name("fold"), folds=True)
 
 
 def _write_bend(content: Content) -> None:

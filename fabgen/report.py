@@ -1,0 +1,176 @@
+"""Sizes, predictions, findings and stock as plain text tables for the terminal.
+
+Depends on: units, job, sizing.records, checks.records.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator, Mapping, Sequence
+from typing import Any
+
+from fabgen.checks.records import Finding
+from fabgen.job import Job
+from fabgen.sizing.records import Feed, Sizes
+from fabgen.units import INCH_MM
+
+_SEVERITIES = (("stop", "Stops the pack"), ("caution", "Caution"), ("note", "Note"))
+_COLOURS = {"stop": "\x1b[31m", "caution": "\x1b[33m", "note": "\x1b[36m"}
+_RESET = "\x1b[0m"
+_MAX_COLUMN = 60
+
+
+def table(rows: Iterable[Sequence[str]], indent: str = "  ") -> list[str]:
+    """Rows in aligned columns."""
+    cells = [tuple(row) for row in rows]
+    if not cells:
+        return []
+    count = max(len(row) for row in cells)
+    widths = [min(_MAX_COLUMN, max((len(row[i]) for row in cells if i < len(row)), default=0)) for i in range(count)]
+    return [indent + "  ".join(c.ljust(w) for c, w in zip(row, widths, strict=False)).rstrip() for row in cells]
+
+
+def size_report(feed: Feed) -> str:
+    """A feed's sizes and predictions, with its uncertainty, as text."""
+    lines = [
+        f"{feed.job.target.name}: {feed.job.target.frequency_mhz:g} MHz, wavelength {feed.job.wavelength_mm:.2f} mm"
+    ]
+    lines += _section("As written", ((w.key, w.text, f"= {w.value:.6g}") for w in feed.job.as_written))
+    lines += _section("Sizes", _size_rows(feed.sizes))
+    lines += _section("Series capacitor", _capacitor_rows(feed))
+    lines += _section("Expected at the target", _predicted_rows(feed))
+    lines += _section(
+        "Gain on the axis",
+        ((f"{p.frequency_mhz:.1f} MHz", f"{p.gain_dbi:+.1f} dBi", f"{p.relative_db:+.1f} dB to target") for p in
+         feed.predicted.gain),
+    )  # fmt: skip
+    lines += _section("What moves the resonance most", _sensitivity_rows(feed))
+    settings = feed.settings
+    lines += _section(
+        "How sure",
+        (
+            ("resonance", f"+-{settings.resonance_uncertainty_mhz:.2g} MHz", "from a second mesh"),
+            ("return loss", f"+-{settings.return_loss_uncertainty_db:.2g} dB", "from a second mesh"),
+            ("yield", f"{feed.yields.before_trimming:.0%}", f"{feed.yields.after_trimming:.0%} after trimming"),
+        ),
+    )
+    lines += ["", *(f"Remark: {remark}" for remark in feed.remarks)] if feed.remarks else []
+    return "\n".join(lines) + "\n"
+
+
+def _section(title: str, rows: Iterable[Sequence[str]]) -> list[str]:
+    body = table(rows)
+    return ["", title, *body] if body else []
+
+
+def _length(name: str, value_mm: float | None) -> list[tuple[str, str, str]]:
+    return [] if value_mm is None else [(name, f"{value_mm:.2f} mm", f"{value_mm / INCH_MM:.3f} in")]
+
+
+def _size_rows(sizes: Sizes) -> list[tuple[str, ...]]:
+    rows: list[tuple[str, ...]] = [
+        *_length("can bore" if not sizes.can_flats else f"can across {sizes.can_flats} flats", sizes.can_bore_mm),
+        *_length("can depth", sizes.can_depth_mm),
+        *_length("wall", sizes.wall_mm),
+        *_length("floor", sizes.floor_mm),
+    ]
+    if sizes.choke is not None:
+        rows += _length("choke bore", sizes.choke.bore_mm)
+        rows += _length("choke depth", sizes.choke.depth_mm)
+        rows += _length("choke floor above can floor", sizes.choke.floor_z_mm)
+    rows += _length("loop diameter (centreline)", sizes.loop_diameter_mm)
+    rows += _length("loop height", sizes.loop_height_mm)
+    rows += _length("wire", sizes.wire_mm)
+    rows += _length("strip width", sizes.strip_width_mm)
+    rows += _length("sheet", sizes.sheet_mm)
+    rows += _length("bars from the axis", sizes.leg_x_mm)
+    rows += _length("bars, centre to centre", sizes.leg_pitch_mm)
+    rows += _length("tap height", sizes.tap_height_mm)
+    return rows
+
+
+def _capacitor_rows(feed: Feed) -> list[tuple[str, ...]]:
+    part = feed.capacitor
+    return [
+        (
+            "value",
+            f"{feed.sizes.series_capacitor_pf:.2f} pF",
+            f"trims {part.minimum_pf:.2f} to {part.maximum_pf:.2f} pF",
+        ),
+        ("form", part.form, f"overlap {part.overlap_mm:.1f} mm, {part.pf_per_mm:.3f} pF per mm"),
+    ]
+
+
+def _predicted_rows(feed: Feed) -> list[tuple[str, ...]]:
+    p = feed.predicted
+    return [
+        ("impedance at the tap", f"{p.impedance_ohm.real:.1f} {p.impedance_ohm.imag:+.1f}j ohm"),
+        ("return loss", f"{p.return_loss_db:.1f} dB"),
+        ("bandwidth", f"{p.bandwidth_mhz:.1f} MHz at {p.bandwidth_return_loss_db:g} dB"),
+        ("aperture efficiency", f"{p.aperture_efficiency:.3f}"),
+        ("spillover", f"{p.spillover:.3f}"),
+        ("edge taper", f"{p.edge_taper_db:.1f} dB"),
+        ("half-power beamwidth", f"{p.half_power_beamwidth_e_deg:.1f} deg E, {p.half_power_beamwidth_h_deg:.1f} deg H"),
+        ("directivity", f"{p.directivity_dbi:.2f} dBi"),
+        ("front to back", f"{p.front_to_back_db:.1f} dB"),
+        ("phase centre", f"{p.phase_centre_mm:.1f} mm above the floor's inner face"),
+        ("ohmic loss", f"{p.ohmic_loss_db:.3f} dB"),
+        ("system noise", f"{p.system_noise_k:.1f} K"),
+        ("G/T", f"{p.g_over_t_db_per_k:.2f} dB/K"),
+    ]
+
+
+def _sensitivity_rows(feed: Feed) -> list[tuple[str, ...]]:
+    order = sorted(feed.sensitivities, key=lambda s: -abs(s.effect_mhz))[:3]
+    return [
+        (s.size, f"{s.resonance_mhz_per_mm:+.2f} MHz/mm", f"{s.effect_mhz:.2f} MHz at +-{s.tolerance_mm:g} mm")
+        for s in order
+    ]
+
+
+def findings_report(job: Job, findings: Sequence[Finding], colour: bool) -> str:
+    """All findings grouped by severity, worst first."""
+    lines = [f"{job.target.name}: {len(findings)} findings"]
+    for severity, title in _SEVERITIES:
+        chosen = [finding for finding in findings if finding.severity == severity]
+        if not chosen:
+            continue
+        start, end = (_COLOURS[severity], _RESET) if colour else ("", "")
+        lines += ["", f"{start}{title} ({len(chosen)}){end}"]
+        for finding in chosen:
+            lines += [
+                f"  {start}{finding.code}{end}  {finding.part}, {finding.feature}: {finding.value}, "
+                f"limit {finding.limit}",
+                f"      {finding.message}",
+                f"      what to do: {finding.cure}",
+                f"      source: {finding.source}",
+            ]
+    return "\n".join(lines) + "\n"
+
+
+def stock_report(found: Mapping[str, Sequence[Mapping[str, Any]]]) -> str:
+    """Stock rows by kind: key, name or meaning, the main figures, and the source."""
+    lines: list[str] = []
+    for kind, rows in found.items():
+        lines += ["", f"{kind} ({len(rows)})"]
+        for row in rows:
+            lines.append(f"  {row['key']:<16} {row.get('name') or row.get('meaning') or ''}")
+            figures = "; ".join(_figures(row))
+            if figures:
+                lines.append(f"  {'':<16} {figures}")
+            source = row.get("source") or {}
+            lines.append(f"  {'':<16} source: {source.get('text', '')} [{source.get('known_from', '')}]")
+    return "\n".join(lines[1:]) + "\n"
+
+
+def _figures(row: Mapping[str, Any]) -> Iterator[str]:
+    for name, value in row.items():
+        if name in {"key", "name", "meaning", "source", "colour"} or value is None:
+            continue
+        if name == "tempers":
+            yield "tempers " + ", ".join(str(temper["key"]) for temper in value)
+        elif name == "rows":
+            yield ", ".join(f"to {up_to:g}: {figure:g}" for up_to, figure in value)
+        elif isinstance(value, float):
+            yield f"{name} {value:g}"
+        elif not isinstance(value, dict | list | tuple):
+            yield f"{name} {value}"
