@@ -10,7 +10,7 @@ import hashlib
 from fabgen.checks.records import Finding
 from fabgen.drawing.fonts import require_printable
 from fabgen.drawing.model import Sheet
-from fabgen.drawing.pages import general, part
+from fabgen.drawing.pages import assembly, bench, closing, general, part, stock, truescale, wire
 from fabgen.drawing.pages.base import Context, Draft
 from fabgen.drawing.paper import PAPERS, TitleFields, frame_items, title_block
 from fabgen.drawing.picture import bodies
@@ -27,7 +27,13 @@ def sheets(feed: Feed, parts: tuple[Part, ...], findings: tuple[Finding, ...]) -
     context = Context(feed, parts, findings, bodies(parts), PAPERS[feed.job.limits.paper])
     drafts = [
         *general.drafts(context),
+        *stock.drafts(context),
         *part.drafts(context),
+        *wire.drafts(context),
+        *truescale.drafts(context),
+        *assembly.drafts(context),
+        *bench.drafts(context),
+        *closing.drafts(context),
     ]
     count = sum(len(d.pages) for d in drafts)
     out: list[Sheet] = []

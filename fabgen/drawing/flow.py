@@ -15,8 +15,8 @@ from fabgen.drawing.model import BLACK, Box, Colour, Dimension, Item, Line, Poly
 from fabgen.drawing.paper import TITLE_HEIGHT_MM, Paper
 
 LINE_PITCH = 1.72  # base line to base line over the capital height
-COLUMN_GAP_MM = 10.0
-COLUMN_WIDTH_MM = 180.0
+INSET_MM = 5.0  # between the frame and what stands in it
+COLUMN_WIDTH_MM = 170.0
 
 
 @dataclass(frozen=True)
@@ -57,11 +57,11 @@ def columns(paper: Paper) -> tuple[Column, ...]:
     box = paper.frame
     above_title = box.y0 + TITLE_HEIGHT_MM + 4
     if not paper.landscape:
-        return (Column(box.x1 - COLUMN_WIDTH_MM, box.y1 - 5, above_title),)
-    left = box.x1 - 2 * COLUMN_WIDTH_MM - COLUMN_GAP_MM
+        left = (box.x0 + box.x1 - COLUMN_WIDTH_MM) / 2
+        return (Column(left, box.y1 - INSET_MM, above_title),)
     return (
-        Column(left, box.y1 - 5, box.y0 + 6),
-        Column(box.x1 - COLUMN_WIDTH_MM - 2, box.y1 - 5, above_title),
+        Column(box.x0 + INSET_MM + 5, box.y1 - INSET_MM, above_title),
+        Column(box.x1 - INSET_MM - COLUMN_WIDTH_MM, box.y1 - INSET_MM, above_title),
     )
 
 

@@ -74,10 +74,11 @@ def frame_items(paper: Paper) -> tuple[Item, ...]:
     ]
     mid_x, mid_y = (box.x0 + box.x1) / 2, (box.y0 + box.y1) / 2
     items += [
-        Line(mid_x, box.y0 - 5, mid_x, box.y0 + 5, "frame"),
-        Line(mid_x, box.y1 + 5, mid_x, box.y1 - 5, "frame"),
-        Line(box.x0 - 5, mid_y, box.x0 + 5, mid_y, "frame"),
-        Line(box.x1 + 5, mid_y, box.x1 - 5, mid_y, "frame"),
+        # The mark at the bottom stops at the frame where the title block begins.
+        Line(mid_x, box.y0 - 5, mid_x, box.y0 + (3 if paper.landscape else 0), "frame"),
+        Line(mid_x, box.y1 + 5, mid_x, box.y1 - 3, "frame"),
+        Line(box.x0 - 5, mid_y, box.x0 + 3, mid_y, "frame"),
+        Line(box.x1 + 5, mid_y, box.x1 - 3, mid_y, "frame"),
     ]
     return (*items, *_grid(box, mid_x, mid_y))
 

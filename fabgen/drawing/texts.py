@@ -20,3 +20,8 @@ def say(key: str, **values: object) -> str:
 def size_name(key: str) -> str:
     """The words for a size's key; the key itself in plain words when the table has none."""
     return ENGLISH.get(f"size.{key}") or key.rsplit("_mm", 1)[0].replace("_", " ")
+
+
+def has(key: str) -> bool:
+    """True when the table has a text for the key."""
+    return key in ENGLISH

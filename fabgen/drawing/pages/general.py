@@ -6,7 +6,7 @@ Depends on: drawing, checks.records.
 from __future__ import annotations
 
 from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, arrow
-from fabgen.drawing.flow import Block, gap, heading, paragraph, table
+from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, gap, heading, paragraph, table
 from fabgen.drawing.flow import column_height as height_of
 from fabgen.drawing.hidden import APERTURE, SIDE
 from fabgen.drawing.model import RED, SCALES, Arc, Item, Line, Text, bounds, number, scale_text
@@ -14,7 +14,7 @@ from fabgen.drawing.pages.base import Context, Draft, draft, quantity, tolerance
 from fabgen.drawing.picture import Set, cut, dimensioned, outside, shifted, together
 from fabgen.drawing.texts import say, size_name
 
-WIDTH_MM = 180.0
+WIDTH_MM = COLUMN_WIDTH_MM
 SIZE_KEYS = (
     "can_bore_mm", "can_depth_mm", "wall_mm", "floor_mm", "can_flats", "loop_diameter_mm", "loop_height_mm",
     "wire_mm", "strip_width_mm", "sheet_mm", "leg_x_mm", "leg_pitch_mm", "leg_width_mm", "leg_bend_radius_mm",
@@ -147,7 +147,7 @@ def _sizes(context: Context) -> list[Block]:
             value = getattr(feed.sizes.choke, key)
             rows.append((size_name(f"choke.{key}"), quantity(key, value), say("table.general")))
     head = (say("table.size"), say("table.value"), say("table.tolerance"))
-    return [heading(say("general.sizes_head")), *table("sizes", head, rows, widths=(90, 45, 45))]
+    return [heading(say("general.sizes_head")), *table("sizes", head, rows, widths=(84, 43, 43))]
 
 
 def _performance(context: Context) -> list[Block]:
@@ -166,7 +166,7 @@ def _performance(context: Context) -> list[Block]:
         (say("perf.system"), f"{number(p.system_noise_k, 1)} K", f"G/T {number(p.g_over_t_db_per_k, 1)} dB/K"),
     ]  # fmt: skip
     head = (say("perf.head"), say("table.value"), say("perf.remark"))
-    return [heading(say("general.performance_head")), *table("performance", head, rows, widths=(80, 45, 55))]
+    return [heading(say("general.performance_head")), *table("performance", head, rows, widths=(75, 42, 53))]
 
 
 def checks_result(context: Context) -> list[Block]:

@@ -6,7 +6,7 @@ Depends on: drawing, parts.records.
 from __future__ import annotations
 
 from fabgen.drawing import flat as flat_view
-from fabgen.drawing.flow import Block, column_height, gap, heading, paragraph, table
+from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, column_height, gap, heading, paragraph, table
 from fabgen.drawing.hidden import ISOMETRIC
 from fabgen.drawing.model import Item, number, scale_text
 from fabgen.drawing.pages.base import Context, Draft, draft, sizes_table
@@ -14,7 +14,7 @@ from fabgen.drawing.picture import Body, Drawn, Set, dimensioned, fitted, outsid
 from fabgen.drawing.texts import say
 from fabgen.parts.records import FlatPattern, Part
 
-WIDTH_MM = 180.0
+WIDTH_MM = COLUMN_WIDTH_MM
 
 
 def drafts(context: Context) -> list[Draft]:

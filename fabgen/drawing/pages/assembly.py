@@ -1,0 +1,164 @@
+"""Assembly in numbered steps: a picture of each state, tools, how to join, what to measure before going on.
+
+Depends on: drawing, parts.records.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, beside, framed, gap, heading, paragraph, stack
+from fabgen.drawing.hidden import Curve, Direction, dressed, look
+from fabgen.drawing.model import SCALES, Box, Item, bounds, number
+from fabgen.drawing.pages.base import Context, Draft, draft
+from fabgen.drawing.pages.stock import item_leaders, items_of
+from fabgen.drawing.picture import Body, Drawn, dimensioned, shifted
+from fabgen.drawing.texts import has, say
+from fabgen.parts.records import Part
+
+PICTURE_MM = 78.0
+PICTURE_HEIGHT_MM = 62.0
+TEXT_MM = 85.0
+
+# From the gap's side and above, so that bars and loop lie open; from below for what sits under the floor.
+_HIGH = 0.83  # sine of the eye's height over the floor plane: 56 degrees
+ABOVE_EYE = Direction("above", (-0.394, -0.394, _HIGH), (0.7071067811865476, -0.7071067811865476, 0.0))
+BELOW_EYE = Direction("below", (-0.5, -0.5, -0.7071067811865476), (0.7071067811865476, -0.7071067811865476, 0.0))
+
+# Order of the steps and the beginnings of the part keys that each one brings in.
+STEPS: tuple[tuple[str, tuple[str, ...]], ...] = (
+    ("body", ("can", "floor", "flange")),
+    ("wall", ("wall", "tube", "seam", "strip")),
+    ("lining", ("lining", "foil")),
+    ("choke", ("choke",)),
+    ("loop", ("loop", "screw-foot", "nut-foot", "foot")),
+    ("connector", ("connector", "screw-connector", "nut-connector", "spacer")),
+    ("coax", ("coax",)),
+    ("capacitor", ("capacitor",)),
+    ("radome", ("radome", "cap")),
+    ("other", ("",)),
+)
+SEEN_FROM_BELOW = {"connector"}
+
+
+@dataclass(frozen=True)
+class Step:
+    """One step: its kind and the parts that join in it."""
+
+    kind: str
+    parts: tuple[Part, ...]
+
+
+def steps(parts: tuple[Part, ...]) -> tuple[Step, ...]:
+    """The steps that bring in all parts, each part once."""
+    left = list(parts)
+    out: list[Step] = []
+    for kind, starts in STEPS:
+        taken = [p for p in left if any(p.key.startswith(s) for s in starts)]
+        left = [p for p in left if p not in taken]
+        if taken:
+            out.append(Step(kind, tuple(taken)))
+    return tuple(out)
+
+
+def drafts(context: Context) -> list[Draft]:
+    """All steps and the closing measurements."""
+    blocks: list[Block] = [heading(say("assembly.head")), *paragraph(say("assembly.intro")), gap(1)]
+    old: list[Body] = []
+    for n, step in enumerate(steps(context.parts), start=1):
+        keys = {p.key for p in step.parts}
+        new = [b for b in context.bodies if b.part.key in keys]
+        blocks += [_step_block(context, n, step, old, new), gap(3)]
+        old += new
+    if context.parts:
+        blocks.append(_last_block(context, len(steps(context.parts)) + 1))
+    return [draft(context, "assembly", say("page.assembly"), blocks, scale=say("title.not_to_scale"))]
+
+
+def _step_block(context: Context, n: int, step: Step, old: list[Body], new: list[Body]) -> Block:
+    text = _text(context, n, step)
+    picture = picture_block(context, step, old, new) if new else Block(1.0, ())
+    return framed(beside((picture, text), (1.0, PICTURE_MM + 4.0)))
+
+
+def picture_block(context: Context, step: Step, old: list[Body], new: list[Body]) -> Block:
+    """The state after the step: new parts in wide lines with item numbers, the rest narrow and grey."""
+    numbers = items_of(context.parts)
+    direction = BELOW_EYE if step.kind in SEEN_FROM_BELOW else ABOVE_EYE
+    seen = look([b.shape for b in (*old, *new)], direction)
+    items: list[Item] = []
+    shown: list[tuple[str, tuple[Curve, ...]]] = []
+    for i, s in enumerate(seen):
+        fresh = i >= len(old)
+        items += dressed(s.visible, "new" if fresh else "old")
+        if fresh:
+            shown.append((str(numbers[new[i - len(old)].part.key]), s.visible))
+    focus = bounds(tuple(items))
+    drawn = Drawn("", tuple(items))
+    for scale in SCALES:
+        if focus.width * scale <= PICTURE_MM - 14 and focus.height * scale <= PICTURE_HEIGHT_MM - 12:
+            break
+    made = dimensioned(drawn, item_leaders(shown), scale, title=False)
+    made = replace(made, box=_within(made.box, made.items))
+    height = max(made.box.height + 4, 40.0)
+    x = PICTURE_MM / 2 - (made.box.x0 + made.box.x1) / 2
+    y = -height / 2 - (made.box.y0 + made.box.y1) / 2
+    block = shifted(made, x, y)
+    return replace(block, height=height)
+
+
+def _within(box: Box, items: tuple[Item, ...]) -> Box:
+    return box.joined(bounds(items))
+
+
+def _text(context: Context, n: int, step: Step) -> Block:
+    numbers = items_of(context.parts)
+    names = "; ".join(
+        say("assembly.item", item=numbers[p.key], part=p.name, quantity=p.quantity) for p in step.parts
+    )
+    blocks = [Block(1.5, ()), heading(say(_key(context, step.kind, "title"), n=n), 3.0)]
+    blocks += paragraph(names, 2.2, TEXT_MM)
+    values = _values(context)
+    for field in ("do", "tools", "join", "measure"):
+        key = _key(context, step.kind, field)
+        if has(key):
+            label = say(f"assembly.{field}")
+            blocks += paragraph(f"{label} {say(key, n=n, **values)}", 2.2, TEXT_MM, bold=False)
+    return stack(blocks)
+
+
+def _key(context: Context, kind: str, field: str) -> str:
+    """The most particular text: by loop form, by make of can, by whether metal is soldered, then the general one."""
+    job = context.feed.job
+    soldered = "solder" if all(p.material not in {"en-aw-5754", "en-aw-1050"} for p in context.parts) else "bond"
+    for variant in (job.can.make, job.loop.form, soldered):
+        key = f"step.{kind}.{variant}.{field}"
+        if has(key):
+            return key
+    return f"step.{kind}.{field}"
+
+
+def _values(context: Context) -> dict[str, str]:
+    """Numbers that the step texts may name."""
+    feed = context.feed
+    s = feed.sizes
+    tolerance = {t.size: number(t.tolerance_mm) for t in feed.sensitivities}
+    return {
+        "bore": number(s.can_bore_mm),
+        "depth": number(s.can_depth_mm),
+        "height": number(s.loop_height_mm),
+        "height_tolerance": tolerance.get("loop_height_mm", "0.3"),
+        "pitch": number(s.leg_pitch_mm),
+        "tap": number(s.tap_height_mm),
+        "tap_tolerance": tolerance.get("tap_height_mm", "0.2"),
+        "diameter": number(s.loop_diameter_mm),
+        "overlap": number(feed.capacitor.overlap_mm),
+        "capacitance": number(feed.capacitor.capacitance_pf, 3),
+        "lining": feed.job.can.lining,
+    }
+
+
+def _last_block(context: Context, n: int) -> Block:
+    blocks = [heading(say("step.last.title", n=n), 3.0)]
+    blocks += paragraph(say("step.last.do"), 2.5, COLUMN_WIDTH_MM)
+    return stack(blocks)

@@ -1,0 +1,162 @@
+"""Parts and stock: a picture with item numbers, the parts list with cut sizes and masses, and stock by material.
+
+Depends on: drawing, parts.records.
+"""
+
+from __future__ import annotations
+
+from fabgen.drawing.dimension import Ask, leader
+from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, column_height, gap, heading, paragraph, table
+from fabgen.drawing.hidden import ISOMETRIC, Curve, dressed, look
+from fabgen.drawing.model import Arc, Item, Line, Point, Polyline, number, scale_text
+from fabgen.drawing.pages.base import Context, Draft, draft
+from fabgen.drawing.picture import Drawn, Set, dimensioned, fitted
+from fabgen.drawing.texts import say
+from fabgen.parts.contour import bounds_mm
+from fabgen.parts.records import Part
+
+
+def drafts(context: Context) -> list[Draft]:
+    """The parts and stock list."""
+    blocks: list[Block] = []
+    scale = ""
+    if context.bodies:
+        picture, scale = numbered_picture(context, column_height(context.paper) * 0.42)
+        blocks += [picture, gap(3)]
+    blocks += [*_parts_table(context), *_stock_table(context)]
+    return [draft(context, "stock", say("page.stock"), blocks, scale=scale)]
+
+
+def items_of(parts: tuple[Part, ...]) -> dict[str, int]:
+    """Item number of each part, by key, in the order of the list."""
+    return {part.key: i for i, part in enumerate(parts, start=1)}
+
+
+def numbered_picture(context: Context, room: float) -> tuple[Block, str]:
+    """The whole feed with item numbers on leaders."""
+    numbers = items_of(context.parts)
+    seen = look([b.shape for b in context.bodies], ISOMETRIC)
+    items: list[Item] = []
+    for s in seen:
+        items += dressed(s.visible, "outline")
+    labels = item_leaders(
+        [(str(numbers[b.part.key]), s.visible) for b, s in zip(context.bodies, seen, strict=True)]
+    )
+    drawn = Drawn(say("view.assembled"), tuple(items))
+
+    def build(scale: float) -> Set:
+        return dimensioned(drawn, labels, scale)
+
+    block, _, scale = fitted(build, COLUMN_WIDTH_MM, room)
+    return block, scale_text(scale)
+
+
+def item_leaders(shown: list[tuple[str, tuple[Curve, ...]]]) -> list[Ask]:
+    """One leader for each label that shows anything, from the middle of its longest visible edge outward."""
+    asks: list[Ask] = []
+    done: set[str] = set()
+    middle = _centre([c for _, curves in shown for c in curves])
+    for label, curves in shown:
+        if label in done or not curves:
+            continue
+        done.add(label)
+        at = max(((_length(c), _middle(c)) for c in curves), key=lambda t: (round(t[0], 3), t[1]))[1]
+        asks.append(leader("item", float(label.split()[0]), label, at, 60.0 if at[0] >= middle[0] else 120.0))
+    return asks
+
+
+def _centre(curves: list[Curve]) -> Point:
+    boxes = [c.box() for c in curves]
+    if not boxes:
+        return (0.0, 0.0)
+    return (
+        (min(b.x0 for b in boxes) + max(b.x1 for b in boxes)) / 2,
+        (min(b.y0 for b in boxes) + max(b.y1 for b in boxes)) / 2,
+    )
+
+
+def _length(curve: Curve) -> float:
+    box = curve.box()
+    return box.width + box.height
+
+
+def _middle(curve: Curve) -> Point:
+    match curve:
+        case Line():
+            return ((curve.x0 + curve.x1) / 2, (curve.y0 + curve.y1) / 2)
+        case Arc():
+            return curve.at(curve.start_deg + curve.sweep_deg / 2)
+        case Polyline():
+            return curve.points[len(curve.points) // 2]
+
+
+def cut_size(part: Part) -> str:
+    """What to cut from stock: sheet blank, wire length, or the finished box."""
+    if part.wire is not None:
+        return say("stock.wire", diameter=number(part.wire.diameter_mm), length=number(part.wire.cut_length_mm, 1))
+    if part.flat is not None:
+        x0, y0, x1, y1 = bounds_mm(part.flat.outline)
+        return f"{number(x1 - x0, 1)} × {number(y1 - y0, 1)} × {number(part.flat.thickness_mm)}"
+    if part.process == ("buy",) or part.solid is None:
+        return say("stock.bought")
+    box = part.solid().BoundingBox(1e-3)
+    return say("stock.box", x=number(box.xlen, 1), y=number(box.ylen, 1), z=number(box.zlen, 1))
+
+
+def process_words(part: Part) -> str:
+    """How the part is made, in words."""
+    return ", ".join(say(f"process.{p}") for p in part.process)
+
+
+def _parts_table(context: Context) -> list[Block]:
+    rows = [
+        (
+            str(i),
+            part.name,
+            str(part.quantity),
+            ", ".join(w for w in (part.material_name, part.temper) if w),
+            cut_size(part),
+            process_words(part),
+            _grams(part.mass_kg * part.quantity),
+        )
+        for i, part in enumerate(context.parts, start=1)
+    ]
+    total = sum(p.mass_kg * p.quantity for p in context.parts)
+    rows.append(("", say("stock.total"), "", "", "", "", _grams(total)))
+    head = tuple(say(f"stock.{k}") for k in ("item", "part", "quantity", "material", "cut", "process", "mass"))
+    return [heading(say("stock.parts_head")), *table("parts", head, rows, widths=(10, 36, 11, 35, 38, 24, 16), size=2.2)]
+
+
+def _grams(mass_kg: float) -> str:
+    return number(1000 * mass_kg, 1 if mass_kg < 0.1 else 0)
+
+
+def _stock_table(context: Context) -> list[Block]:
+    """Stock by material and form, with the allowance for cutting said in words."""
+    groups: dict[tuple[str, str], list[Part]] = {}
+    for part in context.parts:
+        if part.process != ("buy",):
+            groups.setdefault((part.material_name, _form(part)), []).append(part)
+    rows = []
+    for (material, form), parts in sorted(groups.items()):
+        need = "; ".join(f"{p.quantity} × {cut_size(p)}" for p in parts)
+        rows.append((material, form, need, _grams(sum(p.mass_kg * p.quantity for p in parts))))
+    if not rows:
+        return []
+    head = (say("stock.material"), say("stock.form"), say("stock.need"), say("stock.mass"))
+    return [
+        heading(say("stock.stock_head")),
+        *table("stock", head, rows, widths=(48, 32, 72, 18), size=2.2),
+        *paragraph(say("stock.allowance")),
+    ]
+
+
+def _form(part: Part) -> str:
+    if part.wire is not None:
+        return say("stock.form_wire", diameter=number(part.wire.diameter_mm))
+    if part.flat is not None:
+        return say("stock.form_sheet", thickness=number(part.flat.thickness_mm))
+    if "print" in part.process:
+        return say("stock.form_print")
+    return say("stock.form_bar")
+
