@@ -54,7 +54,7 @@ class NotCoveredError(FabgenError, NotImplementedError):
     exit_status = 7
 
 
-class TimeLimitError(FabgenError, TimeoutError):
+class TimeLimitError(FabgenError):
     """The user's own time limit was reached."""
 
     exit_status = 8

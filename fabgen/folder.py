@@ -20,7 +20,7 @@ import socket
 from collections.abc import Iterator
 from pathlib import Path
 
-from fabgen.errors import OutputError
+from fabgen.errors import FabgenError, OutputError
 
 RECORD_NAME = "record.json"
 _PREFIX = ".fabgen-"
@@ -123,7 +123,7 @@ def new_folder(target: Path) -> Iterator[Path]:
         yield temporary
         _put_in_place(temporary, real)
     except OSError as error:
-        if isinstance(error, OutputError):
+        if isinstance(error, FabgenError):
             raise
         raise as_output_error(error, real) from error
     finally:

@@ -68,7 +68,8 @@ def time_limit(seconds: float | None) -> Iterator[None]:
         )
 
     before = signal.signal(signal.SIGALRM, stop)
-    signal.setitimer(signal.ITIMER_REAL, seconds)
+    # Again every second, should code in between have caught the first one.
+    signal.setitimer(signal.ITIMER_REAL, seconds, 1.0)
     try:
         yield
     finally:
