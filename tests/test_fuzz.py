@@ -17,7 +17,8 @@ from fabgen.start import templates
 SNIPPETS = [
     "=", "[", "]", "[[", "{", "}", '"', "'", "\n", "#", ".", ",", "-", "nan", "inf", "-inf", "1e308", "-0.0", "0",
     "9" * 400, "true", "false", "[can.choke]", "[fixed]\n", "[loop]\n", "loop_height_mm = 1\n", "tap_height_mm = 1e9\n",
-    'wire_mm = "4/0 AWG"\n', '"1e99 mm"', '"12 ga"', '"1/0 in"', '"٣ mm"', "\x00", "\u202e", "\ud7ff", "é", "1979-05-27",
+    'wire_mm = "4/0 AWG"\n', '"1e99 mm"', '"12 ga"', '"1/0 in"', '"٣ mm"', "\x00", "\u202e", "\ud7ff", "é",
+    "1979-05-27",
     "0x1F", "[1, [2, [3]]]", "{a = {b = 1}}", "choke = {}", "choke = []\n", "bed_mm = 3\n", "neighbours = [1]\n",
     "neighbours = {}\n", "overrides = 3\n", "[overrides]\n'' = 1\n", "as_written = [1]\n", "[target.x.y.z]\n",
     "name = '" + "x" * 100 + "'\n", "flats = 6.0\n", "flats = true\n", "metal = ['cu-etp']\n", "metal = {}\n",

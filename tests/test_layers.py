@@ -117,9 +117,12 @@ def upward(path: Path) -> Iterator[str]:
             continue
         if layer_of(target) > own:
             yield f"{module}:{line} imports upward: {target}"
-        elif scope is not None and target != "fabgen" and not target.startswith(scope.removesuffix(".records")):
-            if not any(target == name or target.startswith(name + ".") for name in ONLY[scope]):
-                yield f"{module}:{line} may not use {target}"
+        elif scope is not None and not _within(target, {"fabgen", scope.removesuffix(".records"), *ONLY[scope]}):
+            yield f"{module}:{line} may not use {target}"
+
+
+def _within(target: str, names: set[str]) -> bool:
+    return any(target == name or (name != "fabgen" and target.startswith(name + ".")) for name in names)
 
 
 @pytest.mark.parametrize("path", modules(), ids=dotted)
