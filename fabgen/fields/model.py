@@ -1,0 +1,279 @@
+"""A feed solved at one frequency; the can's factors are kept while loop and bars change.
+
+With the unknowns of the can inside (a), and those of border, patch, loop and bars (b),
+
+    [A  B] [x]   [0]          S = D - B^T A^-1 B,   S y = v,   x = -A^-1 B y
+    [B' D] [y] = [v]
+
+A is factorised once for each can and frequency (block elimination).
+
+Depends on: errors, fields.
+"""
+
+from __future__ import annotations
+
+from collections import OrderedDict
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Any, TypeVar
+
+import numpy as np
+from numpy.typing import NDArray
+from scipy.linalg import lapack, lu_factor, lu_solve
+
+from fabgen.errors import GeometryError, NumericalError
+from fabgen.fields.far_field import CurrentElements, current_elements
+from fabgen.fields.functions import EdgeFunctions, edge_functions
+from fabgen.fields.geometry import SPEED_OF_LIGHT, CanGeometry, FeedGeometry
+from fabgen.fields.mesh import CROSSING, LOOP, Mesh, check_mesh
+from fabgen.fields.plan import MeshPlan
+from fabgen.fields.surfaces import feed_mesh
+from fabgen.fields.system import Assembler, ComplexArray, QuadratureSettings, check_memory, overlap
+
+SYMMETRY_PLANES = (1,)
+KEPT_CANS = 24
+REFINEMENTS = 4
+
+
+@dataclass(frozen=True)
+class SurfaceImpedance:
+    """Surface impedance of the can and of loop and bars at the solve's frequency, ohm per square; 0 = perfect."""
+
+    can_ohm: complex = 0.0
+    loop_ohm: complex = 0.0
+
+    def per_triangle(self, mesh: Mesh) -> NDArray[np.complex128]:
+        """One value for each triangle (T,)."""
+        loop = (mesh.label == LOOP) | (mesh.label == CROSSING)
+        return np.where(loop, complex(self.loop_ohm), complex(self.can_ohm))
+
+
+@dataclass(frozen=True)
+class FieldSolution:
+    """Solved feed. Powers are for a peak current of 1 A at the port.
+
+    ``impedance_ohm`` is seen across the gap in the middle of the crossing, before any capacitor.
+    """
+
+    frequency_hz: float
+    impedance_ohm: complex
+    elements: CurrentElements
+    input_power_w: float
+    ohmic_power_w: float
+    residual: float
+    condition: float
+    largest_edge_wavelengths: float
+    triangles: int
+    unknowns: int
+
+    @property
+    def radiated_power_w(self) -> float:
+        """Power through the far sphere."""
+        return self.elements.radiated_power_w(self.frequency_hz)
+
+    @property
+    def power_balance(self) -> float:
+        """(input - radiated - ohmic) / input; zero for a perfect computation."""
+        return (self.input_power_w - self.radiated_power_w - self.ohmic_power_w) / self.input_power_w
+
+
+@dataclass(frozen=True)
+class _KeptCan:
+    matrix: ComplexArray
+    factors: tuple[ComplexArray, NDArray[np.int32]]
+    norm: float
+
+
+@dataclass(frozen=True)
+class _Prepared:
+    """What a feed needs at every frequency: mesh, unknowns and the assembler of all but the can."""
+
+    mesh: Mesh
+    kept: int
+    functions: EdgeFunctions
+    rest: Assembler
+
+
+Key = TypeVar("Key")
+Value = TypeVar("Value")
+
+
+class _Recent(OrderedDict[Key, Value]):
+    """A dictionary that forgets what was not used for longest."""
+
+    def __init__(self, size: int) -> None:
+        super().__init__()
+        self._size = size
+
+    def recall(self, key: Key, make: Callable[[], Value]) -> Value:
+        if key in self:
+            self.move_to_end(key)
+            return self[key]
+        self[key] = value = make()
+        if len(self) > self._size:
+            self.popitem(last=False)
+        return value
+
+
+class FeedSolver:
+    """Solves feeds on the meshes of one plan; keeps the cans it has factorised for as long as they are in use."""
+
+    def __init__(self, plan: MeshPlan, quadrature: QuadratureSettings | None = None) -> None:
+        self.plan = plan
+        self.quadrature = quadrature or QuadratureSettings()
+        self._cans: _Recent[tuple[CanGeometry, float, complex], _KeptCan] = _Recent(KEPT_CANS)
+        self._can_assemblers: _Recent[CanGeometry, Assembler] = _Recent(2)
+        self._feeds: _Recent[FeedGeometry, _Prepared] = _Recent(2)
+
+    def solve(
+        self, feed: FeedGeometry, frequency_hz: float, surface: SurfaceImpedance | None = None
+    ) -> FieldSolution:
+        """Impedance, currents and powers at one frequency.
+
+        Raises GeometryError for sizes that clash or a mesh too coarse, NumericalError where the solution is not finite.
+        """
+        return self._solutions(feed, frequency_hz, surface or SurfaceImpedance(), 0.0)[0]
+
+    def solve_pair(
+        self, feed: FeedGeometry, frequency_hz: float, step: float, surface: SurfaceImpedance | None = None
+    ) -> tuple[FieldSolution, FieldSolution]:
+        """Solutions at f and at f (1 + step), the second by iterative refinement with the factors of the first.
+
+        ``step`` at most about 0.01. One factorisation serves both, which gives a sweep slopes at little cost.
+        """
+        first, second = self._solutions(feed, frequency_hz, surface or SurfaceImpedance(), step)
+        return first, second
+
+    def _solutions(
+        self, feed: FeedGeometry, frequency_hz: float, surface: SurfaceImpedance, step: float
+    ) -> list[FieldSolution]:
+        ready = self._feeds.recall(feed, lambda: self._prepare(feed))
+        top = frequency_hz * (1 + step)
+        check_mesh(ready.mesh, SPEED_OF_LIGHT / top)
+        drive = port_drive(ready.mesh, ready.functions)
+        can = self._cans.recall(
+            (feed.can, frequency_hz, complex(surface.can_ohm)),
+            lambda: self._factorised(feed.can, ready, frequency_hz, surface),
+        )
+        system = _System(can, self._full(can.matrix, ready, frequency_hz, surface), ready.functions.inner)
+        currents = system.solve(drive)
+        found = [_solution(ready, frequency_hz, surface, currents, drive, system)]
+        if step:
+            near = self._full(self._can_matrix(feed.can, ready, top, surface), ready, top, surface)
+            for _ in range(REFINEMENTS):
+                currents = currents + system.solve(drive - near @ currents)
+            found.append(_solution(ready, top, surface, currents, drive, system))
+        return found
+
+    def _prepare(self, feed: FeedGeometry) -> _Prepared:
+        mesh, kept = feed_mesh(feed, self.plan)
+        functions = edge_functions(mesh, SYMMETRY_PLANES, kept)
+        check_memory(functions.count)
+        return _Prepared(mesh, kept, functions, Assembler(mesh, functions, SYMMETRY_PLANES, kept, self.quadrature))
+
+    def _can_assembler(self, ready: _Prepared) -> Assembler:
+        mesh, kept, f = ready.mesh, ready.kept, ready.functions
+        part = Mesh(mesh.vertices_m, mesh.triangles[:kept], mesh.label[:kept])
+        count = f.inner + f.border
+        own = EdgeFunctions(f.dof[:kept], f.sign[:kept], f.length_m[:kept], count, f.inner, f.border, ())
+        return Assembler(part, own, SYMMETRY_PLANES, 0, self.quadrature)
+
+    def _can_matrix(
+        self, can: CanGeometry, ready: _Prepared, frequency_hz: float, surface: SurfaceImpedance
+    ) -> ComplexArray:
+        assembler = self._can_assemblers.recall(can, lambda: self._can_assembler(ready))
+        matrix = assembler.matrix(frequency_hz)
+        if surface.can_ohm:
+            matrix += overlap(assembler.mesh, assembler.functions, surface.per_triangle(assembler.mesh))
+        return matrix
+
+    def _factorised(
+        self, can: CanGeometry, ready: _Prepared, frequency_hz: float, surface: SurfaceImpedance
+    ) -> _KeptCan:
+        matrix = self._can_matrix(can, ready, frequency_hz, surface)
+        inner = matrix[: ready.functions.inner, : ready.functions.inner]
+        return _KeptCan(matrix, lu_factor(inner, check_finite=False), float(np.abs(inner).sum(0).max()))
+
+    @staticmethod
+    def _full(
+        can_matrix: ComplexArray, ready: _Prepared, frequency_hz: float, surface: SurfaceImpedance
+    ) -> ComplexArray:
+        full = ready.rest.matrix(frequency_hz)
+        if surface.loop_ohm or surface.can_ohm:
+            values = surface.per_triangle(ready.mesh)
+            values[: ready.kept] = 0.0
+            full += overlap(ready.mesh, ready.functions, values)
+        known = ready.functions.inner + ready.functions.border
+        full[:known, :known] += can_matrix
+        return full
+
+
+class _System:
+    """The full matrix, solved by block elimination with the kept factors of the can."""
+
+    def __init__(self, can: _KeptCan, full: ComplexArray, inner: int) -> None:
+        self.full = full
+        self._can = can
+        self._inner = inner
+        self._reduced = lu_solve(can.factors, full[:inner, inner:], check_finite=False)
+        schur = full[inner:, inner:] - full[inner:, :inner] @ self._reduced
+        self._schur_norm = float(np.abs(schur).sum(0).max())
+        self._factors = lu_factor(schur, overwrite_a=True, check_finite=False)
+
+    def solve(self, right: NDArray[Any]) -> ComplexArray:
+        """Solution for one right-hand side (N,)."""
+        n = self._inner
+        a = lu_solve(self._can.factors, right[:n], check_finite=False) if right[:n].any() else np.zeros(n)
+        y = lu_solve(self._factors, right[n:] - self.full[n:, :n] @ a, check_finite=False)
+        return np.concatenate([a - self._reduced @ y, y])
+
+    def residual(self, currents: ComplexArray, right: NDArray[Any]) -> float:
+        """Largest backward error of a row, |Z x - v| / (|Z| |x| + |v|)."""
+        scale = np.abs(self.full) @ np.abs(currents) + np.abs(right)
+        return float(np.abs(self.full @ currents - right).max() / scale.max())
+
+    def condition(self) -> float:
+        """Estimated one-norm condition of the two factorised blocks, the larger."""
+        outer, _ = lapack.zgecon(self._factors[0], self._schur_norm)
+        inner, _ = lapack.zgecon(self._can.factors[0], self._can.norm)
+        return float(1 / max(min(outer, inner), 1e-300))
+
+
+def _solution(
+    ready: _Prepared, frequency_hz: float, surface: SurfaceImpedance, currents: ComplexArray,
+    drive: NDArray[np.float64], system: _System,
+) -> FieldSolution:
+    total = complex(2 * drive @ currents)
+    if not np.isfinite(currents).all() or total == 0:
+        raise NumericalError("the field solution is not finite; the sizes lie outside what can be computed")
+    unit = currents / total
+    impedance = 1 / total
+    return FieldSolution(
+        frequency_hz, impedance, current_elements(ready.mesh, ready.functions, SYMMETRY_PLANES, unit),
+        0.5 * impedance.real, _ohmic_power(ready.mesh, ready.functions, surface, unit),
+        system.residual(currents, drive), system.condition(),
+        ready.mesh.longest_edge_m() * frequency_hz / SPEED_OF_LIGHT, len(ready.mesh.triangles), ready.functions.count,
+    )
+
+
+def _ohmic_power(
+    mesh: Mesh, functions: EdgeFunctions, surface: SurfaceImpedance, currents: ComplexArray
+) -> float:
+    resistance = surface.per_triangle(mesh).real
+    if not resistance.any():
+        return 0.0
+    gram = overlap(mesh, functions, resistance)
+    # half of Re(I* R I), twice for the two halves of the symmetric feed
+    return float((currents.conj() @ gram @ currents).real)
+
+
+def port_drive(mesh: Mesh, functions: EdgeFunctions) -> NDArray[np.float64]:
+    """Right-hand side for 1 V across the gap: half the voltage times the edge length on each port edge."""
+    drive = np.zeros(functions.count)
+    for unknown, triangle, _ in functions.plane_edges:
+        if mesh.label[triangle] == CROSSING:
+            corner = int(np.argmax((functions.dof[triangle] == unknown).any(-1)))
+            drive[unknown] = 0.5 * functions.length_m[triangle, corner]
+    if not drive.any():
+        raise GeometryError("the port is not on an edge of the mesh: no edge of the crossing lies in the plane y = 0")
+    return drive

@@ -1,0 +1,208 @@
+"""The Galerkin matrix of the electric-field integral equation and its solution.
+
+    Z_mn = j k eta [ <f_m, f_n>_G - (1/k^2) <div f_m, div f_n>_G ] + <Zs f_m, f_n>
+
+with G = e^{-jkR}/(4 pi R). Images in perfect planes enter with their sign. Time factor e^{+j omega t}.
+
+Depends on: errors, fields.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from concurrent.futures import ThreadPoolExecutor
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fabgen.errors import GeometryError
+from fabgen.fields import kernel
+from fabgen.fields.functions import EdgeFunctions
+from fabgen.fields.geometry import FREE_SPACE_IMPEDANCE, SPEED_OF_LIGHT
+from fabgen.fields.mesh import FloatArray, IntArray, Mesh
+from fabgen.fields.quadrature import triangle_rule
+
+ComplexArray = NDArray[np.complex128]
+SLICES = 2
+
+
+@dataclass(frozen=True)
+class QuadratureSettings:
+    """Points on each triangle for far pairs, for the smooth part of near pairs, for the analytic part's outer
+    integral, and the reach of "near" in mean triangle sizes (longest edges)."""
+
+    far_points: int = 3
+    smooth_points: int = 6
+    outer_points: int = 6
+    reach: float = 1.6
+
+
+@dataclass(frozen=True)
+class _Reflection:
+    mirror: FloatArray
+    factor: float
+
+
+def reflections(planes: tuple[int, ...]) -> tuple[_Reflection, ...]:
+    """The source itself and its images; an image of the mirrored triangle counts -1 for each plane crossed."""
+    found = [_Reflection(np.ones(3), 1.0)]
+    for axis in planes:
+        flip = np.ones(3)
+        flip[axis] = -1.0
+        found += [_Reflection(r.mirror * flip, -r.factor) for r in found]
+    return tuple(found)
+
+
+@dataclass(frozen=True)
+class NearTable:
+    """Near pairs of one reflection and their static moments, independent of frequency."""
+
+    start: IntArray
+    test: IntArray
+    source: IntArray
+    static: FloatArray
+
+
+class Assembler:
+    """Matrix of a mesh at any frequency; keeps what does not depend on frequency.
+
+    ``kept``: pairs of triangles that are both below it are left out (they are known already).
+    """
+
+    def __init__(
+        self,
+        mesh: Mesh,
+        functions: EdgeFunctions,
+        planes: tuple[int, ...] = (),
+        kept: int = 0,
+        quadrature: QuadratureSettings | None = None,
+    ) -> None:
+        self.mesh = mesh
+        self.functions = functions
+        self.kept = kept
+        self.quadrature = quadrature or QuadratureSettings()
+        self._corners = np.ascontiguousarray(mesh.corners_m)
+        self._area = mesh.areas_m2()
+        edges = [np.linalg.norm(self._corners[:, i] - self._corners[:, i - 1], axis=1) for i in range(3)]
+        self._size = np.max(edges, axis=0)
+        self._reflections = reflections(planes)
+        self._images = [np.ascontiguousarray(self._corners * r.mirror) for r in self._reflections]
+        self._near = [self._near_table(image) for image in self._images]
+
+    def _near_table(self, image: FloatArray) -> NearTable:
+        centre, image_centre = self._corners.mean(1), image.mean(1)
+        start = np.zeros(len(self._corners) + 1, dtype=np.int64)
+        none = np.zeros(1, dtype=np.int64)
+        reach = self.quadrature.reach
+        count = kernel.near_pairs(centre, image_centre, self._size, reach, self.kept, start, none, True)
+        source = np.zeros(max(count, 1), dtype=np.int64)
+        kernel.near_pairs(centre, image_centre, self._size, reach, self.kept, start, source, False)
+        test = np.repeat(np.arange(len(self._corners)), np.diff(start))
+        static = np.zeros((count, 8))
+        bary, weight = triangle_rule(self.quadrature.outer_points)
+
+        def work(first: int, last: int, _: int) -> None:
+            kernel.static_moments(
+                first, last, test, source, self._corners, image, bary, weight, self._area, static
+            )
+
+        _run_slices(work, np.linspace(0, count, SLICES + 1).astype(int))
+        return NearTable(start, test, source[:count], static)
+
+    def matrix(self, frequency_hz: float) -> ComplexArray:
+        """Galerkin matrix (N, N), complex symmetric, without surface impedance."""
+        k = 2 * np.pi * frequency_hz / SPEED_OF_LIGHT
+        n = self.functions.count
+        parts = [np.zeros((n, n), dtype=np.complex128) for _ in range(SLICES)]
+        for reflection, image, near in zip(self._reflections, self._images, self._near, strict=True):
+            self._add_far(k, reflection.factor, image, near, parts)
+            self._add_near(k, reflection.factor, image, near, parts)
+        for extra in parts[1:]:
+            parts[0] += extra
+        return parts[0]
+
+    def _points(self, corners: FloatArray, count: int) -> tuple[FloatArray, FloatArray]:
+        bary, weight = triangle_rule(count)
+        points = np.einsum("ic,tcx->xti", bary, corners).reshape(3, -1)
+        return np.ascontiguousarray(points), weight
+
+    def _add_far(self, k: float, factor: float, image: FloatArray, near: NearTable, parts: list[Any]) -> None:
+        points, weight = self._points(self._corners, self.quadrature.far_points)
+        image_points, _ = self._points(image, self.quadrature.far_points)
+        f = self.functions
+
+        def work(first: int, last: int, part: int) -> None:
+            kernel.far_rows(
+                first, last, k, FREE_SPACE_IMPEDANCE, self.kept, points, image_points, weight, self._corners, image,
+                f.length_m, f.dof, f.sign, factor, near.start, near.source, parts[part],
+            )
+
+        _run_slices(work, self._balanced_rows())
+
+    def _balanced_rows(self) -> IntArray:
+        total = len(self._corners)
+        rows = np.arange(total)
+        work = np.where(rows < self.kept, total - self.kept, total - rows)
+        cumulative = np.concatenate([[0], np.cumsum(work)])
+        marks = np.linspace(0, cumulative[-1], SLICES + 1)
+        return np.searchsorted(cumulative, marks).astype(np.int64)
+
+    def _add_near(self, k: float, factor: float, image: FloatArray, near: NearTable, parts: list[Any]) -> None:
+        points, weight = self._points(self._corners, self.quadrature.smooth_points)
+        image_points, _ = self._points(image, self.quadrature.smooth_points)
+        f = self.functions
+
+        def work(first: int, last: int, part: int) -> None:
+            kernel.near_rows(
+                first, last, k, FREE_SPACE_IMPEDANCE, self.kept, near.test, near.source, near.static, points,
+                image_points, weight, self._corners, image, f.length_m, f.dof, f.sign, factor, parts[part],
+            )
+
+        _run_slices(work, np.linspace(0, len(near.test), SLICES + 1).astype(int))
+
+    def overlap(self, per_triangle: NDArray[Any]) -> NDArray[Any]:
+        """Matrix of sum over triangles of x_t <f_m, f_n>_t, for surface impedance or dissipated power."""
+        return overlap(self.mesh, self.functions, per_triangle)
+
+
+def overlap(mesh: Mesh, f: EdgeFunctions, per_triangle: NDArray[Any]) -> NDArray[Any]:
+    """Matrix (N, N) of sum over triangles of x_t <f_m, f_n>_t, in closed form; ``per_triangle`` (T,)."""
+    c = mesh.corners_m
+    centre = c.mean(1)
+    square = (np.einsum("tcx,tcx->t", c, c) + 9 * np.einsum("tx,tx->t", centre, centre)) / 12
+    rest = np.einsum("tcx,tx->tc", c, centre)
+    local = square[:, None, None] - rest[:, :, None] - rest[:, None, :] + np.einsum("tax,tbx->tab", c, c)
+    local = local * (f.length_m[:, :, None] * f.length_m[:, None, :])
+    local = local * (np.asarray(per_triangle) / (4 * mesh.areas_m2()))[:, None, None]
+    out = np.zeros((f.count, f.count), dtype=local.dtype)
+    for s in range(2):
+        for t in range(2):
+            rows = np.broadcast_to(f.dof[:, :, None, s], local.shape)
+            cols = np.broadcast_to(f.dof[:, None, :, t], local.shape)
+            value = local * f.sign[:, :, None, s] * f.sign[:, None, :, t]
+            mask = (rows >= 0) & (cols >= 0)
+            np.add.at(out, (rows[mask], cols[mask]), value[mask])
+    return out
+
+
+def _run_slices(work: Callable[[int, int, int], None], marks: Any) -> None:
+    jobs = [(int(marks[i]), int(marks[i + 1]), i) for i in range(SLICES)]
+    with ThreadPoolExecutor(SLICES) as pool:
+        for done in [pool.submit(work, *job) for job in jobs]:
+            done.result()
+
+
+def check_memory(unknowns: int, available_bytes: float | None = None) -> None:
+    """Refuse a system that would not fit: 3.5 complex matrices are needed at the peak."""
+    import os
+
+    if available_bytes is None:
+        available_bytes = os.sysconf("SC_AVPHYS_PAGES") * os.sysconf("SC_PAGE_SIZE")
+    need = 3.5 * 16.0 * unknowns**2
+    if need > available_bytes:
+        raise GeometryError(
+            f"{unknowns} unknowns need {need / 2**30:.1f} GiB of memory but {available_bytes / 2**30:.1f} GiB "
+            "are free; use a coarser mesh or a smaller structure"
+        )

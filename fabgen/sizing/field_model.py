@@ -1,0 +1,202 @@
+"""The border between sizes in millimetres and the field computation in metres; the only place that converts.
+
+    round wire of diameter d  -> strip of width 2 d (four radii); bars close together: the width whose coplanar pair
+                                 has the impedance of the two wires
+    sheet w x t               -> strip of width w + t (equal edge capacitance to first order)
+
+Depends on: stock, theory, fields, sizing.records.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fabgen.fields.geometry import CanGeometry, ChokeGeometry, FeedGeometry, LoopGeometry
+from fabgen.fields.model import FeedSolver, FieldSolution, SurfaceImpedance
+from fabgen.fields.plan import DEFAULT_DENSITY, plan_mesh
+from fabgen.fields.sweep import SweepResult, adaptive_sweep
+from fabgen.sizing.records import Sizes
+from fabgen.stock.records import Lining, Metal
+from fabgen.theory.lines import strip_width_for_two_wires_mm
+from fabgen.theory.skin import lining_impedance_ohm, metal_impedance_ohm
+
+SWEEP_STEP = 0.005
+PHASE_PLANE = 0.2
+"""Height, in wavelengths at the target, to which the axial field's phase is referred while it is interpolated."""
+
+
+@dataclass(frozen=True)
+class Losses:
+    """What the surfaces are made of. ``lining`` rules over ``can_metal`` where the can is plastic."""
+
+    loop_metal: Metal
+    can_metal: Metal | None = None
+    lining: Lining | None = None
+    lining_sheet_resistance_ohm: float | None = None
+
+
+def feed_geometry(sizes: Sizes) -> FeedGeometry:
+    """Sizes as thin surfaces in metres."""
+    choke = None
+    if sizes.choke is not None:
+        choke = ChokeGeometry(
+            sizes.choke.bore_mm / 2e3, sizes.choke.floor_z_mm / 1e3, sizes.choke.depth_mm / 1e3
+        )
+    can = CanGeometry(sizes.can_bore_mm / 2e3, sizes.can_depth_mm / 1e3, sizes.can_flats, choke)
+    band, leg_band = strip_widths_mm(sizes)
+    bend = sizes.leg_bend_radius_mm + (sizes.sheet_mm or 0.0) / 2
+    if sizes.conductor == "wire":
+        # a strip needs room on the inside of the bend
+        bend = max(bend, 0.55 * band)
+    return FeedGeometry(
+        can,
+        LoopGeometry(
+            "wire" if sizes.conductor == "wire" else "sheet",
+            sizes.loop_diameter_mm / 2e3, sizes.loop_height_mm / 1e3, band / 1e3, leg_band / 1e3,
+            sizes.leg_pitch_mm / 1e3, sizes.leg_x_mm / 1e3, bend / 1e3, sizes.tap_height_mm / 1e3,
+            sizes.crossing_width_mm / 1e3, sizes.tabs != "outward",
+        ),
+    )
+
+
+def strip_widths_mm(sizes: Sizes) -> tuple[float, float]:
+    """Equivalent strip widths of ring and bars."""
+    if sizes.wire_mm is not None:
+        return 2 * sizes.wire_mm, strip_width_for_two_wires_mm(sizes.leg_pitch_mm, sizes.wire_mm)
+    thickness = sizes.sheet_mm or 0.0
+    return (sizes.strip_width_mm or 0.0) + thickness, sizes.leg_width_mm + thickness
+
+
+@dataclass(frozen=True)
+class FieldSweep:
+    """Impedance and axial field over frequency, interpolated; ``solves`` full solves, error of reflection."""
+
+    result: SweepResult
+    target_mhz: float
+
+    @property
+    def solves(self) -> int:
+        """Full solves made."""
+        return self.result.solves
+
+    @property
+    def error_estimate(self) -> float:
+        """Estimated error of the reflection's magnitude."""
+        return self.result.error_estimate
+
+    def impedance_ohm(self, frequency_mhz: NDArray[np.float64]) -> NDArray[np.complex128]:
+        """Impedance at the tap before the capacitor."""
+        return self.result.fit(np.asarray(frequency_mhz, float) / self.target_mhz)[:, 0]
+
+    def on_axis_field(self, frequency_mhz: NDArray[np.float64]) -> NDArray[np.complex128]:
+        """E_y on the axis, volts for 1 A at the port."""
+        x = np.asarray(frequency_mhz, float) / self.target_mhz
+        return np.asarray(self.result.fit(x)[:, 1] * np.exp(2j * np.pi * PHASE_PLANE * x))
+
+
+class FieldModel:
+    """Solves sizes; meshes are moved, not made anew, while sizes stay near those of an earlier call.
+
+    ``edges_per_wavelength`` is the mesh density at the target. Without ``losses`` conductors are perfect.
+    """
+
+    def __init__(
+        self, target_mhz: float, edges_per_wavelength: float = DEFAULT_DENSITY, losses: Losses | None = None
+    ) -> None:
+        self.target_mhz = target_mhz
+        self.edges_per_wavelength = edges_per_wavelength
+        self.losses = losses
+        self._solvers: list[FeedSolver] = []
+        self.solves = 0
+
+    def solve(self, sizes: Sizes, frequency_mhz: float) -> FieldSolution:
+        """One solve. Raises GeometryError for sizes that clash."""
+        geometry = feed_geometry(sizes)
+        self.solves += 1
+        return self._solver(geometry).solve(geometry, frequency_mhz * 1e6, self.surface(sizes, frequency_mhz))
+
+    def surface(self, sizes: Sizes, frequency_mhz: float) -> SurfaceImpedance:
+        """Surface impedance of can and loop. A loop's current flows on both faces or all round the wire, so the
+        strip that stands for it counts with its share of the true perimeter."""
+        if self.losses is None:
+            return SurfaceImpedance()
+        metal = metal_impedance_ohm(self.losses.loop_metal, frequency_mhz)
+        share = 2 / np.pi if sizes.wire_mm is not None else 0.5
+        if self.losses.lining is not None:
+            can = lining_impedance_ohm(
+                self.losses.lining, frequency_mhz, self.losses.lining_sheet_resistance_ohm
+            )
+        elif self.losses.can_metal is not None:
+            can = metal_impedance_ohm(self.losses.can_metal, frequency_mhz)
+        else:
+            can = 0j
+        return SurfaceImpedance(complex(can), complex(metal * share))
+
+    def sweep(self, sizes: Sizes, start_mhz: float, stop_mhz: float, capacitor_pf: float) -> FieldSweep:
+        """Impedance and axial field over a band by at most 13 full solves."""
+        geometry = feed_geometry(sizes)
+        solver = self._solver(geometry)
+        middle = 0.5 * (start_mhz + stop_mhz)
+
+        def sample(x: float) -> tuple[NDArray[np.float64], NDArray[np.complex128]]:
+            frequency = x * self.target_mhz
+            step = SWEEP_STEP if frequency < middle else -SWEEP_STEP
+            pair = solver.solve_pair(geometry, frequency * 1e6, step, self.surface(sizes, frequency))
+            self.solves += 1
+            return np.array([p.frequency_hz / 1e6 / self.target_mhz for p in pair]), np.array(
+                [self._quantities(p) for p in pair]
+            )
+
+        def reflection(x: NDArray[np.float64], values: NDArray[np.complex128]) -> NDArray[np.complex128]:
+            omega = 2e6 * np.pi * x * self.target_mhz
+            z = values[:, 0] + 1 / (1j * omega * capacitor_pf * 1e-12)
+            return np.asarray((z - 50) / (z + 50))
+
+        result = adaptive_sweep(sample, start_mhz / self.target_mhz, stop_mhz / self.target_mhz, reflection, 1.0)
+        return FieldSweep(result, self.target_mhz)
+
+    def _quantities(self, solution: FieldSolution) -> list[complex]:
+        x = solution.frequency_hz / 1e6 / self.target_mhz
+        axial, _ = solution.elements.far_field(solution.frequency_hz, 0.0, np.pi / 2)
+        return [solution.impedance_ohm, complex(axial) * complex(np.exp(-2j * np.pi * PHASE_PLANE * x))]
+
+    def _solver(self, geometry: FeedGeometry) -> FeedSolver:
+        for solver in self._solvers:
+            if _near(solver.plan.reference, geometry):
+                return solver
+        wavelength = 299.792458 / self.target_mhz
+        solver = FeedSolver(plan_mesh(geometry, wavelength, self.edges_per_wavelength))
+        self._solvers.append(solver)
+        if len(self._solvers) > 4:
+            self._solvers.pop(0)
+        return solver
+
+
+def _near(reference: FeedGeometry, wanted: FeedGeometry) -> bool:
+    """Whether the meshes of the reference can be moved to the wanted sizes without losing their quality."""
+    if replace(reference.can, radius_m=1, depth_m=1, choke=None) != replace(
+        wanted.can, radius_m=1, depth_m=1, choke=None
+    ):
+        return False
+    if (reference.can.choke is None) != (wanted.can.choke is None) or reference.loop.form != wanted.loop.form:
+        return False
+    if reference.loop.inward != wanted.loop.inward:
+        return False
+    pairs = [
+        (reference.can.radius_m, wanted.can.radius_m, 0.03),
+        (reference.can.depth_m, wanted.can.depth_m, 0.05),
+        (reference.loop.radius_m, wanted.loop.radius_m, 0.06),
+        (reference.loop.height_m, wanted.loop.height_m, 0.15),
+        (reference.loop.band_m, wanted.loop.band_m, 0.1),
+        (reference.loop.leg_pitch_m, wanted.loop.leg_pitch_m, 0.05),
+    ]
+    if reference.can.choke is not None and wanted.can.choke is not None:
+        pairs += [
+            (reference.can.choke.radius_m, wanted.can.choke.radius_m, 0.05),
+            (reference.can.choke.depth_m, wanted.can.choke.depth_m, 0.1),
+            (reference.can.choke.floor_z_m + 1e-3, wanted.can.choke.floor_z_m + 1e-3, 0.2),
+        ]
+    return all(abs(a / b - 1) <= limit for a, b, limit in pairs)
