@@ -15,10 +15,13 @@ from fabgen.parts.can_printed import can_printed
 from fabgen.parts.can_tube import can_tube
 from fabgen.parts.can_turned import can_turned
 from fabgen.parts.capacitor import capacitor_parts, coax_stub
+from fabgen.parts.choke_printed import choke_printed
 from fabgen.parts.connector import connector, spacer
 from fabgen.parts.fastening import connector_fasteners, foot_fasteners
 from fabgen.parts.kernel import placed
 from fabgen.parts.loop_sheet import loop_sheet
+from fabgen.parts.loop_wire import loop_wire
+from fabgen.parts.radome_cap import radome_cap
 from fabgen.parts.records import Part, Place
 from fabgen.sizing.records import Feed
 
@@ -48,8 +51,12 @@ def build_parts(feed: Feed) -> tuple[Part, ...]:
     """
     parts: list[Part | None] = [*_can(feed), *_loop(feed), *foot_fasteners(feed)]
     parts += [spacer(feed), connector(feed), *connector_fasteners(feed)]
-    parts += [coax_stub(feed), *capacitor_parts(feed)]
-    return tuple(part for part in parts if part is not None)
+    parts += [coax_stub(feed), *capacitor_parts(feed), *radome_cap(feed)]
+    made = tuple(part for part in parts if part is not None)
+    keys = [part.key for part in made]
+    if len(set(keys)) < len(keys):
+        raise GeometryError(f"two parts have the same key: {', '.join(sorted(k for k in keys if keys.count(k) > 1))}")
+    return made
 
 
 def assembly(parts: Sequence[Part]) -> Iterator[Placement]:
@@ -61,12 +68,16 @@ def assembly(parts: Sequence[Part]) -> Iterator[Placement]:
 
 
 def _can(feed: Feed) -> tuple[Part, ...]:
-    makers = {"printed": can_printed, "tube": can_tube, "turned": can_turned}
+    makers = {"printed": _printed, "tube": can_tube, "turned": can_turned}
     make = feed.job.can.make
     if make not in makers:
         raise NotCoveredError(f"can.make = {make!r} has no parts yet; use one of {', '.join(sorted(makers))}")
     return makers[make](feed)
 
 
+def _printed(feed: Feed) -> tuple[Part, ...]:
+    return (*can_printed(feed), *choke_printed(feed))
+
+
 def _loop(feed: Feed) -> tuple[Part, ...]:
-    return (loop_sheet(feed),) if feed.sizes.conductor == "strip" else ()
+    return (loop_sheet(feed) if feed.sizes.conductor == "strip" else loop_wire(feed),)

@@ -4,7 +4,7 @@ Section through the axis; the lining (thin, drawn ``=``) is between the plastic 
 
               |<----- can_bore ----->|          z = can_depth
             | |                      | |
-       wall |=|                      |=|
+       wall |=|                      |=|        ledge with inserts and bead: see shell
             | |                      | |
             | |======================| |        z = 0, inner face of the lining
      .------' '----------------------' '------.
@@ -12,42 +12,40 @@ Section through the axis; the lining (thin, drawn ``=``) is between the plastic 
      '----------------------------------------'
      |<--------------- flange --------------->|
 
-Depends on: errors, stock, parts.contour, parts.records, parts.kernel, parts.floor_plan, sizing.records.
+Larger than the bed it comes in pieces: see split and pieces.
+
+Depends on: errors, stock, parts (contour, records, kernel, shell, split, pieces, print_rules, printed,
+floor_plan, floor_holes), sizing.records.
 """
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+import math
+from functools import cache
 
 from fabgen.parts import kernel
-from fabgen.parts.contour import Circle, Outline
+from fabgen.parts.contour import Circle, Outline, Point, bounds_mm
 from fabgen.parts.floor_holes import floor_holes
-from fabgen.parts.floor_plan import flange_plan, lining_mm
+from fabgen.parts.floor_plan import FlangePlan, coax_axis, flange_plan, lining_mm
+from fabgen.parts.pieces import Joint
+from fabgen.parts.print_rules import PrintRules, print_rules
+from fabgen.parts.printed import Printed, ear_fasteners, printed_parts
 from fabgen.parts.records import Part
-from fabgen.parts.shell import Body, shell_solid
+from fabgen.parts.screws import inserts
+from fabgen.parts.shell import Body, Ledge, shell_solid, shell_volume_mm3
+from fabgen.parts.split import EAR_HALF_MM, Envelope, Split, plan_split
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
 
-if TYPE_CHECKING:
-    import cadquery
-
-PRINT_HOLE_MM = 0.2
-"""Printed holes come out smaller; added to every diameter. Common practice (shop guides agree), no source."""
-
-
-def body_of(feed: Feed) -> Body:
-    """The plastic's sizes: the bore is drawn larger and the floor lower by the lining."""
-    sizes, lining = feed.sizes, lining_mm(feed)
-    inner = sizes.can_bore_mm / 2 + lining
-    outer = inner + sizes.wall_mm
-    return Body(
-        inner_radius_mm=inner,
-        outer_radius_mm=outer,
-        floor_top_mm=-lining,
-        floor_bottom_mm=-lining - sizes.floor_mm,
-        rim_mm=sizes.can_depth_mm,
-        flange=flange_plan(feed, 2 * outer),
-    )
+CHOKE_SCREW = "M3"
+CHOKE_SCREWS = 6
+INSERT_DEPTH_MM = 1.0
+"""The insert's hole is this much deeper than the insert, for the plastic that it pushes down. Maker sheets."""
+BEAD_MM = 0.6
+"""Height of the bead that the radome cap snaps over. Common practice, no source."""
+BEAD_BELOW_RIM_MM = 4.0
+SKIRT_MM = 8.0
+"""How far the radome cap reaches over the wall."""
 
 
 def wider(outline: Outline, by_mm: float) -> Outline:
@@ -57,48 +55,164 @@ def wider(outline: Outline, by_mm: float) -> Outline:
     return outline
 
 
-def floor_outlines(feed: Feed) -> tuple[Outline, ...]:
+def ledge_of(feed: Feed, rules: PrintRules) -> Ledge | None:
+    """The ledge that carries the choke: wide enough for an insert with its plastic on both sides."""
+    choke = feed.sizes.choke
+    if choke is None:
+        return None
+    screw = tables.screw(CHOKE_SCREW)
+    return Ledge(
+        top_mm=choke.floor_z_mm - lining_mm(feed) - feed.sizes.floor_mm,
+        width_mm=screw.insert_hole_mm + 2 * rules.insert_wall_mm,
+        height_mm=screw.insert_length_mm + INSERT_DEPTH_MM + rules.insert_wall_mm,
+    )
+
+
+def body_of(feed: Feed) -> Body:
+    """The plastic's sizes: the bore is drawn larger and the floor lower by the lining."""
+    sizes, lining, rules = feed.sizes, lining_mm(feed), print_rules(feed)
+    inner = sizes.can_bore_mm / 2 + lining
+    outer = inner + sizes.wall_mm
+    ledge = ledge_of(feed, rules)
+    return Body(
+        inner_radius_mm=inner,
+        outer_radius_mm=outer,
+        floor_top_mm=-lining,
+        floor_bottom_mm=-lining - sizes.floor_mm,
+        rim_mm=sizes.can_depth_mm,
+        # The flange's screws stay in reach beside the ledge.
+        flange=flange_plan(feed, 2 * (outer + (ledge.width_mm if ledge else 0.0))),
+        ledge=ledge,
+        bead_mm=BEAD_MM if feed.job.can.radome else 0.0,
+        bead_z_mm=sizes.can_depth_mm - BEAD_BELOW_RIM_MM,
+    )
+
+
+def openings(feed: Feed) -> tuple[Outline, ...]:
     """All openings through the floor as printed."""
-    return tuple(wider(hole.outline, PRINT_HOLE_MM) for hole in floor_holes(feed))
+    allowance = print_rules(feed).hole_mm
+    return tuple(wider(hole.outline, allowance) for hole in floor_holes(feed))
+
+
+def choke_screw_points(feed: Feed, body: Body) -> tuple[Point, ...]:
+    """Centres of the choke's screws, half a pitch off +x."""
+    if body.ledge is None:
+        return ()
+    radius = body.outer_radius_mm + body.ledge.width_mm / 2
+    return kernel.circle_points(CHOKE_SCREWS, radius, 180.0 / CHOKE_SCREWS)
 
 
 def can_printed(feed: Feed) -> tuple[Part, ...]:
-    """The printed can as parts: one, or several pieces where it is larger than the bed."""
-    body = body_of(feed)
-    plastic = tables.plastic(feed.job.can.plastic)
-    solid = kernel.once(lambda: can_solid(feed))
-    part = Part(
+    """The printed can as parts: one, or several pieces where it is larger than the bed; then the screws of
+    their joints and the inserts for the choke.
+
+    Raises GeometryError when it cannot sensibly be cut into pieces for the bed.
+    """
+    rules, body, sizes = print_rules(feed), body_of(feed), feed.sizes
+    envelope = _envelope(feed, body, rules)
+    joint = Joint(envelope, plan_split(envelope, rules), rules, sizes.wall_mm, sizes.floor_mm, _ear_top(body))
+    holes, flange_holes = openings(feed), _flange_holes(body, rules)
+    at = choke_screw_points(feed, body)
+
+    @cache
+    def whole() -> kernel.Shape:
+        solid = shell_solid(body, holes, flange_holes, "printed can")
+        return kernel.cut(solid, *_insert_holes(body, at), what="printed can")
+
+    lining = tables.lining(feed.job.can.lining)
+    printed = Printed(
         key="can",
         name="printed can",
-        process=("print",),
-        material=plastic.key,
-        material_name=plastic.name,
-        temper="",
-        colour=plastic.colour,
-        quantity=1,
+        plastic=feed.job.can.plastic,
         sizes=(
             ("bore_before_lining_mm", 2 * body.inner_radius_mm),
-            ("can_bore_mm", feed.sizes.can_bore_mm),
-            ("can_depth_mm", feed.sizes.can_depth_mm),
-            ("wall_mm", feed.sizes.wall_mm),
-            ("floor_mm", feed.sizes.floor_mm),
+            ("can_bore_mm", sizes.can_bore_mm),
+            ("can_depth_mm", sizes.can_depth_mm),
+            ("wall_mm", sizes.wall_mm),
+            ("floor_mm", sizes.floor_mm),
         ),
         tolerance="bore and depth +-0.2 mm after lining",
-        finish=f"lined with {tables.lining(feed.job.can.lining).name} inside, up to the rim",
-        solid=solid,
-        print_solid=kernel.once(lambda: kernel.on_bed(solid())),
-        mass_kg=0.0 * 1e-9 * plastic.density_kg_per_m3,
-        notes=("print on the floor, no support",),
+        finish=f"lined inside with {lining.name}, {lining_mm(feed):g} mm thick, from the floor to the rim",
+        notes=("print floor down, without support",),
+        volume_mm3=shell_volume_mm3(body, holes, flange_holes) - _insert_volume(len(at)),
+        joint=joint,
+        whole=whole,
     )
-    return (part,)
+    parts = [*printed_parts(printed), *ear_fasteners(printed)]
+    if at and body.ledge is not None:
+        parts.append(inserts("insert-choke", CHOKE_SCREW, at, body.ledge.top_mm))
+    return tuple(parts)
 
 
-def can_solid(feed: Feed) -> cadquery.Shape:
-    """The whole can in the feed's frame."""
-    body = body_of(feed)
-    return shell_solid(body, floor_outlines(feed), flange_outlines(body), "printed can")
+def can_split(feed: Feed) -> Split:
+    """How the can is cut for the bed."""
+    rules = print_rules(feed)
+    return plan_split(_envelope(feed, body_of(feed), rules), rules)
 
 
-def flange_outlines(body: Body) -> tuple[Outline, ...]:
-    """The flange's holes as printed."""
-    return tuple(wider(hole, PRINT_HOLE_MM) for hole in body.flange.holes) if body.flange else ()
+def _ear_top(body: Body) -> float:
+    if body.ledge is not None:
+        return body.ledge.top_mm - body.ledge.height_mm - body.ledge.width_mm - 0.5
+    return body.rim_mm - (SKIRT_MM + 1.0 if body.bead_mm > 0 else 0.0)
+
+
+def _flange_holes(body: Body, rules: PrintRules) -> tuple[Outline, ...]:
+    return tuple(wider(hole, rules.hole_mm) for hole in body.flange.holes) if body.flange else ()
+
+
+def _insert_holes(body: Body, at: tuple[Point, ...]) -> list[kernel.Shape]:
+    screw, ledge = tables.screw(CHOKE_SCREW), body.ledge
+    if ledge is None:
+        return []
+    depth = screw.insert_length_mm + INSERT_DEPTH_MM
+    ends = ((x, y, ledge.top_mm - depth) for x, y in at)
+    return [kernel.rod(low, (low[0], low[1], ledge.top_mm + 1.0), screw.insert_hole_mm) for low in ends]
+
+
+def _insert_volume(count: int) -> float:
+    screw = tables.screw(CHOKE_SCREW)
+    depth = screw.insert_length_mm + INSERT_DEPTH_MM
+    return count * math.pi / 4 * screw.insert_hole_mm**2 * depth
+
+
+def _envelope(feed: Feed, body: Body, rules: PrintRules) -> Envelope:
+    flange = body.flange
+    ledge = body.ledge
+    edge = body.outer_radius_mm + (ledge.width_mm if ledge else 0.0)
+    bands: list[tuple[float, float]] = [(body.floor_bottom_mm, body.flange_top_mm + 20.0)]
+    if ledge is not None:
+        bands.append((ledge.top_mm - ledge.height_mm - ledge.width_mm - 10.0, ledge.top_mm + 10.0))
+    bands.append((body.rim_mm - 20.0, body.rim_mm))
+    return Envelope(
+        name="printed can",
+        wall_radius_mm=body.outer_radius_mm,
+        edge_radius_mm=max(edge, _reach(flange) if flange else 0.0),
+        bottom_mm=body.floor_bottom_mm,
+        top_mm=body.rim_mm,
+        keep_clear=_keep_clear(feed, body, rules),
+        bands=tuple(bands),
+    )
+
+
+def _reach(flange: FlangePlan) -> float:
+    """Farthest point of the flange from the axis."""
+    if isinstance(flange.outline, Circle):
+        return flange.width_mm / 2
+    return max(math.hypot(v.x_mm, v.y_mm) for v in flange.outline.vertices)
+
+
+def _keep_clear(feed: Feed, body: Body, rules: PrintRules) -> tuple[Circle, ...]:
+    margin = 2 * (rules.wall_min_mm + 1.5)
+    circles = []
+    for outline in openings(feed):
+        low_x, low_y, high_x, high_y = bounds_mm(outline)
+        size = max(high_x - low_x, high_y - low_y)
+        circles.append(Circle((low_x + high_x) / 2, (low_y + high_y) / 2, size + margin))
+    row = tables.connector(feed.job.cable.connector)
+    circles.append(Circle(*coax_axis(feed), math.hypot(row.flange_width_mm, row.flange_height_mm)))
+    if body.flange is not None:
+        head = tables.screw(body.flange.screw).head_mm
+        circles += [Circle(h.x_mm, h.y_mm, head + 2 * EAR_HALF_MM + 2.0) for h in body.flange.holes]
+    hole = tables.screw(CHOKE_SCREW).insert_hole_mm + 2 * rules.insert_wall_mm
+    circles += [Circle(x, y, hole) for x, y in choke_screw_points(feed, body)]
+    return tuple(circles)

@@ -20,12 +20,12 @@ from typing import TYPE_CHECKING
 
 from fabgen.errors import GeometryError
 from fabgen.parts import kernel
-from fabgen.parts.contour import Outline, area_mm2
+from fabgen.parts.contour import Outline
 from fabgen.parts.floor_holes import floor_holes
 from fabgen.parts.floor_plan import flange_plan
 from fabgen.parts.making import metal_part
 from fabgen.parts.records import Part
-from fabgen.parts.shell import Body, profile, revolved_volume_mm3, shell_solid
+from fabgen.parts.shell import Body, revolved_volume_mm3, shell_solid, shell_volume_mm3
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
 
@@ -64,7 +64,7 @@ def can_turned(feed: Feed) -> tuple[Part, ...]:
         ("turn", "drill"),
         (feed.job.can.metal, feed.job.can.temper),
         feed,
-        volume_mm3=_volume(body, openings, flange_holes),
+        volume_mm3=shell_volume_mm3(body, openings, flange_holes),
         sizes=(
             ("can_bore_mm", sizes.can_bore_mm),
             ("can_depth_mm", sizes.can_depth_mm),
@@ -77,14 +77,6 @@ def can_turned(feed: Feed) -> tuple[Part, ...]:
         notes=("inside corner radius 0.4 mm at most", "bore and floor turned in one setting"),
     )
     return (can,) if sizes.choke is None else (can, _choke(feed, body))
-
-
-def _volume(body: Body, openings: tuple[Outline, ...], flange_holes: tuple[Outline, ...]) -> float:
-    volume = revolved_volume_mm3(profile(body))
-    volume -= sum(area_mm2(o) for o in openings) * (body.floor_top_mm - body.floor_bottom_mm)
-    if body.flange is None:
-        return volume
-    return volume - sum(area_mm2(o) for o in flange_holes) * body.flange.thickness_mm
 
 
 def _choke(feed: Feed, body: Body) -> Part:

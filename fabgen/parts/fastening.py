@@ -13,12 +13,9 @@ from fabgen.parts.contour import Circle, Point
 from fabgen.parts.floor_plan import FloorHole, connector_screw_holes, floor_bottom_mm
 from fabgen.parts.loop_sheet import foot_holes, foot_screw
 from fabgen.parts.records import Part
-from fabgen.parts.screws import nuts, screw_length_mm, screws
+from fabgen.parts.screws import PROUD_MM, nuts, screw_length_mm, screws
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
-
-PROUD_MM = 0.5
-"""A screw ends at least this far beyond its nut. Common practice, no source."""
 
 
 def connector_fasteners(feed: Feed) -> tuple[Part, ...]:

@@ -12,7 +12,7 @@ from __future__ import annotations
 import itertools
 import math
 from collections.abc import Callable, Iterable, Sequence
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, TypeAlias
 
 from fabgen.errors import GeometryError
 from fabgen.parts.contour import Circle, Outline, Point
@@ -21,6 +21,7 @@ from fabgen.parts.records import Place
 if TYPE_CHECKING:
     import cadquery
 
+Shape: TypeAlias = "cadquery.Shape"
 Point3 = tuple[float, float, float]
 
 
@@ -179,3 +180,18 @@ def circle_points(count: int, radius_mm: float, start_deg: float) -> tuple[Point
     return tuple((radius_mm * math.cos(a), radius_mm * math.sin(a)) for a in angles)
 
 
+
+
+def extruded(corners: Sequence[Point3], along: Point3) -> cadquery.Shape:
+    """A plane polygon in space, pushed along a vector."""
+    import cadquery as cq
+
+    wire = cq.Wire.makePolygon([cq.Vector(*c) for c in corners], close=True)
+    return cq.Solid.extrudeLinear(wire, [], cq.Vector(*along))
+
+
+def common(body: cadquery.Shape, *tools: cadquery.Shape, what: str = "part") -> cadquery.Shape:
+    """What of ``body`` lies inside all the tools, as one solid."""
+    for tool in tools:
+        body = body.intersect(tool)
+    return one_solid(body, what)

@@ -6,6 +6,7 @@ Depends on: errors, stock, parts.contour, parts.records, parts.kernel, sizing.re
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from fabgen.errors import GeometryError
@@ -19,6 +20,8 @@ if TYPE_CHECKING:
 
 LENGTHS_MM = (4, 5, 6, 8, 10, 12, 16, 20, 25, 30, 35, 40, 45, 50)
 """Usual lengths of socket head cap screws, ISO 4762; from memory."""
+PROUD_MM = 0.5
+"""A screw ends at least this far beyond its nut. Common practice, no source."""
 STEEL_DENSITY = 7900.0
 STEEL_COLOUR = (0.62, 0.63, 0.65)
 BRASS_COLOUR = (0.80, 0.66, 0.36)
@@ -76,6 +79,36 @@ def nuts(key: str, name: str, size: str, at: tuple[Point, ...], z_mm: float) -> 
         places=tuple(Place(x, y, z_mm) for x, y in at),
         mass_kg=area * row.nut_height_mm * 1e-9 * STEEL_DENSITY,
     )
+
+
+def side_screws(
+    key: str, name: str, size: str, places: tuple[Place, ...], *, seat_y_mm: float, length_mm: float
+) -> Part:
+    """Level screws along +y before they are placed; the head's seat is ``seat_y_mm`` from the place."""
+    flat = screws(key, name, size, (), length_mm=length_mm, head_z_mm=0.0, up=True)
+    return replace(
+        flat,
+        quantity=len(places),
+        solid=kernel.once(lambda: _level(_screw_solid(size, length_mm, True), seat_y_mm)),
+        places=places,
+    )
+
+
+def side_nuts(key: str, name: str, size: str, places: tuple[Place, ...], *, seat_y_mm: float) -> Part:
+    """Nuts of level screws; their near face is ``seat_y_mm`` along +y from the place."""
+    row = tables.screw(size)
+    flat = nuts(key, name, size, (), 0.0)
+    return replace(
+        flat,
+        quantity=len(places),
+        solid=kernel.once(lambda: _level(_nut_solid(size), seat_y_mm + row.nut_height_mm)),
+        places=places,
+    )
+
+
+def _level(shape: cadquery.Shape, y_mm: float) -> cadquery.Shape:
+    """+z turned onto -y, then shifted along y."""
+    return kernel.moved(kernel.turned(shape, 90.0, (1, 0, 0)), 0.0, y_mm, 0.0)
 
 
 def inserts(key: str, size: str, at: tuple[Point, ...], top_z_mm: float) -> Part:

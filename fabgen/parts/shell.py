@@ -26,8 +26,8 @@ from typing import TYPE_CHECKING
 
 from fabgen.errors import GeometryError
 from fabgen.parts import kernel
-from fabgen.parts.contour import Circle, Outline, Point
-from fabgen.parts.floor_plan import FlangePlan
+from fabgen.parts.contour import Circle, Outline, Point, area_mm2
+from fabgen.parts.floor_plan import FlangePlan, marked_outline
 
 if TYPE_CHECKING:
     import cadquery
@@ -68,18 +68,18 @@ def profile(body: Body) -> tuple[Point, ...]:
     Raises GeometryError when the ledge does not stand clear of the flange.
     """
     outer, flange = body.outer_radius_mm, body.flange
-    round_flange = flange is not None and isinstance(flange.outline, Circle)
-    base = body.flange_top_mm if round_flange else body.floor_bottom_mm
     points: list[Point] = [(0.0, body.floor_bottom_mm)]
-    if flange is not None and round_flange:
-        points += [(flange.width_mm / 2, body.floor_bottom_mm), (flange.width_mm / 2, base)]
-    points += _ledge(body, base) if body.ledge else [(outer, base)]
+    if flange is not None:
+        # A square flange is added as a plate around this profile.
+        edge = flange.width_mm / 2 if isinstance(flange.outline, Circle) else outer
+        points += [(edge, body.floor_bottom_mm), (edge, body.flange_top_mm)]
+    points += _ledge(body, body.flange_top_mm) if body.ledge else [(outer, body.flange_top_mm)]
     if body.bead_mm > 0:
         z, bead = body.bead_z_mm, body.bead_mm
         points += [(outer, z - bead), (outer + bead, z), (outer, z + bead)]
     inner = body.inner_radius_mm
     points += [(outer, body.rim_mm), (inner, body.rim_mm), (inner, body.floor_top_mm), (0.0, body.floor_top_mm)]
-    return tuple(points)
+    return tuple(_distinct(points))
 
 
 def _ledge(body: Body, base_mm: float) -> list[Point]:
@@ -105,13 +105,29 @@ def shell_solid(
     shell = kernel.revolved(profile(body))
     flange = body.flange
     if flange is not None and not isinstance(flange.outline, Circle):
-        bore = Circle(0.0, 0.0, body.inner_radius_mm + body.outer_radius_mm)
+        bore = Circle(0.0, 0.0, 2 * body.outer_radius_mm)
         ring = kernel.prism(flange.outline, (bore,), body.floor_bottom_mm, flange.thickness_mm)
         shell = kernel.fused(shell, ring, what=what)
     cutters = [*openings, *flange_holes, *((flange.mark,) if flange else ())]
     top = max(body.floor_top_mm, body.flange_top_mm) + 1.0
     low = body.floor_bottom_mm - 1.0
     return kernel.cut(shell, *(kernel.prism(o, (), low, top - low) for o in cutters), what=what)
+
+
+def shell_volume_mm3(body: Body, openings: Sequence[Outline], flange_holes: Sequence[Outline]) -> float:
+    """Volume of ``shell_solid`` in closed form."""
+    volume = revolved_volume_mm3(profile(body))
+    volume -= sum(area_mm2(o) for o in openings) * (body.floor_top_mm - body.floor_bottom_mm)
+    flange = body.flange
+    if flange is None:
+        return volume
+    inside = body.outer_radius_mm if not isinstance(flange.outline, Circle) else flange.width_mm / 2
+    plate = area_mm2(marked_outline(flange)) - math.pi * inside**2
+    return volume + flange.thickness_mm * (plate - sum(area_mm2(o) for o in flange_holes))
+
+
+def _distinct(points: Sequence[Point]) -> list[Point]:
+    return [b for a, b in itertools.pairwise((points[-1], *points)) if math.dist(a, b) > 1e-9]
 
 
 def revolved_volume_mm3(points: Sequence[Point]) -> float:

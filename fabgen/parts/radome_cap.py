@@ -1,0 +1,162 @@
+"""The radome cap: a thin printed disc with a skirt that goes over the can's rim.
+
+Section, right half; printed disc down::
+
+      ----------------------.   z = can_depth + cover
+      ----------------------|
+                   can   | ||   skirt, clearance to the wall
+                   wall  |<||   groove over the bead of a printed can
+                         | |'   z = can_depth - skirt
+
+For a can with flats the skirt has the same flats. Around a rolled wall the skirt is wider by the wall, so that it
+goes over the lapped seam; the cap is bedded in silicone there. Larger than the bed the cap comes in sectors with
+strips to bond over the joints.
+
+Depends on: errors, stock, parts (contour, kernel, print_rules, printed, pieces, split, floor_plan, can_printed,
+records), sizing.records.
+"""
+
+from __future__ import annotations
+
+import math
+from functools import cache
+
+from fabgen.parts import kernel
+from fabgen.parts.can_printed import BEAD_BELOW_RIM_MM, BEAD_MM, SKIRT_MM
+from fabgen.parts.contour import Circle, Outline, area_mm2, polygon
+from fabgen.parts.floor_plan import DRAIN_HOLE_MM, lining_mm
+from fabgen.parts.pieces import Joint
+from fabgen.parts.print_rules import PrintRules, print_rules
+from fabgen.parts.printed import Printed, printed_parts
+from fabgen.parts.records import Part, Place
+from fabgen.parts.split import Envelope, plan_split
+from fabgen.sizing.records import Feed
+from fabgen.stock import tables
+
+COVER_MM = 1.2
+"""Thickness of the disc where the wavelength allows it: six layers of 0.2 mm. Common practice, no source."""
+STRIP_MM = 12.0
+"""Width of a strip over a joint of the disc. Common practice, no source."""
+
+
+def cover_mm(feed: Feed) -> float:
+    """Thickness of the disc: COVER_MM, or thinner where that is no longer thin against the wavelength."""
+    share = tables.limit("radome_max_wavelengths", feed.job.overrides).value
+    least = tables.limit("print_wall_thin_mm", feed.job.overrides).value
+    return max(least, min(COVER_MM, math.floor(10 * share * feed.job.wavelength_mm) / 10))
+
+
+def radome_cap(feed: Feed) -> tuple[Part, ...]:
+    """The cap as parts; nothing when the job asks for none.
+
+    Raises GeometryError when it cannot sensibly be cut into pieces for the bed.
+    """
+    if not feed.job.can.radome:
+        return ()
+    rules, cover = print_rules(feed), cover_mm(feed)
+    inner, skirt = _inner_radius(feed, rules), rules.wall(4)
+    outer_line, inner_line = _section(feed, inner + skirt), _section(feed, inner)
+    rim, low = feed.sizes.can_depth_mm, feed.sizes.can_depth_mm - SKIRT_MM
+    corner = 1.0 / math.cos(math.pi / feed.sizes.can_flats) if feed.sizes.can_flats else 1.0
+    envelope = Envelope("radome cap", inner + skirt, (inner + skirt) * corner, low, rim + cover, ())
+    # No ears, hence an ear top under the bottom; the disc is too thin for a tongue.
+    joint = Joint(envelope, plan_split(envelope, rules), rules, skirt, cover, low)
+    drains = _drains(feed)
+    bead = feed.job.can.make == "printed"
+
+    @cache
+    def whole() -> kernel.Shape:
+        cup = kernel.prism(outer_line, (), low, rim + cover - low)
+        tools = [kernel.prism(inner_line, (), low - 1.0, rim - low + 1.0)]
+        tools += [kernel.prism(hole, (), rim - 1.0, cover + 2.0) for hole in drains]
+        if bead:
+            tools.append(_groove(inner, rim - BEAD_BELOW_RIM_MM))
+        return kernel.cut(cup, *tools, what="radome cap")
+
+    volume = area_mm2(outer_line) * (cover + SKIRT_MM) - area_mm2(inner_line) * SKIRT_MM
+    volume -= sum(area_mm2(h) for h in drains) * cover
+    fixing = "snaps over the bead" if bead else "bed the skirt in neutral-cure silicone"
+    printed = Printed(
+        key="radome",
+        name="radome cap",
+        plastic=feed.job.can.plastic,
+        sizes=(
+            ("cover_mm", cover),
+            ("skirt_bore_mm", 2 * inner),
+            ("skirt_wall_mm", skirt),
+            ("skirt_mm", SKIRT_MM),
+        ),
+        tolerance="skirt bore +0.2/0 mm",
+        finish="as printed, not painted with anything that conducts",
+        notes=("print disc down, without support", fixing),
+        volume_mm3=volume,
+        joint=joint,
+        whole=whole,
+        upside_down=True,
+    )
+    return (*printed_parts(printed), *_strips(printed, inner))
+
+
+def _inner_radius(feed: Feed, rules: PrintRules) -> float:
+    sizes = feed.sizes
+    wall = sizes.can_bore_mm / 2 + lining_mm(feed) + sizes.wall_mm
+    seam = sizes.wall_mm if feed.job.can.make == "rolled" else 0.0
+    return wall + seam + rules.clearance_mm
+
+
+def _section(feed: Feed, radius_mm: float) -> Outline:
+    """A circle, or the can's polygon with one flat's middle on +x (``radius_mm`` to the flats)."""
+    flats = feed.sizes.can_flats
+    if flats == 0:
+        return Circle(0.0, 0.0, 2 * radius_mm)
+    return polygon(kernel.circle_points(flats, radius_mm / math.cos(math.pi / flats), 180.0 / flats))
+
+
+def _drains(feed: Feed) -> tuple[Circle, ...]:
+    """The cap is the lowest point of a feed that looks down at its dish: it drains at its edge."""
+    if not feed.job.can.drain_holes:
+        return ()
+    at = kernel.circle_points(4, feed.sizes.can_bore_mm / 2 - 1.5 * DRAIN_HOLE_MM, 45.0)
+    return tuple(Circle(x, y, DRAIN_HOLE_MM) for x, y in at)
+
+
+def _groove(radius_mm: float, z_mm: float) -> kernel.Shape:
+    return kernel.revolved(
+        (
+            (radius_mm - 1.0, z_mm - BEAD_MM - 1.0), (radius_mm + BEAD_MM, z_mm),
+            (radius_mm - 1.0, z_mm + BEAD_MM + 1.0),
+        )
+    )
+
+
+def _strips(printed: Printed, inner_mm: float) -> tuple[Part, ...]:
+    """One strip per joint of the disc, bonded inside."""
+    angles = printed.joint.split.cut_angles_deg()
+    if not angles:
+        return ()
+    plastic = tables.plastic(printed.plastic)
+    start, end = STRIP_MM, inner_mm - 2.0
+    thick = printed.joint.rules.wall(2)
+    rim = printed.joint.envelope.top_mm - printed.joint.floor_mm
+    solid = kernel.once(
+        lambda: kernel.box((start, -STRIP_MM / 2, rim - thick), (end, STRIP_MM / 2, rim))
+    )
+    strip = Part(
+        key="radome-strip",
+        name="radome joint strip",
+        process=("print",),
+        material=plastic.key,
+        material_name=plastic.name,
+        temper="",
+        colour=plastic.colour,
+        quantity=len(angles),
+        sizes=(("length_mm", end - start), ("width_mm", STRIP_MM), ("thickness_mm", thick)),
+        tolerance="+-0.5 mm",
+        finish="as printed",
+        solid=solid,
+        print_solid=kernel.once(lambda: kernel.on_bed(solid())),
+        places=tuple(Place(turn_deg=a) for a in angles),
+        mass_kg=(end - start) * STRIP_MM * thick * 1e-9 * plastic.density_kg_per_m3,
+        notes=("bond inside the cap over a joint",),
+    )
+    return (strip,)
