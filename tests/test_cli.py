@@ -1,0 +1,436 @@
+"""The command line: what goes to which stream, and each exit status. The sizing is stood in for by the sample feed."""
+
+from __future__ import annotations
+
+import io
+import json
+import os
+import subprocess
+import sys
+import types
+from collections.abc import Callable
+from dataclasses import replace
+from pathlib import Path
+
+import pytest
+
+from fabgen import __version__, cli, commands
+from fabgen.checks.records import Finding
+from fabgen.cli import build_parser, main
+from fabgen.errors import FabgenError, NoSolutionError, NotCoveredError, NumericalError
+from fabgen.job_reader import parse_job
+from fabgen.sizing.records import SelfCheck
+from fabgen.start import ask_job, templates, with_value
+from tests.samples import sample_feed
+
+ROOT = Path(__file__).parent.parent
+JOB = str(ROOT / "templates" / "hydrogen-wire.toml")
+Sizing = Callable[[object, object], object]
+
+
+@pytest.fixture(autouse=True)
+def _no_cache(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setenv("FABGEN_CACHE", "")
+
+
+@pytest.fixture
+def sizing(monkeypatch: pytest.MonkeyPatch) -> Callable[[Sizing], None]:
+    """Puts a function in the place of the sizing."""
+
+    def put(function: Sizing) -> None:
+        module = types.SimpleNamespace(size_feed=function)
+        monkeypatch.setitem(sys.modules, "fabgen.sizing.size_feed", module)  # type: ignore[arg-type]
+
+    put(lambda job, progress: sample_feed())
+    return put
+
+
+@pytest.fixture
+def findings(monkeypatch: pytest.MonkeyPatch) -> Callable[[list[Finding]], None]:
+    """Puts a list in the place of the checks' findings."""
+
+    def put(found: list[Finding]) -> None:
+        monkeypatch.setattr("fabgen.pack.build_content", lambda feed: ((), tuple(found)))
+
+    put([])
+    return put
+
+
+def a_finding(severity: str, code: str = "SHEET-101") -> Finding:
+    return Finding(code, severity, "loop", "bend", "0.8 mm", "1.5 mm", "a table", "radius too small", "use 1.5 mm")  # type: ignore[arg-type]
+
+
+def raising(error: BaseException) -> Sizing:
+    def function(job: object, progress: object) -> object:
+        raise error
+
+    return function
+
+
+def test_help_names_every_command_and_status(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["--help"]) == 0
+    text = capsys.readouterr().out
+    for word in ("start", "size", "check", "pack", "stock", "exit status", "130"):
+        assert word in text
+
+
+def test_version(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["--version"]) == 0
+    assert capsys.readouterr().out == f"fabgen {__version__}\n"
+
+
+@pytest.mark.parametrize(
+    "words", [[], ["size"], ["pack", JOB], ["nonsense"], ["size", JOB, "--jsno"], ["pack", JOB, "-o"]]
+)
+def test_a_wrong_command_is_status_2(words: list[str], capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(words) == 2
+    captured = capsys.readouterr()
+    assert captured.out == ""
+    assert "usage: fabgen" in captured.err
+
+
+def test_size_prints_a_table(sizing: object, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["size", JOB, "--quiet"]) == 0
+    captured = capsys.readouterr()
+    assert captured.err == ""
+    for word in ("can bore", "loop diameter", "return loss", "aperture efficiency", "phase centre", "pF", " in"):
+        assert word in captured.out
+    assert "\x1b[" not in captured.out
+
+
+def test_size_json_is_the_record(sizing: object, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["size", JOB, "--json", "--plain"]) == 0
+    record = json.loads(capsys.readouterr().out)
+    assert record["fabgen_version"] == __version__
+    assert record["sizes"]["conductor"] == "wire"
+    assert record["files"] == {}
+
+
+@pytest.mark.parametrize(
+    ("found", "options", "status"),
+    [([], [], 0), (["note"], [], 0), (["caution"], [], 0), (["caution"], ["--strict"], 4), (["stop", "note"], [], 4)],
+)
+def test_check_ends_by_the_worst(
+    sizing: object,
+    findings: Callable[[list[Finding]], None],
+    capsys: pytest.CaptureFixture[str],
+    found: list[str],
+    options: list[str],
+    status: int,
+) -> None:
+    findings([a_finding(severity) for severity in found])
+    assert main(["check", JOB, "--quiet", *options]) == status
+    text = capsys.readouterr().out
+    assert f"{len(found)} findings" in text
+    assert ("what to do: use 1.5 mm" in text) == bool(found)
+    assert main(["check", JOB, "--quiet", "--json", *options]) == status
+    assert [row["severity"] for row in json.loads(capsys.readouterr().out)] == found
+
+
+def test_a_stop_finding_blocks_the_pack_unless_named(
+    sizing: object, findings: Callable[[list[Finding]], None], tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    findings([a_finding("stop")])
+    target = tmp_path / "pack"
+    assert main(["pack", JOB, "-o", str(target), "--quiet"]) == 4
+    message = capsys.readouterr().err
+    for word in ("SHEET-101 loop: radius too small; use 1.5 mm", "--despite SHEET-101"):
+        assert word in message
+    assert not list(tmp_path.iterdir())
+    only = ["--only", "tables", "--quiet"]
+    assert main(["pack", JOB, "-o", str(target), *only, "--despite", "SHEET-999"]) == 4
+    assert main(["pack", JOB, "-o", str(target), *only, "--despite", "SHEET-101"]) == 0
+    assert "WRITTEN DESPITE 1 STOP" in capsys.readouterr().out
+    record = json.loads((target / "record.json").read_text(encoding="utf-8"))
+    assert record["despite"] == ["SHEET-101"]
+
+
+def test_only_some_groups(sizing: object, findings: object, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    target = tmp_path / "Päck für Øyvind"
+    assert main(["pack", JOB, "-o", str(target), "--only", "tables", "--plain"]) == 0
+    names = sorted(path.name for path in target.iterdir())
+    assert names == ["findings.csv", "parts.csv", "pattern.csv", "predicted.s1p", "record.json"]
+    captured = capsys.readouterr()
+    assert "5 files, return loss 32.0 dB at 1420.41 MHz" in captured.out
+    assert "writing parts list" in captured.err
+
+
+def test_unknown_group(sizing: object, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["pack", JOB, "-o", str(tmp_path / "pack"), "--only", "tabels"]) == 2
+    assert "allowed: tables, bend, cut, order, model, print, sheets" in capsys.readouterr().err
+
+
+def test_a_used_folder_is_refused_before_anything_is_computed(
+    sizing: Callable[[Sizing], None], tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    sizing(raising(AssertionError("was computed")))
+    (tmp_path / "mine.txt").write_text("x", encoding="utf-8")
+    assert main(["pack", JOB, "-o", str(tmp_path)]) == 5
+    assert "not empty and not a fabgen pack" in capsys.readouterr().err
+
+
+def test_a_failed_self_check_stops_the_pack(
+    sizing: Callable[[Sizing], None], findings: object, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    failed = SelfCheck("power balance", 0.08, 0.005, False, "radiated against input power")
+    sizing(lambda job, progress: replace(sample_feed(), self_checks=(failed,)))
+    assert main(["pack", JOB, "-o", str(tmp_path / "pack"), "--quiet"]) == 6
+    assert "power balance: 0.08, limit 0.005 (radiated against input power)" in capsys.readouterr().err
+    assert not list(tmp_path.iterdir())
+
+
+@pytest.mark.parametrize(
+    ("error", "status", "words"),
+    [
+        (NoSolutionError("no bore fits; nearest: 200 mm"), 3, "no bore fits; nearest: 200 mm"),
+        (NumericalError("residual 1 above 1e-6"), 6, "residual"),
+        (NotCoveredError("a spiral can is not built"), 7, "spiral"),
+        (FabgenError("something"), 1, "something"),
+        (MemoryError(), 9, "not enough memory"),
+        (KeyboardInterrupt(), 130, "stopped; nothing was written"),
+        (cli._EndedError(), 143, "ended from outside"),
+        (OSError(28, "No space left on device"), 5, "the system refused: No space left on device"),
+        (ImportError("libGL.so.1: cannot open shared object file"), 1, "install it: apt-get install libgl1"),
+        (ImportError("libodd.so.7: cannot open"), 1, "install the system package that holds it"),
+        (ImportError("No module named 'scipy'"), 1, "Install fabgen again"),
+        (ZeroDivisionError("float division by zero"), 1, "a fault in fabgen itself: ZeroDivisionError in test_cli.py"),
+    ],
+)
+def test_every_end_has_its_status_and_message(
+    sizing: Callable[[Sizing], None],
+    capsys: pytest.CaptureFixture[str],
+    error: BaseException,
+    status: int,
+    words: str,
+) -> None:
+    sizing(raising(error))
+    assert main(["size", JOB, "--quiet"]) == status
+    captured = capsys.readouterr()
+    assert words in captured.err
+    assert captured.err.startswith("fabgen: ")
+    assert "Traceback" not in captured.err
+    assert captured.out == ""
+
+
+def test_every_documented_status_is_an_error_class() -> None:
+    statuses = {cls.exit_status for cls in FabgenError.__subclasses__()} | {1}
+    for status in statuses:
+        assert f"  {status}  " in cli.EXIT_STATUSES
+
+
+def test_debug_shows_the_trace_of_a_fault(sizing: Callable[[Sizing], None]) -> None:
+    sizing(raising(ZeroDivisionError("x")))
+    with pytest.raises(ZeroDivisionError):
+        main(["size", JOB, "--debug", "--quiet"])
+
+
+def test_time_limit(sizing: Callable[[Sizing], None], capsys: pytest.CaptureFixture[str]) -> None:
+    def forever(job: object, progress: object) -> object:
+        while True:
+            pass
+
+    sizing(forever)
+    assert main(["size", JOB, "--quiet", "--time-limit", "0.1"]) == 8
+    assert "the time limit of 0.1 s has passed" in capsys.readouterr().err
+
+
+@pytest.mark.parametrize("value", ["0", "-1", "nan", "inf"])
+def test_a_time_limit_without_meaning(sizing: object, value: str, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["size", JOB, f"--time-limit={value}"]) == 2
+    assert "allowed: more than 0" in capsys.readouterr().err
+
+
+def test_too_little_memory_is_said_first(
+    sizing: object, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.setattr("fabgen.resources.memory_mib", lambda: {"the limit set by ulimit": 1024})
+    assert main(["size", JOB, "--quiet"]) == 9
+    assert "the limit set by ulimit is 1024 MiB; the field computation and the solids need" in capsys.readouterr().err
+
+
+def test_stock(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["stock"]) == 0
+    everything = capsys.readouterr().out
+    assert everything.count("source: ") > 60
+    assert main(["stock", "metals", "brass"]) == 0
+    brass = capsys.readouterr().out
+    assert "cuzn37" in brass
+    assert "cu-etp" not in brass
+    assert main(["stock", "screw", "--json"]) == 0
+    rows = json.loads(capsys.readouterr().out)["screw"]
+    assert "M4" in {row["key"] for row in rows}
+    assert all(row["source"]["text"] for row in rows)
+    assert main(["stock", "unobtainium"]) == 2
+    assert "no stock row holds 'unobtainium'; kinds: metal," in capsys.readouterr().err
+
+
+def test_own_stock_rows(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    from fabgen.stock.tables import forget_user_rows
+
+    shipped = (ROOT / "fabgen" / "stock" / "linings.toml").read_text(encoding="utf-8")
+    row = "[[lining]]" + shipped.split("[[lining]]")[1].replace('"copper-foil-35"', '"my-foil"')
+    own = tmp_path / "own.toml"
+    own.write_text(row, encoding="utf-8")
+    try:
+        assert main(["stock", "lining", "--stock", str(own)]) == 0
+        assert "my-foil" in capsys.readouterr().out
+    finally:
+        forget_user_rows()
+    own.write_text("[[lining]]\nkey = 1\n", encoding="utf-8")
+    assert main(["stock", "--stock", str(own)]) == 2
+
+
+def test_start_lists_and_writes(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    monkeypatch.chdir(tmp_path)
+    assert main(["start", "--list"]) == 0
+    assert len(capsys.readouterr().out.splitlines()) == len(templates()) == 8
+    assert main(["start", "hydroxyl-choke"]) == 0
+    text = Path("hydroxyl-choke.toml").read_text(encoding="utf-8")
+    assert parse_job(text).can.choke is True
+    assert main(["start", "hydroxyl-choke"]) == 5
+    assert "exists already and is not overwritten" in capsys.readouterr().err
+    assert main(["start", "hydroxil"]) == 2
+    assert "did you mean 'hydroxyl-choke'?" in capsys.readouterr().err
+    assert main(["start", "hydrogen-wire", "-o", "no/such/job.toml"]) == 5
+    assert main(["start", "-o", "job.toml"]) == 0
+    assert Path("job.toml").exists()
+
+
+def test_start_asks_nothing_without_a_terminal(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("builtins.input", raising(AssertionError("asked")))
+    monkeypatch.setattr(sys, "stdin", io.StringIO())
+    assert main(["start"]) == 0
+
+
+def test_the_questions_take_units_and_explain() -> None:
+    answers = [
+        "12 MHz",
+        "1.296 GHz",
+        "3",
+        "10 ft, 0.38",
+        "wood 3",
+        "sheet 1.5 mm",
+        "cast",
+        "tube",
+        "160 mm",
+        "smaa",
+        "n-4",
+    ]
+    said: list[str] = []
+    queue = iter(answers)
+    job = parse_job(ask_job(lambda question: next(queue), said.append))
+    assert job.target.frequency_mhz == 1296
+    assert job.dish.diameter_m == pytest.approx(3.048)
+    assert (job.loop.form, job.loop.sheet_mm) == ("sheet", 1.5)
+    assert (job.can.make, job.fixed.can_bore_mm) == ("tube", 160)
+    assert job.cable.connector == "n-4"
+    assert sum("allowed" in line.lower() or "write" in line for line in said) >= 5
+
+
+def test_the_questions_have_answers_of_their_own() -> None:
+    job = parse_job(ask_job(lambda question: "", lambda line: None))
+    assert job.target.frequency_mhz == 1420.406
+    assert job.loop.wire_mm == 4.0
+
+
+def test_a_key_is_set_or_added() -> None:
+    text = "[a]\nx = 1  # one\ny = 2\n[b]\nx = 3\n"
+    assert with_value(text, "b", "x", "4") == "[a]\nx = 1  # one\ny = 2\n[b]\nx = 4\n"
+    assert "x = 5  # one" in with_value(text, "a", "x", "5")
+    assert with_value(text, "b", "z", "6").endswith("[b]\nz = 6\nx = 3\n")
+    assert with_value(text, "c", "z", "7").endswith("\n[c]\nz = 7\n")
+
+
+@pytest.mark.parametrize("shell", ["bash", "zsh", "fish"])
+def test_completion_knows_every_option(shell: str, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["--completion", shell]) == 0
+    script = capsys.readouterr().out
+    for word in ("start", "pack", "time-limit", "despite", "hydrogen-wire", "metal", "sheets"):
+        assert word in script
+
+
+def test_bash_completes() -> None:
+    script = subprocess.run(
+        [sys.executable, "-m", "fabgen", "--completion", "bash"], capture_output=True, text=True, check=True, cwd=ROOT
+    ).stdout
+    ask = 'COMP_WORDS=(fabgen pack --des); COMP_CWORD=2; _fabgen; echo "${COMPREPLY[@]}"'
+    answer = subprocess.run(["bash", "-c", script + ask], capture_output=True, text=True, check=True).stdout
+    assert answer == "--despite\n"
+
+
+def test_groups_of_the_parser_are_those_of_the_pack() -> None:
+    from fabgen.pack import GROUPS
+
+    assert tuple(GROUPS) == cli._GROUPS
+    assert set(commands.COMMANDS) == {"start", "size", "check", "pack", "stock"}
+    assert build_parser().prog == "fabgen"
+
+
+class _Terminal(io.StringIO):
+    def isatty(self) -> bool:
+        return True
+
+
+@pytest.mark.parametrize(("variable", "coloured"), [("", True), ("NO_COLOR", False)])
+def test_colour_only_on_a_terminal_and_not_with_no_color(
+    sizing: object,
+    findings: Callable[[list[Finding]], None],
+    monkeypatch: pytest.MonkeyPatch,
+    variable: str,
+    coloured: bool,
+) -> None:
+    findings([a_finding("stop")])
+    monkeypatch.delenv("NO_COLOR", raising=False)
+    monkeypatch.setenv("TERM", "xterm")
+    if variable:
+        monkeypatch.setenv(variable, "1")
+    stream = _Terminal()
+    monkeypatch.setattr(sys, "stdout", stream)
+    main(["check", JOB, "--quiet"])
+    assert ("\x1b[31m" in stream.getvalue()) == coloured
+
+
+def test_a_bar_is_drawn_on_a_terminal_and_goes_away() -> None:
+    from fabgen.progress import open_display
+
+    stream = _Terminal()
+    with open_display(quiet=False, plain=False, colour=False, stream=stream) as display:
+        display.step("searching the can")
+        display.share(1, 2)
+        display.step("searching the loop")
+    assert "searching the loop" in stream.getvalue()
+
+
+def run(*words: str, **environment: str) -> subprocess.CompletedProcess[str]:
+    return subprocess.run(
+        [sys.executable, "-m", "fabgen", *words],
+        capture_output=True, text=True, cwd=ROOT, env={**os.environ, **environment}, check=False,
+    )  # fmt: skip
+
+
+@pytest.mark.parametrize("words", [["--help"], ["stock"], ["size", "none.toml"], ["start", "--list"]])
+def test_short_answers_load_no_heavy_package(words: list[str]) -> None:
+    heavy = ["numpy", "scipy", "cadquery", "OCP", "netgen", "ezdxf", "shapely", "reportlab", "matplotlib", "numba"]
+    code = (
+        "import sys; from fabgen.cli import main; main(sys.argv[1:]); "
+        f"sys.stderr.write('LOADED ' + ' '.join(m for m in {heavy!r} if m in sys.modules))"
+    )
+    result = subprocess.run([sys.executable, "-c", code, *words], capture_output=True, text=True, cwd=ROOT, check=False)
+    assert result.stderr.endswith("LOADED ")
+
+
+def test_a_reader_that_goes_away_is_no_error() -> None:
+    command = f"{sys.executable} -m fabgen stock | head -n 1; echo ${{PIPESTATUS[0]}}"
+    result = subprocess.run(["bash", "-c", command], capture_output=True, text=True, cwd=ROOT, check=False)
+    assert result.stdout.splitlines()[-1] == "0"
+    assert result.stderr == ""
+
+
+def test_a_full_standard_output_is_said() -> None:
+    command = f"{sys.executable} -m fabgen stock > /dev/full"
+    result = subprocess.run(["bash", "-c", command], capture_output=True, text=True, cwd=ROOT, check=False)
+    assert result.returncode == 5
+    assert "No space left" in result.stderr
+    assert "Traceback" not in result.stderr
