@@ -21,7 +21,7 @@ class Temper:
     """A temper of a metal.
 
     ``bend_ratio`` rows: (thickness up to mm, least inside radius / thickness at 90 degrees), fold line across the
-    rolling direction; ``mandrel_ratio``: least mandrel / wire diameter.
+    rolling direction; ``mandrel_ratio``: least inside radius / diameter of round wire.
     """
 
     key: str

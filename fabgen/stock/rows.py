@@ -6,6 +6,7 @@ Depends on: errors, stock records.
 from __future__ import annotations
 
 import math
+import re
 from dataclasses import MISSING, fields
 from typing import Any, get_type_hints
 
@@ -15,6 +16,7 @@ from fabgen.stock.records import Source, Temper
 
 # All other figures of a row must be above zero.
 MAY_BE_ZERO = frozenset({"mandrel_ratio", "adhesive_mm", "anodic_index_v", "swelling_percent", "value"})
+_ROW_ID = re.compile(r"(?:, )?\b(?:SK|SB|WB|TO|CN|EM|FR|RX|PR|SA)-\d\d(?:\.\.(?:[A-Z]{2}-)?\d\d)?")
 
 
 def build_row(record: type, raw: Any, where: str) -> Any:
@@ -46,7 +48,15 @@ def _source(raw: dict[str, Any], place: str) -> Source:
     for name in ("source", "known_from"):
         if not isinstance(raw.get(name), str) or not raw[name].strip():
             raise JobError(f"{place}: give '{name}': where the figures come from and how they are known")
-    return Source(raw["source"], raw["known_from"])
+    return Source(without_row_ids(raw["source"]), raw["known_from"])
+
+
+def without_row_ids(text: str) -> str:
+    """The text without ids of the tests' reference table (like ``SB-24``), which readers do not have."""
+    text = _ROW_ID.sub("", text)
+    text = re.sub(r"\(\s*[,;]\s*", "(", text)
+    text = re.sub(r"\s*[,;]\s*\)", ")", text)
+    return re.sub(r"\s*\(\s*\)", "", text)
 
 
 def _value(name: str, hint: Any, value: Any, place: str) -> Any:

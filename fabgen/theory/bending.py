@@ -27,11 +27,11 @@ HANDBOOK_Y = {0.35: 0.55, 0.41: 0.64, 0.45: 0.71}
 def din_k(inside_radius_mm: float, thickness_mm: float) -> float:
     """Correction k of DIN 6935: 0.65 + 0.5 log10(r/s) up to r/s = 5, then 1. It multiplies s/2.
 
-    Raises JobError under r/s = 0.1, where the formula has no meaning."""
+    Raises JobError under r/s = 0.06, where the formula would put the neutral line outside the sheet."""
     require_positive(inside_radius_mm=inside_radius_mm, thickness_mm=thickness_mm)
     ratio = inside_radius_mm / thickness_mm
-    if ratio < 0.1:
-        raise JobError(f"inside radius {inside_radius_mm:g} mm in {thickness_mm:g} mm sheet: give 0.1 t or more")
+    if ratio < 0.06:
+        raise JobError(f"inside radius {inside_radius_mm:g} mm in {thickness_mm:g} mm sheet: give 0.06 t or more")
     return 1.0 if ratio > 5 else 0.65 + 0.5 * math.log10(ratio)
 
 
