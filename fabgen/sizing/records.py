@@ -84,11 +84,15 @@ class PatternCut:
 
 @dataclass(frozen=True)
 class Response:
-    """Reflection after the series capacitor over the sweep, one complex number per frequency."""
+    """Reflection after the series capacitor over the sweep, one complex number per frequency; widths of the
+    pattern (E-plane, H-plane; 360 where it never falls to half) at the frequencies where it was computed."""
 
     frequency_mhz: tuple[float, ...]
     reflection: tuple[complex, ...]
     gain_dbi: tuple[float, ...]
+    width_frequency_mhz: tuple[float, ...] = ()
+    half_power_beamwidth_e_deg: tuple[float, ...] = ()
+    half_power_beamwidth_h_deg: tuple[float, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -212,6 +216,17 @@ class Settings:
 
 
 @dataclass(frozen=True)
+class CanTrial:
+    """One can of the search with what it does in the dish; ``merit`` is what the goal raises."""
+
+    bore_mm: float
+    depth_mm: float
+    aperture_efficiency: float
+    g_over_t_db_per_k: float
+    merit: float
+
+
+@dataclass(frozen=True)
 class Feed:
     """A sized feed: the job, every size, what it will do, and how sure that is."""
 
@@ -225,3 +240,4 @@ class Feed:
     self_checks: tuple[SelfCheck, ...]
     settings: Settings
     remarks: tuple[str, ...]
+    can_trials: tuple[CanTrial, ...] = ()

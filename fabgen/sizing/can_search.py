@@ -1,0 +1,206 @@
+"""Bore and depth of the can (and the choke) from the dish.
+
+A table of cans that were best for a row of half angles starts the search; a parabola through three bores, then
+through three depths, computed with the job's own loop, finds the best one nearby.
+
+Depends on: errors, job, sizing.can_start, sizing.evaluate, sizing.rounding, sizing.solver,
+sizing.trial.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, replace
+
+from fabgen.errors import JobError, NoSolutionError
+from fabgen.job import Choke, Job
+from fabgen.progress import Progress
+from fabgen.sizing.can_start import start_can, start_choke
+from fabgen.sizing.dish import half_angle_rad
+from fabgen.sizing.evaluate import in_dish
+from fabgen.sizing.layout import LoopStock
+from fabgen.sizing.match import SolveSizes
+from fabgen.sizing.records import CanTrial, ChokeSizes
+from fabgen.sizing.rounding import round_to
+from fabgen.sizing.trial import WALL_MM, CanShape, FrontPlace, Setting, first_sizes
+from fabgen.theory.waveguide import cutoff_bore_mm
+
+BORE_STEP = 0.04
+DEPTH_STEP = 0.12
+CUTOFF_MARGIN = 1.05
+PRINT_FLANGE_MM = 2 * 14.0
+SEAM_MM = 15.0
+
+
+@dataclass(frozen=True)
+class CanFound:
+    """The can chosen, and every can that was computed on the way."""
+
+    can: CanShape
+    trials: tuple[CanTrial, ...]
+    remarks: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class BoreRange:
+    """Smallest and largest bore, and what sets the upper limit."""
+
+    low_mm: float
+    high_mm: float
+    reason: str
+
+
+def _cutoff_bore_mm(job: Job) -> float:
+    return cutoff_bore_mm("TE11", job.target.frequency_mhz)
+
+
+def bore_range(job: Job) -> BoreRange:
+    """Bore from the TE11 cut-off with a margin, up to what the stock or the printer's bed can make."""
+    low = CUTOFF_MARGIN * _cutoff_bore_mm(job)
+    wall = job.can.wall_mm or WALL_MM[job.can.make]
+    if job.can.make == "printed":
+        flange = 0.0 if job.can.flange.pattern == "none" else PRINT_FLANGE_MM
+        high = min(job.limits.bed_mm[:2]) - 2 * wall - flange
+        reason = f"the printer's bed of {job.limits.bed_mm[0]:g} x {job.limits.bed_mm[1]:g} mm"
+    elif job.can.make in ("rolled", "folded"):
+        high = (max(job.limits.sheet_mm) - SEAM_MM) / math.pi - wall
+        reason = f"sheet of {max(job.limits.sheet_mm):g} mm length for the wall"
+    else:
+        return BoreRange(low, 2.0 * job.wavelength_mm, "two wavelengths")
+    if high < low:
+        raise NoSolutionError(
+            f"{reason} allows a bore of {high:.0f} mm, but below {low:.0f} mm the can is cut off at "
+            f"{job.target.frequency_mhz:g} MHz; use a larger bed or sheet, or another make of can"
+        )
+    return BoreRange(low, high, reason)
+
+
+def find_can(
+    job: Job, stock: LoopStock, place: FrontPlace, solve: SolveSizes, progress: Progress
+) -> CanFound:
+    """The can for the job. Sizes that the job fixes are kept exactly; what is left is searched."""
+    search = _Search(job, stock, place, solve, progress)
+    can = search.start()
+    if job.fixed.can_bore_mm is None:
+        can = search.along(can, "bore_mm", BORE_STEP)
+    if job.fixed.can_depth_mm is None:
+        can = search.along(can, "depth_mm", DEPTH_STEP)
+    return CanFound(can, tuple(search.trials), tuple(search.remarks))
+
+
+class _Search:
+    """Coordinate search that remembers what it has computed."""
+
+    def __init__(
+        self,
+        job: Job,
+        stock: LoopStock,
+        place: FrontPlace,
+        solve: SolveSizes,
+        progress: Progress,
+    ) -> None:
+        self.job, self.stock, self.place = job, stock, place
+        self.solve, self.progress = solve, progress
+        self.trials: list[CanTrial] = []
+        self.remarks: list[str] = []
+        fixed = job.fixed.can_bore_mm
+        self.range = BoreRange(fixed, fixed, "the job") if fixed else bore_range(job)
+        if fixed and fixed <= _cutoff_bore_mm(job):
+            raise NoSolutionError(
+                f"fixed.can_bore_mm is {fixed:g} mm: TE11 is cut off below "
+                f"{_cutoff_bore_mm(job):.1f} mm at {job.target.frequency_mhz:g} MHz; "
+                f"use a bore of at least {CUTOFF_MARGIN * _cutoff_bore_mm(job):.1f} mm"
+            )
+
+    def start(self) -> CanShape:
+        job, wavelength, step = self.job, self.job.wavelength_mm, self.job.limits.resolution_mm
+        angle = math.degrees(half_angle_rad(job.dish.focal_ratio))
+        ratio = start_can(angle, job.wishes.goal, choke=bool(job.can.choke))
+        wanted = ratio.bore * wavelength
+        bore = job.fixed.can_bore_mm or self.clip(round_to(wanted, step))
+        if job.fixed.can_bore_mm is None and wanted > self.range.high_mm:
+            self.remarks.append(
+                f"The dish asks for a bore of about {wanted:.0f} mm; {self.range.reason} limits it to {bore:.0f} mm."
+            )
+        depth = job.fixed.can_depth_mm or round_to(ratio.depth * wavelength, step)
+        return self.with_choke(CanShape(bore, depth))
+
+    def clip(self, bore_mm: float) -> float:
+        step = self.job.limits.resolution_mm
+        low, high = math.ceil(self.range.low_mm / step) * step, math.floor(self.range.high_mm / step) * step
+        return round_to(min(max(bore_mm, low), high), step) if low < high else bore_mm
+
+    def with_choke(self, can: CanShape) -> CanShape:
+        """The same can with the choke that goes with its sizes; sizes given in the job are kept."""
+        asked = self.job.can.choke
+        if not asked:
+            return replace(can, choke=None)
+        given = asked if isinstance(asked, Choke) else Choke()
+        return replace(can, choke=choke_for(self.job, given, can))
+
+    def along(self, can: CanShape, name: str, step: float) -> CanShape:
+        """The best of three values of one size and of the top of the parabola through them."""
+        size: float = getattr(can, name)
+        points = [(x, self.merit(self.moved(can, name, x))) for x in (size, size * (1 - step), size * (1 + step))]
+        best = parabola_top(points)
+        found = self.moved(can, name, best)
+        value: float = getattr(found, name)
+        if all(abs(value - x) > 0.25 * step * size for x, _ in points):
+            points.append((value, self.merit(found)))
+            return self.moved(can, name, max(points, key=lambda p: p[1])[0])
+        return found
+
+    def moved(self, can: CanShape, name: str, value: float) -> CanShape:
+        rounded = round_to(value, self.job.limits.resolution_mm)
+        if name == "bore_mm":
+            return self.with_choke(replace(can, bore_mm=self.clip(rounded)))
+        return self.with_choke(replace(can, depth_mm=rounded))
+
+    def merit(self, can: CanShape) -> float:
+        for known in self.trials:
+            if (known.bore_mm, known.depth_mm) == (can.bore_mm, can.depth_mm):
+                return known.merit
+        self.progress.step(f"searching the can: bore {can.bore_mm:.1f} mm, depth {can.depth_mm:.1f} mm")
+        solution = self.solve(first_sizes(Setting(self.job, self.stock, can), self.place))
+        figures = in_dish(self.job, solution)
+        merit = figures.merit(self.job.wishes.goal)
+        self.trials.append(
+            CanTrial(
+                can.bore_mm, can.depth_mm, figures.dish.aperture_efficiency, figures.noise.g_over_t_db_per_k, merit
+            )
+        )
+        return merit
+
+
+def parabola_top(points: list[tuple[float, float]]) -> float:
+    """Abscissa of the top of the parabola through three points, kept inside their span widened by half; the best
+    of the points where it opens upwards."""
+    (x0, y0), (x1, y1), (x2, y2) = points
+    best = max(points, key=lambda p: p[1])[0]
+    if len({x0, x1, x2}) < 3:
+        return best
+    d1, d2 = (y1 - y0) / (x1 - x0), (y2 - y0) / (x2 - x0)
+    curvature = (d2 - d1) / (x2 - x1)
+    if curvature >= 0:
+        return best
+    top = x0 - (d1 - curvature * (x1 - x0)) / (2 * curvature)
+    low, high = min(x0, x1, x2), max(x0, x1, x2)
+    margin = 0.5 * (high - low)
+    return min(max(top, low - margin), high + margin)
+
+
+def choke_for(job: Job, given: Choke, can: CanShape) -> ChokeSizes:
+    """The choke's sizes: what the job gives, the rest from the starting table."""
+    step, wavelength = job.limits.resolution_mm, job.wavelength_mm
+    wall = job.can.wall_mm or WALL_MM[job.can.make]
+    ratio = start_choke(math.degrees(half_angle_rad(job.dish.focal_ratio)), job.wishes.goal)
+    bore = given.bore_mm or round_to(can.bore_mm + 2 * (wall + ratio.gap * wavelength), step)
+    depth = given.depth_mm or round_to(ratio.depth * wavelength, step)
+    floor = given.floor_z_mm
+    if floor is None:
+        floor = max(0.0, round_to(can.depth_mm - ratio.set_back * wavelength - depth, step))
+    if bore <= can.bore_mm + 2 * wall:
+        raise JobError(
+            f"can.choke.bore_mm is {bore:g} mm; it must clear the can's outside of {can.bore_mm + 2 * wall:g} mm"
+        )
+    return ChokeSizes(bore_mm=bore, depth_mm=depth, floor_z_mm=floor)

@@ -1,0 +1,97 @@
+"""The selectivity front: rejection of the neighbours against efficiency, each point matched.
+
+Depends on: job, sizing.counting, sizing.evaluate, sizing.loop_search, sizing.match, sizing.wishes.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from fabgen.errors import GeometryError, NoSolutionError
+from fabgen.job import Job
+from fabgen.progress import Progress, Silent
+from fabgen.sizing.can_search import find_can
+from fabgen.sizing.counting import CountingSolver
+from fabgen.sizing.evaluate import in_dish
+from fabgen.sizing.layout import loop_stock
+from fabgen.sizing.loop_search import NAMED, match_at
+from fabgen.sizing.match import return_loss_db
+from fabgen.sizing.records import Sizes
+from fabgen.sizing.solver import Solution, Solver
+from fabgen.sizing.trial import Setting, front_place
+from fabgen.sizing.wishes import relative_gain_db
+
+POINTS = 9
+DEFAULT_NEIGHBOURS = (0.634, 0.915)
+"""Ratios to the target where a job names no neighbour: 900 and 1300 MHz for the hydrogen line."""
+
+
+@dataclass(frozen=True)
+class FrontPoint:
+    """One matched loop of the front. ``rejection_db``: gain at each neighbour relative to the target, dB."""
+
+    share: float
+    sizes: Sizes
+    neighbour_mhz: tuple[float, ...]
+    rejection_db: tuple[float, ...]
+    aperture_efficiency: float
+    g_over_t_db_per_k: float
+    return_loss_db: float
+
+
+@dataclass(frozen=True)
+class Front:
+    """The points that could be matched, sharp first, and what stood against the others."""
+
+    points: tuple[FrontPoint, ...]
+    refused: tuple[str, ...]
+
+
+def selectivity_front(
+    job: Job, solver: Solver, progress: Progress | None = None, points: int = POINTS
+) -> Front:
+    """Walk from sharp to broad in ``points`` places, with the can found for the job's own wish kept.
+
+    Raises ``NoSolutionError`` when no place can be matched.
+    """
+    tell = progress or Silent()
+    counting, target = CountingSolver(solver), job.target.frequency_mhz
+
+    def solve(sizes: Sizes) -> Solution:
+        return counting.solve(sizes, target)
+
+    stock = loop_stock(job)
+    can = find_can(job, stock, front_place(NAMED[job.wishes.selectivity]), solve, tell).can
+    setting = Setting(job, stock, can)
+    found: list[FrontPoint] = []
+    refused: list[str] = []
+    for i in range(points):
+        place = front_place(i / (points - 1))
+        tell.step(f"front: circumference {place.circumference:.3f}, height {place.height:.3f} wavelengths")
+        tell.share(i, points)
+        try:
+            matched = match_at(setting, place, solve, found[-1].sizes.tap_height_mm if found else None)
+        except (NoSolutionError, GeometryError) as error:
+            refused.append(f"place {place.share:.2f}: {error}")
+            continue
+        neighbours = _neighbours(job)
+        figures = in_dish(job, matched.solution)
+        found.append(
+            FrontPoint(
+                share=place.share,
+                sizes=matched.sizes,
+                neighbour_mhz=neighbours,
+                rejection_db=tuple(relative_gain_db(counting, matched, target, f) for f in neighbours),
+                aperture_efficiency=figures.dish.aperture_efficiency,
+                g_over_t_db_per_k=figures.noise.g_over_t_db_per_k,
+                return_loss_db=return_loss_db(matched.reflection(target)),
+            )
+        )
+    if not found:
+        raise NoSolutionError(f"no point of the front can be matched; first: {refused[0]}")
+    return Front(tuple(found), tuple(refused))
+
+
+def _neighbours(job: Job) -> tuple[float, ...]:
+    named = tuple(n.frequency_mhz for n in job.wishes.neighbours)
+    return named or tuple(round(r * job.target.frequency_mhz, 1) for r in DEFAULT_NEIGHBOURS)

@@ -1,0 +1,166 @@
+"""Where loop, bars and crossing lie, from the stock and the loop's diameter: the one place that derives them.
+
+        bar of the wire loop, seen along the tangent plane          sheet loop, seen along y
+                                                             ring      r  tab
+        ---- loop arc ----.  r_b                          ==========.___,
+                           )                                         |  leg_x = edge -+ relief -+ r -+ t/2
+                           |  bar at leg_x                           |
+
+Depends on: errors, job, stock, sizing.capacitor_part, sizing.rounding.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+from fabgen.errors import JobError, NoSolutionError
+from fabgen.job import Job
+from fabgen.sizing.capacitor_part import sleeve_tube_mm
+from fabgen.sizing.rounding import round_to
+from fabgen.stock import tables
+from fabgen.stock.records import Coax, Metal
+from fabgen.theory.bending import min_inside_radius_mm
+
+STRIP_WIDTH_WAVELENGTHS = 0.034
+BAR_GAP_WAVELENGTHS = 0.038
+CROSSING_LIMIT_WAVELENGTHS = 0.03
+WIRE_AXIS_RADIUS_RATIO = 1.5
+FOLD_RELIEF_MM = 1.0
+FOOT_MM = 13.0
+"""Room for a folded foot with its screw beside the connector's flange. Common practice, no source."""
+BEND_ROOM_MM = 1.5
+PLATE_WAVELENGTHS = 0.018
+LEAST_PLATE_MM = 1.0
+LEAST_FOOT_SCREW = "M2"
+
+
+@dataclass(frozen=True)
+class LoopStock:
+    """What the loop is made of, in sizes that do not change during the search."""
+
+    wire_mm: float | None
+    sheet_mm: float | None
+    strip_width_mm: float | None
+    leg_width_mm: float
+    leg_pitch_mm: float
+    leg_bend_radius_mm: float
+    crossing_width_mm: float
+
+
+@dataclass(frozen=True)
+class LegPlace:
+    """Where the bars stand, and for a sheet loop on which side of the ring's band."""
+
+    leg_x_mm: float
+    tabs: str | None
+
+
+def inside_bend_radius_mm(metal: Metal, temper: str | None, thickness_mm: float) -> float:
+    """Smallest inside bend radius of the temper's table row for this thickness, mm."""
+    return min_inside_radius_mm(tables.temper(metal, temper), thickness_mm)
+
+
+def loop_stock(job: Job) -> LoopStock:
+    """Widths, pitch and bend radius from the job and the stock tables, rounded to the shop's resolution.
+
+    ``loop.bend_radius_mm`` of the job is the inside radius; a wire's own default puts the axis on 1.5 diameters.
+    """
+    wavelength, step = job.wavelength_mm, job.limits.resolution_mm
+    metal, coax = tables.metal(job.loop.metal), tables.coax(job.cable.coax)
+    gap = max(BAR_GAP_WAVELENGTHS * wavelength, coax.dielectric_mm + BEND_ROOM_MM)
+    if job.loop.form == "wire":
+        wire = job.loop.wire_mm or 0.0
+        _refuse_thick(wire, wavelength, "loop.wire_mm")
+        inside = job.loop.bend_radius_mm
+        axis = WIRE_AXIS_RADIUS_RATIO * wire if inside is None else inside + wire / 2
+        pitch = job.fixed.leg_pitch_mm or round_to(wire + gap, step)
+        _refuse_touching(pitch, wire)
+        crossing = min(sleeve_crossing_mm(coax), CROSSING_LIMIT_WAVELENGTHS * wavelength)
+        return LoopStock(wire, None, None, wire, pitch, axis, max(round_to(crossing, step), step))
+    sheet = job.loop.sheet_mm or 0.0
+    _refuse_thick(sheet, wavelength, "loop.sheet_mm")
+    width = job.loop.strip_width_mm or round_to(max(STRIP_WIDTH_WAVELENGTHS * wavelength, _least_width_mm(sheet)), step)
+    _refuse_thick(width, wavelength, "loop.strip_width_mm")
+    inside = job.loop.bend_radius_mm
+    if inside is None:
+        inside = round_to(max(inside_bend_radius_mm(metal, job.loop.temper, sheet), step), step)
+    pitch = job.fixed.leg_pitch_mm or round_to(width + gap, step)
+    _refuse_touching(pitch, width)
+    crossing = round_to(max(PLATE_WAVELENGTHS * wavelength, LEAST_PLATE_MM), step)
+    return LoopStock(None, sheet, width, width, pitch, inside, max(crossing, step))
+
+
+def _least_width_mm(sheet_mm: float) -> float:
+    """Narrowest bar whose foot takes the smallest screw with 1.5 thicknesses, at least 1 mm, on each side."""
+    return tables.screw(LEAST_FOOT_SCREW).clearance_medium_mm + 2 * max(1.0, 1.5 * sheet_mm)
+
+
+def sleeve_crossing_mm(coax: Coax) -> float:
+    """Width of the flat strip that stands for a crossing with a sleeve capacitor in the field computation.
+
+    Part of the crossing is the coax's centre conductor, part the capacitor's tube; inductance goes with the
+    logarithm of the diameter, so their geometric mean counts, and a round wire is a strip of twice its diameter
+    (Balanis, Antenna Theory, table 9.3).
+    """
+    return 2 * math.sqrt(coax.inner_mm * sleeve_tube_mm(coax)[0])
+
+
+def leg_place(stock: LoopStock, loop_diameter_mm: float, loop_height_mm: float) -> LegPlace:
+    """Bars' place for this loop. Raises ``NoSolutionError`` where the bars do not fit."""
+    radius, half_pitch = loop_diameter_mm / 2, stock.leg_pitch_mm / 2
+    if stock.wire_mm is not None:
+        return LegPlace(_wire_leg_x(radius, half_pitch, stock.leg_bend_radius_mm, loop_height_mm), None)
+    thickness, width, r = stock.sheet_mm or 0.0, stock.strip_width_mm or 0.0, stock.leg_bend_radius_mm
+    relief = max(FOLD_RELIEF_MM, thickness)
+    far, near = half_pitch + stock.leg_width_mm / 2, half_pitch - stock.leg_width_mm / 2
+    inner, outer = radius - width / 2, radius + width / 2
+    if far >= 0.95 * inner:
+        raise NoSolutionError(
+            f"bars at a pitch of {stock.leg_pitch_mm:g} mm with {stock.leg_width_mm:g} mm width do not fit a ring "
+            f"of {loop_diameter_mm:.1f} mm; use a narrower strip or a smaller leg pitch"
+        )
+    if r + thickness >= 0.8 * loop_height_mm:
+        raise NoSolutionError(_bend_too_large(r + thickness, loop_height_mm))
+    start = math.sqrt(inner**2 - far**2) - relief
+    # The flat tab reaches across the ring's inside: bar, foot and a relief must end before the far side.
+    tab = loop_height_mm + FOOT_MM + relief
+    if start - tab > -math.sqrt(inner**2 - far**2) + relief and start - r - thickness / 2 > 0:
+        return LegPlace(start - r - thickness / 2, "inward")
+    start = math.sqrt(outer**2 - near**2) + relief
+    return LegPlace(start + r + thickness / 2, "outward")
+
+
+def _wire_leg_x(radius: float, half_pitch: float, bend: float, height: float) -> float:
+    """leg_x = R cos(p) + r sin(p) with R sin(p) - r cos(p) = pitch / 2."""
+    if half_pitch >= 0.9 * radius:
+        raise NoSolutionError(
+            f"a leg pitch of {2 * half_pitch:g} mm leaves no loop of {2 * radius:.1f} mm; reduce the pitch"
+        )
+    if bend >= 0.8 * height:
+        raise NoSolutionError(_bend_too_large(bend, height))
+    angle = math.asin(half_pitch / math.hypot(radius, bend)) + math.atan2(bend, radius)
+    return radius * math.cos(angle) + bend * math.sin(angle)
+
+
+def _bend_too_large(bend: float, height: float) -> str:
+    return (
+        f"a bend of {bend:g} mm needs more than the loop's height of {height:.1f} mm; "
+        "use thinner stock or a smaller bend radius"
+    )
+
+
+def _refuse_thick(size: float, wavelength: float, key: str) -> None:
+    if size > wavelength / 10:
+        raise JobError(
+            f"{key} is {size:g} mm, more than a tenth of the wavelength ({wavelength:.1f} mm); "
+            f"use stock of at most {wavelength / 10:.1f} mm"
+        )
+
+
+def _refuse_touching(pitch: float, width: float) -> None:
+    if pitch <= 1.1 * width:
+        raise JobError(
+            f"fixed.leg_pitch_mm is {pitch:g} mm but the bars are {width:g} mm wide and would touch; "
+            f"give at least {1.5 * width:.1f} mm"
+        )

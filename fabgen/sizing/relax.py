@@ -1,0 +1,80 @@
+"""When nothing fits: the nearest job that does, found by really matching it.
+
+Depends on: errors, job, sizing.can_search, sizing.counting, sizing.layout, sizing.loop_search, sizing.trial.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from typing import Any
+
+from fabgen.errors import FabgenError
+from fabgen.fields.plan import DEFAULT_DENSITY
+from fabgen.job import Job
+from fabgen.progress import Progress
+from fabgen.sizing.can_search import find_can
+from fabgen.sizing.counting import CountingSolver
+from fabgen.sizing.layout import loop_stock
+from fabgen.sizing.loop_search import NAMED, match_nearby
+from fabgen.sizing.records import Sizes
+from fabgen.sizing.solver import Solution, Solver
+from fabgen.sizing.trial import Setting, front_place
+
+TYPICAL_WIRE, TYPICAL_SHEET = 0.019, 0.007
+"""Wire and sheet over the wavelength that match well: 4 mm and 1.5 mm at 1420 MHz."""
+MOST_TRIALS = 6
+
+
+def nearest_that_works(job: Job, tell: Progress, make_solver: Callable[[Job, float], Solver]) -> str:
+    """A sentence that names the smallest change after which the job can be matched, or says that none was found."""
+    for count, (change, other) in enumerate(relaxed_jobs(job)):
+        if count == MOST_TRIALS:
+            break
+        tell.step(f"looking for the nearest job that works: {change}")
+        if _matches(other, tell, make_solver):
+            return f"The nearest job that works: {change}"
+    return "No nearby job that works was found; start again from a template"
+
+
+def relaxed_jobs(job: Job) -> Iterator[tuple[str, Job]]:
+    """Jobs with one wish or size less, the smallest loss first."""
+    for key, value in job.fixed.model_dump().items():
+        if value is not None:
+            yield f"leave fixed.{key} out", _with(job, "fixed", {key: None})
+    if job.can.choke:
+        yield "set can.choke = false", _with(job, "can", {"choke": False})
+    if job.loop.bend_radius_mm is not None:
+        yield "leave loop.bend_radius_mm out", _with(job, "loop", {"bend_radius_mm": None})
+    wavelength = job.wavelength_mm
+    if job.loop.form == "wire":
+        wire = round(TYPICAL_WIRE * wavelength, 1)
+        yield f"use wire of {wire:g} mm", _with(job, "loop", {"wire_mm": wire, "bend_radius_mm": None})
+    else:
+        sheet = max(0.3, round(TYPICAL_SHEET * wavelength, 1))
+        plain = {"sheet_mm": sheet, "strip_width_mm": None, "bend_radius_mm": None}
+        yield f"use sheet of {sheet:g} mm and leave the strip's width out", _with(job, "loop", plain)
+    free = dict.fromkeys(job.fixed.model_dump())
+    yield "fix no size at all", _with(job, "fixed", free)
+    yield 'use can.make = "tube"', _with(job, "can", {"make": "tube"})
+
+
+def _with(job: Job, section: str, changes: dict[str, Any]) -> Job:
+    data = job.model_dump()
+    data[section].update(changes)
+    return Job.model_validate(data)
+
+
+def _matches(job: Job, tell: Progress, make_solver: Callable[[Job, float], Solver]) -> bool:
+    solver, target = CountingSolver(make_solver(job, DEFAULT_DENSITY)), job.target.frequency_mhz
+
+    def solve(sizes: Sizes) -> Solution:
+        return solver.solve(sizes, target)
+
+    try:
+        stock = loop_stock(job)
+        share = NAMED[job.wishes.selectivity]
+        can = find_can(job, stock, front_place(share), solve, tell).can
+        match_nearby(Setting(job, stock, can), share, solve)
+    except FabgenError:
+        return False
+    return True

@@ -1,0 +1,39 @@
+"""Numerical self-checks of the final solve, with numbers; one that fails stops the sizing.
+
+Depends on: errors, sizing.records.
+"""
+
+from __future__ import annotations
+
+import math
+
+from fabgen.errors import NumericalError
+from fabgen.sizing.records import SelfCheck
+from fabgen.sizing.solver import Solution
+
+
+def self_checks(solution: Solution, sweep_error: float, reflection_change: float) -> tuple[SelfCheck, ...]:
+    """Power balance, residual, condition, mesh, sweep and second mesh, each against its limit."""
+    rows = (
+        ("power balance", abs(solution.power_balance), 0.01, "input minus radiated minus ohmic power, over input"),
+        ("residual", solution.residual, 1e-6, "of the linear system, over the right-hand side"),
+        ("condition", solution.condition, 1e9, "of the system that was factorised"),
+        ("largest edge", solution.largest_edge_wavelengths, 0.2, "of the mesh, in wavelengths"),
+        ("sweep error", sweep_error, 0.02, "estimated change of reflection between the solved frequencies"),
+        ("second mesh", reflection_change, 0.2, "change of reflection at the target on a coarser mesh"),
+    )
+    return tuple(
+        SelfCheck(name, value, limit, math.isfinite(value) and value <= limit, meaning)
+        for name, value, limit, meaning in rows
+    )
+
+
+def require_passed(checks: tuple[SelfCheck, ...]) -> None:
+    """Raise ``NumericalError`` naming each failed check with its value and limit."""
+    failed = [f"{c.name} {c.value:.3g} (limit {c.limit:g}): {c.meaning}" for c in checks if not c.passed]
+    if failed:
+        raise NumericalError(
+            "the field computation fails its own checks: "
+            + "; ".join(failed)
+            + ". Nothing was sized; change the sizes that the job fixes, or report this job file"
+        )

@@ -1,0 +1,161 @@
+"""From a job to a sized feed: can, loop, match, rounding, the solve at the rounded sizes, and what it says.
+
+Depends on: errors, job, progress, stock, fields, and the other modules of sizing.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+
+from fabgen.errors import GeometryError, NoSolutionError
+from fabgen.fields.plan import DEFAULT_DENSITY
+from fabgen.job import Job
+from fabgen.progress import Progress, Silent
+from fabgen.sizing.can_search import find_can
+from fabgen.sizing.capacitor_part import capacitor_part
+from fabgen.sizing.counting import CountingSolver
+from fabgen.sizing.field_solver import FieldSolver
+from fabgen.sizing.fixed_sizes import check_fixed
+from fabgen.sizing.layout import loop_stock
+from fabgen.sizing.loop_search import NAMED, Matched
+from fabgen.sizing.match import reflection, return_loss_db
+from fabgen.sizing.modes import bore_modes
+from fabgen.sizing.predict import predict
+from fabgen.sizing.records import Feed, Predicted, Settings, Sizes
+from fabgen.sizing.relax import nearest_that_works
+from fabgen.sizing.response import START, STOP
+from fabgen.sizing.self_checks import require_passed, self_checks
+from fabgen.sizing.solver import Solver, Sweep
+from fabgen.sizing.tolerances import fit_model, sensitivities
+from fabgen.sizing.trial import Setting, front_place
+from fabgen.sizing.wishes import choose_loop
+from fabgen.sizing.yields import Bench, yield_of
+from fabgen.stock import tables
+
+MakeSolver = Callable[[Job, float], Solver]
+SECOND_MESH = 0.72
+"""Density of the second mesh over the first: half the triangles."""
+SLOPE_SPAN = 1e-3
+METHOD = (
+    "electric-field integral equation, edge-based functions on triangles, Galerkin; can eliminated once per "
+    "frequency; rational interpolation over frequency"
+)
+
+
+@dataclass(frozen=True)
+class _SecondMesh:
+    """What another mesh says of the same sizes."""
+
+    resonance_mhz: float
+    return_loss_db: float
+    reflection_change: float
+
+
+def size_feed(job: Job, progress: Progress | None = None, make_solver: MakeSolver = FieldSolver) -> Feed:
+    """Size the feed of a job.
+
+    ``make_solver``: (job, mesh density) -> solver; the field computation unless a test gives another.
+    Raises ``NoSolutionError`` when the job is valid but nothing that can be built matches (the message names the
+    limit and the nearest job that works), ``JobError`` for sizes that contradict each other, ``NumericalError``
+    when the field computation fails its own checks.
+    """
+    tell = progress or Silent()
+    check_fixed(job)
+    try:
+        return _size(job, tell, make_solver)
+    except (NoSolutionError, GeometryError) as error:
+        advice = nearest_that_works(job, tell, make_solver)
+        raise NoSolutionError(f"{error}. {advice}") from error
+
+
+def _size(job: Job, tell: Progress, make_solver: MakeSolver) -> Feed:
+    search = CountingSolver(make_solver(job, DEFAULT_DENSITY))
+    stock, target = loop_stock(job), job.target.frequency_mhz
+    place = front_place(NAMED[job.wishes.selectivity])
+    found = find_can(job, stock, place, lambda sizes: search.solve(sizes, target), tell)
+    setting = Setting(job, stock, found.can)
+    tell.step("matching the loop: tap height and series capacitor")
+    # A fresh solver plans its mesh on the can that was found, so the result does not depend on the search before.
+    final = CountingSolver(make_solver(job, DEFAULT_DENSITY))
+    matched = choose_loop(setting, final, tell)
+    sizes = matched.sizes
+    tell.step("sweeping the frequency from 0.3 to 2.2 times the target")
+    sweep = final.sweep(sizes, START * target, STOP * target, target)
+    predicted = predict(job, sizes, matched.solution, sweep)
+    part = capacitor_part(
+        "sleeve" if sizes.conductor == "wire" else "plates", sizes.series_capacitor_pf, target,
+        coax=tables.coax(job.cable.coax), plate_width_mm=sizes.crossing_width_mm, transmit_w=job.wishes.transmit_w,
+    )  # fmt: skip
+    slope = reactance_slope(sweep, sizes, target)
+    model = fit_model(setting, sizes, lambda s: final.solve(s, target), tell)
+    rows = sensitivities(model, sizes, part, target, slope)
+    tell.step("checking the tolerances against true solves")
+    bench = _bench(job, sizes, sweep, slope)
+    yields = yield_of(setting, sizes, model, rows, part=part, bench=bench, solve=lambda s: final.solve(s, target))
+    tell.step("solving once more on another mesh")
+    second = _second_mesh(job, matched, make_solver, slope)
+    checks = self_checks(matched.solution, sweep.error_estimate, second.reflection_change)
+    require_passed(checks)
+    return Feed(
+        job=job, sizes=sizes, predicted=predicted, capacitor=part, sensitivities=rows, yields=yields,
+        modes=bore_modes(sizes.can_bore_mm, target), self_checks=checks,
+        settings=_settings(matched, second, search.solves + final.solves + 1),
+        remarks=(*found.remarks, *matched.remarks, *_band_remark(job, predicted)), can_trials=found.trials,
+    )  # fmt: skip
+
+
+def reactance_slope(sweep: Sweep, sizes: Sizes, target_mhz: float) -> float:
+    """d/df of Im Z - 1/(omega C) at the target, ohm per MHz, from the sweep."""
+    pair = target_mhz * np.array([1 - SLOPE_SPAN, 1 + SLOPE_SPAN])
+    total = sweep.impedance_ohm(pair).imag - 1e6 / (2 * np.pi * pair * sizes.series_capacitor_pf)
+    return float((total[1] - total[0]) / (pair[1] - pair[0]))
+
+
+def _bench(job: Job, sizes: Sizes, sweep: Sweep, slope: float) -> Bench:
+    """The target, and the edges of the band where the job asks for one."""
+    target, half = job.target.frequency_mhz, (job.wishes.bandwidth_mhz or 0.0) / 2
+    frequency = np.array(sorted({target - half, target, target + half}))
+    return Bench(frequency, sweep.impedance_ohm(frequency), target, job.wishes.return_loss_db, slope)
+
+
+def _second_mesh(job: Job, matched: Matched, make_solver: MakeSolver, slope: float) -> _SecondMesh:
+    """The same sizes on a coarser mesh: what the discretisation may still move."""
+    target, sizes = job.target.frequency_mhz, matched.sizes
+    other = make_solver(job, SECOND_MESH * DEFAULT_DENSITY).solve(sizes, target)
+    change = other.impedance_ohm - matched.solution.impedance_ohm
+    first = matched.reflection(target)
+    second = reflection(other.impedance_ohm, sizes.series_capacitor_pf, target)
+    return _SecondMesh(
+        resonance_mhz=abs(change.imag / slope),
+        return_loss_db=abs(return_loss_db(first) - return_loss_db(second)),
+        reflection_change=abs(second - first),
+    )
+
+
+def _settings(matched: Matched, second: _SecondMesh, solves: int) -> Settings:
+    solution = matched.solution
+    return Settings(
+        edge_per_wavelength=DEFAULT_DENSITY,
+        triangles=solution.triangles,
+        unknowns=solution.unknowns,
+        solves=solves,
+        resonance_uncertainty_mhz=second.resonance_mhz,
+        return_loss_uncertainty_db=second.return_loss_db,
+        largest_edge_wavelengths=solution.largest_edge_wavelengths,
+        method=METHOD,
+    )
+
+
+def _band_remark(job: Job, predicted: Predicted) -> tuple[str, ...]:
+    """Why a wished band is not covered."""
+    wanted = job.wishes.bandwidth_mhz
+    if wanted is None or predicted.bandwidth_mhz >= wanted:
+        return ()
+    return (
+        f"The band wished is {wanted:g} MHz at {job.wishes.return_loss_db:g} dB; this loop covers "
+        f"{predicted.bandwidth_mhz:.1f} MHz. One loop with one capacitor has one resonance; a lower return loss or "
+        "a broader selectivity widens the band.",
+    )
