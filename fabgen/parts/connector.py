@@ -17,9 +17,11 @@ import math
 from typing import TYPE_CHECKING
 
 from fabgen.parts import kernel
-from fabgen.parts.contour import Circle, Contour, Vertex
+from fabgen.parts.contour import Circle, Contour, Vertex, area_mm2, rectangle
 from fabgen.parts.floor_plan import (
     coax_axis,
+    connector_hole_points,
+    connector_reach_mm,
     connector_screw_holes,
     floor_bottom_mm,
     on_spacer,
@@ -74,15 +76,19 @@ def spacer(feed: Feed) -> Part | None:
     if not on_spacer(feed):
         return None
     row, metal = tables.connector(feed.job.cable.connector), tables.metal("en-aw-5754")
+    x, y = coax_axis(feed)
+    low = (x - connector_reach_mm(feed), y - row.flange_height_mm / 2)
+    high = (x + row.flange_width_mm / 2, y + row.flange_height_mm / 2)
+    screws = [h.outline for h in connector_screw_holes(feed) if isinstance(h.outline, Circle)]
     flat = FlatPattern(
-        outline=_flange_outline(feed),
-        holes=(_bore(feed), *_screw_circles(feed)),
+        outline=rectangle(low, high),
+        holes=(_bore(feed), *screws),
         thickness_mm=SPACER_MM,
         face="floor side",
     )
     face = floor_bottom_mm(feed)
     solid = kernel.once(lambda: kernel.prism(flat.outline, flat.holes, face - SPACER_MM, SPACER_MM))
-    area = _flange_area(feed) - math.pi / 4 * row.panel_bore_mm**2
+    area = area_mm2(flat.outline) - sum(area_mm2(hole) for hole in flat.holes)
     return Part(
         key="connector-spacer",
         name="connector spacer",
@@ -108,13 +114,14 @@ def _solid(feed: Feed) -> cadquery.Shape:
     x, y = coax_axis(feed)
     top = flange_face_mm(feed)
     bottom = top - row.flange_thickness_mm
-    plate = kernel.prism(_flange_outline(feed), _screw_circles(feed), bottom, row.flange_thickness_mm)
+    plate = kernel.prism(_flange_outline(feed), _flange_holes(feed), bottom, row.flange_thickness_mm)
     body = kernel.rod((x, y, bottom), (x, y, bottom - row.body_length_mm), row.body_mm)
     return kernel.fused(plate, body, what="connector envelope")
 
 
-def _screw_circles(feed: Feed) -> tuple[Circle, ...]:
-    return tuple(h.outline for h in connector_screw_holes(feed) if isinstance(h.outline, Circle))
+def _flange_holes(feed: Feed) -> tuple[Circle, ...]:
+    row = tables.connector(feed.job.cable.connector)
+    return tuple(Circle(*at, row.hole_mm) for at in connector_hole_points(feed))
 
 
 def _bore(feed: Feed) -> Circle:
@@ -133,7 +140,6 @@ def _flange_outline(feed: Feed) -> Contour:
 
 
 def _flange_area(feed: Feed) -> float:
-    row = tables.connector(feed.job.cable.connector)
-    holes = row.hole_count * math.pi / 4 * row.hole_mm**2
-    return row.flange_width_mm * row.flange_height_mm - holes
+    holes = sum(area_mm2(hole) for hole in _flange_holes(feed))
+    return area_mm2(_flange_outline(feed)) - holes
 

@@ -36,6 +36,10 @@ COAX_CLEARANCE_MM = 0.2
 """On the diameter of a hole for the coax alone. Common practice, no source."""
 MARK_MM = 2.0
 """Depth and half width of the notch that marks the gap's side. Common practice, no source."""
+HEAD_GAP_MM = 0.2
+"""Between a screw head and the flat of a bar. Common practice, no source."""
+SPACER_WEB_MM = 2.0
+"""Metal around the bore of a connector's spacer. Common practice, no source."""
 HEAD_CLEARANCE_MM = 2.0
 """Room for a washer's rim and a socket key between a screw head and the wall. Common practice, no source."""
 
@@ -77,7 +81,12 @@ def coax_axis(feed: Feed) -> Point:
     """
     sizes, coax, capacitor = feed.sizes, tables.coax(feed.job.cable.coax), feed.capacitor
     sleeve = capacitor.outer_mm + 2 * capacitor.tube_wall_mm if capacitor.form == "sleeve" else 0.0
-    x = sizes.leg_x_mm + (leg_depth_mm(feed) + max(coax.outer_mm, sleeve)) / 2
+    beside = max(coax.outer_mm, sleeve) / 2
+    connector = tables.connector(feed.job.cable.connector)
+    if sizes.conductor != "wire" and connector.hole_count == 2:
+        # The screws stand level with the coax, beside the flat of the bar; solder fills the gap.
+        beside = max(beside, tables.screw(connector.screw).head_mm / 2 + HEAD_GAP_MM)
+    x = sizes.leg_x_mm + leg_depth_mm(feed) / 2 + beside
     y = sizes.leg_pitch_mm / 2
     if sizes.conductor != "wire":
         y -= max(0.0, (sizes.leg_width_mm - coax.outer_mm) / 2)
@@ -112,17 +121,55 @@ def coax_bore_mm(feed: Feed) -> float:
     return tables.connector(cable.connector).panel_bore_mm
 
 
-def connector_screw_holes(feed: Feed) -> tuple[FloorHole, ...]:
-    """Screw holes of the connector's flange about the coax. Two holes lie along y, clear of the bar's foot."""
+def connector_reach_mm(feed: Feed) -> float:
+    """How far the connector, or its spacer, reaches from the coax towards -x on the floor's outer face."""
+    connector = tables.connector(feed.job.cable.connector)
+    if on_spacer(feed) and feed.sizes.conductor != "wire":
+        # Short towards the bars, where the feet have their screws.
+        return connector.panel_bore_mm / 2 + SPACER_WEB_MM
+    return connector.flange_width_mm / 2 if connector.hole_count == 4 else connector.flange_height_mm / 2
+
+
+def connector_hole_points(feed: Feed) -> tuple[Point, ...]:
+    """Centres of all holes of the connector's flange about the coax; two holes lie along y."""
     connector = tables.connector(feed.job.cable.connector)
     x, y = coax_axis(feed)
     half = connector.hole_pitch_mm / 2
     four: tuple[Point, ...] = ((half, half), (-half, half), (-half, -half), (half, -half))
     two: tuple[Point, ...] = ((0.0, half), (0.0, -half))
     offsets = {4: four, 2: two}.get(connector.hole_count, ())
+    return tuple((x + u, y + v) for u, v in offsets)
+
+
+def connector_screw_holes(feed: Feed) -> tuple[FloorHole, ...]:
+    """Screw holes of the connector in the floor.
+
+    A hole beyond a short spacer, or whose screw head would stand in a bar or in the foot of a sheet loop, is left out; the screws away from
+    the bars and the solder at the coax hold the connector then.
+    """
+    connector = tables.connector(feed.job.cable.connector)
+    head = tables.screw(connector.screw).head_mm / 2
+    edge = coax_axis(feed)[0] - connector_reach_mm(feed)
     return tuple(
-        FloorHole("connector screw", Circle(x + u, y + v, connector.hole_mm)) for u, v in offsets
+        FloorHole("connector screw", Circle(*at, connector.hole_mm))
+        for at in connector_hole_points(feed)
+        if at[0] > edge + connector.hole_mm / 2 and not _in_a_bar(feed, at, head)
     )
+
+
+def _in_a_bar(feed: Feed, at: Point, radius_mm: float) -> bool:
+    """Whether a screw head reaches into a bar, or where the foot of a sheet loop may lie."""
+    sizes = feed.sizes
+    for middle in (sizes.leg_pitch_mm / 2, -sizes.leg_pitch_mm / 2):
+        if sizes.wire_mm is not None:
+            if math.hypot(at[0] - sizes.leg_x_mm, at[1] - middle) < radius_mm + sizes.wire_mm / 2:
+                return True
+            continue
+        beyond = max(0.0, at[0] - sizes.leg_x_mm - leg_depth_mm(feed) / 2)
+        aside = max(0.0, abs(at[1] - middle) - sizes.leg_width_mm / 2)
+        if math.hypot(beyond, aside) < radius_mm:
+            return True
+    return False
 
 
 def coax_holes(feed: Feed) -> tuple[FloorHole, ...]:

@@ -36,7 +36,7 @@ from fabgen.parts.contour import (
     rounded,
     split_arc,
 )
-from fabgen.parts.floor_plan import FloorHole, coax_axis, on_spacer
+from fabgen.parts.floor_plan import FloorHole, coax_axis, connector_reach_mm
 from fabgen.parts.folding import (
     LEVEL,
     Bend,
@@ -110,11 +110,9 @@ def tab_plan(feed: Feed) -> TabPlan:
     screw = foot_screw(feed)
     hole = screw.clearance_medium_mm
     from_bend = max(hole / 2 + 2 * t, screw.head_mm / 2 + 0.5)
-    if not on_spacer(feed):
-        # The nut below must clear the connector's flange.
-        flange = tables.connector(feed.job.cable.connector).flange_width_mm / 2
-        nut = screw.nut_across_flats_mm / math.sqrt(3)
-        from_bend = max(from_bend, s.leg_x_mm - mid - (coax_axis(feed)[0] - flange - nut - 0.5))
+    # The screw's head below must clear the connector's flange or its spacer.
+    reach = connector_reach_mm(feed) + screw.head_mm / 2 + 0.5
+    from_bend = max(from_bend, s.leg_x_mm - mid - (coax_axis(feed)[0] - reach))
     foot = from_bend + max(hole / 2 + 1.5 * t, screw.head_mm / 2)
     half = s.leg_width_mm / 2
     return TabPlan(

@@ -94,7 +94,7 @@ def radome_cap(feed: Feed) -> tuple[Part, ...]:
         whole=whole,
         upside_down=True,
     )
-    return (*printed_parts(printed), *_strips(printed, inner))
+    return (*printed_parts(printed), *_strips(printed, feed.sizes.can_bore_mm / 2 - 1.0))
 
 
 def _inner_radius(feed: Feed, rules: PrintRules) -> float:
@@ -129,13 +129,13 @@ def _groove(radius_mm: float, z_mm: float) -> kernel.Shape:
     )
 
 
-def _strips(printed: Printed, inner_mm: float) -> tuple[Part, ...]:
+def _strips(printed: Printed, reach_mm: float) -> tuple[Part, ...]:
     """One strip per joint of the disc, bonded inside."""
     angles = printed.joint.split.cut_angles_deg()
     if not angles:
         return ()
     plastic = tables.plastic(printed.plastic)
-    start, end = STRIP_MM, inner_mm - 2.0
+    start, end = STRIP_MM, reach_mm
     thick = printed.joint.rules.wall(2)
     rim = printed.joint.envelope.top_mm - printed.joint.floor_mm
     solid = kernel.once(
