@@ -104,12 +104,13 @@ def pack(arguments: argparse.Namespace) -> int:
     from fabgen.folder import resolve_target
     from fabgen.job_reader import read_job
     from fabgen.pack import PackOptions, chosen_groups, write_pack
-    from fabgen.resources import time_limit
+    from fabgen.resources import require_memory, time_limit
 
     job = read_job(arguments.job)
     options = PackOptions(tuple(arguments.only), tuple(arguments.despite))
     chosen_groups(options.only)
     resolve_target(arguments.output)
+    require_memory()
     with time_limit(arguments.time_limit), _display(arguments) as display:
         from fabgen.sized import sized_feed
 

@@ -120,11 +120,18 @@ def _predicted_rows(feed: Feed) -> list[tuple[str, ...]]:
 
 
 def _sensitivity_rows(feed: Feed) -> list[tuple[str, ...]]:
-    order = sorted(feed.sensitivities, key=lambda s: -abs(s.effect_mhz))[:3]
-    return [
-        (s.size, f"{s.resonance_mhz_per_mm:+.2f} MHz/mm", f"{s.effect_mhz:.2f} MHz at +-{s.tolerance_mm:g} mm")
-        for s in order
-    ]
+    rows: list[tuple[str, ...]] = []
+    for item in sorted(feed.sensitivities, key=lambda s: -abs(s.effect_mhz))[:3]:
+        unit = "pF" if item.size.endswith("_pf") else "mm"
+        name = item.size.removesuffix("_mm").removesuffix("_pf").replace("_", " ")
+        rows.append(
+            (
+                name,
+                f"{item.resonance_mhz_per_mm:+.1f} MHz per {unit}",
+                f"{item.effect_mhz:.1f} MHz at +-{item.tolerance_mm:.2g} {unit}",
+            )
+        )
+    return rows
 
 
 def findings_report(job: Job, findings: Sequence[Finding], colour: bool) -> str:
