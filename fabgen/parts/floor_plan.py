@@ -144,8 +144,8 @@ def connector_hole_points(feed: Feed) -> tuple[Point, ...]:
 def connector_screw_holes(feed: Feed) -> tuple[FloorHole, ...]:
     """Screw holes of the connector in the floor.
 
-    A hole beyond a short spacer, or whose screw head would stand in a bar or in the foot of a sheet loop, is left out; the screws away from
-    the bars and the solder at the coax hold the connector then.
+    A hole beyond a short spacer, or whose screw head would stand in a bar or in the foot of a sheet loop, is left
+    out; the screws away from the bars and the solder at the coax hold the connector then.
     """
     connector = tables.connector(feed.job.cable.connector)
     head = tables.screw(connector.screw).head_mm / 2
