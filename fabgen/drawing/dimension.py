@@ -78,8 +78,18 @@ def leader(name: str, value: float, text: str, at: Point, angle_deg: float = 45.
     return Ask("leader", name, value, text, at, angle_deg=angle_deg)
 
 
-def place(view: str, items: Sequence[Item], asks: Sequence[Ask], scale: float, height_mm: float = 2.5) -> Placed:
-    """Set the dimensions round the view's items (already scaled to paper mm, model origin at 0, 0)."""
+def place(
+    view: str,
+    items: Sequence[Item],
+    asks: Sequence[Ask],
+    scale: float,
+    height_mm: float = 2.5,
+    limits: Box | None = None,
+) -> Placed:
+    """Set the dimensions round the view's items (already scaled to paper mm, model origin at 0, 0).
+
+    ``limits``: where texts on leaders may stand; 45 mm round the view when left out.
+    """
     occupied = Occupied(items)
     for item in items:
         if isinstance(item, Text):
@@ -94,7 +104,7 @@ def place(view: str, items: Sequence[Item], asks: Sequence[Ask], scale: float, h
         found = _linear(view, ask, later, body, occupied, scale, height_mm)
         _keep(found, ask, done, left_over, occupied)
     for ask in leaders:
-        found = _leader(view, ask, body, occupied, scale, height_mm)
+        found = _leader(view, ask, limits or body.grown(45), occupied, scale, height_mm)
         _keep(found, ask, done, left_over, occupied)
     drawn = tuple(i for d in done for i in d.items)
     box = bounds((*items, *drawn)) if items or drawn else Box(0, 0, 0, 0)
@@ -141,11 +151,15 @@ def _linear(
     if axis.u(a) > axis.u(b):
         a, b = b, a
     barred = sorted({axis.u((p[0] * scale, p[1] * scale)) for o in others for p in (o.a, o.b)})
+    width = text_width_mm(ask.text, height)
+    half = width / 2 + 0.5
+    # A text must keep clear of the extension lines that dimensions further out will send past it.
+    centres = [c for c in _shifts(axis.u(a), axis.u(b), width) if not any(abs(c - u) < half for u in barred)]
     for row in range(ROWS):
         v = axis.edge(body) + FIRST_ROW_MM + row * ROW_PITCH_MM
-        for shift in _shifts(axis.u(a), axis.u(b), text_width_mm(ask.text, height)):
-            made = _linear_at(view, ask, axis, a, b, v, shift, height)
-            if _row_is_free(made, barred, axis, occupied):
+        for centre in centres:
+            made = _linear_at(view, ask, axis, a, b, v, centre, height)
+            if _row_is_free(made, occupied):
                 return made
     return None
 
@@ -156,10 +170,11 @@ def _shifts(u0: float, u1: float, width: float) -> list[float]:
     tries: list[float] = []
     if room >= 0:
         tries.append(middle)
-        step = 1.0
+        pitch = max(1.5, room / 20)
+        step = pitch
         while step <= room:
             tries += [middle + step, middle - step]
-            step += 1.5
+            step += pitch
     if room < 6:
         beyond = ARROW_MM * 1.6 + width / 2 + 0.8
         tries += [u1 + beyond, u0 - beyond, u1 + beyond + 6, u0 - beyond - 6]
@@ -192,11 +207,8 @@ def _linear_at(
     )
 
 
-def _row_is_free(made: Dimension, barred: Sequence[float], axis: _Axis, occupied: Occupied) -> bool:
+def _row_is_free(made: Dimension, occupied: Occupied) -> bool:
     box = made.text_box.grown(0.3)
-    low, high = (box.x0, box.x1) if axis.side in {"bottom", "top"} else (box.y0, box.y1)
-    if any(low - 0.2 < u < high + 0.2 for u in barred):
-        return False
     if not occupied.text_is_free(box, avoid_view=False) or not occupied.lines_are_free(made.lines):
         return False
     return not any(_same_row(made.lines[0], other) for other in occupied.lines)
@@ -229,7 +241,7 @@ def arrow(tip: Point, towards: Point) -> Polyline:
 
 
 def _leader(
-    view: str, ask: Ask, body: Box, occupied: Occupied, scale: float, height: float
+    view: str, ask: Ask, limits: Box, occupied: Occupied, scale: float, height: float
 ) -> Dimension | None:
     tip = (ask.a[0] * scale, ask.a[1] * scale)
     turns = [0, 15, -15, 30, -30, 45, -45, 60, -60, 80, -80, 105, -105, 130, -130, 180]
@@ -237,7 +249,7 @@ def _leader(
         for reach in (7, 11, 16, 22, 30, 40, 52, 66, 82, 100):
             for turn in turns:
                 made = _leader_at(view, ask, tip, ask.angle_deg + turn, float(reach), height)
-                if not body.grown(45).contains(made.text_box):
+                if not limits.contains(made.text_box):
                     continue
                 if occupied.text_is_free(made.text_box.grown(0.4), avoid_view) and occupied.lines_are_free(made.lines):
                     return made

@@ -11,7 +11,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
 from fabgen.drawing.fonts import text_width_mm, wrap
-from fabgen.drawing.model import BLACK, Box, Colour, Dimension, Item, Line, Polyline, Table, Text, View, moved
+from fabgen.drawing.model import BLACK, RED, Box, Colour, Dimension, Item, Line, Polyline, Table, Text, View, moved, tidy_text
 from fabgen.drawing.paper import TITLE_HEIGHT_MM, Paper
 
 LINE_PITCH = 1.72  # base line to base line over the capital height
@@ -77,6 +77,9 @@ def flow(paper: Paper, blocks: Sequence[Block]) -> list[Page]:
     index, y = 0, spots[0].top
     fresh = True
     for n, block in enumerate(blocks):
+        empty = not block.items
+        if empty and (fresh or y - block.height < spots[index].bottom):
+            continue
         need = _need(blocks, n)
         if not fresh and y - need < spots[index].bottom:
             index += 1
@@ -131,7 +134,7 @@ def paragraph(
     indent = text_width_mm(bullet + " ", size, bold) + 1.0 if bullet else 0.0
     pitch = size * LINE_PITCH
     blocks = []
-    for i, line in enumerate(wrap(text, width - indent, size, bold)):
+    for i, line in enumerate(wrap(tidy_text(text), width - indent, size, bold)):
         items: list[Item] = [Text(indent, -size * 1.3, line, size, bold=bold, colour=colour)]
         if bullet and i == 0:
             items.append(Text(0, -size * 1.3, bullet, size, bold=bold, colour=colour))
@@ -143,21 +146,25 @@ def paragraph(
     return [*blocks, gap(size * 0.5)]
 
 
-def shares(head: Sequence[str], rows: Sequence[Sequence[str]], width: float, size: float) -> list[float]:
-    """Column widths: each at least its longest word, the rest shared by the width of the whole texts."""
+def shares(
+    head: Sequence[str], rows: Sequence[Sequence[str]], width: float, size: float
+) -> tuple[list[float], bool]:
+    """Column widths: each at least its longest word, the rest by the width of whole texts; False when they do
+    not fit at this size of text."""
     natural, least = [], []
     for c in range(len(head)):
-        cells = [head[c], *(row[c] for row in rows)]
-        natural.append(max(text_width_mm(cell, size) for cell in cells) + 2.4)
-        words = [word for cell in cells for word in cell.split()] or [""]
-        least.append(min(max(text_width_mm(word, size) for word in words) + 2.4, width * 0.45))
+        cells = [row[c] for row in rows]
+        words = [text_width_mm(word, size) for cell in cells for word in cell.split()]
+        words += [text_width_mm(word, size, True) for word in head[c].split()]
+        least.append(max([*words, 0.0]) + 2.2)
+        natural.append(max([text_width_mm(t, size) for t in cells] + [text_width_mm(head[c], size, True)]) + 2.4)
     if sum(natural) <= width:
         spare = (width - sum(natural)) / len(head)
-        return [n + spare for n in natural]
-    over = max(width - sum(least), 0.0)
+        return [n + spare for n in natural], True
+    over = width - sum(least)
     wish = [max(n - low, 0.0) for n, low in zip(natural, least, strict=True)]
-    widths = [low + over * w / max(sum(wish), 1e-9) for low, w in zip(least, wish, strict=True)]
-    return [w * width / sum(widths) for w in widths]
+    widths = [low + max(over, 0.0) * w / max(sum(wish), 1e-9) for low, w in zip(least, wish, strict=True)]
+    return [w * width / sum(widths) for w in widths], over >= 0
 
 
 def table(
@@ -169,14 +176,47 @@ def table(
     red: Sequence[int] = (),
     widths: Sequence[float] | None = None,
 ) -> list[Block]:
-    """A ruled table; its head is repeated after a break. Rows listed in ``red`` are set bold and red."""
-    cols = list(widths) if widths else shares(head, rows, width, size)
+    """A ruled table; its head is repeated after a break, and no break leaves fewer than two rows under a head.
+
+    Rows listed in ``red`` are set bold and red. Text that does not fit at 2.5 mm is set at 1.8 mm (ISO 3098).
+    """
+    rows = [[tidy_text(cell) for cell in row] for row in rows]
+    cols = list(widths) if widths else []
+    if not cols:
+        cols, fits = shares(head, rows, width, size)
+        if not fits:
+            size = 1.8
+            cols, _ = shares(head, rows, width, size)
     record = Table(name, tuple(head), tuple(tuple(row) for row in rows))
     top = _row_block(head, cols, size, bold=True, colour=BLACK, rule="outline")
     blocks = [replace(top, tables=(record,), stay=True)]
     for i, row in enumerate(rows):
-        colour = (0.75, 0.0, 0.0) if i in red else BLACK
-        blocks.append(replace(_row_block(row, cols, size, i in red, colour, "fine"), repeat=top))
+        colour = RED if i in red else BLACK
+        stay = i == 0 and len(rows) > 1
+        blocks.append(replace(_row_block(row, cols, size, i in red, colour, "fine"), repeat=top, stay=stay))
+    return [*blocks, gap(3)]
+
+
+def side_by_side(
+    name: str, head: Sequence[str], rows: Sequence[Sequence[str]], count: int = 2, space: float = 6.0
+) -> list[Block]:
+    """A long narrow table set in ``count`` columns, read down each column; one record for the whole."""
+    if len(rows) < 6:
+        return table(name, head, rows)
+    each = -(-len(rows) // count)
+    width = (COLUMN_WIDTH_MM - space * (count - 1)) / count
+    cols, fits = shares(head, rows, width, 2.5)
+    size = 2.5 if fits else 1.8
+    if not fits:
+        cols, _ = shares(head, rows, width, size)
+    record = Table(name, tuple(head), tuple(tuple(row) for row in rows))
+    lefts = [i * (width + space) for i in range(count)]
+    top = beside([_row_block(head, cols, size, True, BLACK, "outline")] * count, lefts)
+    blocks = [replace(top, tables=(record,), stay=True)]
+    for i in range(each):
+        line = [_row_block(rows[i + k * each], cols, size, False, BLACK, "fine")
+                for k in range(count) if i + k * each < len(rows)]  # fmt: skip
+        blocks.append(replace(beside(line, lefts[: len(line)]), repeat=top, stay=i == 0))
     return [*blocks, gap(3)]
 
 

@@ -49,6 +49,8 @@ def _unit(v: Vector) -> Vector:
 SIDE = Direction("side", (-1.0, 0.0, 0.0), (0.0, -1.0, 0.0))
 APERTURE = Direction("aperture", (0.0, 0.0, 1.0), (0.0, -1.0, 0.0))
 GAP = Direction("gap", (0.0, -1.0, 0.0), (1.0, 0.0, 0.0))
+FROM_GAP = Direction("from the gap", (1.0, 0.0, 0.0), (0.0, 1.0, 0.0))
+GAP_PLAN = Direction("above, gap below", (0.0, 0.0, 1.0), (0.0, 1.0, 0.0))
 ABOVE = Direction("above", (0.0, 0.0, 1.0), (1.0, 0.0, 0.0))
 BELOW = Direction("below", (0.0, 0.0, -1.0), (0.0, -1.0, 0.0))
 _EYE = _unit((-1.0, -0.9, 0.9))

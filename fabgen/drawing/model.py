@@ -10,6 +10,7 @@ Depends on: drawing.fonts.
 from __future__ import annotations
 
 import math
+import re
 from dataclasses import dataclass, field
 from typing import Literal
 
@@ -35,8 +36,8 @@ class Pen:
 # ISO 128-2: wide 0.5, narrow 0.25 (A4 and A3); dash 12 d, gap 3 d, long dash 24 d, dot 0.5 d. Frame 0.7: ISO 5457.
 PENS: dict[str, Pen] = {
     "outline": Pen(0.5),
-    "new": Pen(0.7),
-    "old": Pen(0.25, (), (0.35, 0.35, 0.35)),
+    "new": Pen(0.5),
+    "old": Pen(0.18, (), (0.4, 0.4, 0.4)),
     "thin": Pen(0.25),
     "fine": Pen(0.18),
     "dimension": Pen(0.25),
@@ -377,3 +378,8 @@ def number(value: float, places: int = 2) -> str:
     if "." in text:
         text = text.rstrip("0").rstrip(".")
     return "0" if text in {"-0", ""} else text
+
+
+def tidy_text(text: str) -> str:
+    """Signs of a keyboard as the signs of the trade: +- as ±, the x of M3x12 as ×."""
+    return re.sub(r"(?<=\d)x(?=\d)", "×", text.replace("+-", "±").replace("+/-", "±"))

@@ -8,11 +8,12 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from fabgen.drawing.fonts import fit
-from fabgen.drawing.model import Arc, Box, Item, Line, Text
+from fabgen.drawing.model import Arc, Box, Item, Line, Text, tidy_text
 from fabgen.drawing.texts import say
 
 TITLE_WIDTH_MM = 180.0
 TITLE_HEIGHT_MM = 32.0
+REFER = {"title.tolerance", "title.material", "title.finish"}  # too long for the cell: said on the sheet
 
 
 @dataclass(frozen=True)
@@ -138,9 +139,9 @@ def title_block(box: Box, fields: TitleFields) -> tuple[Item, ...]:
         (18, "title.revision", fields.revision),
         (19, "title.sheet", f"{fields.number}/{fields.count}"),
     ))
-    items += _cell(x, y, 45, 16, say("title.owner"), fields.owner)
-    items += _cell(x + 45, y, 80, 16, say("title.title"), fields.title, 3.5, fields.supplement)
-    items += _cell(x + 125, y + 8, 55, 8, say("title.number"), fields.identification)
+    items += _cell(x, y, 45, 16, "title.owner", fields.owner)
+    items += _cell(x + 45, y, 80, 16, "title.title", fields.title, 3.5, fields.supplement)
+    items += _cell(x + 125, y + 8, 55, 8, "title.number", fields.identification)
     return (*items, *projection_symbol(x + 30, y + 26.6, fields.projection))
 
 
@@ -148,7 +149,7 @@ def _row(x: float, y: float, cells: tuple[tuple[float, str, str], ...]) -> list[
     items: list[Item] = []
     left = x
     for i, (width, key, value) in enumerate(cells):
-        items += _cell(left, y, width, 8, say(key), value)
+        items += _cell(left, y, width, 8, key, value)
         if i:
             items.append(Line(left, y, left, y + 8, "thin"))
         left += width
@@ -156,15 +157,17 @@ def _row(x: float, y: float, cells: tuple[tuple[float, str, str], ...]) -> list[
 
 
 def _cell(
-    x: float, y: float, width: float, height: float, label: str, value: str, size: float = 2.5, second: str = ""
+    x: float, y: float, width: float, height: float, label_key: str, value: str, size: float = 2.5, second: str = ""
 ) -> list[Item]:
-    label, label_height = fit(label, width - 2, 1.8)
+    label, label_height = fit(say(label_key), width - 2, 1.8)
     items: list[Item] = [Text(x + 1, y + height - 2.5, label, label_height)]
     if second:
         text, fitted = fit(second, width - 2, 2.5)
         items.append(Text(x + 1, y + 2.0, text, fitted))
     if value:
-        text, fitted = fit(value, width - 2, size, bold=size > 3)
+        text, fitted = fit(tidy_text(value), width - 2, size, bold=size > 3)
+        if text.endswith("…") and label_key in REFER:
+            text, fitted = say("title.see_sheet"), 2.5
         items.append(Text(x + 1, y + (6.5 if height > 10 else 1.4), text, fitted, bold=size > 3))
     return items
 

@@ -9,6 +9,7 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
+from fabgen.drawing.clip import clipped
 from fabgen.drawing.dimension import Ask, place
 from fabgen.drawing.flow import Block
 from fabgen.drawing.hidden import Curve, Direction, dressed, look
@@ -154,11 +155,18 @@ def together(blocks: Sequence[Block], height: float, tables: Sequence[Block] = (
     )
 
 
+def scales_for(views: Sequence[Drawn], width: float, height: float) -> list[float]:
+    """Standard scales, largest first, at which the bare views stand in the room one over the other."""
+    wide = max(v.box.width for v in views)
+    high = sum(v.box.height for v in views)
+    return [s for s in SCALES if wide * s <= width and high * s <= height] or [SCALES[-1]]
+
+
 def fitted(
-    build: Callable[[float], Set], width: float, height: float, largest: float = 10.0, smallest: float = 0.0
+    drawn: Drawn, build: Callable[[float], Set], width: float, height: float, largest: float = 10.0, smallest: float = 0.0
 ) -> tuple[Block, Set, float]:
     """The view at the largest standard scale at which it fits with its dimensions, centred in the width."""
-    tries = [s for s in SCALES if smallest <= s <= largest]
+    tries = [s for s in scales_for((drawn,), width, height) if smallest <= s <= largest] or [SCALES[-1]]
     for scale in tries:
         made = build(scale)
         if (made.box.width <= width and made.box.height <= height) or scale == tries[-1]:
@@ -167,6 +175,53 @@ def fitted(
     return replace(shifted(made, x, -made.box.y1), height=made.box.height), made, scale
 
 
-def centre_cross(x: float, y: float, half: float) -> tuple[Item, ...]:
-    """Centre lines of a hole or a round view."""
-    return (Line(x - half, y, x + half, y, "centre"), Line(x, y - half, x, y + half, "centre"))
+def free(drawn: Drawn, width: float, height: float) -> Block:
+    """A picture without scale that fills the room."""
+    box = drawn.box
+    scale = min((width - 4) / max(box.width, 1e-6), (height - 4) / max(box.height, 1e-6))
+    items = at_scale(drawn, scale)
+    box = bounds(items)
+    x = (width - box.width) / 2 - box.x0
+    return Block(box.height + 4, moved(items, x, -2 - box.y1))
+
+
+def free_labelled(drawn: Drawn, asks: Sequence[Ask], width: float, height: float) -> Block:
+    """A picture without scale, with labels on leaders, as large as the room allows."""
+    box = drawn.box
+    scale = min(width / max(box.width, 1e-6), height / max(box.height, 1e-6))
+    for _ in range(12):
+        scale *= 0.93
+        made = dimensioned(drawn, asks, scale, title=False)
+        if made.box.width <= width and made.box.height <= height:
+            break
+    x = (width - made.box.width) / 2 - made.box.x0
+    return replace(shifted(made, x, -made.box.y1), height=made.box.height)
+
+
+def close_up(drawn: Drawn, around: Box, asks: Sequence[Ask], width: float, height: float) -> Block:
+    """A picture of the surroundings of ``around`` (model mm), cropped to the room; the whole when that is larger."""
+    box = drawn.box
+    whole = min((width - 16) / max(box.width, 1e-6), (height - 14) / max(box.height, 1e-6))
+    near = min(0.5 * width / max(around.width, 1e-6), 0.5 * height / max(around.height, 1e-6))
+    scale = min(max(whole, near), 6 * whole)
+    if scale < 1.2 * whole:
+        scale, around = whole, box
+    x, y = (around.x0 + around.x1) / 2 * scale, (around.y0 + around.y1) / 2 * scale
+    window = Box(x - width / 2, y - height / 2, x + width / 2, y + height / 2)
+    items = clipped(at_scale(drawn, scale), window)
+    placed_ = place(drawn.name, items, asks, scale, limits=window.grown(-1.0))
+    every = moved((*items, *placed_.items), -window.x0, -window.y1)
+    dims = tuple(d.moved(-window.x0, -window.y1) for d in placed_.dimensions)
+    view = View(drawn.name, scale, (-window.x0, -window.y1), window.moved(-window.x0, -window.y1))
+    return Block(height, every, dims, (view,))
+
+
+def stacked(upper: Set, lower: Set, width: float) -> Block:
+    """Two views on one vertical axis, so that they project onto each other."""
+    left = min(upper.box.x0, lower.box.x0)
+    whole = max(upper.box.x1, lower.box.x1) - left
+    x = (width - whole) / 2 - left
+    first = shifted(upper, x, -upper.box.y1)
+    second = shifted(lower, x, -upper.box.height - 6 - lower.box.y1)
+    return together((first, second), upper.box.height + lower.box.height + 8)
+

@@ -5,14 +5,14 @@ Depends on: drawing, parts.records.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, beside, framed, gap, heading, paragraph, stack
 from fabgen.drawing.hidden import Curve, Direction, dressed, look
-from fabgen.drawing.model import SCALES, Box, Item, bounds, number
+from fabgen.drawing.model import Item, bounds, number
 from fabgen.drawing.pages.base import Context, Draft, draft
 from fabgen.drawing.pages.stock import item_leaders, items_of
-from fabgen.drawing.picture import Body, Drawn, dimensioned, shifted
+from fabgen.drawing.picture import Body, Drawn, close_up
 from fabgen.drawing.texts import has, say
 from fabgen.parts.records import Part
 
@@ -31,14 +31,15 @@ STEPS: tuple[tuple[str, tuple[str, ...]], ...] = (
     ("wall", ("wall", "tube", "seam", "strip")),
     ("lining", ("lining", "foil")),
     ("choke", ("choke",)),
-    ("loop", ("loop", "screw-foot", "nut-foot", "foot")),
-    ("connector", ("connector", "screw-connector", "nut-connector", "spacer")),
+    ("loop", ("loop", "foot")),
+    ("connector", ("connector", "spacer")),
     ("coax", ("coax",)),
     ("capacitor", ("capacitor",)),
     ("radome", ("radome", "cap")),
     ("other", ("",)),
 )
 SEEN_FROM_BELOW = {"connector"}
+FASTENERS = {"screw", "nut", "rivet", "insert", "washer"}
 
 
 @dataclass(frozen=True)
@@ -54,11 +55,17 @@ def steps(parts: tuple[Part, ...]) -> tuple[Step, ...]:
     left = list(parts)
     out: list[Step] = []
     for kind, starts in STEPS:
-        taken = [p for p in left if any(p.key.startswith(s) for s in starts)]
+        taken = [p for p in left if any(_place_of(p.key).startswith(s) for s in starts)]
         left = [p for p in left if p not in taken]
         if taken:
             out.append(Step(kind, tuple(taken)))
     return tuple(out)
+
+
+def _place_of(key: str) -> str:
+    """What a part belongs to: a screw, nut, rivet or insert to the part named after the dash."""
+    head, _, rest = key.partition("-")
+    return rest if rest and head in FASTENERS else key
 
 
 def drafts(context: Context) -> list[Draft]:
@@ -93,22 +100,10 @@ def picture_block(context: Context, step: Step, old: list[Body], new: list[Body]
         items += dressed(s.visible, "new" if fresh else "old")
         if fresh:
             shown.append((str(numbers[new[i - len(old)].part.key]), s.visible))
-    focus = bounds(tuple(items))
-    drawn = Drawn("", tuple(items))
-    for scale in SCALES:
-        if focus.width * scale <= PICTURE_MM - 14 and focus.height * scale <= PICTURE_HEIGHT_MM - 12:
-            break
-    made = dimensioned(drawn, item_leaders(shown), scale, title=False)
-    made = replace(made, box=_within(made.box, made.items))
-    height = max(made.box.height + 4, 40.0)
-    x = PICTURE_MM / 2 - (made.box.x0 + made.box.x1) / 2
-    y = -height / 2 - (made.box.y0 + made.box.y1) / 2
-    block = shifted(made, x, y)
-    return replace(block, height=height)
-
-
-def _within(box: Box, items: tuple[Item, ...]) -> Box:
-    return box.joined(bounds(items))
+    fresh_items = tuple(c for _, curves in shown for c in curves)
+    around = bounds(fresh_items) if fresh_items else bounds(tuple(items))
+    drawn = Drawn(f"step {step.kind}", tuple(items))
+    return close_up(drawn, around, item_leaders(shown), PICTURE_MM, PICTURE_HEIGHT_MM)
 
 
 def _text(context: Context, n: int, step: Step) -> Block:
@@ -116,14 +111,14 @@ def _text(context: Context, n: int, step: Step) -> Block:
     names = "; ".join(
         say("assembly.item", item=numbers[p.key], part=p.name, quantity=p.quantity) for p in step.parts
     )
-    blocks = [Block(1.5, ()), heading(say(_key(context, step.kind, "title"), n=n), 3.0)]
-    blocks += paragraph(names, 2.2, TEXT_MM)
+    blocks = [Block(1.5, ()), heading(say(_key(context, step.kind, "title"), n=n), 3.5)]
+    blocks += paragraph(names, 2.5, TEXT_MM)
     values = _values(context)
     for field in ("do", "tools", "join", "measure"):
         key = _key(context, step.kind, field)
         if has(key):
             label = say(f"assembly.{field}")
-            blocks += paragraph(f"{label} {say(key, n=n, **values)}", 2.2, TEXT_MM, bold=False)
+            blocks += paragraph(f"{label} {say(key, n=n, **values)}", 2.5, TEXT_MM, bold=False)
     return stack(blocks)
 
 
@@ -159,6 +154,6 @@ def _values(context: Context) -> dict[str, str]:
 
 
 def _last_block(context: Context, n: int) -> Block:
-    blocks = [heading(say("step.last.title", n=n), 3.0)]
+    blocks = [heading(say("step.last.title", n=n), 3.5)]
     blocks += paragraph(say("step.last.do"), 2.5, COLUMN_WIDTH_MM)
     return stack(blocks)

@@ -5,14 +5,13 @@ Depends on: drawing.flow, drawing.paper, drawing.picture, parts.records, checks.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 from fabgen.checks.records import Finding
-from fabgen.drawing.flow import Block, Page, flow, heading, table
+from fabgen.drawing.flow import Block, Page, flow
 from fabgen.drawing.model import number
 from fabgen.drawing.paper import Paper
 from fabgen.drawing.picture import Body
-from fabgen.drawing.texts import say, size_name
 from fabgen.parts.records import Part
 from fabgen.sizing.records import Feed
 
@@ -67,19 +66,3 @@ def quantity(key: str, value: object) -> str:
         unit = next((u for tail, u in units.items() if key.endswith(tail)), "")
         return f"{number(float(value), 3 if unit == 'pF' else 2)} {unit}".strip()
     return str(value)
-
-
-def sizes_table(part: Part, general: str) -> list[Block]:
-    """The sizes that make a part, as a table."""
-    rows = [(size_name(key), quantity(key if "_" in key else f"{key}_mm", value), general)
-            for key, value in part.sizes]
-    if not rows:
-        return []
-    head = (say("table.size"), say("table.value"), say("table.tolerance"))
-    blocks = table(f"sizes:{part.key}", head, rows)
-    return [heading(say("part.sizes"), 2.5), *blocks]
-
-
-def own_height(block: Block, height: float) -> Block:
-    """The block with another height."""
-    return replace(block, height=height)

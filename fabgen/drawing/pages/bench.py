@@ -57,7 +57,7 @@ def decision_blocks(feed: Feed) -> list[Block]:
     return [
         heading(say("bench.table_head")),
         *paragraph(say("bench.table_intro")),
-        *table("decisions", head, rows, widths=(56, 64, 50), size=2.2),
+        *table("decisions", head, rows, widths=(56, 64, 50)),
     ]
 
 
@@ -200,7 +200,7 @@ def mounting_blocks(context: Context) -> list[Block]:
 def _dish_picture(feed: Feed, focal: float, to_focus: float) -> Block:
     """Dish and feed in section, the axis level; feed drawn three times as large so that it can be seen."""
     radius = 500.0 * feed.job.dish.diameter_m
-    scale = min(58.0 / radius, 105.0 / max(focal + 3 * to_focus, radius**2 / (4 * focal)))
+    scale = min(44.0 / radius, 105.0 / max(focal + 3 * to_focus, radius**2 / (4 * focal)))
     points = tuple(((y * radius / 24) ** 2 / (4 * focal), y * radius / 24) for y in range(-24, 25))
     s, z = feed.sizes, 3.0
     back, rim = focal + to_focus * z, focal + (to_focus - s.can_depth_mm - 0.0) * z

@@ -46,15 +46,14 @@ def findings_blocks(findings: tuple[Finding, ...]) -> list[Block]:
     ]
     red = [i for i, f in enumerate(ordered) if f.severity == "stop"]
     head = tuple(say(f"findings.{k}") for k in ("severity", "code", "where", "measured", "what"))
-    return [*blocks, *table("findings", head, rows, size=2.0, red=red, widths=(20, 24, 32, 34, 60))]
+    return [*blocks, *table("findings", head, rows, size=1.8, red=red, widths=(20, 24, 32, 34, 60))]
 
 
 def cautions_blocks(context: Context) -> list[Block]:
     """Cautions of the work and the site, and the limits within which the figures hold."""
     blocks: list[Block] = [heading(say("cautions.head"))]
-    for key in CAUTIONS:
-        blocks += paragraph(say(f"caution.{key}.head"), bold=True)
-        blocks += paragraph(say(f"caution.{key}"))
+    rows = [(say(f"caution.{key}.head"), say(f"caution.{key}")) for key in CAUTIONS]
+    blocks += table("cautions", (say("cautions.hazard"), say("cautions.what")), rows, widths=(38, 132))
     blocks += [gap(2), heading(say("limits.head"))]
     for i in range(1, 6):
         blocks += paragraph(say(f"limits.{i}"), bullet="–")
@@ -90,7 +89,7 @@ def _checks_table(context: Context) -> list[Block]:
     if not rows:
         return []
     head = tuple(say(f"settings.check_{k}") for k in ("name", "value", "limit", "result", "meaning"))
-    return [heading(say("settings.checks_head"), 3.0), *table("self-checks", head, rows, size=2.2)]
+    return [heading(say("settings.checks_head"), 2.5), *table("self-checks", head, rows)]
 
 
 def _modes_table(context: Context) -> list[Block]:
@@ -102,7 +101,7 @@ def _modes_table(context: Context) -> list[Block]:
     if not rows:
         return []
     head = tuple(say(f"settings.mode_{k}") for k in ("name", "cutoff", "propagates", "excited", "why"))
-    return [heading(say("settings.modes_head"), 3.0), *table("modes", head, rows, size=2.2)]
+    return [heading(say("settings.modes_head"), 2.5), *table("modes", head, rows)]
 
 
 def _yield_table(context: Context) -> list[Block]:
@@ -117,7 +116,7 @@ def _yield_table(context: Context) -> list[Block]:
         (say("yield.hot"), say("yield.drift", mhz=number(y.drift_mhz_hot, 2), db=number(y.return_loss_hot_db, 1))),
     ]  # fmt: skip
     head = (say("settings.what"), say("table.value"))
-    return [heading(say("yield.head"), 3.0), *table("yield", head, rows, size=2.2, widths=(80, 90))]
+    return [heading(say("yield.head"), 2.5), *table("yield", head, rows, widths=(80, 90))]
 
 
 def _sources(context: Context) -> list[Block]:
@@ -137,4 +136,4 @@ def _sources(context: Context) -> list[Block]:
         lining = tables.lining(job.can.lining)
         rows.append((say("source.lining"), lining.name, lining.source.text, lining.source.known_from))
     head = tuple(say(f"source.{k}") for k in ("use", "stock", "text", "known"))
-    return [heading(say("source.head"), 3.0), *table("sources", head, rows, size=2.0, widths=(24, 40, 62, 44))]
+    return [heading(say("source.head"), 2.5), *table("sources", head, rows, size=1.8, widths=(24, 40, 62, 44))]

@@ -5,13 +5,15 @@ Depends on: drawing, checks.records.
 
 from __future__ import annotations
 
-from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, arrow
+import math
+
+from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, arrow, leader
 from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, gap, heading, paragraph, table
 from fabgen.drawing.flow import column_height as height_of
-from fabgen.drawing.hidden import APERTURE, SIDE
-from fabgen.drawing.model import RED, SCALES, Arc, Item, Line, Text, bounds, number, scale_text
+from fabgen.drawing.hidden import APERTURE, FROM_GAP, GAP_PLAN, SIDE
+from fabgen.drawing.model import RED, Arc, Item, Line, Text, bounds, number, scale_text
 from fabgen.drawing.pages.base import Context, Draft, draft, quantity, toleranced
-from fabgen.drawing.picture import Set, cut, dimensioned, outside, shifted, together
+from fabgen.drawing.picture import Drawn, cut, dimensioned, outside, scales_for, stacked
 from fabgen.drawing.texts import say, size_name
 
 WIDTH_MM = COLUMN_WIDTH_MM
@@ -27,6 +29,7 @@ def drafts(context: Context) -> list[Draft]:
     views, scale = arrangement(context)
     blocks = [
         views,
+        *detail(context),
         *_purpose(context),
         *_sizes(context),
         *_performance(context),
@@ -40,25 +43,15 @@ def arrangement(context: Context) -> tuple[Block, str]:
     section = cut(say("view.section_e"), context.bodies, SIDE)
     front = outside(say("view.aperture"), context.bodies, APERTURE)
     room = height_of(context.paper) - 1
-    for scale in SCALES:
+    for scale in scales_for((section, front), WIDTH_MM, room):
         if scale > 1:
             continue
         a = dimensioned(section, section_asks(context), scale, lambda s, i: _axis_and_focus(context, s, i))
-        b = dimensioned(front, front_asks(context), scale, _cutting_plane)
+        b = dimensioned(front, front_asks(front), scale, _cutting_plane)
         if max(a.box.width, b.box.width) <= WIDTH_MM and a.box.height + b.box.height + 8 <= room:
             break
     upper, lower = (a, b) if context.feed.job.limits.projection == "first" else (b, a)
-    return _stacked(upper, lower), scale_text(scale)
-
-
-def _stacked(upper: Set, lower: Set) -> Block:
-    """Two views on one vertical axis, so that they project onto each other."""
-    left = min(upper.box.x0, lower.box.x0)
-    width = max(upper.box.x1, lower.box.x1) - left
-    x = (WIDTH_MM - width) / 2 - left
-    first = shifted(upper, x, -upper.box.y1)
-    second = shifted(lower, x, -upper.box.height - 6 - lower.box.y1)
-    return together((first, second), upper.box.height + lower.box.height + 8)
+    return stacked(upper, lower, WIDTH_MM), scale_text(scale)
 
 
 def section_asks(context: Context) -> list[Ask]:
@@ -72,10 +65,6 @@ def section_asks(context: Context) -> list[Ask]:
         along_y("can_depth_mm", 0, depth, -bore, "left", toleranced(feed, "can_depth_mm", depth)),
         along_y("loop_height_mm", 0, s.loop_height_mm, bore, "right",
                 toleranced(feed, "loop_height_mm", s.loop_height_mm), x1=r),
-        along_y("tap_height_mm", 0, s.tap_height_mm, bore, "right",
-                toleranced(feed, "tap_height_mm", s.tap_height_mm), x1=s.leg_pitch_mm / 2),
-        along_x("leg_pitch_mm", -s.leg_pitch_mm / 2, s.leg_pitch_mm / 2, 0, "bottom",
-                toleranced(feed, "leg_pitch_mm", s.leg_pitch_mm)),
         along_x("loop_diameter_mm", -r, r, s.loop_height_mm, "bottom",
                 toleranced(feed, "loop_diameter_mm", 2 * r, DIAMETER)),
     ]  # fmt: skip
@@ -90,10 +79,82 @@ def section_asks(context: Context) -> list[Ask]:
     return asks
 
 
-def front_asks(context: Context) -> list[Ask]:
-    """Dimensions of the view into the aperture; paper x is -y, paper y is x of the feed."""
-    s = context.feed.sizes
-    return [along_y("leg_x_mm", 0, s.leg_x_mm, s.can_bore_mm / 2, "right", number(s.leg_x_mm), x1=-s.leg_pitch_mm / 2)]
+def front_asks(drawn: Drawn) -> list[Ask]:
+    """Overall size of the view into the aperture."""
+    box = drawn.box
+    asks = [along_x("overall", box.x0, box.x1, 0, "bottom")]
+    if abs(box.width - box.height) > 0.1:
+        asks.append(along_y("overall", box.y0, box.y1, 0, "right"))
+    return asks
+
+
+def detail(context: Context) -> list[Block]:
+    """Loop, bars and crossing alone: from the gap's side, and from above."""
+    things = [b for b in context.bodies if b.part.key.split("-")[0] in {"loop", "coax", "capacitor"}]
+    if not things:
+        return []
+    side = outside(say("view.gap_side"), things, FROM_GAP)
+    plan = outside(say("view.loop_above"), things, GAP_PLAN)
+    room = 0.86 * height_of(context.paper)
+    for scale in scales_for((side, plan), WIDTH_MM, room):
+        a = dimensioned(side, side_asks(context, side), scale, _floor_line)
+        b = dimensioned(plan, plan_asks(context), scale, _cross)
+        if max(a.box.width, b.box.width) <= WIDTH_MM and a.box.height + b.box.height + 8 <= room:
+            break
+    upper, lower = (a, b) if context.feed.job.limits.projection == "first" else (b, a)
+    return [stacked(upper, lower, WIDTH_MM), gap(3)]
+
+
+def side_asks(context: Context, drawn: Drawn) -> list[Ask]:
+    """Heights and the pitch of the bars; paper x is y of the feed, paper y is z."""
+    feed, s = context.feed, context.feed.sizes
+    half, box = s.leg_pitch_mm / 2, drawn.box
+    return [
+        along_x("leg_pitch_mm", -half, half, box.y0, "bottom", toleranced(feed, "leg_pitch_mm", 2 * half)),
+        along_y("loop_height_mm", 0, s.loop_height_mm, box.x0, "left",
+                toleranced(feed, "loop_height_mm", s.loop_height_mm)),
+        along_y("tap_height_mm", 0, s.tap_height_mm, box.x1, "right",
+                toleranced(feed, "tap_height_mm", s.tap_height_mm), x1=half),
+    ]  # fmt: skip
+
+
+def plan_asks(context: Context) -> list[Ask]:
+    """Loop and bars from above; paper x is y of the feed, paper y is -x."""
+    feed, s = context.feed, context.feed.sizes
+    r, half = s.loop_diameter_mm / 2, s.leg_pitch_mm / 2
+    asks = [
+        along_x("loop_diameter_mm", -r, r, 0, "top", toleranced(feed, "loop_diameter_mm", 2 * r, DIAMETER)),
+        along_y("leg_x_mm", -s.leg_x_mm, 0, half, "right", toleranced(feed, "leg_x_mm", s.leg_x_mm), x1=0),
+    ]
+    t = math.radians(150)
+    width = s.wire_mm if s.wire_mm is not None else s.strip_width_mm or 0.0
+    at = ((r + width / 2) * math.cos(t), (r + width / 2) * math.sin(t))
+    if s.wire_mm is not None:
+        asks.append(leader("wire_mm", s.wire_mm, say("view.wire", diameter=DIAMETER + number(s.wire_mm)), at, 150))
+    else:
+        text = say("view.strip", width=number(width), thickness=number(s.sheet_mm or 0.0))
+        asks.append(leader("strip_width_mm", width, text, at, 150))
+    return asks
+
+
+def _floor_line(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
+    """The floor's inner face as a wide line with short hatching below."""
+    del scale
+    box = bounds(items)
+    left, right = box.x0 - 4, box.x1 + 4
+    out: list[Item] = [Line(left, 0, right, 0, "outline"), Line(0, box.y0 - 3, 0, box.y1 + 3, "centre")]
+    x = left + 2
+    while x < right:
+        out.append(Line(x, 0, x - 2, -2, "hatch"))
+        x += 2.5
+    return tuple(out)
+
+
+def _cross(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
+    """Centre lines through the axis."""
+    del scale
+    box = bounds(items).grown(3)
+    return (Line(box.x0, 0, box.x1, 0, "centre"), Line(0, box.y0, 0, box.y1, "centre"))
 
 
 def _axis_and_focus(context: Context, scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:

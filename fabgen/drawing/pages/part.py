@@ -1,46 +1,81 @@
-"""One page for each made part: views, dimensions, hole, corner and bend tables, material, tolerance, finish.
+"""One page for each made part: views, dimensions, hole, corner and bend tables, material, tolerance, finish; and
+one listing for the bought parts.
 
 Depends on: drawing, parts.records.
 """
 
 from __future__ import annotations
 
+from typing import Any
+
 from fabgen.drawing import flat as flat_view
-from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, column_height, gap, heading, paragraph, table
-from fabgen.drawing.hidden import ISOMETRIC
+from fabgen.drawing import solid as solid_view
+from fabgen.drawing.dimension import Ask, marks
+from fabgen.drawing.flow import (
+    COLUMN_WIDTH_MM,
+    Block,
+    beside,
+    column_height,
+    gap,
+    heading,
+    paragraph,
+    side_by_side,
+    stack,
+    table,
+)
+from fabgen.drawing.hidden import ABOVE, GAP, ISOMETRIC
 from fabgen.drawing.model import Item, number, scale_text
-from fabgen.drawing.pages.base import Context, Draft, draft, sizes_table
-from fabgen.drawing.picture import Body, Drawn, Set, dimensioned, fitted, outside
-from fabgen.drawing.texts import say
+from fabgen.drawing.pages.base import Context, Draft, draft, quantity
+from fabgen.drawing.picture import Body, Drawn, Set, cut, dimensioned, fitted, free, outside, scales_for, stacked
+from fabgen.drawing.section import opened
+from fabgen.drawing.texts import say, size_name
 from fabgen.parts.records import FlatPattern, Part
 
 WIDTH_MM = COLUMN_WIDTH_MM
+BOUGHT = ("buy",)
 
 
 def drafts(context: Context) -> list[Draft]:
-    """A draft for each part that is made."""
-    return [_draft(context, part) for part in context.parts if part.process != ("buy",)]
+    """A draft for each part that is made, then the bought parts."""
+    out = [_draft(context, part) for part in context.parts if part.process != BOUGHT]
+    bought = [part for part in context.parts if part.process == BOUGHT]
+    return [*out, _bought(context, bought)] if bought else out
 
 
 def _draft(context: Context, part: Part) -> Draft:
-    blocks: list[Block] = []
-    scale = ""
     room = column_height(context.paper)
+    words = [*sizes_blocks(part), *making(part), *notes(part), *_tables(part)]
+    height = sum(b.height for b in words) + 6
+    # On one sheet when the words leave half of it to the views, else the views first and the words as they come.
+    views = room - height if height < 0.4 * room else 0.8 * room
+    pictured = part.solid is not None and part.wire is None and _tells_more(part)
+    share = 0.68 if pictured else 1.0
+    blocks: list[Block] = []
+    scale, left_over = "", ()
     if part.flat is not None:
-        block, scale = flat_block(part.flat, room * 0.62)
+        block, scale, left_over = flat_block(part.flat, views * share - 3)
         blocks += [block, gap(3)]
-    if part.solid is not None:
-        block, iso = solid_block(part, room * (0.3 if part.flat else 0.5))
-        scale = scale or iso
+    elif part.solid is not None:
+        block, scale, left_over = solid_block(part, views * share - 3, context.feed.job.limits.projection)
         blocks += [block, gap(3)]
-    blocks += notes(part)
-    if part.flat is not None:
-        blocks += flat_tables(part.flat)
-    blocks += sizes_table(part, part.tolerance or say("table.general"))
+    if pictured:
+        blocks += [picture(part, min(views - sum(b.height for b in blocks) - 3, 70.0)), gap(3)]
+    blocks += [*left_over_blocks(left_over), *words]
     return draft(
         context, "part", part.name, blocks, part_key=part.key, scale=scale, group="parts",
         material=material_text(part), finish=part.finish, tolerance=part.tolerance,
     )  # fmt: skip
+
+
+def _tells_more(part: Part) -> bool:
+    """True when a picture shows what the views do not: folded, rolled and solid parts, not flat sheet."""
+    return part.flat is None or bool(part.flat.folds) or "roll" in part.process
+
+
+def _tables(part: Part) -> list[Block]:
+    if part.flat is not None:
+        return flat_tables(part.flat)
+    return solid_tables(part.solid()) if part.solid is not None else []
 
 
 def material_text(part: Part) -> str:
@@ -51,9 +86,9 @@ def material_text(part: Part) -> str:
     return ", ".join(w for w in words if w)
 
 
-def flat_block(flat: FlatPattern, room: float) -> tuple[Block, str]:
+def flat_block(flat: FlatPattern, room: float) -> tuple[Block, str, tuple[Ask, ...]]:
     """The flat pattern with dimensions, at the largest scale that fits."""
-    drawn = Drawn(say("view.flat"), flat_view.flat_items(flat))
+    drawn = Drawn(say("view.flat", face=flat.face), flat_view.flat_items(flat))
 
     def extras(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
         lines = flat_view.centre_lines(flat, scale)
@@ -62,20 +97,59 @@ def flat_block(flat: FlatPattern, room: float) -> tuple[Block, str]:
     def build(scale: float) -> Set:
         return dimensioned(drawn, flat_view.asks(flat), scale, extras)
 
-    block, _, scale = fitted(build, WIDTH_MM, room)
-    return block, scale_text(scale)
+    block, made, scale = fitted(drawn, build, WIDTH_MM, room)
+    return block, scale_text(scale), made.left_over
 
 
-def solid_block(part: Part, room: float) -> tuple[Block, str]:
-    """The part as it looks when made."""
-    assert part.solid is not None
-    drawn = outside(say("view.isometric"), [Body(part, part.solid())], ISOMETRIC)
+def solid_block(part: Part, room: float, projection: str) -> tuple[Block, str, tuple[Ask, ...]]:
+    """Front view (cut open where it is hollow) and view from above, one scale, on one axis."""
+    shape = _solid(part)
+    m = solid_view.measured(shape)
+    bodies = [Body(part, shape)]
+    hollow = any(r.hole for r in solid_view.about_axis(m)) and m.low[1] < -1 < 1 < m.high[1]
+    if hollow and opened(shape, GAP) is not None:
+        front = cut(say("view.section_h"), bodies, GAP)
+    else:
+        front = outside(say("view.front"), bodies, GAP, with_hidden=True)
+    plan = outside(say("view.above"), bodies, ABOVE, with_hidden=not hollow)
 
-    def build(scale: float) -> Set:
-        return dimensioned(drawn, (), scale)
+    def extras(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
+        lines = solid_view.centre_lines(m, scale)
+        wanted = [
+            (str(i), (h.x_mm + h.diameter_mm * 0.36, h.y_mm + h.diameter_mm * 0.36))
+            for i, h in enumerate(solid_view.holes(m), start=1)
+        ]
+        return (*lines, *marks(wanted, (*items, *lines), scale))
 
-    block, _, scale = fitted(build, WIDTH_MM, room)
-    return block, scale_text(scale)
+    for scale in scales_for((front, plan), WIDTH_MM, room):
+        a = dimensioned(front, solid_view.front_asks(m), scale)
+        b = dimensioned(plan, solid_view.plan_asks(m), scale, extras)
+        if max(a.box.width, b.box.width) <= WIDTH_MM and a.box.height + b.box.height + 8 <= room:
+            break
+    upper, lower = (a, b) if projection == "first" else (b, a)
+    return stacked(upper, lower, WIDTH_MM), scale_text(scale), (*a.left_over, *b.left_over)
+
+
+def _solid(part: Part) -> Any:
+    return part.solid() if part.solid is not None else None
+
+
+def picture(part: Part, room: float, width: float = WIDTH_MM) -> Block:
+    """The part as it looks when made; not to scale."""
+    return free(outside("", [Body(part, _solid(part))], ISOMETRIC), width, room)
+
+
+def making(part: Part) -> list[Block]:
+    """Material, quantity, tolerance, finish: what the title block may be too small for."""
+    rows = [
+        (say("stock.material"), material_text(part)),
+        (say("stock.quantity"), str(part.quantity)),
+        (say("title.tolerance"), part.tolerance),
+        (say("title.finish"), part.finish),
+        (say("stock.mass"), number(1000 * part.mass_kg, 1)),
+    ]
+    head = (say("part.making"), "")
+    return table(f"making:{part.key}", head, [r for r in rows if r[1]], widths=(40, WIDTH_MM - 40))
 
 
 def notes(part: Part) -> list[Block]:
@@ -88,18 +162,69 @@ def notes(part: Part) -> list[Block]:
     return blocks
 
 
+def sizes_blocks(part: Part, width: float = WIDTH_MM) -> list[Block]:
+    """The sizes that make a part, two columns of names and values."""
+    rows = [(size_name(key), quantity(key, value)) for key, value in part.sizes]
+    if not rows:
+        return []
+    head = (say("part.sizes"), say("table.value"))
+    if width < WIDTH_MM:
+        return table(f"sizes:{part.key}", head, rows, width=width)
+    return side_by_side(f"sizes:{part.key}", head, rows)
+
+
+def left_over_blocks(asks: tuple[Ask, ...]) -> list[Block]:
+    """Dimensions that found no free place on the view, as a list: none is lost."""
+    if not asks:
+        return []
+    rows = [(size_name(a.name), a.text) for a in asks]
+    return table("further", (say("part.further"), say("table.value")), rows)
+
+
 def flat_tables(flat: FlatPattern) -> list[Block]:
-    """Holes, corners and bends."""
+    """Bends, holes, corners."""
     blocks: list[Block] = []
-    holes = flat_view.hole_rows(flat)
-    if holes:
-        head = (say("flat.hole"), "x", "y", say("flat.diameter"))
-        blocks += [heading(say("flat.holes_head"), 2.5), *table("holes", head, holes, widths=(30, 40, 40, 40))]
-    for letter, contour in flat_view.contours(flat):
-        head = (say("flat.corner"), "x", "y", say("flat.next"))
-        rows = flat_view.corner_rows(letter, contour)
-        blocks += [heading(say("flat.corners_head", letter=letter), 2.5), *table(f"corners:{letter}", head, rows)]
     if flat.folds:
         head = tuple(say(f"fold.{k}") for k in ("no", "order", "angle", "way", "radius", "k", "ba", "bd", "from", "to"))
         blocks += [heading(say("fold.head"), 2.5), *table("bends", head, flat_view.fold_rows(flat))]
+    holes = flat_view.hole_rows(flat)
+    if holes:
+        head = (say("flat.hole"), "x", "y", say("flat.diameter"))
+        blocks += [heading(say("flat.holes_head"), 2.5), *side_by_side("holes", head, holes)]
+    for letter, contour in flat_view.contours(flat):
+        head = (say("flat.corner"), "x", "y", say("flat.next"))
+        rows = flat_view.corner_rows(letter, contour)
+        blocks += [heading(say("flat.corners_head", letter=letter), 2.5)]
+        blocks += side_by_side(f"corners:{letter}", head, rows)
     return blocks
+
+
+def solid_tables(shape: Any) -> list[Block]:
+    """Holes of a solid, by the feed's own coordinates."""
+    m = solid_view.measured(shape)
+    blocks: list[Block] = []
+    rows = solid_view.hole_rows(m)
+    if rows:
+        head = (say("flat.hole"), "x", "y", say("flat.diameter"), say("solid.from"), say("solid.to"))
+        blocks += [heading(say("solid.holes_head"), 2.5), *side_by_side("holes", head, rows)]
+    crosses = solid_view.cross_rows(m)
+    if crosses:
+        head = (say("flat.hole"), "x", "y", "z", say("solid.axis"), say("flat.diameter"))
+        blocks += [heading(say("solid.cross_head"), 2.5), *table("cross holes", head, crosses)]
+    return blocks
+
+
+def _bought(context: Context, parts: list[Part]) -> Draft:
+    """Bought parts: a picture and the sizes to order by."""
+    blocks: list[Block] = []
+    for part in parts:
+        lines = [heading(f"{part.name}, {part.quantity} {say('part.off')}", 2.5)]
+        lines += paragraph(material_text(part), width=110.0)
+        lines += sizes_blocks(part, 110.0)
+        text = stack(lines)
+        if part.solid is None:
+            blocks += [text, gap(3)]
+            continue
+        image = picture(part, max(22.0, text.height - 2), 50.0)
+        blocks += [beside((image, text), (0.0, 58.0)), gap(3)]
+    return draft(context, "bought", say("page.bought"), blocks, scale=say("title.not_to_scale"), group="parts")

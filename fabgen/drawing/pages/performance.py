@@ -114,7 +114,7 @@ def pattern_plot(feed: Feed, width: float = 150.0, height: float = 62.0) -> Bloc
         name, role = _plane(c)
         items += plot.curve(axes, c.theta_deg, c.co_dbi, role)
         entries.append((role, say("plot.co", plane=name)))
-    for c, role in zip(cuts, ("curve3", "thin"), strict=False):
+    for c, role in zip(cuts, ("curve3", "centre"), strict=False):
         items += plot.curve(axes, c.theta_deg, c.cross_dbi, role)
         entries.append((role, say("plot.cross", plane=_plane(c)[0])))
     edge = edge_deg(feed)
@@ -147,6 +147,7 @@ def sensitivity_plot(feed: Feed) -> Block:
         for s in ordered
     ]  # fmt: skip
     items = plot.bars(names, values, texts, COLUMN_WIDTH_MM - 8, 62.0)
+    items = (*items, Text(62.0, -6.0 * len(names) - 4.0, say("plot.sensitivity_key"), 1.8))
     return plot.as_block(items, say("plot.sensitivity_title"), COLUMN_WIDTH_MM)
 
 

@@ -8,9 +8,9 @@ from __future__ import annotations
 from fabgen.drawing.dimension import Ask, leader
 from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, column_height, gap, heading, paragraph, table
 from fabgen.drawing.hidden import ISOMETRIC, Curve, dressed, look
-from fabgen.drawing.model import Arc, Item, Line, Point, Polyline, number, scale_text
+from fabgen.drawing.model import Arc, Item, Line, Point, Polyline, number
 from fabgen.drawing.pages.base import Context, Draft, draft
-from fabgen.drawing.picture import Drawn, Set, dimensioned, fitted
+from fabgen.drawing.picture import Drawn, free_labelled
 from fabgen.drawing.texts import say
 from fabgen.parts.contour import bounds_mm
 from fabgen.parts.records import Part
@@ -19,12 +19,10 @@ from fabgen.parts.records import Part
 def drafts(context: Context) -> list[Draft]:
     """The parts and stock list."""
     blocks: list[Block] = []
-    scale = ""
     if context.bodies:
-        picture, scale = numbered_picture(context, column_height(context.paper) * 0.42)
-        blocks += [picture, gap(3)]
+        blocks += [heading(say("view.assembled")), numbered_picture(context, column_height(context.paper) * 0.4), gap(3)]
     blocks += [*_parts_table(context), *_stock_table(context)]
-    return [draft(context, "stock", say("page.stock"), blocks, scale=scale)]
+    return [draft(context, "stock", say("page.stock"), blocks, scale=say("title.not_to_scale"))]
 
 
 def items_of(parts: tuple[Part, ...]) -> dict[str, int]:
@@ -32,7 +30,7 @@ def items_of(parts: tuple[Part, ...]) -> dict[str, int]:
     return {part.key: i for i, part in enumerate(parts, start=1)}
 
 
-def numbered_picture(context: Context, room: float) -> tuple[Block, str]:
+def numbered_picture(context: Context, room: float) -> Block:
     """The whole feed with item numbers on leaders."""
     numbers = items_of(context.parts)
     seen = look([b.shape for b in context.bodies], ISOMETRIC)
@@ -42,13 +40,7 @@ def numbered_picture(context: Context, room: float) -> tuple[Block, str]:
     labels = item_leaders(
         [(str(numbers[b.part.key]), s.visible) for b, s in zip(context.bodies, seen, strict=True)]
     )
-    drawn = Drawn(say("view.assembled"), tuple(items))
-
-    def build(scale: float) -> Set:
-        return dimensioned(drawn, labels, scale)
-
-    block, _, scale = fitted(build, COLUMN_WIDTH_MM, room)
-    return block, scale_text(scale)
+    return free_labelled(Drawn("assembled", tuple(items)), labels, COLUMN_WIDTH_MM, room)
 
 
 def item_leaders(shown: list[tuple[str, tuple[Curve, ...]]]) -> list[Ask]:
@@ -124,7 +116,7 @@ def _parts_table(context: Context) -> list[Block]:
     total = sum(p.mass_kg * p.quantity for p in context.parts)
     rows.append(("", say("stock.total"), "", "", "", "", _grams(total)))
     head = tuple(say(f"stock.{k}") for k in ("item", "part", "quantity", "material", "cut", "process", "mass"))
-    return [heading(say("stock.parts_head")), *table("parts", head, rows, widths=(10, 36, 11, 35, 38, 24, 16), size=2.2)]
+    return [heading(say("stock.parts_head")), *table("parts", head, rows, widths=(12, 37, 10, 36, 34, 24, 17))]
 
 
 def _grams(mass_kg: float) -> str:
@@ -146,7 +138,7 @@ def _stock_table(context: Context) -> list[Block]:
     head = (say("stock.material"), say("stock.form"), say("stock.need"), say("stock.mass"))
     return [
         heading(say("stock.stock_head")),
-        *table("stock", head, rows, widths=(48, 32, 72, 18), size=2.2),
+        *table("stock", head, rows, widths=(46, 32, 74, 18)),
         *paragraph(say("stock.allowance")),
     ]
 

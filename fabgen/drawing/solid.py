@@ -1,0 +1,204 @@
+"""What a solid's faces say of its sizes: levels, diameters about its axis, round holes; and the dimensions for them.
+
+Depends on: drawing.model, drawing.dimension, drawing.flat, drawing.texts.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+from dataclasses import dataclass
+from typing import Any
+
+from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, leader
+from fabgen.drawing.flat import HoleRow, is_bolt_circle
+from fabgen.drawing.model import Item, Line, number
+from fabgen.drawing.texts import say
+
+SAME_MM = 0.01
+MOST_LEVELS = 9
+
+
+@dataclass(frozen=True)
+class Round:
+    """A cylinder parallel to z: axis, diameter, ends, angle covered, and whether it is a hole."""
+
+    x_mm: float
+    y_mm: float
+    diameter_mm: float
+    z0_mm: float
+    z1_mm: float
+    angle_deg: float
+    hole: bool
+
+
+@dataclass(frozen=True)
+class Cross:
+    """A round hole that is not parallel to z: a point on its axis, its direction, its diameter."""
+
+    at: tuple[float, float, float]
+    direction: tuple[float, float, float]
+    diameter_mm: float
+
+
+@dataclass(frozen=True)
+class Measured:
+    """The sizes read from a solid: bounds, levels of flat faces across z, cylinders along z, and cross holes."""
+
+    low: tuple[float, float, float]
+    high: tuple[float, float, float]
+    levels: tuple[float, ...]
+    rounds: tuple[Round, ...]
+    crosses: tuple[Cross, ...]
+
+
+def measured(shape: Any) -> Measured:
+    """Read the solid's plane and cylindrical faces."""
+    box = shape.BoundingBox(1e-4)
+    levels: set[float] = set()
+    pieces: dict[tuple[float, ...], list[tuple[float, float, float]]] = {}
+    crosses: dict[tuple[float, ...], float] = {}
+    for face in shape.Faces():
+        kind = face.geomType()
+        span = face.BoundingBox(1e-4)
+        if kind == "PLANE" and span.zlen < 1e-2:
+            levels.add(round((span.zmin + span.zmax) / 2, 3))
+        elif kind == "CYLINDER":
+            _note_cylinder(face, span, pieces, crosses)
+    return Measured(
+        (box.xmin, box.ymin, box.zmin),
+        (box.xmax, box.ymax, box.zmax),
+        tuple(sorted(levels)),
+        tuple(sorted(_rounds(pieces), key=lambda r: (r.diameter_mm, r.x_mm, r.y_mm, r.z0_mm))),
+        tuple(Cross((k[0], k[1], k[2]), (k[3], k[4], k[5]), d) for k, d in sorted(crosses.items())),
+    )
+
+
+def _note_cylinder(
+    face: Any, span: Any, pieces: dict[tuple[float, ...], list[tuple[float, float, float]]],
+    crosses: dict[tuple[float, ...], float],
+) -> None:  # fmt: skip
+    from OCP.BRepAdaptor import BRepAdaptor_Surface
+    from OCP.TopAbs import TopAbs_REVERSED
+
+    surface = BRepAdaptor_Surface(face.wrapped)
+    cylinder = surface.Cylinder()
+    axis, at = cylinder.Axis().Direction(), cylinder.Axis().Location()
+    # The outward normal points to the axis when the face is reversed or its surface left-handed, not both.
+    hole = (face.wrapped.Orientation() == TopAbs_REVERSED) == cylinder.Position().Direct()
+    angle = math.degrees(abs(surface.LastUParameter() - surface.FirstUParameter()))
+    if abs(abs(axis.Z()) - 1) < 1e-6:
+        key = (round(at.X(), 2) + 0.0, round(at.Y(), 2) + 0.0, round(2 * cylinder.Radius(), 3), float(hole))
+        pieces.setdefault(key, []).append((span.zmin, span.zmax, angle))
+    elif hole and angle > 170:
+        sign = 1.0 if (axis.X(), axis.Y(), axis.Z()) > (0.0, 0.0, 0.0) else -1.0
+        centre = (span.center.x, span.center.y, span.center.z)
+        along = sum(c * a for c, a in zip(centre, (axis.X(), axis.Y(), axis.Z()), strict=True))
+        base = (at.X(), at.Y(), at.Z())
+        shift = along - sum(c * a for c, a in zip(base, (axis.X(), axis.Y(), axis.Z()), strict=True))
+        where = [round(b + shift * a, 2) + 0.0 for b, a in zip(base, (axis.X(), axis.Y(), axis.Z()), strict=True)]
+        way = [round(sign * a, 3) + 0.0 for a in (axis.X(), axis.Y(), axis.Z())]
+        crosses[(*where, *way)] = round(2 * cylinder.Radius(), 3)
+
+
+def _rounds(pieces: dict[tuple[float, ...], list[tuple[float, float, float]]]) -> Iterable[Round]:
+    for (x, y, diameter, hole), spans in pieces.items():
+        merged: list[list[float]] = []
+        for z0, z1, angle in sorted(spans):
+            if merged and z0 < merged[-1][1] + 0.05 and z0 > merged[-1][0] - 0.05:
+                top = merged[-1]
+                top[2] = top[2] + angle if abs(z0 - top[0]) < 0.05 else max(top[2], angle)
+                top[1] = max(top[1], z1)
+            else:
+                merged.append([z0, z1, angle])
+        for z0, z1, angle in merged:
+            yield Round(x, y, diameter, round(z0, 3), round(z1, 3), min(angle, 360.0), bool(hole))
+
+
+def about_axis(m: Measured) -> tuple[Round, ...]:
+    """Cylinders about the feed's axis that are not small holes."""
+    return tuple(r for r in m.rounds if math.hypot(r.x_mm, r.y_mm) < SAME_MM and r.diameter_mm > 8)
+
+
+def holes(m: Measured) -> tuple[Round, ...]:
+    """Full round holes parallel to z, off the axis or small."""
+    axial = set(about_axis(m))
+    return tuple(r for r in m.rounds if r.hole and r.angle_deg > 350 and r not in axial)
+
+
+def hole_rows(m: Measured) -> tuple[tuple[str, ...], ...]:
+    """Rows: number, x, y, diameter, from z, to z."""
+    return tuple(
+        (str(i), f"{r.x_mm:.2f}", f"{r.y_mm:.2f}", f"{DIAMETER}{r.diameter_mm:.2f}", f"{r.z0_mm:.2f}", f"{r.z1_mm:.2f}")
+        for i, r in enumerate(holes(m), start=1)
+    )
+
+
+def cross_rows(m: Measured) -> tuple[tuple[str, ...], ...]:
+    """Rows of holes across: middle of the hole, direction of its axis, diameter."""
+    return tuple(
+        (
+            f"Q{i}",
+            *(f"{v:.2f}" for v in c.at),
+            "; ".join(number(v, 3) for v in c.direction),
+            f"{DIAMETER}{c.diameter_mm:.2f}",
+        )
+        for i, c in enumerate(m.crosses, start=1)
+    )
+
+
+def front_asks(m: Measured) -> list[Ask]:
+    """Dimensions for the view along +y or the section by y = 0: diameters about the axis, levels, overall width."""
+    asks: list[Ask] = []
+    seen: set[float] = set()
+    for r in about_axis(m):
+        half = r.diameter_mm / 2
+        if r.angle_deg < 350 or r.diameter_mm in seen or m.high[0] < half - 0.1 or m.low[0] > -half + 0.1:
+            continue
+        seen.add(r.diameter_mm)
+        z, side = (r.z1_mm, "top") if r.hole else (r.z0_mm, "bottom")
+        text = f"{DIAMETER}{number(r.diameter_mm)}"
+        asks.append(along_x("diameter", -half, half, z, "top" if side == "top" else "bottom", text))
+    width = m.high[0] - m.low[0]
+    if round(width, 2) not in {round(s, 2) for s in seen}:
+        asks.append(along_x("width", m.low[0], m.high[0], m.low[2], "bottom"))
+    levels = [z for z in m.levels if m.low[2] + 0.005 < z <= m.high[2] + 0.005][-MOST_LEVELS:]
+    asks += [along_y("level", m.low[2], z, m.low[0], "left") for z in levels]
+    if not any(abs(z - m.high[2]) < 0.02 for z in levels):
+        asks.append(along_y("height", m.low[2], m.high[2], m.high[0], "right"))
+    return asks
+
+
+def plan_asks(m: Measured) -> list[Ask]:
+    """Dimensions for the view from above: overall sizes, radii of parts of a ring, hole groups."""
+    asks: list[Ask] = [along_y("depth", m.low[1], m.high[1], m.high[0], "right")]
+    for r in about_axis(m):
+        if r.angle_deg < 350:
+            t = math.atan2((m.low[1] + m.high[1]) / 2, (m.low[0] + m.high[0]) / 2)
+            at = (r.diameter_mm / 2 * math.cos(t), r.diameter_mm / 2 * math.sin(t))
+            turn = math.degrees(t) + (0 if not r.hole else 180)
+            asks.append(leader("radius", r.diameter_mm / 2, f"R{number(r.diameter_mm / 2)}", at, turn))
+    groups: dict[tuple[float, float], list[Round]] = {}
+    for hole in holes(m):
+        groups.setdefault((hole.diameter_mm, round(math.hypot(hole.x_mm, hole.y_mm), 1)), []).append(hole)
+    for (diameter, radius), found in sorted(groups.items()):
+        rows = [HoleRow("", h.x_mm, h.y_mm, diameter) for h in found]
+        first = max(found, key=lambda h: (round(h.x_mm + h.y_mm, 3), h.y_mm))
+        angle = math.degrees(math.atan2(first.y_mm, first.x_mm)) if radius > 1 else 45.0
+        t = math.radians(angle)
+        at = (first.x_mm + diameter / 2 * math.cos(t), first.y_mm + diameter / 2 * math.sin(t))
+        text = f"{len(found)} × " if len(found) > 1 else ""
+        text += f"{DIAMETER}{number(diameter)}"
+        if is_bolt_circle(rows):
+            text += " " + say("flat.on_circle", diameter=f"{DIAMETER}{number(2 * radius)}")
+        asks.append(leader("hole", diameter, text, at, angle))
+    return asks
+
+
+def centre_lines(m: Measured, scale: float) -> tuple[Item, ...]:
+    """Crosses on the holes in the view from above, paper mm."""
+    out: list[Item] = []
+    for r in holes(m):
+        x, y, half = r.x_mm * scale, r.y_mm * scale, r.diameter_mm / 2 * scale + 1.2
+        out += [Line(x - half, y, x + half, y, "centre"), Line(x, y - half, x, y + half, "centre")]
+    return tuple(out)
