@@ -28,7 +28,9 @@ class CurrentElements:
     position_m: FloatArray
     moment_am: ComplexArray
 
-    def far_field(self, frequency_hz: float, theta_rad: ArrayLike, phi_rad: ArrayLike) -> tuple[ComplexArray, ComplexArray]:
+    def far_field(
+        self, frequency_hz: float, theta_rad: ArrayLike, phi_rad: ArrayLike
+    ) -> tuple[ComplexArray, ComplexArray]:
         """F_theta, F_phi in volts for the directions given (arrays of one shape), phase referred to the origin."""
         theta, phi = np.broadcast_arrays(np.asarray(theta_rad, float), np.asarray(phi_rad, float))
         t, p = theta.ravel(), phi.ravel()

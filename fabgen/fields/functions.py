@@ -13,6 +13,7 @@ from __future__ import annotations
 
 from collections import defaultdict
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
@@ -54,7 +55,7 @@ def edge_functions(mesh: Mesh, planes: tuple[int, ...] = (), kept: int = 0) -> E
             groups = [[(t, c, 1.0)] for t, c in places]
         else:
             groups = [
-                [(*first, 1.0), (*second, -1.0)] for first, second in zip(places[:-1], places[1:], strict=True)
+                [(*first, 1.0), (*second, -1.0)] for first, second in pairwise(places)
             ]
         for group in groups:
             sides = {t < kept for t, _, _ in group}

@@ -25,6 +25,7 @@ from fabgen.errors import GeometryError, NumericalError
 from fabgen.fields.far_field import CurrentElements, current_elements
 from fabgen.fields.functions import EdgeFunctions, edge_functions
 from fabgen.fields.geometry import SPEED_OF_LIGHT, CanGeometry, FeedGeometry
+from fabgen.fields.intersect import check_no_crossings
 from fabgen.fields.mesh import CROSSING, LOOP, Mesh, check_mesh
 from fabgen.fields.plan import MeshPlan
 from fabgen.fields.surfaces import feed_mesh
@@ -65,11 +66,12 @@ class FieldSolution:
     largest_edge_wavelengths: float
     triangles: int
     unknowns: int
+    above_ground: bool = False
 
     @property
     def radiated_power_w(self) -> float:
-        """Power through the far sphere."""
-        return self.elements.radiated_power_w(self.frequency_hz)
+        """Power through the far sphere, or through its upper half where there is an infinite ground."""
+        return self.elements.radiated_power_w(self.frequency_hz) / (2 if self.above_ground else 1)
 
     @property
     def power_balance(self) -> float:
@@ -169,6 +171,7 @@ class FeedSolver:
         mesh, kept = feed_mesh(feed, self.plan)
         functions = edge_functions(mesh, SYMMETRY_PLANES, kept)
         check_memory(functions.count)
+        check_no_crossings(mesh)
         return _Prepared(mesh, kept, functions, Assembler(mesh, functions, SYMMETRY_PLANES, kept, self.quadrature))
 
     def _can_assembler(self, ready: _Prepared) -> Assembler:
@@ -215,8 +218,11 @@ class _System:
         self.full = full
         self._can = can
         self._inner = inner
-        self._reduced = lu_solve(can.factors, full[:inner, inner:], check_finite=False)
-        schur = full[inner:, inner:] - full[inner:, :inner] @ self._reduced
+        if inner:
+            self._reduced = lu_solve(can.factors, full[:inner, inner:], check_finite=False)
+            schur = full[inner:, inner:] - full[inner:, :inner] @ self._reduced
+        else:
+            self._reduced, schur = full[:0], full.copy()
         self._schur_norm = float(np.abs(schur).sum(0).max())
         self._factors = lu_factor(schur, overwrite_a=True, check_finite=False)
 
@@ -235,13 +241,13 @@ class _System:
     def condition(self) -> float:
         """Estimated one-norm condition of the two factorised blocks, the larger."""
         outer, _ = lapack.zgecon(self._factors[0], self._schur_norm)
-        inner, _ = lapack.zgecon(self._can.factors[0], self._can.norm)
+        inner = lapack.zgecon(self._can.factors[0], self._can.norm)[0] if self._inner else 1.0
         return float(1 / max(min(outer, inner), 1e-300))
 
 
 def _solution(
     ready: _Prepared, frequency_hz: float, surface: SurfaceImpedance, currents: ComplexArray,
-    drive: NDArray[np.float64], system: _System,
+    drive: NDArray[np.float64], system: _System, planes: tuple[int, ...] = SYMMETRY_PLANES,
 ) -> FieldSolution:
     total = complex(2 * drive @ currents)
     if not np.isfinite(currents).all() or total == 0:
@@ -249,10 +255,11 @@ def _solution(
     unit = currents / total
     impedance = 1 / total
     return FieldSolution(
-        frequency_hz, impedance, current_elements(ready.mesh, ready.functions, SYMMETRY_PLANES, unit),
+        frequency_hz, impedance, current_elements(ready.mesh, ready.functions, planes, unit),
         0.5 * impedance.real, _ohmic_power(ready.mesh, ready.functions, surface, unit),
         system.residual(currents, drive), system.condition(),
         ready.mesh.longest_edge_m() * frequency_hz / SPEED_OF_LIGHT, len(ready.mesh.triangles), ready.functions.count,
+        2 in planes,
     )
 
 
@@ -265,6 +272,35 @@ def _ohmic_power(
     gram = overlap(mesh, functions, resistance)
     # half of Re(I* R I), twice for the two halves of the symmetric feed
     return float((currents.conj() @ gram @ currents).real)
+
+
+def solve_mesh(
+    mesh: Mesh,
+    frequency_hz: float,
+    surface: SurfaceImpedance | None = None,
+    planes: tuple[int, ...] = SYMMETRY_PLANES,
+    quadrature: QuadratureSettings | None = None,
+) -> FieldSolution:
+    """Any half structure with a port in the plane y = 0, without keeping a part of it.
+
+    ``planes``: axes whose zero plane is a perfect electric image: 1 for the symmetry of the structure, 2 in
+    addition for an infinite perfect ground under it. Powers and impedance are those of the whole structure, or of
+    the half space above the ground.
+    """
+    surface = surface or SurfaceImpedance()
+    check_mesh(mesh, SPEED_OF_LIGHT / frequency_hz, connected=False)
+    functions = edge_functions(mesh, planes)
+    check_memory(functions.count)
+    assembler = Assembler(mesh, functions, planes, 0, quadrature)
+    matrix = assembler.matrix(frequency_hz)
+    if surface.can_ohm or surface.loop_ohm:
+        matrix += overlap(mesh, functions, surface.per_triangle(mesh))
+    drive = port_drive(mesh, functions)
+    ready = _Prepared(mesh, 0, functions, assembler)
+    none = np.zeros((0, 0), dtype=np.complex128)
+    can = _KeptCan(none, (none, np.zeros(0, dtype=np.int32)), 0.0)
+    system = _System(can, matrix, 0)
+    return _solution(ready, frequency_hz, surface, system.solve(drive), drive, system, planes)
 
 
 def port_drive(mesh: Mesh, functions: EdgeFunctions) -> NDArray[np.float64]:

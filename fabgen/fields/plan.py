@@ -70,12 +70,22 @@ def plan_mesh(feed: FeedGeometry, wavelength_m: float, edges_per_wavelength: flo
     The crossing's cells along are fixed: they are the width of the gap that drives the feed.
     """
     edge = wavelength_m / edges_per_wavelength
-    across = max(3, min(9, round(5 * edges_per_wavelength / DEFAULT_DENSITY)))
-    loop = _loop_counts(feed.loop, 0.6 * edge, across)
+    across = cells_across(edges_per_wavelength)
+    loop = _loop_counts(feed.loop, 0.6 * edge, across, cells_across_crossing(edges_per_wavelength))
     return MeshPlan(feed, edge, _frame(feed, wavelength_m, across, edge), loop, _can_counts(feed.can, edge))
 
 
-def _loop_counts(loop: LoopGeometry, edge: float, across: int) -> LoopCounts:
+def cells_across(edges_per_wavelength: float) -> int:
+    """Cells across a strip at a mesh density; strips are widened for just this number (``fields.strips``)."""
+    return max(3, min(9, round(5 * edges_per_wavelength / DEFAULT_DENSITY)))
+
+
+def cells_across_crossing(edges_per_wavelength: float) -> int:
+    """Cells across the crossing."""
+    return 2 if cells_across(edges_per_wavelength) < 7 else 4
+
+
+def _loop_counts(loop: LoopGeometry, edge: float, across: int, crossing: int) -> LoopCounts:
     top = loop.height_m - loop.bend_radius_m
     low = loop.tap_height_m - loop.crossing_band_m / 2
     tab = abs(loop.radius_m - loop.band_m / 2 - loop.leg_x_m - loop.bend_radius_m) if loop.inward else 0.0
@@ -86,7 +96,7 @@ def _loop_counts(loop: LoopGeometry, edge: float, across: int) -> LoopCounts:
         ring=max(8, math.ceil((math.pi * loop.radius_m - loop.leg_pitch_m / 2) / edge)),
         tab=max(1, round(tab / edge)),
         bend=max(2, across - 2),
-        crossing_across=2 if across < 7 else 4,
+        crossing_across=crossing,
         crossing_along=2,
     )
 
@@ -98,10 +108,7 @@ def _can_counts(can: CanGeometry, edge: float) -> CanCounts:
     side = 2 * can.radius_m * math.tan(math.pi / can.flats) if can.flats else 0.0
     # a choke's wall carries the same spokes farther out
     spread = can.choke.radius_m / can.radius_m if can.choke else 1.0
-    if can.flats:
-        rim = 2 * cells(side * spread / 2)
-    else:
-        rim = max(8, cells(math.pi * can.radius_m * spread))
+    rim = 2 * cells(side * spread / 2) if can.flats else max(8, cells(math.pi * can.radius_m * spread))
     body = can.depth_m - edge / 3
     if can.choke is None:
         return CanCounts(rim, cells(body), 0, 0, 0)

@@ -119,14 +119,14 @@ class Assembler:
         for reflection, image, near in zip(self._reflections, self._images, self._near, strict=True):
             self._add_far(k, reflection.factor, image, near, parts)
             self._add_near(k, reflection.factor, image, near, parts)
+        total = parts[0]
         for extra in parts[1:]:
-            parts[0] += extra
-        return parts[0]
+            total += extra
+        return mirrored_sum(total)
 
     def _points(self, corners: FloatArray, count: int) -> tuple[FloatArray, FloatArray]:
         bary, weight = triangle_rule(count)
-        points = np.einsum("ic,tcx->xti", bary, corners).reshape(3, -1)
-        return np.ascontiguousarray(points), weight
+        return np.ascontiguousarray(np.einsum("ic,tcx->xit", bary, corners)), weight
 
     def _add_far(self, k: float, factor: float, image: FloatArray, near: NearTable, parts: list[Any]) -> None:
         points, weight = self._points(self._corners, self.quadrature.far_points)
@@ -185,6 +185,18 @@ def overlap(mesh: Mesh, f: EdgeFunctions, per_triangle: NDArray[Any]) -> NDArray
             mask = (rows >= 0) & (cols >= 0)
             np.add.at(out, (rows[mask], cols[mask]), value[mask])
     return out
+
+
+def mirrored_sum(matrix: ComplexArray, block: int = 256) -> ComplexArray:
+    """matrix + its transpose, in place and in blocks, so that no second matrix is needed."""
+    n = len(matrix)
+    for i in range(0, n, block):
+        for j in range(i, n, block):
+            upper = matrix[i : i + block, j : j + block]
+            total = upper + matrix[j : j + block, i : i + block].T
+            matrix[i : i + block, j : j + block] = total
+            matrix[j : j + block, i : i + block] = total.T
+    return matrix
 
 
 def _run_slices(work: Callable[[int, int, int], None], marks: Any) -> None:

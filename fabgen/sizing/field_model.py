@@ -1,8 +1,10 @@
 """The border between sizes in millimetres and the field computation in metres; the only place that converts.
 
-    round wire of diameter d  -> strip of width 2 d (four radii); bars close together: the width whose coplanar pair
-                                 has the impedance of the two wires
-    sheet w x t               -> strip of width w + t (equal edge capacitance to first order)
+    round wire of diameter d  -> strip of width 2 d (four radii); the bars: the width whose coplanar pair has the
+                                 impedance of the two wires
+    sheet w x t               -> strip of width w + t (the edge faces count half each)
+
+Both are corrected for the number of cells across (``fields.strips``).
 
 Depends on: stock, theory, fields, sizing.records.
 """
@@ -14,13 +16,15 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from fabgen.errors import GeometryError
 from fabgen.fields.geometry import CanGeometry, ChokeGeometry, FeedGeometry, LoopGeometry
 from fabgen.fields.model import FeedSolver, FieldSolution, SurfaceImpedance
-from fabgen.fields.plan import DEFAULT_DENSITY, plan_mesh
+from fabgen.fields.plan import DEFAULT_DENSITY, cells_across, cells_across_crossing, plan_mesh
+from fabgen.fields.strips import lone_strip_width_m, paired_strip_width_m
 from fabgen.fields.sweep import SweepResult, adaptive_sweep
 from fabgen.sizing.records import Sizes
 from fabgen.stock.records import Lining, Metal
-from fabgen.theory.lines import strip_width_for_two_wires_mm
+from fabgen.theory.lines import coplanar_strips_ohm, two_wire_ohm
 from fabgen.theory.skin import lining_impedance_ohm, metal_impedance_ohm
 
 SWEEP_STEP = 0.005
@@ -38,36 +42,47 @@ class Losses:
     lining_sheet_resistance_ohm: float | None = None
 
 
-def feed_geometry(sizes: Sizes) -> FeedGeometry:
-    """Sizes as thin surfaces in metres."""
+def feed_geometry(sizes: Sizes, edges_per_wavelength: float = DEFAULT_DENSITY) -> FeedGeometry:
+    """Sizes as thin surfaces in metres, for a mesh of the density given."""
     choke = None
     if sizes.choke is not None:
         choke = ChokeGeometry(
             sizes.choke.bore_mm / 2e3, sizes.choke.floor_z_mm / 1e3, sizes.choke.depth_mm / 1e3
         )
     can = CanGeometry(sizes.can_bore_mm / 2e3, sizes.can_depth_mm / 1e3, sizes.can_flats, choke)
-    band, leg_band = strip_widths_mm(sizes)
+    band, leg_band = strip_widths_m(sizes, cells_across(edges_per_wavelength))
+    crossing = lone_strip_width_m(sizes.crossing_width_mm / 4e3, cells_across_crossing(edges_per_wavelength))
     bend = sizes.leg_bend_radius_mm + (sizes.sheet_mm or 0.0) / 2
     if sizes.conductor == "wire":
         # a strip needs room on the inside of the bend
-        bend = max(bend, 0.55 * band)
+        bend = max(bend, 0.55e3 * band)
     return FeedGeometry(
         can,
         LoopGeometry(
             "wire" if sizes.conductor == "wire" else "sheet",
-            sizes.loop_diameter_mm / 2e3, sizes.loop_height_mm / 1e3, band / 1e3, leg_band / 1e3,
+            sizes.loop_diameter_mm / 2e3, sizes.loop_height_mm / 1e3, band, leg_band,
             sizes.leg_pitch_mm / 1e3, sizes.leg_x_mm / 1e3, bend / 1e3, sizes.tap_height_mm / 1e3,
-            sizes.crossing_width_mm / 1e3, sizes.tabs != "outward",
+            crossing, sizes.tabs != "outward",
         ),
     )
 
 
-def strip_widths_mm(sizes: Sizes) -> tuple[float, float]:
-    """Equivalent strip widths of ring and bars."""
+def strip_widths_m(sizes: Sizes, cells: int) -> tuple[float, float]:
+    """Widths of the meshed strips, ``cells`` across, that stand for ring and bars."""
+    pitch = sizes.leg_pitch_mm
     if sizes.wire_mm is not None:
-        return 2 * sizes.wire_mm, strip_width_for_two_wires_mm(sizes.leg_pitch_mm, sizes.wire_mm)
-    thickness = sizes.sheet_mm or 0.0
-    return (sizes.strip_width_mm or 0.0) + thickness, sizes.leg_width_mm + thickness
+        ring_radius, pair = sizes.wire_mm / 2, two_wire_ohm(pitch, sizes.wire_mm)
+    else:
+        thickness = sizes.sheet_mm or 0.0
+        ring_radius = ((sizes.strip_width_mm or 0.0) + thickness) / 4
+        bar = sizes.leg_width_mm + thickness
+        if bar >= pitch:
+            raise GeometryError(
+                f"bars {sizes.leg_width_mm:g} mm wide and {thickness:g} mm thick at a pitch of {pitch:g} mm touch; "
+                f"the pitch must be above {bar:g} mm"
+            )
+        pair = coplanar_strips_ohm(pitch - bar, bar)
+    return lone_strip_width_m(ring_radius / 1e3, cells), paired_strip_width_m(pair, pitch / 1e3, cells)
 
 
 @dataclass(frozen=True)
@@ -114,7 +129,7 @@ class FieldModel:
 
     def solve(self, sizes: Sizes, frequency_mhz: float) -> FieldSolution:
         """One solve. Raises GeometryError for sizes that clash."""
-        geometry = feed_geometry(sizes)
+        geometry = feed_geometry(sizes, self.edges_per_wavelength)
         self.solves += 1
         return self._solver(geometry).solve(geometry, frequency_mhz * 1e6, self.surface(sizes, frequency_mhz))
 
@@ -137,7 +152,7 @@ class FieldModel:
 
     def sweep(self, sizes: Sizes, start_mhz: float, stop_mhz: float, capacitor_pf: float) -> FieldSweep:
         """Impedance and axial field over a band by at most 13 full solves."""
-        geometry = feed_geometry(sizes)
+        geometry = feed_geometry(sizes, self.edges_per_wavelength)
         solver = self._solver(geometry)
         middle = 0.5 * (start_mhz + stop_mhz)
 
