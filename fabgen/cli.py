@@ -92,6 +92,7 @@ def _add_start(commands: _Commands, common: argparse.ArgumentParser) -> None:
     parser.add_argument("template", metavar="TEMPLATE", nargs="?", help="name of a template; --list shows them")
     parser.add_argument("-o", "--output", metavar="FILE", type=Path, help="the job file to write (TEMPLATE.toml)")
     parser.add_argument("--list", action="store_true", help="list the templates, one line each")
+    parser.add_argument("--keys", action="store_true", help="print the page of every key of the job file")
 
 
 def _add_size(commands: _Commands, common: argparse.ArgumentParser) -> None:

@@ -39,6 +39,11 @@ def start(arguments: argparse.Namespace) -> int:
     """Writes a job file; asks only on a terminal and only when no template is named."""
     from fabgen.start import DEFAULT_TEMPLATE, ask_job, template, templates, write_job_file
 
+    if arguments.keys:
+        from fabgen.job_page import job_page
+
+        sys.stdout.write(job_page())
+        return 0
     asks = sys.stdin.isatty() and sys.stdout.isatty() and arguments.template is None and not arguments.list
     if arguments.list or (arguments.template is None and arguments.output is None and not asks):
         width = max(len(item.name) for item in templates())
