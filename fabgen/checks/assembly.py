@@ -168,7 +168,7 @@ def metal_takes_solder(context: Context) -> Iterator[Fault]:
         value=metal.name,
         limit="a metal that takes soft solder",
         message=f"{joint} cannot be soldered to {metal.name}",
-        cure=f"solder to a plate of 0.5 to 1 mm brass or copper bolted to the floor with four M3 or more,{feet} or make "
+        cure=f"solder to a plate of 0.5 to 1 mm brass or copper bolted to the floor with four M3,{feet} or make "
         "the floor of brass, copper or zinc-coated steel",
     )
 
