@@ -1,0 +1,77 @@
+"""A can of sheet metal, rolled or folded: the parts that both have in common.
+
+Depends on: errors, stock, parts (wall_plan, wall_strip, floor_sheet, choke_ring, kernel, making), sizing.records.
+"""
+
+from __future__ import annotations
+
+from functools import partial
+
+from fabgen.parts.bend_rule import rule_text
+from fabgen.parts.choke_ring import choke_fixings, choke_ring
+from fabgen.parts.floor_sheet import floor_sheet
+from fabgen.parts.kernel import once
+from fabgen.parts.making import metal_part
+from fabgen.parts.records import Part
+from fabgen.parts.wall_plan import wall_plan
+from fabgen.parts.wall_strip import Wall, wall_flat, wall_solid, wall_volume_mm3
+from fabgen.sizing.records import Feed
+from fabgen.stock import tables
+
+
+def can_wall(feed: Feed) -> Wall:
+    """The wall of the can itself."""
+    s = feed.sizes
+    return wall_plan(feed, s.can_bore_mm, s.can_depth_mm, 0.0, "wall", choke_fixings(feed))
+
+
+def choke_wall(feed: Feed) -> Wall | None:
+    """The wall of the choke, if there is one."""
+    choke = feed.sizes.choke
+    if choke is None:
+        return None
+    return wall_plan(feed, choke.bore_mm, choke.depth_mm, choke.floor_z_mm, "choke wall")
+
+
+def sheet_can(feed: Feed) -> tuple[Part, ...]:
+    """Floor and wall, ring and wall of the choke."""
+    wall = can_wall(feed)
+    parts = [floor_sheet(feed, wall), _wall_part(feed, wall, "wall", "wall of the can")]
+    outer = choke_wall(feed)
+    if outer is not None:
+        parts += [choke_ring(feed, wall, outer), _wall_part(feed, outer, "choke-wall", "wall of the choke")]
+    return tuple(parts)
+
+
+def _wall_part(feed: Feed, wall: Wall, key: str, name: str) -> Part:
+    corner = feed.job.limits.corner_radius_mm
+    tab, seam = wall.tab, wall.seam
+    solder = tables.metal(feed.job.can.metal).solderable
+    joint = "solder seam and floor joint all round" if solder else "screws or blind rivets in all holes"
+    sizes = (
+        ("flat_length_mm", wall.path.flat_mm),
+        ("depth_mm", wall.depth_mm),
+        ("wall_mm", wall.path.thickness_mm),
+        ("inside_radius_mm", tab.inside_radius_mm),
+        ("seam_hole_mm", seam.hole_mm),
+        ("tab_width_mm", tab.width_mm),
+        ("tab_count", float(len(wall.tabs_mm))),
+    )
+    form = "fold" if feed.sizes.can_flats else "roll"
+    return metal_part(
+        key,
+        name,
+        ("laser", "fold", "roll") if form == "roll" else ("laser", "fold"),
+        (feed.job.can.metal, feed.job.can.temper),
+        feed,
+        volume_mm3=wall_volume_mm3(wall, corner),
+        sizes=sizes,
+        flat=wall_flat(wall, corner),
+        thickness_mm=wall.path.thickness_mm,
+        solid=once(partial(wall_solid, wall)),
+        notes=(
+            f"{form} with the seen side out; the tail of the seam outside, seam at +y; step first, tabs last",
+            f"{joint}; holes fit {seam.screw} screws and rivets",
+            rule_text(feed.job.limits),
+        ),
+    )

@@ -1,0 +1,211 @@
+"""The floor of the choke: a ring of sheet about the can, held to its wall by tabs inside the ring.
+
+Seen from the aperture (top side)::
+
+          .-----------.        outside: round, with the holes of the choke wall's tabs
+        /   .-------.   \\
+       |   /  |tab|  \\   |     inside: follows the can's wall with CLEARANCE; tabs fold down (away from the
+       |  |           |  |     aperture) along the wall, their holes meet the wall's
+       |   \\  |tab|  /   |     a recess at the seam lets the wall's lap through
+        \\   '-------'   /
+          '-----------'
+
+Depends on: errors, stock, parts (contour, folding, wall_strip, wall_plan, kernel, making), sizing.records.
+"""
+
+from __future__ import annotations
+
+import math
+from functools import partial
+
+from fabgen.errors import GeometryError
+from fabgen.parts.bend_rule import rule_text
+from fabgen.parts.contour import Circle, Contour, Point, Vertex, reversed_contour, rounded, split_arc, tidied
+from fabgen.parts.floor_sheet import BARE_RIM_MM
+from fabgen.parts.folding import (
+    LEVEL,
+    Bend,
+    Face,
+    FoldedSheet,
+    Frame,
+    allowance_mm,
+    edge_of,
+    flat_pattern,
+    folded_solid,
+    folded_volume_mm3,
+)
+from fabgen.parts.kernel import once
+from fabgen.parts.making import metal_part
+from fabgen.parts.records import Part
+from fabgen.parts.strip_path import Stretch, offset_side, outward, part_of
+from fabgen.parts.wall_plan import SOLDERED_PITCH_FACTOR, joint_screw, tab_shape
+from fabgen.parts.wall_strip import SEAM_GAP_MM, TabShape, Wall, corner_round_mm, tab_holes, tabs_width_mm
+from fabgen.sizing.records import Feed
+from fabgen.stock import tables
+
+CLEARANCE_MM = 0.15
+"""Between the ring and the can's wall, all round. Common practice, no source."""
+RECESS_MARGIN_MM = 1.0
+"""The recess at the seam is that much longer than the lap at each end."""
+
+
+def _down(feed: Feed) -> bool:
+    """Whether the ring's tabs have room under the ring, above the screws of the can's floor."""
+    choke = feed.sizes.choke
+    if choke is None:
+        return True
+    screw = joint_screw(feed.sizes.can_bore_mm)
+    shape = tab_shape(feed, screw, feed.sizes.floor_mm)
+    tip = choke.floor_z_mm - feed.sizes.floor_mm - shape.inside_radius_mm - shape.length_mm
+    return tip >= feed.sizes.wall_mm + screw.head_height_mm + 0.5
+
+
+def choke_fixings(feed: Feed) -> tuple[float, int] | None:
+    """Height over the floor and number of the holes in the can's wall that hold the ring; None without a choke."""
+    choke, s = feed.sizes.choke, feed.sizes
+    if choke is None:
+        return None
+    shape = tab_shape(feed, joint_screw(s.can_bore_mm), s.floor_mm)
+    along = shape.inside_radius_mm + s.floor_mm / 2 + shape.hole_from_bend_mm
+    height = choke.floor_z_mm - s.floor_mm / 2 + (-along if _down(feed) else along)
+    if not shape.hole_mm < height < s.can_depth_mm - 2 * shape.hole_mm:
+        raise GeometryError(
+            f"the choke's ring at z = {choke.floor_z_mm:g} mm puts its screws at {height:.1f} mm on a wall of "
+            f"{s.can_depth_mm:g} mm; set can.choke.floor_z_mm lower by {height - s.can_depth_mm + 2 * shape.hole_mm:.1f} mm"
+        )
+    pitch = tables.limit("seam_screw_pitch_max_wavelengths", feed.job.overrides).value * feed.job.wavelength_mm
+    if tables.metal(feed.job.can.metal).solderable:
+        pitch *= SOLDERED_PITCH_FACTOR
+    round_mm = math.pi * s.can_bore_mm
+    most = math.floor(round_mm / (shape.width_mm + 2 * shape.relief_mm + 2.0)) - 2
+    return height, max(3, min(math.ceil(round_mm / pitch), most))
+
+
+def _tab_edge(shape: TabShape, root: float, tip: float, half_mm: float) -> list[Vertex]:
+    """Round a tab's reliefs in a frame with x outward from the wall's mid-surface; the ends on the inner edge are
+    left to the caller."""
+    b, half = shape.relief_mm, half_mm
+    c = tip - b / 2
+    return [
+        *split_arc((c, -half - b / 2), b / 2, -90.0, 180.0), Vertex(c, -half), Vertex(root, -half), Vertex(root, half),
+        *split_arc((c, half + b / 2), b / 2, -90.0, 180.0), Vertex(c, half + b),
+    ]  # fmt: skip
+
+
+def _placed(vertices: list[Vertex], place: Point, heading_deg: float) -> list[Vertex]:
+    ox, oy = outward(heading_deg)
+    return [
+        Vertex(place[0] + v.x_mm * ox - v.y_mm * oy, place[1] + v.x_mm * oy + v.y_mm * ox, v.bulge) for v in vertices
+    ]
+
+
+def _recess(feed: Feed, wall: Wall, start: Vertex, end: Vertex) -> list[Vertex]:
+    """From the inner edge before the step, out round the lap, to the inner edge behind the tail."""
+    (x, y), heading = wall.path.at(0.0)
+    ox, oy = outward(heading)
+
+    def local(v: Vertex) -> Point:
+        dx, dy = v.x_mm - x, v.y_mm - y
+        return dx * ox + dy * oy, -dx * oy + dy * ox
+
+    low, high = local(start)[1], local(end)[1]
+    out = wall.path.thickness_mm * 1.5 + SEAM_GAP_MM + CLEARANCE_MM
+    r = max(feed.job.limits.corner_radius_mm, 0.5)
+    c = out - r
+    shape = [
+        *split_arc((c, low + r), r, -90.0, 90.0), Vertex(out, low + r),
+        *split_arc((c, high - r), r, 0.0, 90.0), Vertex(c, high),
+    ]  # fmt: skip
+    return [start, *_placed(shape, (x, y), heading)]
+
+
+def _inner_edge(feed: Feed, wall: Wall, shape: TabShape, root: float, tip: float) -> tuple[Contour, list[int]]:
+    """The ring's inner contour, clockwise, and the index of each tab's root on it in order along the wall."""
+    edge = wall.path.thickness_mm / 2 + CLEARANCE_MM
+    outer = shape.width_mm / 2 + shape.relief_mm
+    lap = wall.path.stretches[-1].flat_mm + RECESS_MARGIN_MM
+    stop = wall.seam.step_at_mm - RECESS_MARGIN_MM
+    vertices: list[Vertex] = []
+    roots: list[tuple[Point, Point]] = []
+    for at, piece in zip(wall.path.starts_mm(), wall.path.stretches, strict=False):
+        last = min(1.0, (stop - at) / piece.flat_mm)
+        cursor = max(0.0, (lap - at) / piece.flat_mm)
+        if cursor >= 1.0 or last <= 0.0:
+            continue
+        for hole in wall.holes:
+            share = (hole.along_mm - at) / piece.flat_mm
+            if not cursor < share < last:
+                continue
+            reach = piece.radius_mm + edge
+            span = math.asin(outer / reach) / math.radians(piece.sweep_deg) if piece.radius_mm else outer / piece.flat_mm
+            left = part_of(piece, cursor, share - span)
+            vertices += [*offset_side(left, edge), _end_of(left, edge)]
+            place, heading = piece.at(share)
+            tab = _placed(_tab_edge(shape, root, tip, shape.width_mm / 2), place, heading)
+            vertices += tab
+            ends = _placed([Vertex(root, -shape.width_mm / 2), Vertex(root, shape.width_mm / 2)], place, heading)
+            roots.append(((ends[1].x_mm, ends[1].y_mm), (ends[0].x_mm, ends[0].y_mm)))
+            cursor = share + span
+        rest = part_of(piece, cursor, last)
+        vertices += [*offset_side(rest, edge), _end_of(rest, edge)]
+    closing = _recess(feed, wall, vertices[-1], vertices[0])
+    ring = reversed_contour(tidied(Contour((*vertices[:-1], *closing))))
+    return ring, [edge_of(ring, *ends) for ends in roots]
+
+
+def _end_of(piece: Stretch, right_mm: float) -> Vertex:
+    (x, y), heading = piece.at(1.0)
+    ox, oy = outward(heading)
+    return Vertex(x + right_mm * ox, y + right_mm * oy)
+
+
+def folded_ring(feed: Feed, wall: Wall, outer: Wall) -> FoldedSheet:
+    """Faces and bends of the ring about ``wall`` that carries the wall ``outer``."""
+    t = feed.sizes.floor_mm
+    shape = tab_shape(feed, joint_screw(feed.sizes.can_bore_mm), t)
+    r = shape.inside_radius_mm
+    sign = -1.0 if _down(feed) else 1.0
+    bend = Bend(sign * 90.0, r, shape.k_factor, 1)
+    root = wall.path.thickness_mm / 2 + CLEARANCE_MM + r + t
+    zone = allowance_mm(bend, t)
+    tip = max(root - zone / 2 + r + t, root + shape.relief_mm / 2)
+    inner, roots = _inner_edge(feed, wall, shape, root, tip)
+    disc = Contour(split_arc((0.0, 0.0), tabs_width_mm(outer) / 2 + BARE_RIM_MM, 0.0, 360.0))
+    width, soft = shape.width_mm, corner_round_mm(shape)
+    outline = rounded([(0, 0, 0), (width, 0, 0), (width, shape.length_mm, soft), (0, shape.length_mm, soft)])
+    hole = Circle(width / 2, shape.hole_from_bend_mm, shape.hole_mm)
+    faces = [Face("ring", disc, (inner, *tab_holes(outer)))]
+    for number, index in enumerate(roots, start=1):
+        faces.append(Face(f"tab {number}", outline, (hole,), "ring", (1, index), bend))
+    return FoldedSheet(tuple(faces), t)
+
+
+def choke_ring(feed: Feed, wall: Wall, outer: Wall) -> Part:
+    """The ring as a part in the feed's frame: its upper face is the choke's floor."""
+    choke, t = feed.sizes.choke, feed.sizes.floor_mm
+    if choke is None:
+        raise GeometryError("this feed has no choke")
+    sheet = folded_ring(feed, wall, outer)
+    base = Frame((0.0, 0.0, choke.floor_z_mm - t / 2), LEVEL.u, LEVEL.v, LEVEL.n)
+    shape = tab_shape(feed, joint_screw(feed.sizes.can_bore_mm), t)
+    sizes = (
+        ("width_mm", tabs_width_mm(outer) + 2 * BARE_RIM_MM),
+        ("floor_mm", t),
+        ("tab_width_mm", shape.width_mm),
+        ("tab_count", float(len(sheet.faces) - 1)),
+        ("tab_hole_mm", shape.hole_mm),
+        ("inside_radius_mm", shape.inside_radius_mm),
+    )
+    return metal_part(
+        "choke-ring",
+        "floor of the choke",
+        ("laser", "fold"),
+        (feed.job.can.metal, feed.job.can.temper),
+        feed,
+        volume_mm3=folded_volume_mm3(sheet),
+        sizes=sizes,
+        flat=flat_pattern(sheet, "side towards the aperture"),
+        thickness_mm=t,
+        solid=once(partial(folded_solid, sheet, base, "choke ring")),
+        notes=(f"holes fit {shape.screw} screws and rivets", rule_text(feed.job.limits)),
+    )

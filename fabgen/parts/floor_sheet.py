@@ -1,0 +1,113 @@
+"""The floor of a rolled or folded can, cut from sheet; its margin outside the wall is the mounting flange.
+
+Seen from the aperture::
+
+              ^ y, E-plane: round notches of E_MARK radius in the edge at +y and -y
+        .-----v-----.
+      /  o  .---. o   \\     o     flange holes on bolt_circle
+     |    /  ...  \\    |    ...   coax, connector, feet, drains
+     |   |   ...   |    <   V     notch in the edge at +x: the loop's gap
+     |    \\       /    |    '---' wall, outside it the holes of its tabs
+      \\  o  '---' o   /
+        '-----^-----'
+
+One sheet that is wider than the can is the simplest flange: nothing to weld on, and the can's current crosses no
+second joint.
+
+Depends on: errors, stock, parts (contour, floor_plan, floor_holes, wall_strip, kernel, making), sizing.records.
+"""
+
+from __future__ import annotations
+
+import math
+from functools import partial
+
+from fabgen.errors import NotCoveredError
+from fabgen.parts.contour import (
+    Circle,
+    Contour,
+    Outline,
+    Vertex,
+    arc_between,
+    area_mm2,
+    pairs,
+    split_arc,
+    tidied,
+)
+from fabgen.parts.floor_holes import floor_holes
+from fabgen.parts.floor_plan import flange_plan, marked_outline
+from fabgen.parts.kernel import once, prism
+from fabgen.parts.making import metal_part
+from fabgen.parts.records import FlatPattern, Part
+from fabgen.parts.wall_strip import Wall, tab_holes, tabs_width_mm
+from fabgen.sizing.records import Feed
+
+E_MARK_MM = 1.0
+"""Radius of the notches on the E-plane, half as deep as the gap's. Common practice, no source."""
+BARE_RIM_MM = 2.0
+"""Margin outside the tabs of a floor without flange. Common practice, no source."""
+
+
+def floor_sheet(feed: Feed, wall: Wall) -> Part:
+    """The floor for that wall. Raises NotCoveredError for a flange of another thickness than the floor."""
+    s = feed.sizes
+    width = tabs_width_mm(wall)
+    plan = flange_plan(feed, width)
+    holes: tuple[Outline, ...] = (*(h.outline for h in floor_holes(feed)), *tab_holes(wall))
+    sizes = [("floor_mm", s.floor_mm), ("can_bore_mm", s.can_bore_mm), ("tab_hole_mm", wall.tab.hole_mm)]
+    edge: Outline = Circle(0.0, 0.0, width + 2 * BARE_RIM_MM)
+    if plan is not None:
+        if abs(plan.thickness_mm - s.floor_mm) > 1e-9:
+            raise NotCoveredError(
+                f"can.flange.thickness_mm = {plan.thickness_mm:g} differs from floor_mm = {s.floor_mm:g}: floor and "
+                "flange are one sheet here; make them equal or leave the flange's thickness out"
+            )
+        edge, holes = marked_outline(plan), (*holes, *plan.holes)
+        sizes += [("flange_width_mm", plan.width_mm), ("bolt_circle_mm", plan.bolt_circle_mm)]
+    outline = with_e_marks(edge)
+    area = area_mm2(outline) - math.fsum(area_mm2(h) for h in holes)
+    return metal_part(
+        "floor",
+        "floor with flange" if plan else "floor",
+        ("laser",),
+        (feed.job.can.metal, feed.job.can.temper),
+        feed,
+        volume_mm3=area * s.floor_mm,
+        sizes=tuple(sizes),
+        flat=FlatPattern(outline, holes, (), s.floor_mm, "inside"),
+        thickness_mm=s.floor_mm,
+        solid=once(partial(prism, outline, holes, -s.floor_mm, s.floor_mm)),
+        notes=("round notches on the edge: E-plane, seam of the wall at +y; pointed notch: gap of the loop",),
+    )
+
+
+def with_e_marks(outline: Outline, radius_mm: float = E_MARK_MM) -> Contour:
+    """The outline with a half-round notch where the y axis crosses it, above and below."""
+    if isinstance(outline, Circle):
+        # Cut at 45 degrees so that no vertex hides a crossing of the axis.
+        outline = Contour(split_arc((outline.x_mm, outline.y_mm), outline.diameter_mm / 2, 45.0, 360.0))
+    vertices: list[Vertex] = []
+    for a, b in pairs(outline):
+        vertices += _notched(a, b, radius_mm)
+    return tidied(Contour(tuple(vertices)))
+
+
+def _notched(a: Vertex, b: Vertex, r: float) -> list[Vertex]:
+    """The segment from ``a`` (without ``b``), with a notch about x = 0 where it reaches past x = -+r."""
+    if a.bulge == 0.0:
+        if min(a.x_mm, b.x_mm) >= -r or max(a.x_mm, b.x_mm) <= r or abs(a.y_mm - b.y_mm) > 1e-9:
+            return [a]
+        side = math.copysign(1.0, a.x_mm - b.x_mm)
+        return [a, *split_arc((0.0, a.y_mm), r, 0.0 if side > 0 else 180.0, -180.0), Vertex(-side * r, a.y_mm)]
+    arc = arc_between(a, b)
+    half = math.degrees(math.asin(r / arc.radius_mm))
+    for quarter in (90.0, 270.0, 450.0, -90.0, -270.0):
+        inside = arc.start_deg < quarter - half and quarter + half < arc.start_deg + arc.sweep_deg
+        if inside and abs(arc.centre[0]) < 1e-9:
+            side = math.copysign(1.0, math.sin(math.radians(quarter)))
+            y = arc.centre[1] + side * arc.radius_mm * math.cos(math.radians(half))
+            first = split_arc(arc.centre, arc.radius_mm, arc.start_deg, quarter - half - arc.start_deg)
+            notch = split_arc((0.0, y), r, 0.0 if side > 0 else 180.0, -180.0)
+            rest = arc.start_deg + arc.sweep_deg - quarter - half
+            return [*first, *notch, *split_arc(arc.centre, arc.radius_mm, quarter + half, rest)]
+    return [a]
