@@ -26,13 +26,13 @@ from functools import cache
 from fabgen.parts import kernel
 from fabgen.parts.contour import Circle, Outline, Point, bounds_mm
 from fabgen.parts.floor_holes import floor_holes
-from fabgen.parts.floor_plan import FlangePlan, coax_axis, flange_plan, lining_mm
+from fabgen.parts.floor_plan import FlangePlan, coax_axis, flange_plan, floor_bottom_mm, lining_mm
 from fabgen.parts.pieces import Joint
 from fabgen.parts.print_rules import PrintRules, print_rules
 from fabgen.parts.printed import Printed, ear_fasteners, printed_parts
 from fabgen.parts.records import Part
 from fabgen.parts.screws import inserts
-from fabgen.parts.shell import Body, Ledge, shell_solid, shell_volume_mm3
+from fabgen.parts.shell import Body, Channel, Ledge, shell_solid, shell_volume_mm3
 from fabgen.parts.split import EAR_HALF_MM, Envelope, Split, plan_split
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
@@ -41,6 +41,8 @@ CHOKE_SCREW = "M3"
 CHOKE_SCREWS = 6
 INSERT_DEPTH_MM = 1.0
 """The insert's hole is this much deeper than the insert, for the plastic that it pushes down. Maker sheets."""
+LEDGE_CLEAR_MM = 0.5
+"""Between the ledge's cone and the flange."""
 BEAD_MM = 0.6
 """Height of the bead that the radome cap snaps over. Common practice, no source."""
 BEAD_BELOW_RIM_MM = 4.0
@@ -55,34 +57,46 @@ def wider(outline: Outline, by_mm: float) -> Outline:
     return outline
 
 
-def ledge_of(feed: Feed, rules: PrintRules) -> Ledge | None:
-    """The ledge that carries the choke: wide enough for an insert with its plastic on both sides."""
-    choke = feed.sizes.choke
+def ledge_of(feed: Feed) -> Ledge | None:
+    """The ledge that carries the choke: wide enough for an insert with its plastic on both sides.
+
+    None without a choke, and where the choke's floor is too low for a ledge: then can and choke are one piece.
+    """
+    choke, rules = feed.sizes.choke, print_rules(feed)
     if choke is None:
         return None
     screw = tables.screw(CHOKE_SCREW)
-    return Ledge(
+    ledge = Ledge(
         top_mm=choke.floor_z_mm - lining_mm(feed) - feed.sizes.floor_mm,
         width_mm=screw.insert_hole_mm + 2 * rules.insert_wall_mm,
         height_mm=screw.insert_length_mm + INSERT_DEPTH_MM + rules.insert_wall_mm,
     )
+    flange_top = floor_bottom_mm(feed) + (feed.job.can.flange.thickness_mm or feed.sizes.floor_mm)
+    return ledge if ledge.top_mm - ledge.height_mm >= flange_top + LEDGE_CLEAR_MM else None
 
 
 def body_of(feed: Feed) -> Body:
     """The plastic's sizes: the bore is drawn larger and the floor lower by the lining."""
-    sizes, lining, rules = feed.sizes, lining_mm(feed), print_rules(feed)
+    sizes, lining = feed.sizes, lining_mm(feed)
     inner = sizes.can_bore_mm / 2 + lining
     outer = inner + sizes.wall_mm
-    ledge = ledge_of(feed, rules)
+    ledge, channel = ledge_of(feed), None
+    widest = outer + (ledge.width_mm if ledge else 0.0)
+    if sizes.choke is not None and ledge is None:
+        bore = sizes.choke.bore_mm / 2 + lining
+        floor, rim = sizes.choke.floor_z_mm - lining, sizes.choke.floor_z_mm + sizes.choke.depth_mm
+        channel = Channel(bore, bore + sizes.wall_mm, floor, rim)
+        widest = channel.wall_radius_mm
     return Body(
         inner_radius_mm=inner,
         outer_radius_mm=outer,
         floor_top_mm=-lining,
-        floor_bottom_mm=-lining - sizes.floor_mm,
+        floor_bottom_mm=floor_bottom_mm(feed),
         rim_mm=sizes.can_depth_mm,
         # The flange's screws stay in reach beside the ledge.
-        flange=flange_plan(feed, 2 * (outer + (ledge.width_mm if ledge else 0.0))),
+        flange=flange_plan(feed, 2 * widest),
         ledge=ledge,
+        channel=channel,
         bead_mm=BEAD_MM if feed.job.can.radome else 0.0,
         bead_z_mm=sizes.can_depth_mm - BEAD_BELOW_RIM_MM,
     )
@@ -153,6 +167,8 @@ def can_split(feed: Feed) -> Split:
 def _ear_top(body: Body) -> float:
     if body.ledge is not None:
         return body.ledge.top_mm - body.ledge.height_mm - body.ledge.width_mm - 0.5
+    if body.channel is not None:
+        return body.channel.rim_mm
     return body.rim_mm - (SKIRT_MM + 1.0 if body.bead_mm > 0 else 0.0)
 
 
@@ -178,14 +194,17 @@ def _insert_volume(count: int) -> float:
 def _envelope(feed: Feed, body: Body, rules: PrintRules) -> Envelope:
     flange = body.flange
     ledge = body.ledge
-    edge = body.outer_radius_mm + (ledge.width_mm if ledge else 0.0)
+    edge = max(body.hull_radius_mm, body.outer_radius_mm + (ledge.width_mm if ledge else 0.0))
     bands: list[tuple[float, float]] = [(body.floor_bottom_mm, body.flange_top_mm + 20.0)]
     if ledge is not None:
         bands.append((ledge.top_mm - ledge.height_mm - ledge.width_mm - 10.0, ledge.top_mm + 10.0))
+    if body.channel is not None:
+        # A ring joint would cut the two walls at one height but only one has the room for its bell.
+        bands = [(body.floor_bottom_mm, body.rim_mm)]
     bands.append((body.rim_mm - 20.0, body.rim_mm))
     return Envelope(
         name="printed can",
-        wall_radius_mm=body.outer_radius_mm,
+        wall_radius_mm=body.hull_radius_mm,
         edge_radius_mm=max(edge, _reach(flange) if flange else 0.0),
         bottom_mm=body.floor_bottom_mm,
         top_mm=body.rim_mm,

@@ -21,7 +21,7 @@ import math
 from functools import cache
 
 from fabgen.parts import kernel
-from fabgen.parts.can_printed import CHOKE_SCREW, body_of, can_split, choke_screw_points
+from fabgen.parts.can_printed import CHOKE_SCREW, body_of, can_split, choke_screw_points, ledge_of
 from fabgen.parts.contour import Circle, Point
 from fabgen.parts.floor_plan import lining_mm
 from fabgen.parts.pieces import Joint
@@ -39,12 +39,13 @@ GRIP_MM = 4.0
 
 
 def choke_printed(feed: Feed) -> tuple[Part, ...]:
-    """The choke ring, whole or in sectors, and its screws; nothing when the feed has no choke.
+    """The choke ring, whole or in sectors, and its screws; nothing when the feed has no choke
+    or has it in one piece with the can.
 
     Raises GeometryError when it cannot sensibly be cut into pieces for the bed.
     """
     choke = feed.sizes.choke
-    if choke is None:
+    if choke is None or ledge_of(feed) is None:
         return ()
     rules, can = print_rules(feed), body_of(feed)
     points = _profile(feed, can, choke, rules)

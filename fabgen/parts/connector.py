@@ -17,7 +17,7 @@ import math
 from typing import TYPE_CHECKING
 
 from fabgen.parts import kernel
-from fabgen.parts.contour import Circle, Contour, Vertex, area_mm2, rectangle
+from fabgen.parts.contour import Circle, Contour, area_mm2, polygon, rectangle
 from fabgen.parts.floor_plan import (
     coax_axis,
     connector_hole_points,
@@ -76,12 +76,9 @@ def spacer(feed: Feed) -> Part | None:
     if not on_spacer(feed):
         return None
     row, metal = tables.connector(feed.job.cable.connector), tables.metal("en-aw-5754")
-    x, y = coax_axis(feed)
-    low = (x - connector_reach_mm(feed), y - row.flange_height_mm / 2)
-    high = (x + row.flange_width_mm / 2, y + row.flange_height_mm / 2)
     screws = [h.outline for h in connector_screw_holes(feed) if isinstance(h.outline, Circle)]
     flat = FlatPattern(
-        outline=rectangle(low, high),
+        outline=_spacer_outline(feed),
         holes=(_bore(feed), *screws),
         thickness_mm=SPACER_MM,
         face="floor side",
@@ -132,11 +129,25 @@ def _bore(feed: Feed) -> Circle:
 def _flange_outline(feed: Feed) -> Contour:
     row = tables.connector(feed.job.cable.connector)
     x, y = coax_axis(feed)
+    if row.hole_count == 4:
+        corner = row.flange_width_mm / math.sqrt(2)
+        return polygon(((x + corner, y), (x, y + corner), (x - corner, y), (x, y - corner)))
     # A flange with two screws lies with its long side along y, as its holes do.
-    sides = (row.flange_width_mm, row.flange_height_mm)
-    along_x, along_y = sides if row.hole_count == 4 else sides[::-1]
-    corners = ((-1, -1), (1, -1), (1, 1), (-1, 1))
-    return Contour(tuple(Vertex(x + a * along_x / 2, y + b * along_y / 2) for a, b in corners))
+    half_x, half_y = row.flange_height_mm / 2, row.flange_width_mm / 2
+    return rectangle((x - half_x, y - half_y), (x + half_x, y + half_y))
+
+
+def _spacer_outline(feed: Feed) -> Contour:
+    """The connector's flange, cut off towards the bars of a sheet loop."""
+    row = tables.connector(feed.job.cable.connector)
+    corner, reach = row.flange_width_mm / math.sqrt(2), connector_reach_mm(feed)
+    if row.hole_count != 4 or reach >= corner:
+        return _flange_outline(feed)
+    x, y = coax_axis(feed)
+    side = corner - reach
+    return polygon(
+        ((x + corner, y), (x, y + corner), (x - reach, y + side), (x - reach, y - side), (x, y - corner))
+    )
 
 
 def _flange_area(feed: Feed) -> float:

@@ -38,6 +38,8 @@ MARK_MM = 2.0
 """Depth and half width of the notch that marks the gap's side. Common practice, no source."""
 HEAD_GAP_MM = 0.2
 """Between a screw head and the flat of a bar. Common practice, no source."""
+LEAST_WEB_MM = 1.2
+"""Between two openings of the floor: three printed lines; in sheet the checks hold it against the thickness."""
 SPACER_WEB_MM = 2.0
 """Metal around the bore of a connector's spacer. Common practice, no source."""
 HEAD_CLEARANCE_MM = 2.0
@@ -83,7 +85,7 @@ def coax_axis(feed: Feed) -> Point:
     sleeve = capacitor.outer_mm + 2 * capacitor.tube_wall_mm if capacitor.form == "sleeve" else 0.0
     beside = max(coax.outer_mm, sleeve) / 2
     connector = tables.connector(feed.job.cable.connector)
-    if sizes.conductor != "wire" and connector.hole_count == 2:
+    if sizes.conductor != "wire":
         # The screws stand level with the coax, beside the flat of the bar; solder fills the gap.
         beside = max(beside, tables.screw(connector.screw).head_mm / 2 + HEAD_GAP_MM)
     x = sizes.leg_x_mm + leg_depth_mm(feed) / 2 + beside
@@ -127,15 +129,21 @@ def connector_reach_mm(feed: Feed) -> float:
     if on_spacer(feed) and feed.sizes.conductor != "wire":
         # Short towards the bars, where the feet have their screws.
         return connector.panel_bore_mm / 2 + SPACER_WEB_MM
-    return connector.flange_width_mm / 2 if connector.hole_count == 4 else connector.flange_height_mm / 2
+    if connector.hole_count == 4:
+        return connector.flange_width_mm / math.sqrt(2)
+    return connector.flange_height_mm / 2
 
 
 def connector_hole_points(feed: Feed) -> tuple[Point, ...]:
-    """Centres of all holes of the connector's flange about the coax; two holes lie along y."""
+    """Centres of all holes of the connector's flange about the coax.
+
+    A square flange stands on its corner, holes on x and y, and a flange with two holes lies along y, so that
+    the foot of the bar beside the coax has a hole's width to itself.
+    """
     connector = tables.connector(feed.job.cable.connector)
     x, y = coax_axis(feed)
-    half = connector.hole_pitch_mm / 2
-    four: tuple[Point, ...] = ((half, half), (-half, half), (-half, -half), (half, -half))
+    half, corner = connector.hole_pitch_mm / 2, connector.hole_pitch_mm / math.sqrt(2)
+    four: tuple[Point, ...] = ((corner, 0.0), (0.0, corner), (-corner, 0.0), (0.0, -corner))
     two: tuple[Point, ...] = ((0.0, half), (0.0, -half))
     offsets = {4: four, 2: two}.get(connector.hole_count, ())
     return tuple((x + u, y + v) for u, v in offsets)
@@ -144,8 +152,8 @@ def connector_hole_points(feed: Feed) -> tuple[Point, ...]:
 def connector_screw_holes(feed: Feed) -> tuple[FloorHole, ...]:
     """Screw holes of the connector in the floor.
 
-    A hole beyond a short spacer, or whose screw head would stand in a bar or in the foot of a sheet loop, is left
-    out; the screws away from the bars and the solder at the coax hold the connector then.
+    A hole is left out where it would meet the bar's foot or reach beyond a short spacer, or where its screw head
+    would stand in a bar; three screws and the solder at the coax hold the connector then.
     """
     connector = tables.connector(feed.job.cable.connector)
     head = tables.screw(connector.screw).head_mm / 2
@@ -153,8 +161,21 @@ def connector_screw_holes(feed: Feed) -> tuple[FloorHole, ...]:
     return tuple(
         FloorHole("connector screw", Circle(*at, connector.hole_mm))
         for at in connector_hole_points(feed)
-        if at[0] > edge + connector.hole_mm / 2 and not _in_a_bar(feed, at, head)
+        if at[0] > edge + connector.hole_mm / 2 + 0.5
+        and not _in_a_bar(feed, at, head)
+        and not _in_the_slot(feed, at, connector.hole_mm / 2)
     )
+
+
+def _in_the_slot(feed: Feed, at: Point, radius_mm: float) -> bool:
+    """Whether a hole leaves less than the least web to the slot of coax and wire foot."""
+    sizes = feed.sizes
+    if sizes.wire_mm is None:
+        return False
+    x, y = coax_axis(feed)
+    width = max(coax_bore_mm(feed), sizes.wire_mm + FOOT_CLEARANCE_MM)
+    along = min(max(at[0], sizes.leg_x_mm), x)
+    return math.hypot(at[0] - along, at[1] - y) < radius_mm + width / 2 + LEAST_WEB_MM
 
 
 def _in_a_bar(feed: Feed, at: Point, radius_mm: float) -> bool:

@@ -205,7 +205,8 @@ def _tongues(joint: Joint, gap_mm: float) -> list[cadquery.Shape]:
     """Square prisms on edge along the cut at angle 0, larger by ``gap_mm`` normal to their faces."""
     envelope, spread = joint.envelope, gap_mm * math.sqrt(2)
     shapes = []
-    half = joint.floor_mm / 2 - joint.rules.wall_min_mm
+    # The lips beside the groove keep the least wall; a thin floor is joined flat.
+    half = joint.floor_mm / 2 - joint.rules.wall_min_mm - joint.rules.clearance_mm * math.sqrt(2)
     start = max(envelope.hub_radius_mm, 0.1 * envelope.wall_radius_mm) + 2.0
     if half >= joint.rules.line_mm:
         z, h = envelope.bottom_mm + joint.floor_mm / 2, half + spread

@@ -5,6 +5,7 @@ Depends on: stock, job, sizing.records.
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 from fabgen.sizing.records import Feed
@@ -26,9 +27,11 @@ class PrintRules:
 
     def wall(self, lines: int) -> float:
         """A wall of whole lines, never under the minimum wall."""
-        while lines * self.line_mm < self.wall_min_mm - 1e-9:
-            lines += 1
-        return lines * self.line_mm
+        return max(lines * self.line_mm, self.wall_over(self.wall_min_mm))
+
+    def wall_over(self, least_mm: float) -> float:
+        """The thinnest wall of whole lines that is no thinner than ``least_mm``."""
+        return math.ceil(least_mm / self.line_mm - 1e-9) * self.line_mm
 
 
 def print_rules(feed: Feed) -> PrintRules:

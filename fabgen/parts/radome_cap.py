@@ -29,6 +29,7 @@ from fabgen.parts.pieces import Joint
 from fabgen.parts.print_rules import PrintRules, print_rules
 from fabgen.parts.printed import Printed, printed_parts
 from fabgen.parts.records import Part, Place
+from fabgen.parts.shell import BEAD_SLOPE
 from fabgen.parts.split import Envelope, plan_split
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
@@ -54,7 +55,7 @@ def radome_cap(feed: Feed) -> tuple[Part, ...]:
     if not feed.job.can.radome:
         return ()
     rules, cover = print_rules(feed), cover_mm(feed)
-    inner, skirt = _inner_radius(feed, rules), rules.wall(4)
+    inner, skirt = _inner_radius(feed, rules), rules.wall_over(rules.wall_min_mm + BEAD_MM)
     outer_line, inner_line = _section(feed, inner + skirt), _section(feed, inner)
     rim, low = feed.sizes.can_depth_mm, feed.sizes.can_depth_mm - SKIRT_MM
     corner = 1.0 / math.cos(math.pi / feed.sizes.can_flats) if feed.sizes.can_flats else 1.0
@@ -121,11 +122,9 @@ def _drains(feed: Feed) -> tuple[Circle, ...]:
 
 
 def _groove(radius_mm: float, z_mm: float) -> kernel.Shape:
+    rise = BEAD_SLOPE * (BEAD_MM + 1.0)
     return kernel.revolved(
-        (
-            (radius_mm - 1.0, z_mm - BEAD_MM - 1.0), (radius_mm + BEAD_MM, z_mm),
-            (radius_mm - 1.0, z_mm + BEAD_MM + 1.0),
-        )
+        ((radius_mm - 1.0, z_mm - rise), (radius_mm + BEAD_MM, z_mm), (radius_mm - 1.0, z_mm + rise))
     )
 
 

@@ -1,6 +1,7 @@
 """A can as one body of revolution with its flange, shared by the printed and the turned can.
 
-Section, right half; ``ledge`` carries a printed choke, ``bead`` holds a radome cap::
+Section, right half; ``ledge`` carries a printed choke, ``bead`` holds a radome cap, and
+a choke in one piece with the can is a ``channel`` outside the wall (not drawn)::
 
              rim     .--.
             bead     |  <
@@ -33,6 +34,10 @@ if TYPE_CHECKING:
     import cadquery
 
 
+BEAD_SLOPE = 1.6
+"""Rise of the bead's flanks over its height; steeper than 45 degrees, so that a coarse mesh prints as well."""
+
+
 @dataclass(frozen=True)
 class Ledge:
     """A ring around the can: top face, width beyond the wall, height before the 45 degree cone."""
@@ -40,6 +45,16 @@ class Ledge:
     top_mm: float
     width_mm: float
     height_mm: float
+
+
+@dataclass(frozen=True)
+class Channel:
+    """A choke in one piece with the can: inner radius of its wall, its floor's face and its rim."""
+
+    bore_radius_mm: float
+    wall_radius_mm: float
+    floor_mm: float
+    rim_mm: float
 
 
 @dataclass(frozen=True)
@@ -53,8 +68,14 @@ class Body:
     rim_mm: float
     flange: FlangePlan | None
     ledge: Ledge | None = None
+    channel: Channel | None = None
     bead_mm: float = 0.0
     bead_z_mm: float = 0.0
+
+    @property
+    def hull_radius_mm(self) -> float:
+        """Radius of the outermost wall."""
+        return self.channel.wall_radius_mm if self.channel else self.outer_radius_mm
 
     @property
     def flange_top_mm(self) -> float:
@@ -65,18 +86,22 @@ class Body:
 def profile(body: Body) -> tuple[Point, ...]:
     """The section's outline in (radius, z), counter-clockwise from the axis at the floor's outer face.
 
-    Raises GeometryError when the ledge does not stand clear of the flange.
+    Raises GeometryError when the ledge reaches down into the flange.
     """
     outer, flange = body.outer_radius_mm, body.flange
     points: list[Point] = [(0.0, body.floor_bottom_mm)]
     if flange is not None:
         # A square flange is added as a plate around this profile.
-        edge = flange.width_mm / 2 if isinstance(flange.outline, Circle) else outer
+        edge = flange.width_mm / 2 if isinstance(flange.outline, Circle) else body.hull_radius_mm
         points += [(edge, body.floor_bottom_mm), (edge, body.flange_top_mm)]
-    points += _ledge(body, body.flange_top_mm) if body.ledge else [(outer, body.flange_top_mm)]
+    points += _ledge(body, body.flange_top_mm) if body.ledge else [(body.hull_radius_mm, body.flange_top_mm)]
+    if body.channel is not None:
+        ring = body.channel
+        points += [(ring.wall_radius_mm, ring.rim_mm), (ring.bore_radius_mm, ring.rim_mm)]
+        points += [(ring.bore_radius_mm, ring.floor_mm), (outer, ring.floor_mm)]
     if body.bead_mm > 0:
-        z, bead = body.bead_z_mm, body.bead_mm
-        points += [(outer, z - bead), (outer + bead, z), (outer, z + bead)]
+        z, bead, rise = body.bead_z_mm, body.bead_mm, BEAD_SLOPE * body.bead_mm
+        points += [(outer, z - rise), (outer + bead, z), (outer, z + rise)]
     inner = body.inner_radius_mm
     points += [(outer, body.rim_mm), (inner, body.rim_mm), (inner, body.floor_top_mm), (0.0, body.floor_top_mm)]
     return tuple(_distinct(points))
@@ -87,11 +112,9 @@ def _ledge(body: Body, base_mm: float) -> list[Point]:
     if ledge is None:
         return []
     low, edge = ledge.top_mm - ledge.height_mm, outer + ledge.width_mm
-    if low < body.flange_top_mm + 0.5:
-        need = body.flange_top_mm + 0.5 - low
+    if low < base_mm:
         raise GeometryError(
-            f"the choke's floor is too close to the flange for the ledge and inserts that carry it; "
-            f"raise can.choke.floor_z_mm by {need:.1f} mm"
+            f"the ledge's lower edge would be {base_mm - low:.1f} mm inside the flange; raise the ledge by that"
         )
     start = low - ledge.width_mm
     foot = [(outer, base_mm), (outer, start)] if start > base_mm else [(edge - (low - base_mm), base_mm)]
@@ -105,7 +128,7 @@ def shell_solid(
     shell = kernel.revolved(profile(body))
     flange = body.flange
     if flange is not None and not isinstance(flange.outline, Circle):
-        bore = Circle(0.0, 0.0, 2 * body.outer_radius_mm)
+        bore = Circle(0.0, 0.0, 2 * body.hull_radius_mm)
         ring = kernel.prism(flange.outline, (bore,), body.floor_bottom_mm, flange.thickness_mm)
         shell = kernel.fused(shell, ring, what=what)
     cutters = [*openings, *flange_holes, *((flange.mark,) if flange else ())]
@@ -121,7 +144,7 @@ def shell_volume_mm3(body: Body, openings: Sequence[Outline], flange_holes: Sequ
     flange = body.flange
     if flange is None:
         return volume
-    inside = body.outer_radius_mm if not isinstance(flange.outline, Circle) else flange.width_mm / 2
+    inside = body.hull_radius_mm if not isinstance(flange.outline, Circle) else flange.width_mm / 2
     plate = area_mm2(marked_outline(flange)) - math.pi * inside**2
     return volume + flange.thickness_mm * (plate - sum(area_mm2(o) for o in flange_holes))
 
