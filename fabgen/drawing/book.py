@@ -71,8 +71,20 @@ def _numbered(context: Context, d: Draft, first: int, count: int) -> list[Sheet]
         items = (*page.items, *frame_items(paper), *title_block(paper.frame, fields))
         out.append(
             Sheet(
-                first + i, count, d.kind, d.title, d.part_key, paper.width_mm, paper.height_mm, paper.frame, items,
-                tuple(page.dimensions), tuple(page.views), tuple(page.tables), d.title if i == 0 else "", int(bool(d.group)),
+                first + i,
+                count,
+                d.kind,
+                d.title,
+                d.part_key,
+                paper.width_mm,
+                paper.height_mm,
+                paper.frame,
+                items,
+                tuple(page.dimensions),
+                tuple(page.views),
+                tuple(page.tables),
+                d.title if i == 0 else "",
+                int(bool(d.group)),
             )
         )
     return out

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable
+from itertools import pairwise
 
 from fabgen.drawing.model import Arc, Box, Item, Line, Polyline, Text
 
@@ -53,7 +54,7 @@ def _arc(arc: Arc, w: Box) -> list[Item]:
         return []
     if arc.rx != arc.ry:
         points = arc.points(2.0)
-        pieces = (Line(*a, *b, arc.role) for a, b in zip(points, points[1:], strict=False))
+        pieces = (Line(*a, *b, arc.role) for a, b in pairwise(points))
         return [part for piece in pieces for part in _line(piece, w)]
     way = math.copysign(1.0, arc.sweep_deg)
     stops = {0.0, abs(arc.sweep_deg)}
@@ -63,7 +64,7 @@ def _arc(arc: Arc, w: Box) -> list[Item]:
             stops.add(along)
     ordered = sorted(stops)
     out: list[Item] = []
-    for a, b in zip(ordered, ordered[1:], strict=False):
+    for a, b in pairwise(ordered):
         x, y = arc.at(arc.start_deg + way * (a + b) / 2)
         if b - a > 1e-7 and w.x0 <= x <= w.x1 and w.y0 <= y <= w.y1:
             out.append(Arc(arc.cx, arc.cy, arc.rx, arc.ry, arc.start_deg + way * a, way * (b - a), 0.0, arc.role))
@@ -91,5 +92,5 @@ def _path(path: Polyline, w: Box) -> list[Item]:
     if path.role is None or not w.overlaps(box.grown(1e-6)):
         return []
     points = (*path.points, path.points[0]) if path.closed else path.points
-    pieces = (Line(*a, *b, path.role) for a, b in zip(points, points[1:], strict=False))
+    pieces = (Line(*a, *b, path.role) for a, b in pairwise(points))
     return [part for piece in pieces for part in _line(piece, w)]

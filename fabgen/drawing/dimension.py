@@ -14,7 +14,7 @@ from dataclasses import dataclass, replace
 from typing import Literal
 
 from fabgen.drawing.fonts import DESCENT, text_width_mm
-from fabgen.drawing.model import Box, Dimension, Item, Line, Polyline, Point, Text, bounds, number
+from fabgen.drawing.model import Box, Dimension, Item, Line, Point, Polyline, Text, bounds, number
 from fabgen.drawing.overlap import Occupied
 
 Side = Literal["top", "bottom", "left", "right"]
@@ -58,7 +58,7 @@ class Placed:
 
 
 def along_x(
-    name: str, x0: float, x1: float, y: float, side: Side = "bottom", text: str = "", y1: float | None = None
+    name: str, x0: float, x1: float, y: float, side: Side = "bottom", *, text: str = "", y1: float | None = None
 ) -> Ask:
     """A horizontal dimension between two abscissae; ``y`` (and ``y1``) is where the extension lines begin."""
     value = abs(x1 - x0)
@@ -66,7 +66,7 @@ def along_x(
 
 
 def along_y(
-    name: str, y0: float, y1: float, x: float, side: Side = "left", text: str = "", x1: float | None = None
+    name: str, y0: float, y1: float, x: float, side: Side = "left", *, text: str = "", x1: float | None = None
 ) -> Ask:
     """A vertical dimension between two ordinates; ``x`` (and ``x1``) is where the extension lines begin."""
     value = abs(y1 - y0)
@@ -83,6 +83,7 @@ def place(
     items: Sequence[Item],
     asks: Sequence[Ask],
     scale: float,
+    *,
     height_mm: float = 2.5,
     limits: Box | None = None,
 ) -> Placed:
@@ -99,26 +100,35 @@ def place(
     left_over: list[Ask] = []
     linear = sorted((a for a in asks if a.kind in {"x", "y"}), key=lambda a: (a.side, round(a.value, 6), a.a, a.text))
     leaders = [a for a in asks if a.kind == "leader"]
+    scene = _Scene(view, body, occupied, scale, height_mm, limits or body.grown(45))
     for ask in linear:
-        later = [other for other in linear if other is not ask and other.side == ask.side]
-        found = _linear(view, ask, later, body, occupied, scale, height_mm)
-        _keep(found, ask, done, left_over, occupied)
+        others = [other for other in linear if other is not ask and other.side == ask.side]
+        _keep(_linear(scene, ask, others), ask, done, left_over, occupied)
     for ask in leaders:
-        found = _leader(view, ask, limits or body.grown(45), occupied, scale, height_mm)
-        _keep(found, ask, done, left_over, occupied)
+        _keep(_leader(scene, ask), ask, done, left_over, occupied)
     drawn = tuple(i for d in done for i in d.items)
     box = bounds((*items, *drawn)) if items or drawn else Box(0, 0, 0, 0)
     return Placed(drawn, tuple(done), box, tuple(left_over))
 
 
-def _keep(
-    found: Dimension | None, ask: Ask, done: list[Dimension], left_over: list[Ask], occupied: Occupied
-) -> None:
+def _keep(found: Dimension | None, ask: Ask, done: list[Dimension], left_over: list[Ask], occupied: Occupied) -> None:
     if found is None:
         left_over.append(ask)
         return
     done.append(found)
     occupied.take(found.text_box, found.lines)
+
+
+@dataclass(frozen=True)
+class _Scene:
+    """What placing needs to know of the view."""
+
+    view: str
+    body: Box
+    occupied: Occupied
+    scale: float
+    height: float
+    limits: Box
 
 
 @dataclass(frozen=True)
@@ -143,23 +153,21 @@ class _Axis:
         return {"bottom": -body.y0, "top": body.y1, "left": -body.x0, "right": body.x1}[self.side]
 
 
-def _linear(
-    view: str, ask: Ask, others: Sequence[Ask], body: Box, occupied: Occupied, scale: float, height: float
-) -> Dimension | None:
-    axis = _Axis(ask.side)
+def _linear(scene: _Scene, ask: Ask, others: Sequence[Ask]) -> Dimension | None:
+    axis, scale = _Axis(ask.side), scene.scale
     a, b = ((p[0] * scale, p[1] * scale) for p in (ask.a, ask.b))
     if axis.u(a) > axis.u(b):
         a, b = b, a
     barred = sorted({axis.u((p[0] * scale, p[1] * scale)) for o in others for p in (o.a, o.b)})
-    width = text_width_mm(ask.text, height)
+    width = text_width_mm(ask.text, scene.height)
     half = width / 2 + 0.5
     # A text must keep clear of the extension lines that dimensions further out will send past it.
     centres = [c for c in _shifts(axis.u(a), axis.u(b), width) if not any(abs(c - u) < half for u in barred)]
     for row in range(ROWS):
-        v = axis.edge(body) + FIRST_ROW_MM + row * ROW_PITCH_MM
+        v = axis.edge(scene.body) + FIRST_ROW_MM + row * ROW_PITCH_MM
         for centre in centres:
-            made = _linear_at(view, ask, axis, a, b, v, centre, height)
-            if _row_is_free(made, occupied):
+            made = _linear_at(scene, ask, (a, b), v, centre)
+            if _row_is_free(made, scene.occupied):
                 return made
     return None
 
@@ -181,9 +189,8 @@ def _shifts(u0: float, u1: float, width: float) -> list[float]:
     return tries
 
 
-def _linear_at(
-    view: str, ask: Ask, axis: _Axis, a: Point, b: Point, v: float, centre: float, height: float
-) -> Dimension:
+def _linear_at(scene: _Scene, ask: Ask, ends: tuple[Point, Point], v: float, centre: float) -> Dimension:
+    axis, (a, b), height = _Axis(ask.side), ends, scene.height
     u0, u1 = axis.u(a), axis.u(b)
     width = text_width_mm(ask.text, height)
     inside = u0 <= centre <= u1
@@ -203,7 +210,15 @@ def _linear_at(
     else:
         text = Text(x - gap, y, ask.text, height, "middle", 90.0)
     return Dimension(
-        ask.kind, ask.name, ask.value, ask.text, view, (ask.a, ask.b), text.box(), tuple(lines), (*lines, *arrows, text)
+        ask.kind,
+        ask.name,
+        ask.value,
+        ask.text,
+        scene.view,
+        (ask.a, ask.b),
+        text.box(),
+        tuple(lines),
+        (*lines, *arrows, text),
     )
 
 
@@ -240,23 +255,23 @@ def arrow(tip: Point, towards: Point) -> Polyline:
     return _arrow(tip, towards)
 
 
-def _leader(
-    view: str, ask: Ask, limits: Box, occupied: Occupied, scale: float, height: float
-) -> Dimension | None:
-    tip = (ask.a[0] * scale, ask.a[1] * scale)
+def _leader(scene: _Scene, ask: Ask) -> Dimension | None:
+    tip = (ask.a[0] * scene.scale, ask.a[1] * scene.scale)
+    occupied = scene.occupied
     turns = [0, 15, -15, 30, -30, 45, -45, 60, -60, 80, -80, 105, -105, 130, -130, 180]
     for avoid_view in (True, False):
         for reach in (7, 11, 16, 22, 30, 40, 52, 66, 82, 100):
             for turn in turns:
-                made = _leader_at(view, ask, tip, ask.angle_deg + turn, float(reach), height)
-                if not limits.contains(made.text_box):
+                made = _leader_at(scene, ask, tip, ask.angle_deg + turn, float(reach))
+                if not scene.limits.contains(made.text_box):
                     continue
                 if occupied.text_is_free(made.text_box.grown(0.4), avoid_view) and occupied.lines_are_free(made.lines):
                     return made
     return None
 
 
-def _leader_at(view: str, ask: Ask, tip: Point, angle_deg: float, reach: float, height: float) -> Dimension:
+def _leader_at(scene: _Scene, ask: Ask, tip: Point, angle_deg: float, reach: float) -> Dimension:
+    height = scene.height
     t = math.radians(angle_deg)
     knee = (tip[0] + reach * math.cos(t), tip[1] + reach * math.sin(t))
     right = math.cos(t) >= -1e-9
@@ -266,7 +281,15 @@ def _leader_at(view: str, ask: Ask, tip: Point, angle_deg: float, reach: float, 
     x = knee[0] + 0.5 if right else end + 0.5
     text = Text(x, knee[1] + CLEAR_MM, ask.text, height)
     return Dimension(
-        "leader", ask.name, ask.value, ask.text, view, (ask.a,), text.box(), lines, (*lines, _arrow(tip, knee), text)
+        "leader",
+        ask.name,
+        ask.value,
+        ask.text,
+        scene.view,
+        (ask.a,),
+        text.box(),
+        lines,
+        (*lines, _arrow(tip, knee), text),
     )
 
 

@@ -153,12 +153,12 @@ def asks(flat: FlatPattern) -> list[Ask]:
     wanted: list[Ask] = []
     if isinstance(flat.outline, c.Circle):
         d = flat.outline.diameter_mm
-        wanted.append(along_x("outline", x0, x1, (y0 + y1) / 2, "bottom", f"{DIAMETER}{number(d)}"))
+        wanted.append(along_x("outline", x0, x1, (y0 + y1) / 2, "bottom", text=f"{DIAMETER}{number(d)}"))
     else:
         wanted += [along_x("width", x0, x1, y0, "bottom"), along_y("height", y0, y1, x0, "left")]
         wanted += _fold_asks(flat, x0, y0, x1, y1)
         wanted += _radius_asks(flat)
-    return [*wanted, *_hole_asks(flat)]
+    return [*wanted, *hole_asks(round_holes(flat))]
 
 
 def _fold_asks(flat: FlatPattern, x0: float, y0: float, x1: float, y1: float) -> list[Ask]:
@@ -189,20 +189,35 @@ def _radius_asks(flat: FlatPattern) -> list[Ask]:
     return out
 
 
-def _hole_asks(flat: FlatPattern) -> list[Ask]:
-    groups: dict[tuple[float, float], list[HoleRow]] = {}
-    for hole in round_holes(flat):
-        key = (round(hole.diameter_mm, 3), round(math.hypot(hole.x_mm, hole.y_mm), 2))
-        groups.setdefault(key, []).append(hole)
+def hole_groups(rows: Sequence[HoleRow]) -> list[list[HoleRow]]:
+    """Bolt circles, each a group; the other holes by diameter."""
+    rings: dict[tuple[float, float], list[HoleRow]] = {}
+    for row in rows:
+        rings.setdefault((round(row.diameter_mm, 3), round(math.hypot(row.x_mm, row.y_mm), 1)), []).append(row)
+    groups: list[list[HoleRow]] = []
+    loose: dict[float, list[HoleRow]] = {}
+    for (diameter, _), found in sorted(rings.items()):
+        if is_bolt_circle(found):
+            groups.append(found)
+        else:
+            loose.setdefault(diameter, []).extend(found)
+    return [*groups, *(loose[d] for d in sorted(loose))]
+
+
+def hole_asks(rows: Sequence[HoleRow]) -> list[Ask]:
+    """A leader for each group of holes, on its outermost hole."""
     out: list[Ask] = []
-    for (diameter, radius), holes in sorted(groups.items()):
-        first = holes[0]
-        angle = math.degrees(math.atan2(first.y_mm, first.x_mm)) if radius > 0.01 else 45.0
+    for found in hole_groups(rows):
+        first = max(found, key=lambda h: (round(h.x_mm + h.y_mm, 3), h.y_mm))
+        diameter = first.diameter_mm
+        far = math.hypot(first.x_mm, first.y_mm)
+        angle = math.degrees(math.atan2(first.y_mm, first.x_mm)) if far > 1 else 45.0
         t = math.radians(angle)
         at = (first.x_mm + diameter / 2 * math.cos(t), first.y_mm + diameter / 2 * math.sin(t))
-        text = f"{len(holes)} × {DIAMETER}{number(diameter)}" if len(holes) > 1 else f"{DIAMETER}{number(diameter)}"
-        if is_bolt_circle(holes):
-            text += " " + say("flat.on_circle", diameter=f"{DIAMETER}{number(2 * radius)}")
+        text = f"{len(found)} × " if len(found) > 1 else ""
+        text += f"{DIAMETER}{number(diameter)}"
+        if is_bolt_circle(found):
+            text += " " + say("flat.on_circle", diameter=f"{DIAMETER}{number(2 * far)}")
         out.append(leader("hole", diameter, text, at, angle))
     return out
 

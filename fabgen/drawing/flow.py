@@ -11,7 +11,21 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
 from fabgen.drawing.fonts import text_width_mm, wrap
-from fabgen.drawing.model import BLACK, RED, Box, Colour, Dimension, Item, Line, Polyline, Table, Text, View, moved, tidy_text
+from fabgen.drawing.model import (
+    BLACK,
+    RED,
+    Box,
+    Colour,
+    Dimension,
+    Item,
+    Line,
+    Polyline,
+    Table,
+    Text,
+    View,
+    moved,
+    tidy_text,
+)
 from fabgen.drawing.paper import TITLE_HEIGHT_MM, Paper
 
 LINE_PITCH = 1.72  # base line to base line over the capital height
@@ -126,6 +140,7 @@ def paragraph(
     text: str,
     size: float = 2.5,
     width: float = COLUMN_WIDTH_MM,
+    *,
     bold: bool = False,
     colour: Colour = BLACK,
     bullet: str = "",
@@ -146,9 +161,7 @@ def paragraph(
     return [*blocks, gap(size * 0.5)]
 
 
-def shares(
-    head: Sequence[str], rows: Sequence[Sequence[str]], width: float, size: float
-) -> tuple[list[float], bool]:
+def shares(head: Sequence[str], rows: Sequence[Sequence[str]], width: float, size: float) -> tuple[list[float], bool]:
     """Column widths: each at least its longest word, the rest by the width of whole texts; False when they do
     not fit at this size of text."""
     natural, least = [], []
@@ -171,6 +184,7 @@ def table(
     name: str,
     head: Sequence[str],
     rows: Sequence[Sequence[str]],
+    *,
     size: float = 2.5,
     width: float = COLUMN_WIDTH_MM,
     red: Sequence[int] = (),
@@ -193,7 +207,9 @@ def table(
     for i, row in enumerate(rows):
         colour = RED if i in red else BLACK
         stay = i == 0 and len(rows) > 1
-        blocks.append(replace(_row_block(row, cols, size, i in red, colour, "fine"), repeat=top, stay=stay))
+        blocks.append(
+            replace(_row_block(row, cols, size, bold=i in red, colour=colour, rule="fine"), repeat=top, stay=stay)
+        )
     return [*blocks, gap(3)]
 
 
@@ -211,17 +227,17 @@ def side_by_side(
         cols, _ = shares(head, rows, width, size)
     record = Table(name, tuple(head), tuple(tuple(row) for row in rows))
     lefts = [i * (width + space) for i in range(count)]
-    top = beside([_row_block(head, cols, size, True, BLACK, "outline")] * count, lefts)
+    top = beside([_row_block(head, cols, size, bold=True, colour=BLACK, rule="outline")] * count, lefts)
     blocks = [replace(top, tables=(record,), stay=True)]
     for i in range(each):
-        line = [_row_block(rows[i + k * each], cols, size, False, BLACK, "fine")
+        line = [_row_block(rows[i + k * each], cols, size, bold=False, colour=BLACK, rule="fine")
                 for k in range(count) if i + k * each < len(rows)]  # fmt: skip
         blocks.append(replace(beside(line, lefts[: len(line)]), repeat=top, stay=i == 0))
     return [*blocks, gap(3)]
 
 
 def _row_block(
-    cells: Sequence[str], widths: Sequence[float], size: float, bold: bool, colour: Colour, rule: str
+    cells: Sequence[str], widths: Sequence[float], size: float, *, bold: bool, colour: Colour, rule: str
 ) -> Block:
     items: list[Item] = []
     height, x = 0.0, 0.0

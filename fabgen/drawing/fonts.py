@@ -43,7 +43,7 @@ def text_width_mm(text: str, height_mm: float, bold: bool = False) -> float:
     """Advance width of a text whose capitals are ``height_mm`` high."""
     tables = face(bold)
     widths, default = tables.charWidths, tables.defaultWidth
-    return sum(widths.get(ord(c), default) for c in text) * font_size_mm(height_mm) / 1000
+    return float(sum(widths.get(ord(c), default) for c in text)) * font_size_mm(height_mm) / 1000
 
 
 def unprintable(text: str) -> str:

@@ -121,9 +121,7 @@ class Line:
 
     def box(self) -> Box:
         """Bounds."""
-        return Box(
-            min(self.x0, self.x1), min(self.y0, self.y1), max(self.x0, self.x1), max(self.y0, self.y1)
-        )
+        return Box(min(self.x0, self.x1), min(self.y0, self.y1), max(self.x0, self.x1), max(self.y0, self.y1))
 
 
 @dataclass(frozen=True)

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from itertools import pairwise
 
 from fabgen.drawing.model import Arc, Box, Item, Line, Polyline, Sheet
 
@@ -52,10 +53,10 @@ def segments(items: Iterable[Item], step_deg: float = 15.0) -> list[Line]:
             out.append(item)
         elif isinstance(item, Arc):
             pts = item.points(step_deg)
-            out += [Line(*a, *b) for a, b in zip(pts, pts[1:], strict=False)]
+            out += [Line(*a, *b) for a, b in pairwise(pts)]
         elif isinstance(item, Polyline) and item.role is not None:
             pts = (*item.points, item.points[0]) if item.closed else item.points
-            out += [Line(*a, *b) for a, b in zip(pts, pts[1:], strict=False)]
+            out += [Line(*a, *b) for a, b in pairwise(pts)]
     return out
 
 

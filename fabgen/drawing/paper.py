@@ -6,6 +6,7 @@ Depends on: drawing.model, drawing.fonts, drawing.texts.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 from fabgen.drawing.fonts import fit
 from fabgen.drawing.model import Arc, Box, Item, Line, Text, tidy_text
@@ -93,7 +94,7 @@ def _grid(box: Box, mid_x: float, mid_y: float) -> list[Item]:
         items += [Line(x, box.y0 - 5, x, box.y0, "thin"), Line(x, box.y1, x, box.y1 + 5, "thin")]
     for y in y_marks[1:-1]:
         items += [Line(box.x0 - 5, y, box.x0, y, "thin"), Line(box.x1, y, box.x1 + 5, y, "thin")]
-    for i, (a, b) in enumerate(zip(x_marks, x_marks[1:], strict=False)):
+    for i, (a, b) in enumerate(pairwise(x_marks)):
         for y in (box.y0 - 3.75, box.y1 + 1.25):
             items.append(Text((a + b) / 2, y, str(i + 1), 2.5, "middle"))
     for i, (a, b) in enumerate(zip(y_marks[::-1], y_marks[-2::-1], strict=False)):
@@ -120,28 +121,40 @@ def title_block(box: Box, fields: TitleFields) -> tuple[Item, ...]:
         Line(x + 45, y, x + 45, y + 16, "thin"),
         Line(x + 125, y, x + 125, y + 16, "thin"),
     ]
-    items += _row(x, y + 24, (
-        (20, "title.scale", fields.scale),
-        (20, "title.projection", ""),
-        (40, "title.tolerance", fields.tolerance),
-        (62, "title.material", fields.material),
-        (38, "title.finish", fields.finish),
-    ))
-    items += _row(x, y + 16, (
-        (35, "title.creator", fields.creator),
-        (35, "title.approved", ""),
-        (45, "title.document", fields.document_type),
-        (30, "title.status", say("title.status_value")),
-        (35, "title.date", ""),
-    ))
-    items += _row(x + 125, y, (
-        (18, "title.language", "en"),
-        (18, "title.revision", fields.revision),
-        (19, "title.sheet", f"{fields.number}/{fields.count}"),
-    ))
-    items += _cell(x, y, 45, 16, "title.owner", fields.owner)
-    items += _cell(x + 45, y, 80, 16, "title.title", fields.title, 3.5, fields.supplement)
-    items += _cell(x + 125, y + 8, 55, 8, "title.number", fields.identification)
+    items += _row(
+        x,
+        y + 24,
+        (
+            (20, "title.scale", fields.scale),
+            (20, "title.projection", ""),
+            (40, "title.tolerance", fields.tolerance),
+            (62, "title.material", fields.material),
+            (38, "title.finish", fields.finish),
+        ),
+    )
+    items += _row(
+        x,
+        y + 16,
+        (
+            (35, "title.creator", fields.creator),
+            (35, "title.approved", ""),
+            (45, "title.document", fields.document_type),
+            (30, "title.status", say("title.status_value")),
+            (35, "title.date", ""),
+        ),
+    )
+    items += _row(
+        x + 125,
+        y,
+        (
+            (18, "title.language", "en"),
+            (18, "title.revision", fields.revision),
+            (19, "title.sheet", f"{fields.number}/{fields.count}"),
+        ),
+    )
+    items += _cell((x, y), 45, 16, "title.owner", fields.owner)
+    items += _cell((x + 45, y), 80, 16, "title.title", fields.title, size=3.5, second=fields.supplement)
+    items += _cell((x + 125, y + 8), 55, 8, "title.number", fields.identification)
     return (*items, *projection_symbol(x + 30, y + 26.6, fields.projection))
 
 
@@ -149,7 +162,7 @@ def _row(x: float, y: float, cells: tuple[tuple[float, str, str], ...]) -> list[
     items: list[Item] = []
     left = x
     for i, (width, key, value) in enumerate(cells):
-        items += _cell(left, y, width, 8, key, value)
+        items += _cell((left, y), width, 8, key, value)
         if i:
             items.append(Line(left, y, left, y + 8, "thin"))
         left += width
@@ -157,8 +170,16 @@ def _row(x: float, y: float, cells: tuple[tuple[float, str, str], ...]) -> list[
 
 
 def _cell(
-    x: float, y: float, width: float, height: float, label_key: str, value: str, size: float = 2.5, second: str = ""
+    at: tuple[float, float],
+    width: float,
+    height: float,
+    label_key: str,
+    value: str,
+    *,
+    size: float = 2.5,
+    second: str = "",
 ) -> list[Item]:
+    x, y = at
     label, label_height = fit(say(label_key), width - 2, 1.8)
     items: list[Item] = [Text(x + 1, y + height - 2.5, label, label_height)]
     if second:

@@ -10,12 +10,14 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 from fabgen.drawing.clip import clipped
-from fabgen.drawing.dimension import Ask, place
+from fabgen.drawing.dimension import Ask, arrow, place
 from fabgen.drawing.flow import Block
-from fabgen.drawing.hidden import Curve, Direction, dressed, look
+from fabgen.drawing.hidden import Direction, dressed, look
 from fabgen.drawing.model import SCALES, Box, Item, Line, Text, View, bounds, moved, scale_text
 from fabgen.drawing.section import cut_faces, hatched, opened
 from fabgen.parts.records import Part
+
+LARGEST = 10.0  # nothing is drawn larger than 10:1
 
 
 @dataclass(frozen=True)
@@ -162,17 +164,31 @@ def scales_for(views: Sequence[Drawn], width: float, height: float) -> list[floa
     return [s for s in SCALES if wide * s <= width and high * s <= height] or [SCALES[-1]]
 
 
-def fitted(
-    drawn: Drawn, build: Callable[[float], Set], width: float, height: float, largest: float = 10.0, smallest: float = 0.0
-) -> tuple[Block, Set, float]:
+def fitted(drawn: Drawn, build: Callable[[float], Set], width: float, height: float) -> tuple[Block, Set, float]:
     """The view at the largest standard scale at which it fits with its dimensions, centred in the width."""
-    tries = [s for s in scales_for((drawn,), width, height) if smallest <= s <= largest] or [SCALES[-1]]
+    tries = [s for s in scales_for((drawn,), width, height) if s <= LARGEST] or [SCALES[-1]]
     for scale in tries:
         made = build(scale)
         if (made.box.width <= width and made.box.height <= height) or scale == tries[-1]:
             break
     x = (width - made.box.width) / 2 - made.box.x0
     return replace(shifted(made, x, -made.box.y1), height=made.box.height), made, scale
+
+
+def cutting_plane(letter: str) -> Extras:
+    """Marks of a cutting plane through the origin along x, seen from below on the paper: wide ends, arrows up."""
+
+    def marks(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
+        del scale
+        box = bounds(items)
+        left, right = box.x0 - 7, box.x1 + 7
+        out: list[Item] = [Line(left, 0, right, 0, "centre"), Line(0, box.y0 - 3, 0, box.y1 + 3, "centre")]
+        for x, way in ((left, 1), (right, -1)):
+            out += [Line(x, 0, x + 4 * way, 0, "outline"), Line(x, -5.5, x, 0, "thin"), arrow((x, -0.3), (x, -5.5))]
+            out.append(Text(x, -9.5, letter, 3.5, "middle"))
+        return tuple(out)
+
+    return marks
 
 
 def free(drawn: Drawn, width: float, height: float) -> Block:
@@ -203,7 +219,7 @@ def close_up(drawn: Drawn, around: Box, asks: Sequence[Ask], width: float, heigh
     box = drawn.box
     whole = min((width - 16) / max(box.width, 1e-6), (height - 14) / max(box.height, 1e-6))
     near = min(0.5 * width / max(around.width, 1e-6), 0.5 * height / max(around.height, 1e-6))
-    scale = min(max(whole, near), 6 * whole)
+    scale = min(max(whole, near), 9 * whole)
     if scale < 1.2 * whole:
         scale, around = whole, box
     x, y = (around.x0 + around.x1) / 2 * scale, (around.y0 + around.y1) / 2 * scale
@@ -224,4 +240,3 @@ def stacked(upper: Set, lower: Set, width: float) -> Block:
     first = shifted(upper, x, -upper.box.y1)
     second = shifted(lower, x, -upper.box.height - 6 - lower.box.y1)
     return together((first, second), upper.box.height + lower.box.height + 8)
-

@@ -10,6 +10,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 from fabgen.drawing.flow import Block
 from fabgen.drawing.fonts import text_width_mm
@@ -84,7 +85,7 @@ def curve(axes: Axes, xs: Sequence[float], ys: Sequence[float], role: str = "cur
     """A curve, cut at the frame."""
     pieces: list[list[Point]] = [[]]
     points = list(zip(xs, ys, strict=True))
-    for (xa, ya), (xb, yb) in zip(points, points[1:], strict=False):
+    for (xa, ya), (xb, yb) in pairwise(points):
         part = _clipped(axes, (xa, ya), (xb, yb))
         if part is None:
             continue
@@ -154,9 +155,10 @@ def legend(entries: Sequence[tuple[str, str]], x: float, y: float, pitch: float 
 
 
 def bars(
-    names: Sequence[str], values: Sequence[float], texts: Sequence[str], width: float, left: float, pitch: float = 6.0
+    names: Sequence[str], values: Sequence[float], texts: Sequence[str], width: float, left: float
 ) -> tuple[Item, ...]:
     """Horizontal bars from a common zero; a negative one is hatched, a positive one filled."""
+    pitch = 6.0
     largest = max((abs(v) for v in values), default=1.0) or 1.0
     room = width - left - max((text_width_mm(t, TICK_TEXT_MM) for t in texts), default=0) - 3
     items: list[Item] = []

@@ -102,13 +102,11 @@ def hatched(polygons: Sequence[Any], scale: float, angle_deg: float, pitch_mm: f
         t = math.radians(angle_deg)
         u, n = (math.cos(t), math.sin(t)), (-math.sin(t), math.cos(t))
         offsets = [box[i] * n[0] + box[j] * n[1] for i in (0, 2) for j in (1, 3)]
-        middle = ((box[0] + box[2]) / 2 * u[0] + (box[1] + box[3]) / 2 * u[1])
+        middle = (box[0] + box[2]) / 2 * u[0] + (box[1] + box[3]) / 2 * u[1]
         k = math.ceil(min(offsets) / pitch_mm)
         while k * pitch_mm < max(offsets):
             x, y = n[0] * k * pitch_mm + u[0] * middle, n[1] * k * pitch_mm + u[1] * middle
-            ray = shapely.LineString(
-                [(x - u[0] * reach, y - u[1] * reach), (x + u[0] * reach, y + u[1] * reach)]
-            )
+            ray = shapely.LineString([(x - u[0] * reach, y - u[1] * reach), (x + u[0] * reach, y + u[1] * reach)])
             items += _lines(paper.intersection(ray))
             k += 1
     return tuple(items)
@@ -136,7 +134,11 @@ def _filled(polygon: Any) -> list[Item]:
 
 def _lines(geometry: Any) -> list[Item]:
     return [
-        Line(*part.coords[0], *part.coords[-1], "hatch")
+        _hatch_line(part.coords)
         for part in _parts(geometry)
         if part.geom_type == "LineString" and len(part.coords) > 1 and part.length > 0.2
     ]
+
+
+def _hatch_line(ends: Sequence[tuple[float, ...]]) -> Line:
+    return Line(ends[0][0], ends[0][1], ends[-1][0], ends[-1][1], "hatch")

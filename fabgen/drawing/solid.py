@@ -11,9 +11,8 @@ from dataclasses import dataclass
 from typing import Any
 
 from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, leader
-from fabgen.drawing.flat import HoleRow, is_bolt_circle
+from fabgen.drawing.flat import HoleRow, hole_asks
 from fabgen.drawing.model import Item, Line, number
-from fabgen.drawing.texts import say
 
 SAME_MM = 0.01
 MOST_LEVELS = 9
@@ -158,7 +157,7 @@ def front_asks(m: Measured) -> list[Ask]:
         seen.add(r.diameter_mm)
         z, side = (r.z1_mm, "top") if r.hole else (r.z0_mm, "bottom")
         text = f"{DIAMETER}{number(r.diameter_mm)}"
-        asks.append(along_x("diameter", -half, half, z, "top" if side == "top" else "bottom", text))
+        asks.append(along_x("diameter", -half, half, z, "top" if side == "top" else "bottom", text=text))
     width = m.high[0] - m.low[0]
     if round(width, 2) not in {round(s, 2) for s in seen}:
         asks.append(along_x("width", m.low[0], m.high[0], m.low[2], "bottom"))
@@ -178,21 +177,8 @@ def plan_asks(m: Measured) -> list[Ask]:
             at = (r.diameter_mm / 2 * math.cos(t), r.diameter_mm / 2 * math.sin(t))
             turn = math.degrees(t) + (0 if not r.hole else 180)
             asks.append(leader("radius", r.diameter_mm / 2, f"R{number(r.diameter_mm / 2)}", at, turn))
-    groups: dict[tuple[float, float], list[Round]] = {}
-    for hole in holes(m):
-        groups.setdefault((hole.diameter_mm, round(math.hypot(hole.x_mm, hole.y_mm), 1)), []).append(hole)
-    for (diameter, radius), found in sorted(groups.items()):
-        rows = [HoleRow("", h.x_mm, h.y_mm, diameter) for h in found]
-        first = max(found, key=lambda h: (round(h.x_mm + h.y_mm, 3), h.y_mm))
-        angle = math.degrees(math.atan2(first.y_mm, first.x_mm)) if radius > 1 else 45.0
-        t = math.radians(angle)
-        at = (first.x_mm + diameter / 2 * math.cos(t), first.y_mm + diameter / 2 * math.sin(t))
-        text = f"{len(found)} × " if len(found) > 1 else ""
-        text += f"{DIAMETER}{number(diameter)}"
-        if is_bolt_circle(rows):
-            text += " " + say("flat.on_circle", diameter=f"{DIAMETER}{number(2 * radius)}")
-        asks.append(leader("hole", diameter, text, at, angle))
-    return asks
+    rows = [HoleRow("", h.x_mm, h.y_mm, h.diameter_mm) for h in holes(m)]
+    return [*asks, *hole_asks(rows)]
 
 
 def centre_lines(m: Measured, scale: float) -> tuple[Item, ...]:

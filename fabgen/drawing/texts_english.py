@@ -115,7 +115,9 @@ ENGLISH: dict[str, str] = {
     "settings.version": "Version of fabgen",
     "settings.method": "Method",
     "settings.mesh": "Mesh",
-    "settings.mesh_value": "{edge} edges per wavelength asked, {triangles} triangles, longest edge {largest} wavelengths",
+    "settings.mesh_value": (
+        "{edge} edges per wavelength asked, {triangles} triangles, longest edge {largest} wavelengths"
+    ),
     "settings.unknowns": "Size of the system",
     "settings.unknowns_value": "{unknowns} unknowns, {solves} full solves",
     "settings.uncertainty": "Uncertainty",
@@ -161,7 +163,7 @@ ENGLISH: dict[str, str] = {
     "page.general": "General arrangement",
     "view.section_e": "A–A",
     "view.aperture": "View into the aperture",
-    "view.flat": "Flat pattern, seen from the face \"{face}\"",
+    "view.flat": 'Flat pattern, seen from the face "{face}"',
     "view.section_h": "B–B",
     "view.front": "Front",
     "view.gap_side": "Loop and bars, from the gap's side",
@@ -175,6 +177,8 @@ ENGLISH: dict[str, str] = {
     "document.bought": "Bought parts",
     "page.bought": "Bought parts",
     "part.off": "off",
+    "part.quantity": "Quantity, mass each",
+    "part.quantity_value": "{count} off, {mass} g",
     "part.making": "Making",
     "part.further": "Further sizes",
     "solid.from": "From z",

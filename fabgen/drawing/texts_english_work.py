@@ -60,7 +60,9 @@ WORK: dict[str, str] = {
     "step.body.printed.title": "{n}. Printed can",
     "step.body.printed.do": "Print, let cool on the bed, take off strings, and open the holes to size by hand.",
     "step.body.printed.tools": "printer, hand reamers, calliper.",
-    "step.body.printed.measure": "inside diameter in two directions and depth; both within the tolerance on the part's page.",
+    "step.body.printed.measure": (
+        "inside diameter in two directions and depth; both within the tolerance on the part's page."
+    ),
     "step.body.turned.title": "{n}. Turned can",
     "step.body.turned.do": "Turn, drill and deburr. Mark the direction of the gap (+x) on the flange.",
     "step.body.turned.tools": "lathe, drill, inside micrometer or calliper.",
@@ -73,11 +75,15 @@ WORK: dict[str, str] = {
     "step.wall.tools": "clamps, square, rule; soldering iron or torch, or rivets.",
     "step.wall.join": "continuous contact to the floor all round: current crosses this joint everywhere.",
     "step.wall.solder.join": "soft solder all round inside, without a gap: current crosses this joint everywhere.",
-    "step.wall.measure": "inside diameter {bore} mm in four directions; depth {depth} mm; under 0.01 ohm floor to rim.",
+    "step.wall.measure": (
+        "inside diameter {bore} mm in four directions; depth {depth} mm; under 0.01 ohm floor to rim."
+    ),
     "step.lining.title": "{n}. Lining",
     "step.lining.do": "Line floor and wall ({lining}); overlap floor and wall so that they touch all round.",
     "step.lining.tools": "knife, roller, multimeter.",
-    "step.lining.join": "foil over foil by 10 mm or more, rubbed down; solder or conductive glue across each overlap.",
+    "step.lining.join": (
+        "foil over foil by 10 mm or more, rubbed down; solder or conductive glue across each overlap."
+    ),
     "step.lining.measure": "under 0.1 ohm between any two points, above all from floor to rim.",
     "step.choke.title": "{n}. Choke ring",
     "step.choke.do": "Set the ring round the can at the height on the general arrangement.",
@@ -96,7 +102,9 @@ WORK: dict[str, str] = {
     "step.loop.do": "Set the loop on the floor with the gap towards +x and fix both feet.",
     "step.loop.tools": "height blocks, square, calliper; iron or screwdriver.",
     "step.loop.wire.join": "solder both feet to the floor inside and outside, fillets all round the wire.",
-    "step.loop.sheet.join": "screws with toothed washers on bright metal; sweat the feet with solder where the floor takes it.",
+    "step.loop.sheet.join": (
+        "screws with toothed washers on bright metal; sweat the feet with solder where the floor takes it."
+    ),
     "step.loop.measure": (
         "height {height} ±{height_tolerance} mm at four points of the loop; bars {pitch} mm apart, centre to centre; "
         "loop ⌀{diameter} mm; 0 ohm loop to can."
@@ -135,7 +143,8 @@ WORK: dict[str, str] = {
     "bench.set_up_head": "Set-up",
     "bench.set_up": (
         "Calibrate the analyser at the end of its cable. Point the feed at the open sky or at absorber, nothing "
-        "metallic within two metres in front, hands and cable behind the flange. Load predicted.s1p as a second trace."
+        "metallic within two metres in front, hands and cable behind the flange. Load predicted.s1p as a "
+        "second trace."
     ),
     "bench.table_head": "What is seen, what to do",
     "bench.table_intro": (
@@ -194,10 +203,19 @@ WORK: dict[str, str] = {
     "mount.edge": "Edge of the dish off the axis",
     "mount.edge_how": "2 atan(1 / (4 f/D))",
     "mount.step1": "Measure diameter and depth of the dish and correct f if they do not agree with the table.",
-    "mount.step2": "Set the flange face {vertex} mm from the vertex, {focus} mm behind the focus as seen from the dish.",
-    "mount.step3": "Turn the feed so that its gap and seam give the polarisation wanted: the field lies along y, across the gap.",
-    "mount.step4": "Bring the feed's axis onto the dish's axis: equal distances from four points of the rim to the can's rim.",
-    "mount.step5": "Move the feed along the axis by a tenth of a wavelength to both sides while listening to a steady source; keep the best.",
+    "mount.step2": (
+        "Set the flange face {vertex} mm from the vertex, {focus} mm behind the focus as seen from the dish."
+    ),
+    "mount.step3": (
+        "Turn the feed so that its gap and seam give the polarisation wanted: the field lies along y, across the gap."
+    ),
+    "mount.step4": (
+        "Bring the feed's axis onto the dish's axis: equal distances from four points of the rim to the can's rim."
+    ),
+    "mount.step5": (
+        "Move the feed along the axis by a tenth of a wavelength to both sides while listening to a steady "
+        "source; keep the best."
+    ),
     "cautions.head": "Cautions",
     "caution.sheet.head": "Sharp sheet",
     "caution.sheet": (
@@ -206,50 +224,74 @@ WORK: dict[str, str] = {
     ),
     "caution.solder.head": "Hot solder and fumes",
     "caution.solder": (
-        "Large parts stay hot for minutes. Solder in moving air and do not breathe flux smoke; wash hands after leaded "
-        "solder. Do not heat PTFE until it smokes, its fumes are poisonous. Keep fire-fighting means at hand when a torch is used."
+        "Large parts stay hot for minutes. Solder in moving air and do not breathe flux smoke; wash hands "
+        "after leaded "
+        "solder. Do not heat PTFE until it smokes, its fumes are poisonous. Keep fire-fighting means at hand "
+        "when a torch is used."
     ),
     "caution.glue.head": "Glue and cleaning agents",
-    "caution.glue": "Epoxy and solvents irritate skin and lungs: gloves, fresh air, no flame. Follow the data sheet of the product.",
+    "caution.glue": (
+        "Epoxy and solvents irritate skin and lungs: gloves, fresh air, no flame. Follow the data sheet of the product."
+    ),
     "caution.tools.head": "Machines",
-    "caution.tools": "No gloves or loose sleeves at drill and lathe. Spring-back throws wire and sheet: stand out of its way.",
+    "caution.tools": (
+        "No gloves or loose sleeves at drill and lathe. Spring-back throws wire and sheet: stand out of its way."
+    ),
     "caution.paint.head": "Conductive paints, plating and dust",
     "caution.paint": (
-        "Metal-filled paints and the dust from sanding printed, plated or copper-coated parts are harmful to breathe: "
+        "Metal-filled paints and the dust from sanding printed, plated or copper-coated parts are harmful to "
+        "breathe: "
         "mask, wet sanding, good air. Keep such waste out of the drain."
     ),
     "caution.mast.head": "Masts, roofs and falling parts",
     "caution.mast": (
-        "Work on a roof, ladder or mast only secured and with a second person. Keep well clear of power lines: a mast or "
+        "Work on a roof, ladder or mast only secured and with a second person. Keep well clear of power "
+        "lines: a mast or "
         "dish that falls must not be able to reach one. Tie tools and the feed while working."
     ),
     "caution.lightning.head": "Lightning and earthing",
     "caution.lightning": (
-        "An outdoor dish needs earthing and surge protection by the rules of the place; the DC path of this feed is no "
+        "An outdoor dish needs earthing and surge protection by the rules of the place; the DC path of this "
+        "feed is no "
         "lightning protection. Do not work on it when a thunderstorm is near."
     ),
     "caution.transmit.head": "Transmitting",
     "caution.transmit": (
-        "Do not transmit into an open feed within reach of people, or look into a feed that is fed with power: the field "
+        "Do not transmit into an open feed within reach of people, or look into a feed that is fed with "
+        "power: the field "
         "in and before the aperture can exceed the limits for people. Transmit only with a licence and within the "
         "capacitor's voltage. Disconnect the power before touching the feed."
     ),
     "caution.sun.head": "The sun at the focus",
     "caution.sun": (
-        "A shiny dish that looks at the sun brings its light and heat to the focus: it burns skin and eyes, sets fire and "
-        "melts printed parts. Cover the dish or turn it away while working at the focus, and park it away from the sun."
+        "A shiny dish that looks at the sun brings its light and heat to the focus: it burns skin and eyes, "
+        "sets fire and "
+        "melts printed parts. Cover the dish or turn it away while working at the focus, and park it away "
+        "from the sun."
     ),
     "caution.lift.head": "Moving dish",
-    "caution.lift": "A motor-driven dish moves without warning. Lock it and take its supply off before reaching into it.",
+    "caution.lift": (
+        "A motor-driven dish moves without warning. Lock it and take its supply off before reaching into it."
+    ),
     "caution.codes.head": "Rules come first",
     "caution.codes": (
-        "The building, electrical, radio and safety rules of the place and the practice of licensed trades come before "
+        "The building, electrical, radio and safety rules of the place and the practice of licensed trades "
+        "come before "
         "anything on these sheets. Where they differ, follow them."
     ),
     "limits.head": "Limits of the figures",
-    "limits.1": "The figures hold for the drawn sizes; the uncertainty is on the page of settings, what tolerances do on the bench page.",
-    "limits.2": "Aperture efficiency is without blockage by feed and supports and without errors of the dish's surface.",
-    "limits.3": "A cover, ice, water, paint on the loop or a metal part in front of the aperture shift the resonance.",
+    "limits.1": (
+        "The figures hold for the drawn sizes; the uncertainty is on the page of settings, what tolerances do"
+        " on the bench page."
+    ),
+    "limits.2": (
+        "Aperture efficiency is without blockage by feed and supports and without errors of the dish's surface."
+    ),
+    "limits.3": (
+        "A cover, ice, water, paint on the loop or a metal part in front of the aperture shift the resonance."
+    ),
     "limits.4": "The cable, the amplifier and what it adds in noise are as given in the job, not measured.",
-    "limits.5": "Bend allowances and spring-back are starting values: make the test bend first when the material is new.",
+    "limits.5": (
+        "Bend allowances and spring-back are starting values: make the test bend first when the material is new."
+    ),
 }

@@ -10,7 +10,7 @@ from pathlib import Path
 from typing import Any
 
 from fabgen.drawing.fonts import FONT_NAMES, font_path, font_size_mm
-from fabgen.drawing.model import PENS, Arc, Colour, Item, Line, Polyline, Pen, Sheet, Text
+from fabgen.drawing.model import PENS, Arc, Colour, Item, Line, Pen, Polyline, Sheet, Text
 from fabgen.errors import OutputError
 
 POINTS_PER_MM = 72 / 25.4

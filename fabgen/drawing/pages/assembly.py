@@ -25,19 +25,27 @@ _HIGH = 0.83  # sine of the eye's height over the floor plane: 56 degrees
 ABOVE_EYE = Direction("above", (-0.394, -0.394, _HIGH), (0.7071067811865476, -0.7071067811865476, 0.0))
 BELOW_EYE = Direction("below", (-0.5, -0.5, -0.7071067811865476), (0.7071067811865476, -0.7071067811865476, 0.0))
 
-# Order of the steps and the beginnings of the part keys that each one brings in.
-STEPS: tuple[tuple[str, tuple[str, ...]], ...] = (
-    ("body", ("can", "floor", "flange")),
-    ("wall", ("wall", "tube", "seam", "strip")),
-    ("lining", ("lining", "foil")),
-    ("choke", ("choke",)),
-    ("loop", ("loop", "foot")),
-    ("connector", ("connector", "spacer")),
-    ("coax", ("coax",)),
-    ("capacitor", ("capacitor",)),
-    ("radome", ("radome", "cap")),
-    ("other", ("",)),
+# The step that a part joins in, by the beginning of its key; the first that fits counts.
+JOINS: tuple[tuple[str, str], ...] = (
+    ("can-tube", "wall"),
+    ("can-wall", "wall"),
+    ("wall", "wall"),
+    ("seam", "wall"),
+    ("choke", "choke"),
+    ("lining", "lining"),
+    ("foil", "lining"),
+    ("loop", "loop"),
+    ("foot", "loop"),
+    ("connector", "connector"),
+    ("spacer", "connector"),
+    ("coax", "coax"),
+    ("capacitor", "capacitor"),
+    ("radome", "radome"),
+    ("can", "body"),
+    ("floor", "body"),
+    ("flange", "body"),
 )
+ORDER = ("body", "wall", "lining", "choke", "loop", "connector", "coax", "capacitor", "radome", "other")
 SEEN_FROM_BELOW = {"connector"}
 FASTENERS = {"screw", "nut", "rivet", "insert", "washer"}
 
@@ -52,14 +60,15 @@ class Step:
 
 def steps(parts: tuple[Part, ...]) -> tuple[Step, ...]:
     """The steps that bring in all parts, each part once."""
-    left = list(parts)
-    out: list[Step] = []
-    for kind, starts in STEPS:
-        taken = [p for p in left if any(_place_of(p.key).startswith(s) for s in starts)]
-        left = [p for p in left if p not in taken]
-        if taken:
-            out.append(Step(kind, tuple(taken)))
-    return tuple(out)
+    groups: dict[str, list[Part]] = {}
+    for part in parts:
+        groups.setdefault(_kind_of(part.key), []).append(part)
+    return tuple(Step(kind, tuple(groups[kind])) for kind in ORDER if kind in groups)
+
+
+def _kind_of(key: str) -> str:
+    place = _place_of(key)
+    return next((kind for start, kind in JOINS if place.startswith(start)), "other")
 
 
 def _place_of(key: str) -> str:
@@ -108,9 +117,7 @@ def picture_block(context: Context, step: Step, old: list[Body], new: list[Body]
 
 def _text(context: Context, n: int, step: Step) -> Block:
     numbers = items_of(context.parts)
-    names = "; ".join(
-        say("assembly.item", item=numbers[p.key], part=p.name, quantity=p.quantity) for p in step.parts
-    )
+    names = "; ".join(say("assembly.item", item=numbers[p.key], part=p.name, quantity=p.quantity) for p in step.parts)
     blocks = [Block(1.5, ()), heading(say(_key(context, step.kind, "title"), n=n), 3.5)]
     blocks += paragraph(names, 2.5, TEXT_MM)
     values = _values(context)

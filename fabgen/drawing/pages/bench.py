@@ -10,13 +10,13 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from fabgen.drawing.dimension import DIAMETER, along_x, along_y, arrow
+from fabgen.drawing.dimension import DIAMETER, along_x, along_y
 from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, gap, heading, paragraph, table
 from fabgen.drawing.model import Arc, Item, Line, Polyline, Text, number
 from fabgen.drawing.pages import performance
 from fabgen.drawing.pages.base import Context, Draft, draft
 from fabgen.drawing.picture import Drawn, dimensioned, shifted
-from fabgen.drawing.texts import has, say, size_name
+from fabgen.drawing.texts import has, say
 from fabgen.sizing.records import Feed, Sensitivity
 
 # Sizes that a screwdriver, a file or pliers can still change on the bench, best first.
@@ -40,8 +40,8 @@ def drafts(context: Context) -> list[Draft]:
         heading(say("bench.set_up_head")),
         *paragraph(say("bench.set_up")),
         *performance.blocks(feed),
-        *decision_blocks(feed),
         *capacitor_blocks(feed),
+        *decision_blocks(feed),
     ]
     mount = [*mounting_blocks(context)]
     return [
@@ -116,9 +116,7 @@ def _off_reactance(feed: Feed) -> list[Advice]:
     for x, key, action in ((15.0, "bench.inductive", "less"), (-15.0, "bench.capacitive", "more")):
         wanted = capacitance_for(feed, x)
         change = abs(wanted - feed.sizes.series_capacitor_pf)
-        amount = say(
-            "bench.amount_pf", change=number(change, 3), travel=number(change / feed.capacitor.pf_per_mm, 2)
-        )
+        amount = say("bench.amount_pf", change=number(change, 3), travel=number(change / feed.capacitor.pf_per_mm, 2))
         out.append(Advice(say(key, x=number(abs(x))), say(f"bench.series_capacitor_pf.{action}"), amount))
     return out
 
@@ -153,7 +151,7 @@ def capacitor_blocks(feed: Feed) -> list[Block]:
         value = c.minimum_pf + (c.maximum_pf - c.minimum_pf) * i / 6
         rows.append((number(value, 2), number(c.overlap_mm + (value - c.capacitance_pf) / c.pf_per_mm, 1)))
     first = (say("bench.pf"), *(r[0] for r in rows))
-    second = tuple([say("bench.overlap"), *(r[1] for r in rows)])
+    second = (say("bench.overlap"), *(r[1] for r in rows))
     note = say(
         "bench.capacitor_note", capacitance=number(c.capacitance_pf, 3), overlap=number(c.overlap_mm, 1),
         slope=number(c.pf_per_mm, 3), formula=c.formula, source=c.source,
@@ -192,8 +190,9 @@ def mounting_blocks(context: Context) -> list[Block]:
         *table("mounting", head, rows, widths=(62, 32, 76)),
     ]
     for i in range(1, 6):
-        blocks += paragraph(say(f"mount.step{i}", focus=number(to_focus, 1), vertex=number(focal + to_focus, 1)),
-                            bullet=f"{i}.")
+        blocks += paragraph(
+            say(f"mount.step{i}", focus=number(to_focus, 1), vertex=number(focal + to_focus, 1)), bullet=f"{i}."
+        )
     return blocks
 
 
@@ -214,10 +213,10 @@ def _dish_picture(feed: Feed, focal: float, to_focus: float) -> Block:
         Line(points[-1][0], radius, focal, 0, "thin"),
     ]
     asks = [
-        along_x("focal", 0, focal, -radius, "bottom", f"f = {number(focal, 1)}", y1=0),
-        along_x("vertex_to_flange", 0, back, -radius, "bottom", number(focal + to_focus, 1), y1=-half),
-        along_x("flange_to_focus", focal, back, half, "top", number(to_focus, 1), y1=half),
-        along_y("dish", -radius, radius, 0, "left", f"{DIAMETER}{number(2 * radius)}", x1=0),
+        along_x("focal", 0, focal, -radius, "bottom", text=f"f = {number(focal, 1)}", y1=0),
+        along_x("vertex_to_flange", 0, back, -radius, "bottom", text=number(focal + to_focus, 1), y1=-half),
+        along_x("flange_to_focus", focal, back, half, "top", text=number(to_focus, 1), y1=half),
+        along_y("dish", -radius, radius, 0, "left", text=f"{DIAMETER}{number(2 * radius)}", x1=0),
     ]
 
     def focus(scale_: float, _: tuple[Item, ...]) -> tuple[Item, ...]:
@@ -225,15 +224,9 @@ def _dish_picture(feed: Feed, focal: float, to_focus: float) -> Block:
         return (
             Arc(x, 0, 1.3, 1.3, role="outline"),
             Text(x - 1.5, 3.2, "F", 3.5, "end", bold=True),
-            arrow((x, -1.3), (x, -6)),
         )
 
     made = dimensioned(Drawn("", tuple(items)), asks, scale, focus, title=False)
     x = (COLUMN_WIDTH_MM - made.box.width) / 2 - made.box.x0
     block = shifted(made, x, -made.box.y1)
     return Block(made.box.height, block.items, block.dimensions, block.views)
-
-
-def trimming_words(feed: Feed) -> str:
-    """The sizes that matter most, in words."""
-    return ", ".join(size_name(name) for name in feed.yields.dominant)

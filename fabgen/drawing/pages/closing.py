@@ -75,8 +75,10 @@ def settings_blocks(context: Context) -> list[Block]:
                                           db=number(s.return_loss_uncertainty_db, 2))),
         (say("settings.capacitor"), f"{feed.capacitor.formula} ({feed.capacitor.source})"),
     ]  # fmt: skip
-    blocks = [heading(say("settings.head")), *table("settings", (say("settings.what"), say("table.value")), rows,
-                                                    widths=(50, 120))]
+    blocks = [
+        heading(say("settings.head")),
+        *table("settings", (say("settings.what"), say("table.value")), rows, widths=(50, 120)),
+    ]
     return [*blocks, *_checks_table(context), *_modes_table(context), *_yield_table(context), *_sources(context)]
 
 
@@ -127,7 +129,10 @@ def _sources(context: Context) -> list[Block]:
     rows = []
     for label, row in (
         (say("source.loop"), tables.metal(job.loop.metal)),
-        (say("source.can"), tables.metal(job.can.metal) if job.can.make != "printed" else tables.plastic(job.can.plastic)),
+        (
+            say("source.can"),
+            tables.metal(job.can.metal) if job.can.make != "printed" else tables.plastic(job.can.plastic),
+        ),
         (say("source.coax"), tables.coax(job.cable.coax)),
         (say("source.connector"), tables.connector(job.cable.connector)),
     ):

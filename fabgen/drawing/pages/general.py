@@ -7,13 +7,14 @@ from __future__ import annotations
 
 import math
 
-from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, arrow, leader
-from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, gap, heading, paragraph, table
+from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, leader
+from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, gap, heading, paragraph, stack, table
 from fabgen.drawing.flow import column_height as height_of
-from fabgen.drawing.hidden import APERTURE, FROM_GAP, GAP_PLAN, SIDE
-from fabgen.drawing.model import RED, Arc, Item, Line, Text, bounds, number, scale_text
+from fabgen.drawing.hidden import APERTURE, FROM_GAP, GAP_PLAN, ISOMETRIC, SIDE
+from fabgen.drawing.model import RED, Arc, Item, Line, bounds, number, scale_text
+from fabgen.drawing.pages import performance
 from fabgen.drawing.pages.base import Context, Draft, draft, quantity, toleranced
-from fabgen.drawing.picture import Drawn, cut, dimensioned, outside, scales_for, stacked
+from fabgen.drawing.picture import Drawn, cut, cutting_plane, dimensioned, free, outside, scales_for, stacked
 from fabgen.drawing.texts import say, size_name
 
 WIDTH_MM = COLUMN_WIDTH_MM
@@ -33,6 +34,7 @@ def drafts(context: Context) -> list[Draft]:
         *_purpose(context),
         *_sizes(context),
         *_performance(context),
+        *performance.pattern_blocks(context.feed),
         *checks_result(context),
     ]
     return [draft(context, "general", say("page.general"), blocks, scale=scale)]
@@ -47,11 +49,15 @@ def arrangement(context: Context) -> tuple[Block, str]:
         if scale > 1:
             continue
         a = dimensioned(section, section_asks(context), scale, lambda s, i: _axis_and_focus(context, s, i))
-        b = dimensioned(front, front_asks(front), scale, _cutting_plane)
+        b = dimensioned(front, front_asks(front), scale, cutting_plane("A"))
         if max(a.box.width, b.box.width) <= WIDTH_MM and a.box.height + b.box.height + 8 <= room:
             break
     upper, lower = (a, b) if context.feed.job.limits.projection == "first" else (b, a)
-    return stacked(upper, lower, WIDTH_MM), scale_text(scale)
+    views = stacked(upper, lower, WIDTH_MM)
+    left = room - views.height
+    if left > 55:
+        views = stack((views, free(outside("", context.bodies, ISOMETRIC), WIDTH_MM, left)))
+    return views, scale_text(scale)
 
 
 def section_asks(context: Context) -> list[Ask]:
@@ -61,20 +67,20 @@ def section_asks(context: Context) -> list[Ask]:
     sign = DIAMETER if s.can_flats == 0 else say("view.across_flats") + " "
     r = s.loop_diameter_mm / 2
     asks = [
-        along_x("can_bore_mm", -bore, bore, depth, "top", toleranced(feed, "can_bore_mm", 2 * bore, sign)),
-        along_y("can_depth_mm", 0, depth, -bore, "left", toleranced(feed, "can_depth_mm", depth)),
+        along_x("can_bore_mm", -bore, bore, depth, "top", text=toleranced(feed, "can_bore_mm", 2 * bore, sign)),
+        along_y("can_depth_mm", 0, depth, -bore, "left", text=toleranced(feed, "can_depth_mm", depth)),
         along_y("loop_height_mm", 0, s.loop_height_mm, bore, "right",
-                toleranced(feed, "loop_height_mm", s.loop_height_mm), x1=r),
+                text=toleranced(feed, "loop_height_mm", s.loop_height_mm), x1=r),
         along_x("loop_diameter_mm", -r, r, s.loop_height_mm, "bottom",
-                toleranced(feed, "loop_diameter_mm", 2 * r, DIAMETER)),
+                text=toleranced(feed, "loop_diameter_mm", 2 * r, DIAMETER)),
     ]  # fmt: skip
     if s.choke is not None:
         c = s.choke
         rim = c.floor_z_mm + c.depth_mm
         asks += [
-            along_x("choke.bore_mm", -c.bore_mm / 2, c.bore_mm / 2, rim, "top", f"{DIAMETER}{number(c.bore_mm)}"),
-            along_y("choke.depth_mm", c.floor_z_mm, rim, -c.bore_mm / 2, "left", number(c.depth_mm)),
-            along_y("choke.floor_z_mm", 0, c.floor_z_mm, -c.bore_mm / 2, "left", number(c.floor_z_mm), x1=-bore),
+            along_x("choke.bore_mm", -c.bore_mm / 2, c.bore_mm / 2, rim, "top", text=f"{DIAMETER}{number(c.bore_mm)}"),
+            along_y("choke.depth_mm", c.floor_z_mm, rim, -c.bore_mm / 2, "left", text=number(c.depth_mm)),
+            along_y("choke.floor_z_mm", 0, c.floor_z_mm, -c.bore_mm / 2, "left", text=number(c.floor_z_mm), x1=-bore),
         ]
     return asks
 
@@ -110,11 +116,11 @@ def side_asks(context: Context, drawn: Drawn) -> list[Ask]:
     feed, s = context.feed, context.feed.sizes
     half, box = s.leg_pitch_mm / 2, drawn.box
     return [
-        along_x("leg_pitch_mm", -half, half, box.y0, "bottom", toleranced(feed, "leg_pitch_mm", 2 * half)),
+        along_x("leg_pitch_mm", -half, half, box.y0, "bottom", text=toleranced(feed, "leg_pitch_mm", 2 * half)),
         along_y("loop_height_mm", 0, s.loop_height_mm, box.x0, "left",
-                toleranced(feed, "loop_height_mm", s.loop_height_mm)),
+                text=toleranced(feed, "loop_height_mm", s.loop_height_mm)),
         along_y("tap_height_mm", 0, s.tap_height_mm, box.x1, "right",
-                toleranced(feed, "tap_height_mm", s.tap_height_mm), x1=half),
+                text=toleranced(feed, "tap_height_mm", s.tap_height_mm), x1=half),
     ]  # fmt: skip
 
 
@@ -123,8 +129,8 @@ def plan_asks(context: Context) -> list[Ask]:
     feed, s = context.feed, context.feed.sizes
     r, half = s.loop_diameter_mm / 2, s.leg_pitch_mm / 2
     asks = [
-        along_x("loop_diameter_mm", -r, r, 0, "top", toleranced(feed, "loop_diameter_mm", 2 * r, DIAMETER)),
-        along_y("leg_x_mm", -s.leg_x_mm, 0, half, "right", toleranced(feed, "leg_x_mm", s.leg_x_mm), x1=0),
+        along_x("loop_diameter_mm", -r, r, 0, "top", text=toleranced(feed, "loop_diameter_mm", 2 * r, DIAMETER)),
+        along_y("leg_x_mm", -s.leg_x_mm, 0, half, "right", text=toleranced(feed, "leg_x_mm", s.leg_x_mm), x1=0),
     ]
     t = math.radians(150)
     width = s.wire_mm if s.wire_mm is not None else s.strip_width_mm or 0.0
@@ -166,18 +172,6 @@ def _axis_and_focus(context: Context, scale: float, items: tuple[Item, ...]) -> 
         Arc(0, z, 1.2, 1.2, role="thin"),
         Line(-2.2, z, 2.2, z, "thin"),
     )
-
-
-def _cutting_plane(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
-    """Cutting plane A-A: ends wide, arrows looking to +x, and centre lines."""
-    del scale
-    box = bounds(items)
-    left, right = box.x0 - 7, box.x1 + 7
-    out: list[Item] = [Line(left, 0, right, 0, "centre"), Line(0, box.y0 - 3, 0, box.y1 + 3, "centre")]
-    for x, way in ((left, 1), (right, -1)):
-        out += [Line(x, 0, x + 4 * way, 0, "outline"), Line(x, -5.5, x, 0, "thin"), arrow((x, -0.3), (x, -5.5))]
-        out.append(Text(x, -9.5, "A", 3.5, "middle"))
-    return tuple(out)
 
 
 def _purpose(context: Context) -> list[Block]:
@@ -239,4 +233,3 @@ def checks_result(context: Context) -> list[Block]:
         return [*blocks, *paragraph(say("checks.stop") + " " + words, bold=True, colour=RED), gap(2)]
     verdict = say("checks.caution") if counts["caution"] else say("checks.clear")
     return [*blocks, *paragraph(f"{verdict} {words}"), gap(2)]
-

@@ -26,7 +26,19 @@ from fabgen.drawing.flow import (
 from fabgen.drawing.hidden import ABOVE, GAP, ISOMETRIC
 from fabgen.drawing.model import Item, number, scale_text
 from fabgen.drawing.pages.base import Context, Draft, draft, quantity
-from fabgen.drawing.picture import Body, Drawn, Set, cut, dimensioned, fitted, free, outside, scales_for, stacked
+from fabgen.drawing.picture import (
+    Body,
+    Drawn,
+    Set,
+    cut,
+    cutting_plane,
+    dimensioned,
+    fitted,
+    free,
+    outside,
+    scales_for,
+    stacked,
+)
 from fabgen.drawing.section import opened
 from fabgen.drawing.texts import say, size_name
 from fabgen.parts.records import FlatPattern, Part
@@ -47,11 +59,12 @@ def _draft(context: Context, part: Part) -> Draft:
     words = [*sizes_blocks(part), *making(part), *notes(part), *_tables(part)]
     height = sum(b.height for b in words) + 6
     # On one sheet when the words leave half of it to the views, else the views first and the words as they come.
-    views = room - height if height < 0.4 * room else 0.8 * room
+    views = room - height if height < 0.5 * room else 0.8 * room
     pictured = part.solid is not None and part.wire is None and _tells_more(part)
     share = 0.68 if pictured else 1.0
     blocks: list[Block] = []
-    scale, left_over = "", ()
+    scale = ""
+    left_over: tuple[Ask, ...] = ()
     if part.flat is not None:
         block, scale, left_over = flat_block(part.flat, views * share - 3)
         blocks += [block, gap(3)]
@@ -119,6 +132,7 @@ def solid_block(part: Part, room: float, projection: str) -> tuple[Block, str, t
             (str(i), (h.x_mm + h.diameter_mm * 0.36, h.y_mm + h.diameter_mm * 0.36))
             for i, h in enumerate(solid_view.holes(m), start=1)
         ]
+        lines = (*lines, *(cutting_plane("B")(scale, items) if hollow else ()))
         return (*lines, *marks(wanted, (*items, *lines), scale))
 
     for scale in scales_for((front, plan), WIDTH_MM, room):
@@ -143,10 +157,9 @@ def making(part: Part) -> list[Block]:
     """Material, quantity, tolerance, finish: what the title block may be too small for."""
     rows = [
         (say("stock.material"), material_text(part)),
-        (say("stock.quantity"), str(part.quantity)),
         (say("title.tolerance"), part.tolerance),
         (say("title.finish"), part.finish),
-        (say("stock.mass"), number(1000 * part.mass_kg, 1)),
+        (say("part.quantity"), say("part.quantity_value", count=part.quantity, mass=number(1000 * part.mass_kg, 1))),
     ]
     head = (say("part.making"), "")
     return table(f"making:{part.key}", head, [r for r in rows if r[1]], widths=(40, WIDTH_MM - 40))

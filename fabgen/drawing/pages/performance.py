@@ -157,12 +157,15 @@ def reflection_and_smith(feed: Feed) -> Block:
 
 
 def blocks(feed: Feed) -> list[Block]:
-    """All plots with space between."""
+    """Reflection and sensitivities, with space between."""
     out: list[Block] = []
     if feed.predicted.response.frequency_mhz:
         out += [reflection_and_smith(feed), gap(4)]
-    if feed.predicted.patterns:
-        out += [pattern_plot(feed), gap(4)]
     if feed.sensitivities:
         out += [sensitivity_plot(feed), gap(4)]
     return out
+
+
+def pattern_blocks(feed: Feed) -> list[Block]:
+    """The pattern plot, where patterns were computed."""
+    return [pattern_plot(feed), gap(4)] if feed.predicted.patterns else []

@@ -20,7 +20,11 @@ def drafts(context: Context) -> list[Draft]:
     """The parts and stock list."""
     blocks: list[Block] = []
     if context.bodies:
-        blocks += [heading(say("view.assembled")), numbered_picture(context, column_height(context.paper) * 0.4), gap(3)]
+        blocks += [
+            heading(say("view.assembled")),
+            numbered_picture(context, column_height(context.paper) * 0.4),
+            gap(3),
+        ]
     blocks += [*_parts_table(context), *_stock_table(context)]
     return [draft(context, "stock", say("page.stock"), blocks, scale=say("title.not_to_scale"))]
 
@@ -37,9 +41,7 @@ def numbered_picture(context: Context, room: float) -> Block:
     items: list[Item] = []
     for s in seen:
         items += dressed(s.visible, "outline")
-    labels = item_leaders(
-        [(str(numbers[b.part.key]), s.visible) for b, s in zip(context.bodies, seen, strict=True)]
-    )
+    labels = item_leaders([(str(numbers[b.part.key]), s.visible) for b, s in zip(context.bodies, seen, strict=True)])
     return free_labelled(Drawn("assembled", tuple(items)), labels, COLUMN_WIDTH_MM, room)
 
 
@@ -151,4 +153,3 @@ def _form(part: Part) -> str:
     if "print" in part.process:
         return say("stock.form_print")
     return say("stock.form_bar")
-

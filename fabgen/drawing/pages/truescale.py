@@ -77,7 +77,9 @@ def _wire(part: Part) -> list[Template]:
     above = dress(look([shape], ABOVE)[0].visible, "outline")
     side = dress(look([shape], GAP)[0].visible, "outline")
     low = bounds(above).y0 - bounds(side).y1 - 12
-    return [Template(say("true.wire", part=part.name), part.key, (*above, *moved(side, 0, low)))]
+    box = bounds(above).grown(4)
+    lines = (Line(box.x0, 0, box.x1, 0, "centre"), Line(0, box.y0, 0, box.y1, "centre"))
+    return [Template(say("true.wire", part=part.name), part.key, (*above, *lines, *moved(side, 0, low)))]
 
 
 def _solid(part: Part) -> tuple[Item, ...]:

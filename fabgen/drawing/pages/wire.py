@@ -45,7 +45,10 @@ def marks(path: WirePath) -> tuple[tuple[float, str], ...]:
     """Where to mark the straight wire, from end A: start and end of every bend, and the ends."""
     out: list[tuple[float, str]] = [(0.0, say("wire.end_a"))]
     for bend in path.bends:
-        out += [(bend.start_mm, say("wire.start", number=bend.number)), (bend.end_mm, say("wire.stop", number=bend.number))]
+        out += [
+            (bend.start_mm, say("wire.start", number=bend.number)),
+            (bend.end_mm, say("wire.stop", number=bend.number)),
+        ]
     out.append((path.cut_length_mm, say("wire.end_b")))
     return tuple(out)
 
@@ -92,7 +95,11 @@ def straight(path: WirePath) -> Block:
 def _zone(bend: WireBend, left: float, scale: float, y: float, half: float) -> list[Item]:
     """A bend zone: grey where the wire bends, its number and angle above."""
     a, b = left + bend.start_mm * scale, left + bend.end_mm * scale
-    label = f"{bend.number}: {bend.angle_deg:g}°" if bend.angle_deg == round(bend.angle_deg) else f"{bend.number}: {bend.angle_deg:.1f}°"
+    label = (
+        f"{bend.number}: {bend.angle_deg:g}°"
+        if bend.angle_deg == round(bend.angle_deg)
+        else f"{bend.number}: {bend.angle_deg:.1f}°"
+    )
     width = text_width_mm(label, TEXT_MM)
     rise = 4.0 + 4.5 * ((bend.number - 1) % 3)
     return [
@@ -118,11 +125,8 @@ def bend_table(path: WirePath) -> list[Block]:
         )
         for b in path.bends
     ]
-    head = tuple(
-        say(f"wire.{k}") for k in ("no", "bend", "from", "to", "angle", "radius", "mandrel", "plane", "order")
-    )
-    widths = (11, 30, 18, 18, 19, 20, 22, 18, 14)
-    return [heading(say("wire.table_head"), 2.5), *table("wire bends", head, rows, widths=widths)]
+    head = tuple(say(f"wire.{k}") for k in ("no", "bend", "from", "to", "angle", "radius", "mandrel", "plane", "order"))
+    return [heading(say("wire.table_head"), 2.5), *table("wire bends", head, rows)]
 
 
 def _work(path: WirePath) -> list[Block]:
