@@ -10,8 +10,10 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from fabgen.errors import GeometryError, NotCoveredError
+from fabgen.errors import GeometryError
+from fabgen.parts.can_folded import can_folded
 from fabgen.parts.can_printed import can_printed
+from fabgen.parts.can_rolled import can_rolled
 from fabgen.parts.can_tube import can_tube
 from fabgen.parts.can_turned import can_turned
 from fabgen.parts.capacitor import capacitor_parts, coax_stub
@@ -47,7 +49,7 @@ class Placement:
 def build_parts(feed: Feed) -> tuple[Part, ...]:
     """Every part of the feed, can first, in assembly order; keys are unique.
 
-    Raises GeometryError where sizes do not fit together, NotCoveredError for a make that is not built.
+    Raises GeometryError where sizes do not fit together, NotCoveredError for what is not built.
     """
     parts: list[Part | None] = [*_can(feed), *_loop(feed), *foot_fasteners(feed)]
     parts += [spacer(feed), connector(feed), *connector_fasteners(feed)]
@@ -68,11 +70,14 @@ def assembly(parts: Sequence[Part]) -> Iterator[Placement]:
 
 
 def _can(feed: Feed) -> tuple[Part, ...]:
-    makers = {"printed": _printed, "tube": can_tube, "turned": can_turned}
-    make = feed.job.can.make
-    if make not in makers:
-        raise NotCoveredError(f"can.make = {make!r} has no parts yet; use one of {', '.join(sorted(makers))}")
-    return makers[make](feed)
+    makers = {
+        "rolled": can_rolled,
+        "folded": can_folded,
+        "printed": _printed,
+        "tube": can_tube,
+        "turned": can_turned,
+    }
+    return makers[feed.job.can.make](feed)
 
 
 def _printed(feed: Feed) -> tuple[Part, ...]:
