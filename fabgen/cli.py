@@ -27,7 +27,7 @@ EXIT_STATUSES = """exit status:
   4  a finding stops the pack     9  not enough memory
   130  stopped by Ctrl-C          143  ended by another program
 """
-_GROUPS = ("tables", "bend", "cut", "order", "model", "print", "sheets")
+_GROUPS = ("tables", "bend", "cut", "model", "print", "order", "sheets")
 _LIBRARY_PACKAGES = {
     "libGL.so.1": "libgl1",
     "libGLU.so.1": "libglu1-mesa",

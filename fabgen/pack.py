@@ -180,7 +180,8 @@ def _write_model(content: Content) -> None:
 def _write_order(content: Content) -> None:
     from fabgen.writers.order import order_notes
 
-    for name, text in order_notes(content.feed, content.parts).items():
+    made = files_in(content.folder) + (["sheets.pdf"] if "sheets" in chosen_groups(content.options.only) else [])
+    for name, text in order_notes(content.feed, content.parts, made).items():
         content.write(f"order/{name}", text)
 
 
@@ -216,8 +217,8 @@ GROUPS: Mapping[str, Group] = {
     ),
     "bend": Group("wire schedule and bend table", "writing bend tables", _write_bend),
     "cut": Group("DXF of the flat parts", "writing and checking cutting files", _write_cut),
-    "order": Group("order notes for the shops", "writing order notes", _write_order),
     "model": Group("STEP of each part and of the assembly", "building solids", _write_model),
     "print": Group("STL and 3MF of the printed parts", "meshing printed parts", _write_print),
+    "order": Group("order notes for the shops", "writing order notes", _write_order),
     "sheets": Group("sheets.pdf", "drawing the assembly sheets", _write_sheets),
 }

@@ -157,7 +157,7 @@ def test_only_some_groups(sizing: object, findings: object, tmp_path: Path, caps
 
 def test_unknown_group(sizing: object, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert main(["pack", JOB, "-o", str(tmp_path / "pack"), "--only", "tabels"]) == 2
-    assert "allowed: tables, bend, cut, order, model, print, sheets" in capsys.readouterr().err
+    assert "allowed: tables, bend, cut, model, print, order, sheets" in capsys.readouterr().err
 
 
 def test_a_used_folder_is_refused_before_anything_is_computed(

@@ -1,0 +1,152 @@
+"""Whole packs from real computations, by the command line."""
+
+from __future__ import annotations
+
+import csv
+import json
+import re
+import subprocess
+import sys
+import time
+from collections.abc import Callable
+from dataclasses import fields
+from pathlib import Path
+
+import pytest
+
+from fabgen.errors import ChecksFailedError, JobError
+from fabgen.folder import RECORD_NAME, files_in, sha256_of
+from fabgen.pack import GROUPS, PackOptions, build_content, chosen_groups, write_pack
+from fabgen.sizing.records import Sizes
+from tests.samples import sample_feed
+
+ROOT = Path(__file__).parent.parent
+pytestmark = pytest.mark.slow
+NAMES = ("hydrogen-wire", "hydrogen-brass")
+
+
+@pytest.fixture(params=NAMES)
+def pack(request: pytest.FixtureRequest, real_pack: Callable[[str], Path]) -> Path:
+    return real_pack(request.param)
+
+
+def record_of(pack: Path) -> dict[str, object]:
+    record: dict[str, object] = json.loads((pack / RECORD_NAME).read_text(encoding="utf-8"))
+    return record
+
+
+def rows(path: Path) -> list[dict[str, str]]:
+    with path.open(encoding="utf-8", newline="") as stream:
+        return list(csv.DictReader(stream))
+
+
+def test_every_file_is_there(pack: Path) -> None:
+    names = files_in(pack)
+    for name in ("sheets.pdf", "parts.csv", "predicted.s1p", "pattern.csv", "findings.csv", RECORD_NAME):
+        assert name in names
+    folders = {name.split("/")[0] for name in names if "/" in name}
+    assert {"cut", "bend", "model", "order"} <= folders
+    assert any(name.startswith("model/assembly") for name in names)
+    # every name can be sent to a shop: ASCII, no blanks
+    assert all(re.fullmatch(r"[A-Za-z0-9._/-]+", name) for name in names)
+
+
+def test_the_record_lists_every_file(pack: Path) -> None:
+    record = record_of(pack)
+    assert record["files"] == {name: sha256_of(pack / name) for name in files_in(pack) if name != RECORD_NAME}
+
+
+def test_the_feed_is_matched_and_nothing_stops(pack: Path) -> None:
+    record = record_of(pack)
+    assert record["predicted"]["return_loss_db"] >= 20  # type: ignore[index]
+    assert not [row for row in rows(pack / "findings.csv") if row["severity"] == "stop"]
+    assert {field.name for field in fields(Sizes)} <= set(record["sizes"])  # type: ignore[call-overload]
+
+
+def test_every_made_part_has_its_files(pack: Path) -> None:
+    names = files_in(pack)
+    for row in rows(pack / "parts.csv"):
+        process = set(row["process"].split("+"))
+        if "print" in process:
+            assert f"print/{row['part']}.stl" in names
+        if "laser" in process:
+            assert [name for name in names if name.startswith(f"cut/{row['part']}_")]
+        if "wire" in process:
+            assert f"bend/{row['part']}_wire_schedule.csv" in names
+
+
+def run(words: list[str], environment: dict[str, str], **changes: str) -> subprocess.CompletedProcess[str]:
+    return subprocess.run(
+        [sys.executable, "-m", "fabgen", *words],
+        capture_output=True, text=True, check=False, env={**environment, **changes}, cwd=ROOT,
+    )  # fmt: skip
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_another_seed_another_zone_another_folder_same_bytes(
+    name: str, real_pack: Callable[[str], Path], real_environment: dict[str, str], tmp_path: Path
+) -> None:
+    first = real_pack(name)
+    target = tmp_path / "Zweites Päckchen"
+    words = ["pack", f"templates/{name}.toml", "-o", str(target), "--quiet"]
+    result = run(
+        words, real_environment, PYTHONHASHSEED="7", TZ="Pacific/Kiritimati", LC_ALL="C", SOURCE_DATE_EPOCH="1"
+    )
+    assert result.returncode == 0, result.stderr
+    assert files_in(target) == files_in(first)
+    assert [file for file in files_in(first) if (first / file).read_bytes() != (target / file).read_bytes()] == []
+
+
+def test_a_check_of_a_sized_job_is_quick(real_pack: Callable[[str], Path], real_environment: dict[str, str]) -> None:
+    real_pack("hydrogen-wire")
+    began = time.monotonic()
+    result = run(["check", "templates/hydrogen-wire.toml", "--json"], real_environment)
+    seconds = time.monotonic() - began
+    assert result.returncode == 0, result.stderr
+    kept = rows(real_pack("hydrogen-wire") / "findings.csv")
+    assert [row["code"] for row in json.loads(result.stdout)] == [row["code"] for row in kept]
+    # 1.5 s on an idle machine; another test may run beside this one
+    assert seconds < 5
+
+
+def test_size_says_what_the_pack_says(real_pack: Callable[[str], Path], real_environment: dict[str, str]) -> None:
+    record = record_of(real_pack("hydrogen-brass"))
+    result = run(["size", "templates/hydrogen-brass.toml", "--json"], real_environment)
+    assert result.returncode == 0, result.stderr
+    sized = json.loads(result.stdout)
+    for key in ("sizes", "predicted", "capacitor", "job", "settings"):
+        assert sized[key] == record[key]
+
+
+def test_groups() -> None:
+    assert chosen_groups(()) == tuple(GROUPS)
+    assert chosen_groups(("sheets", "tables")) == ("tables", "sheets")
+    with pytest.raises(JobError, match="is not a group of files; allowed: tables"):
+        chosen_groups(("all",))
+
+
+@pytest.mark.parametrize(
+    ("form", "make"),
+    [("wire", "rolled"), ("sheet", "folded"), ("wire", "printed"), ("sheet", "tube"), ("wire", "turned")],
+)
+def test_every_make_of_can_gives_a_pack(form: str, make: str, tmp_path: Path) -> None:
+    feed = sample_feed(form, make)
+    _, findings = build_content(feed)
+    stops = tuple({finding.code for finding in findings if finding.severity == "stop"})
+    report = write_pack(feed, tmp_path / "pack", PackOptions(("tables", "bend", "cut", "order"), stops))
+    assert set(report.files) | {RECORD_NAME} == set(files_in(tmp_path / "pack"))
+
+
+def test_stop_findings_are_named_all_at_once(tmp_path: Path) -> None:
+    feed = sample_feed()
+    thin = feed.job.can.model_copy(update={"metal": "1.4301"})
+    limits = feed.job.limits.model_copy(update={"sheet_mm": (20.0, 20.0)})
+    feed = sample_feed()
+    from dataclasses import replace
+
+    feed = replace(feed, job=feed.job.model_copy(update={"can": thin, "limits": limits}))
+    with pytest.raises(
+        ChecksFailedError, match=r"finding\(s\) stop the pack:\n  [A-Z]+-\d+ .*\n.*--despite [A-Z]+-\d+"
+    ):
+        write_pack(feed, tmp_path / "pack")
+    assert not list(tmp_path.iterdir())

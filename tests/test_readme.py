@@ -1,0 +1,132 @@
+"""The guides: every command in them runs, every link leads somewhere, kept packs and pictures are current."""
+
+from __future__ import annotations
+
+import os
+import re
+import shlex
+import shutil
+import subprocess
+import sys
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+
+from fabgen.cli import EXIT_STATUSES
+from fabgen.folder import RECORD_NAME, files_in, sha256_of
+from fabgen.job_page import MEANINGS, job_page
+from fabgen.job_reader import parse_job
+from tests.examples import EXAMPLES, PICTURES, differences, render
+
+ROOT = Path(__file__).parent.parent
+PAGES = sorted([*ROOT.glob("*.md"), *(ROOT / "docs").glob("*.md")])
+# Run by .ci/run itself, from nothing.
+TOOLS = {"pytest", "ruff", "mypy"}
+
+
+def commands_of(page: Path) -> list[list[str]]:
+    blocks = re.findall(r"^```sh\n(.*?)^```", page.read_text(encoding="utf-8"), re.MULTILINE | re.DOTALL)
+    lines = [line for block in blocks for line in block.splitlines()]
+    return [words for words in (shlex.split(line, comments=True) for line in lines) if words]
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("page", PAGES, ids=lambda page: page.name)
+def test_every_command_runs(
+    page: Path, tmp_path: Path, real_environment: dict[str, str], real_pack: Callable[[str], Path]
+) -> None:
+    for name in ("hydrogen-wire", "hydrogen-brass"):
+        if name in page.read_text(encoding="utf-8"):
+            real_pack(name)
+    shutil.copytree(ROOT / "templates", tmp_path / "templates")
+    for words in commands_of(page):
+        assert (ROOT / words[1] if words[0] == "sh" else ROOT / words[0]).exists(), words
+        inner = words[2:] if words[0] == "sh" else []
+        if not inner or inner[0] in TOOLS or inner[:3] == ["python", "-m", "tests.regenerate"]:
+            continue
+        assert inner[0] == "fabgen"
+        result = subprocess.run(
+            [sys.executable, "-m", *inner],
+            cwd=tmp_path,
+            env=real_environment,
+            capture_output=True,
+            text=True,
+            check=False,
+        )
+        assert result.returncode == 0, f"{words}: {result.stderr}"
+
+
+@pytest.mark.parametrize("page", PAGES, ids=lambda page: page.name)
+def test_every_link_leads_somewhere(page: Path) -> None:
+    text = page.read_text(encoding="utf-8")
+    for target in re.findall(r"\]\(([^)#\s]+)\)", text):
+        assert (page.parent / target).exists(), target
+
+
+def test_readme_opens_with_the_job_and_has_both_commands() -> None:
+    text = (ROOT / "README.md").read_text(encoding="utf-8")
+    assert text.index("You build a receiver") < text.index("## Two commands") < text.index("![")
+    assert "@" not in re.sub(r"`[^`]*`", "", text)
+
+
+def test_readme_names_every_exit_status() -> None:
+    text = " ".join((ROOT / "README.md").read_text(encoding="utf-8").split())
+    for number, meaning in re.findall(r"(\d+)  (\S.*?)(?:  |$)", EXIT_STATUSES, re.MULTILINE):
+        if number != "143":
+            assert f"{number} {meaning.strip()}" in text
+
+
+def test_the_page_of_keys_is_current_and_complete() -> None:
+    assert (ROOT / "docs" / "job-file.md").read_text(encoding="utf-8") == job_page()
+    assert all(f"`{name.split('.')[-1]}`" in job_page() for name in MEANINGS)
+
+
+def test_toml_in_the_guides_is_valid() -> None:
+    for page in PAGES:
+        for block in re.findall(r"^```toml\n(.*?)^```", page.read_text(encoding="utf-8"), re.MULTILINE | re.DOTALL):
+            parse_job(block, page.name)
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("name", EXAMPLES)
+def test_kept_packs_are_current(name: str, real_pack: Callable[[str], Path]) -> None:
+    kept, new = ROOT / "out_examples" / name, real_pack(name)
+    assert files_in(kept) == files_in(new)
+    stale = [text for file in files_in(kept) for text in differences(kept / file, new / file)]
+    assert not stale, "run: sh setup.sh python -m tests.regenerate"
+
+
+@pytest.mark.parametrize("name", EXAMPLES)
+def test_kept_packs_are_whole(name: str) -> None:
+    import json
+
+    kept = ROOT / "out_examples" / name
+    listed = json.loads((kept / RECORD_NAME).read_text(encoding="utf-8"))["files"]
+    assert {file: sha256_of(kept / file) for file in files_in(kept) if file != RECORD_NAME} == listed
+    assert sum((kept / file).stat().st_size for file in files_in(kept)) < 6_000_000
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("picture", PICTURES)
+def test_pictures_are_current(picture: str, real_pack: Callable[[str], Path], tmp_path: Path) -> None:
+    if shutil.which("pdftoppm") is None:
+        pytest.skip("pdftoppm (poppler-utils) is not installed")
+    from PIL import Image, ImageChops, ImageStat
+
+    name, page = PICTURES[picture]
+    render(real_pack(name) / "sheets.pdf", page, tmp_path / "new.png")
+    with Image.open(ROOT / picture) as kept, Image.open(tmp_path / "new.png") as new:
+        assert kept.size == new.size
+        # Versions of poppler smooth edges differently; a changed drawing differs by far more.
+        assert max(ImageStat.Stat(ImageChops.difference(kept.convert("L"), new.convert("L"))).mean) < 0.5
+
+
+def test_setup_explains_itself() -> None:
+    for words, message in ((["setup.sh"], "give a command to run"), (["setup.sh", "true"], "is not installed")):
+        result = subprocess.run(
+            ["sh", str(ROOT / words[0]), *words[1:]],
+            capture_output=True, text=True, check=False, env={**os.environ, "PYTHON": "python-of-nowhere"},
+        )  # fmt: skip
+        assert result.returncode == 2
+        assert message in result.stderr
