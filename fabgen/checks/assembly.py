@@ -326,7 +326,7 @@ def yield_before_trimming(context: Context) -> Iterator[Fault]:
         value=f"{value:.0%} without trimming",
         limit=f"{least:.0%}",
         message=f"{1 - value:.0%} of feeds need the screwdriver: measure, then trim overlap and tap",
-        cure=f"measure first {names}: they matter most",
+        cure=f"measure {names} to 0.1 mm before soldering: they matter most",
     )
 
 

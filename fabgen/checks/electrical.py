@@ -10,6 +10,7 @@ from collections.abc import Iterator
 
 from fabgen.checks.registry import Context, Fault, check, source_text
 from fabgen.checks.texts import down, mm, up
+from fabgen.parts.can_sheet import can_wall
 from fabgen.parts.contour import Outline, bounds_mm
 from fabgen.parts.floor_holes import floor_holes
 from fabgen.stock import tables
@@ -77,6 +78,51 @@ def openings(context: Context) -> Iterator[Fault]:
         message=f"{len(open_holes)} open holes of {mm(longest)}; the floor's thickness alone holds back {loss:.0f} dB",
         cure=f"make them {down(most):g} mm or smaller, and more of them",
     )
+
+
+@check("ELEC-303", "caution", "seam_screw_pitch_max_wavelengths", "soldered_pitch_factor")
+def joint_to_the_floor(context: Context) -> Iterator[Fault]:
+    """Pitch of the tabs that join wall and floor: that joint carries the wall's current all round.
+
+    A soldered joint may have its tabs farther apart, since the solder carries the current."""
+    most = context.limit("seam_screw_pitch_max_wavelengths") * context.wavelength_mm
+    if tables.metal(context.job.can.metal).solderable:
+        most *= context.limit("soldered_pitch_factor")
+    for part in context.parts:
+        sizes = dict(part.sizes)
+        if "tab_count" not in sizes or "flat_length_mm" not in sizes:
+            continue
+        pitch = sizes["flat_length_mm"] / max(sizes["tab_count"], 1.0)
+        if pitch > most:
+            yield Fault(
+                part=part.key,
+                feature="joint to the floor",
+                value=mm(pitch),
+                limit=mm(most),
+                message=f"{sizes['tab_count']:g} tabs hold the wall at {mm(pitch)} pitch; between them the joint opens "
+                "and radiates",
+                cure=f"use {math.ceil(sizes['flat_length_mm'] / most)} tabs, or solder the joint all round",
+            )
+
+
+@check("ELEC-304", "caution", "seam_current_max", source="TE11 in round guide: circumferential current of the wall "
+       "goes with the cosine of the angle, zero in the E-plane; Marcuvitz, Waveguide Handbook")  # fmt: skip
+def seam_in_the_current(context: Context) -> Iterator[Fault]:
+    """Longitudinal seam against the wall current: away from the E-plane, current has to cross it."""
+    if context.job.can.make not in {"rolled", "folded"}:
+        return
+    x, y = can_wall(context.feed).path.start
+    share, most = abs(x) / math.hypot(x, y), context.limit("seam_current_max")
+    if share > most:
+        yield Fault(
+            part="wall",
+            feature="seam",
+            value=f"{share:.0%} of the largest current",
+            limit=f"{most:.0%}",
+            message=f"the seam lies {math.degrees(math.asin(share)):.0f} degrees off the E-plane; {share:.0%} of the "
+            "largest wall current crosses it",
+            cure="solder the seam over its whole length, or use 8 or 12 flats, whose seam lies in the E-plane",
+        )
 
 
 @check("ELEC-302", "caution", "bar_pitch_max_wavelengths")
@@ -190,7 +236,8 @@ def band_of_the_target(context: Context) -> Iterator[Fault]:
             value=f"{context.frequency_mhz:g} MHz",
             limit=f"{band.low_mhz:g} to {band.high_mhz:g} MHz",
             message=f"the target lies in {band.low_mhz:g} to {band.high_mhz:g} MHz: {band.meaning}",
-            cure="receiving needs nothing; before transmitting ask the national table of allocations",
+            cure=f"receiving needs nothing; before transmitting on {band.low_mhz:g} to {band.high_mhz:g} MHz ask the "
+            "national table of allocations",
             source=source_text(band.source),
         )
 
@@ -218,7 +265,7 @@ def static_charge(context: Context) -> Iterator[Fault]:
 
 @check("ELEC-601", "caution", "return_loss_stop_db")
 def match_as_wished(context: Context) -> Iterator[Fault]:
-    """Predicted return loss against the wish, less what the mesh leaves unsure."""
+    """Predicted return loss against the wish; stop where the feed is not worth making."""
     loss, wished = context.feed.predicted.return_loss_db, context.job.wishes.return_loss_db
     if loss >= wished:
         return
@@ -241,6 +288,9 @@ def bandwidth_as_wished(context: Context) -> Iterator[Fault]:
     wished, predicted = context.job.wishes.bandwidth_mhz, context.feed.predicted
     if wished is None or predicted.bandwidth_mhz >= wished:
         return
+    # The reflection grows with the distance from resonance: a band n times as wide costs 20 log10 n.
+    lost = 20 * math.log10(wished / max(predicted.bandwidth_mhz, 1e-3))
+    affordable = down(predicted.bandwidth_return_loss_db - lost, 1.0)
     yield Fault(
         part="feed",
         feature="bandwidth",
@@ -248,7 +298,7 @@ def bandwidth_as_wished(context: Context) -> Iterator[Fault]:
         limit=f"{wished:g} MHz",
         message=f"the band at {predicted.bandwidth_return_loss_db:g} dB return loss is "
         f"{predicted.bandwidth_mhz:.1f} MHz wide; {wished:g} MHz are wished",
-        cure="choose selectivity = 'broad', or wish for less return loss",
+        cure=f"choose selectivity = 'broad', or wish for {max(affordable, 1.0):g} dB return loss",
         source="the job's own wish",
     )
 
@@ -284,5 +334,5 @@ def sure_enough(context: Context) -> Iterator[Fault]:
         value=f"+-{unsure:.1f} MHz",
         limit=f"+-{band / 2:.1f} MHz",
         message=f"the computed resonance is sure to {unsure:.1f} MHz, but the matched band is only {band:.1f} MHz wide",
-        cure="plan to trim with tap and capacitor after the first measurement",
+        cure=f"plan to trim tap and capacitor by up to {unsure:.1f} MHz after the first measurement",
     )

@@ -82,7 +82,7 @@ def radome_effect(context: Context) -> Iterator[Fault]:
         limit=f"{most:g} wavelengths",
         message=f"a disc of {plastic.name} {mm(thick)} thick reflects {loss:.0f} dB down; the prediction is without it"
         + ("" if part <= most else ", and it is too thick for this estimate"),
-        cure="trim the capacitor with the radome on"
+        cure=f"trim the capacitor with the radome on; it changes the reflection by up to {reflection:.3f}"
         + ("" if part <= most else f"; use a disc of {most * wavelength:.1f} mm or thinner"),
         severity="note" if part <= most else "caution",
     )
@@ -157,8 +157,8 @@ def sun_in_the_focus(context: Context) -> Iterator[Fault]:
         limit="not on the feed",
         message=f"a shiny dish of {dish.diameter_m:g} m that points at the Sun puts {power:.0f} W on a spot of "
         f"{spot:.0f} mm at the feed",
-        cure="paint the dish matt, use mesh, and park it away from the Sun's path"
-        + ("; never point a shiny dish with a printed feed within 3 degrees of the Sun" if context.printed else ""),
+        cure="paint the dish matt, use mesh, and park it 10 degrees or more from the Sun's path"
+        + ("; never track the Sun with a shiny dish and a printed feed" if context.printed else ""),
         severity="caution" if context.printed else "note",
     )
 
@@ -177,7 +177,7 @@ def ultraviolet(context: Context) -> Iterator[Fault]:
         feature="plastic",
         value=plastic.name,
         limit="resistant to ultraviolet light",
-        message=f"{plastic.name} turns brittle in sunlight within one to three years",
-        cure=f"print {' or '.join(fit)}, or paint the outside with two coats of a lacquer without metal",
+        message=f"{plastic.name} turns brittle in sunlight within 1 to 3 years",
+        cure=f"print {' or '.join(fit)}, or paint the outside with 2 coats of a lacquer without metal",
         source=source_text(plastic.source),
     )

@@ -1,6 +1,6 @@
 """Checks of printed parts: walls, bed, bridges, inserts, heat, water, warp, lining.
 
-Depends on: checks (registry, texts), parts (can_printed, print_rules, split, floor_holes), stock, theory.expansion.
+Depends on: checks (registry, texts), parts (can_printed, split, floor_holes), stock, theory.expansion.
 """
 
 from __future__ import annotations
@@ -12,7 +12,6 @@ from fabgen.checks.texts import down, mm, up
 from fabgen.parts.can_printed import ledge_of
 from fabgen.parts.contour import bounds_mm
 from fabgen.parts.floor_holes import floor_holes
-from fabgen.parts.print_rules import print_rules
 from fabgen.parts.records import Part
 from fabgen.parts.split import EAR_SCREW
 from fabgen.stock import tables
@@ -103,7 +102,7 @@ def plastic_round_inserts(context: Context) -> Iterator[Fault]:
     inserts = [part for part in context.parts if part.key.startswith("insert")]
     if not inserts or not context.printed:
         return
-    ledge = ledge_of(context.feed, print_rules(context.feed))
+    ledge = ledge_of(context.feed)
     if ledge is None:
         return
     least = context.limit("insert_wall_min_mm")

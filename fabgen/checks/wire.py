@@ -104,8 +104,8 @@ def drop_shaped_ends(context: Context) -> Iterator[Fault]:
                 limit=mm(least),
                 message="the bar bends meet the loop's arc without straight wire between; the loop's ends tend to "
                 "a drop shape there",
-                cure="bend the bars first, wind the loop last, then dress its ends on the mandrel or jig until the "
-                "true-scale page covers it",
+                cure=f"bend the bars first, wind the loop last, then dress the last {up(2 * least, 1.0):g} mm at each end "
+                "on the mandrel or jig until the true-scale page covers them",
             )
 
 
@@ -205,5 +205,6 @@ def ice(context: Context) -> Iterator[Fault]:
             value=mm(load.sag_mm),
             limit=mm(most),
             message=f"{coat:g} mm of ice makes the loop's far side hang {mm(load.sag_mm)} low and detunes it",
-            cure="close the can with a radome (can.radome = true), or hold the far side with a post of PTFE or foam",
+            cure="close the can with a radome (can.radome = true), or hold the far side with a post of PTFE "
+            f"{context.sizes.loop_height_mm:g} mm long",
         )
