@@ -23,6 +23,7 @@ if ! [ -e "$mark" ] || [ -n "$(find "$home/pyproject.toml" "$home/fabgen" "$home
     printf 'setup.sh: making %s and installing fabgen (about 1.5 GB, some minutes the first time)\n' "$venv" >&2
     [ -x "$venv/bin/python" ] || "$python" -m venv "$venv" ||
         fail "$python cannot make a virtual environment; on Debian: apt-get install python3-venv"
+    rm -rf "$home/build"
     "$venv/bin/python" -m pip install --quiet --disable-pip-version-check "$what" || fail "the installation failed"
     touch "$mark"
 fi

@@ -187,6 +187,6 @@ def test_every_data_file_is_in_the_wheel() -> None:
 
     data = tomllib.loads((ROOT / "pyproject.toml").read_text(encoding="utf-8"))["tool"]["setuptools"]["package-data"]
     for path in PACKAGE.rglob("*"):
-        if path.is_file() and path.suffix != ".py" and "__pycache__" not in path.parts:
+        if path.is_file() and path.suffix not in {".py", ".md"} and "__pycache__" not in path.parts:
             package = ".".join(path.parent.relative_to(ROOT).parts)
             assert any(path.match(pattern) for pattern in data.get(package, [])), f"{path.name} is not in the wheel"
