@@ -14,7 +14,8 @@ from fabgen.parts.kernel import once
 from fabgen.parts.making import metal_part
 from fabgen.parts.records import Part
 from fabgen.parts.wall_plan import wall_plan
-from fabgen.parts.wall_strip import Wall, wall_flat, wall_solid, wall_volume_mm3
+from fabgen.parts.wall_solid import wall_solid
+from fabgen.parts.wall_strip import Wall, wall_flat, wall_volume_mm3
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
 

@@ -61,7 +61,7 @@ def wall_plan(
     seam = _seam(feed, path, depth_mm, bends, overlap, screw)
     tab = tab_shape(feed, screw, t)
     tabs = _tab_places(feed, path, seam, tab)
-    holes = _fixing_holes(path, seam, overlap, fixings, screw) if fixings else ()
+    holes = _fixing_holes(path, tabs, seam, overlap, fixings, screw.clearance_medium_mm) if fixings else ()
     wall = Wall(path, depth_mm, base_z_mm, tab, tabs, seam, holes)
     check_wall(wall, name)
     return wall
@@ -159,17 +159,18 @@ def _tab_places(feed: Feed, path: StripPath, seam: Seam, tab: TabShape) -> tuple
 
 
 def _fixing_holes(
-    path: StripPath, seam: Seam, overlap: float, fixings: tuple[float, int], screw: Screw
+    path: StripPath, tabs_mm: tuple[float, ...], seam: Seam, overlap: float, fixings: tuple[float, int], hole_mm: float
 ) -> tuple[WallHole, ...]:
-    """Holes at equal pitch between the lap and the step; on a folded can in the middle of each flat."""
+    """Holes above tabs, spread evenly, clear of the lap; on a folded can in the middle of each whole flat."""
     height, count = fixings
-    hole = screw.clearance_medium_mm
     if path.stretches[0].rolled:
-        low, room = overlap, seam.step_at_mm - overlap
-        return tuple(WallHole(low + room * (i + 0.5) / count, height, hole) for i in range(count))
+        free = [s for s in tabs_mm if s > overlap + 2 * hole_mm]
+        count = min(count, len(free))
+        chosen = (free[math.floor((i + 0.5) * len(free) / count)] for i in range(count))
+        return tuple(WallHole(s, height, hole_mm) for s in chosen)
     whole = [
         at + piece.flat_mm / 2
         for at, piece in zip(path.starts_mm(), path.stretches, strict=False)
         if not piece.radius_mm and at > 0 and at + piece.flat_mm < seam.step_at_mm - 1e-6
     ]
-    return tuple(WallHole(s, height, hole) for s in whole)
+    return tuple(WallHole(s, height, hole_mm) for s in whole)

@@ -21,16 +21,12 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
-from typing import TYPE_CHECKING
 
 from fabgen.errors import GeometryError
-from fabgen.parts.contour import Circle, Contour, FoldLine, Point, Vertex, area_mm2, rounded, split_arc
+from fabgen.parts.contour import Circle, Contour, FoldLine, Point, Vertex, area_mm2, rounded
 from fabgen.parts.records import FlatPattern
-from fabgen.parts.strip_path import StripPath, outward, profile
+from fabgen.parts.strip_path import StripPath, outward
 from fabgen.theory.bending import bend_allowance, bend_deduction
-
-if TYPE_CHECKING:
-    import cadquery
 
 SEAM_GAP_MM = 0.05
 """Between the two layers of the lap: room for solder or for burrs, so that the layers do not have to be forced."""
@@ -104,7 +100,7 @@ class Wall:
         return self.bend_mid_mm + self.tab.length_mm
 
 
-def _relief_top(wall: Wall) -> float:
+def relief_top_mm(wall: Wall) -> float:
     """Reliefs reach past the fold line by r + t, and at least a round end past the bend's start."""
     t, tab = wall.path.thickness_mm, wall.tab
     zone = bend_allowance(90.0, tab.inside_radius_mm, tab.k_factor, t)
@@ -121,7 +117,7 @@ def tab_tip_mm(wall: Wall) -> float:
 def wall_flat(wall: Wall, corner_mm: float) -> FlatPattern:
     """The strip before rolling or folding, seen from outside. ``corner_mm``: least inner corner radius."""
     tab, seam = wall.tab, wall.seam
-    tip, top = tab_tip_mm(wall), _relief_top(wall)
+    tip, top = tab_tip_mm(wall), relief_top_mm(wall)
     half, outer = tab.width_mm / 2, tab.width_mm / 2 + tab.relief_mm
     soft = corner_round_mm(tab)
     edge: list[tuple[float, float, float]] = [(0.0, 0.0, 0.0)]
@@ -210,114 +206,6 @@ def wall_volume_mm3(wall: Wall, corner_mm: float) -> float:
         math.radians(abs(f.angle_deg)) * math.dist(f.start, f.end) * t * t * (0.5 - f.k_factor) for f in flat.folds
     )
     return area * t + extra
-
-
-def wall_solid(wall: Wall) -> cadquery.Shape:
-    """The finished wall in the feed's frame.
-
-    On a rolled wall the tabs follow the circle: sectors with radial sides, as wide as the flat tab at the wall.
-    """
-    from fabgen.parts import kernel
-
-    last = len(wall.path.stretches) - 1
-    seam, t = wall.seam, wall.path.thickness_mm
-    body = kernel.prism(profile(wall.path, 0, last), (), 0.0, wall.depth_mm)
-    tail = kernel.prism(profile(wall.path, last), (), seam.tail_low_mm, wall.depth_mm - seam.tail_low_mm)
-    tools = []
-    for hole in (*(WallHole(seam.inner_row_mm, z, seam.hole_mm) for z in seam.heights_mm), *wall.holes):
-        (x, y), heading = wall.path.at(hole.along_mm)
-        ox, oy = outward(heading)
-        ends = [(x + k * ox, y + k * oy, hole.height_mm) for k in (-2 * t, 3 * t)]
-        tools.append(kernel.rod(ends[0], ends[1], hole.diameter_mm))
-    tabs = []
-    tab, under = _tab_body(wall), _under_tab(wall)
-    for s in wall.tabs_mm:
-        place, heading = wall.path.at(s)
-        tabs.append(_put(tab, place, heading))
-        tools += [_put(under, place, heading), *_reliefs(wall, s)]
-    drilled = kernel.cut(kernel.fused(body, tail, what="wall"), *tools, what="wall")
-    return kernel.moved(kernel.fused(drilled, *tabs, what="wall"), z_mm=wall.base_z_mm)
-
-
-def _put(shape: cadquery.Shape, place: Point, heading_deg: float) -> cadquery.Shape:
-    """From a frame with x outward, y along the wall, to the wall at a place."""
-    from fabgen.parts import kernel
-
-    return kernel.moved(kernel.turned(shape, heading_deg - 90.0), place[0], place[1])
-
-
-def _rolled_radius(wall: Wall) -> float:
-    return next((p.radius_mm for p in wall.path.stretches if p.rolled), 0.0)
-
-
-def _swept(wall: Wall, section: Contour) -> cadquery.Shape:
-    """A section (outward, up) swept along the wall over a tab's width, centred on y = 0."""
-    import cadquery as cq
-
-    from fabgen.parts import kernel
-
-    plane = cq.Plane(origin=(0, 0, 0), xDir=(1, 0, 0), normal=(0, -1, 0))
-    ring = kernel.contour_wire(section).moved(cq.Location(plane))
-    width, radius = wall.tab.width_mm, _rolled_radius(wall)
-    if not radius:
-        body = cq.Solid.extrudeLinear(ring, [], cq.Vector(0, width, 0))
-        return kernel.moved(body, y_mm=-width / 2)
-    angle = math.degrees(width / radius)
-    start, end = cq.Vector(-radius, 0, 0), cq.Vector(-radius, 0, 1)
-    return cq.Solid.revolve(cq.Face.makeFromWires(ring), angle, start, end).rotate(start, end, -angle / 2)
-
-
-def _under_tab(wall: Wall) -> cadquery.Shape:
-    """What is cut from the wall to be replaced by a tab with its bend and a piece of wall above it.
-
-    The cut ends above the reliefs: the kernel joins plain walls surely, a wall and a bend that touches it not.
-    """
-    t, top = wall.path.thickness_mm, _column_top(wall)
-    return _swept(wall, Contour((Vertex(-t, -t), Vertex(t, -t), Vertex(t, top), Vertex(-t, top))))
-
-
-def _column_top(wall: Wall) -> float:
-    return _relief_top(wall) + wall.path.thickness_mm
-
-
-def _reliefs(wall: Wall, along_mm: float) -> list[cadquery.Shape]:
-    """The slots with round ends at both sides of a tab."""
-    import cadquery as cq
-
-    from fabgen.parts import kernel
-
-    t, b, top, half = wall.path.thickness_mm, wall.tab.relief_mm, _relief_top(wall), wall.tab.width_mm / 2
-    plane = cq.Plane(origin=(0, 0, 0), xDir=(0, 1, 0), normal=(1, 0, 0))
-    bodies = []
-    for side in (1.0, -1.0):
-        low, high = sorted((0.0, side * b))
-        slot = rounded([(low, -t, 0.0), (high, -t, 0.0), (high, top, b / 2), (low, top, b / 2)])
-        body = kernel.prism(slot, (), -2 * t, 4 * t).moved(cq.Location(plane))
-        place, heading = wall.path.at(along_mm + side * half)
-        bodies.append(_put(body, place, heading))
-    return bodies
-
-
-def _tab_body(wall: Wall) -> cadquery.Shape:
-    """A folded tab with the wall above its bend, in a frame with x outward from the wall's mid-surface, y along it, z up."""
-    from fabgen.parts import kernel
-
-    t, tab, mid = wall.path.thickness_mm, wall.tab, wall.bend_mid_mm
-    centre = (mid, t / 2 + mid)
-    inner, outer = tab.inside_radius_mm, tab.inside_radius_mm + t
-    tip = wall.reach_mm
-    top = _column_top(wall)
-    section = Contour(
-        (
-            *split_arc(centre, outer, 180.0, 90.0), Vertex(centre[0], 0.0), Vertex(tip, 0.0), Vertex(tip, t),
-            *split_arc(centre, inner, 270.0, -90.0), Vertex(t / 2, centre[1]), Vertex(t / 2, top), Vertex(-t / 2, top),
-        )
-    )  # fmt: skip
-    body = _swept(wall, section)
-    corners = [e for e in body.Edges() if e.Center().x > tip - tab.length_mm / 2 and abs(e.tangentAt(0.5).z) > 0.9]
-    at = mid + tab.hole_from_bend_mm
-    hole = kernel.rod((at, 0.0, -t), (at, 0.0, 2 * t), tab.hole_mm)
-    return kernel.cut(body.fillet(corner_round_mm(tab), corners), hole, what="tab")
 
 
 def corner_round_mm(tab: TabShape) -> float:
