@@ -15,7 +15,7 @@ from dataclasses import dataclass, replace
 from fabgen.errors import JobError, NoSolutionError
 from fabgen.job import Choke, Job
 from fabgen.progress import Progress
-from fabgen.sizing.can_start import start_can, start_choke
+from fabgen.sizing.can_start import least_efficiency, start_can, start_choke
 from fabgen.sizing.dish import half_angle_rad
 from fabgen.sizing.evaluate import in_dish
 from fabgen.sizing.layout import LoopStock
@@ -25,9 +25,13 @@ from fabgen.sizing.rounding import round_to
 from fabgen.sizing.trial import WALL_MM, CanShape, FrontPlace, Setting, first_sizes
 from fabgen.theory.waveguide import cutoff_bore_mm
 
-BORE_STEP = 0.04
-DEPTH_STEP = 0.12
-CUTOFF_MARGIN = 1.05
+BORE_STEP = 0.028
+DEPTH_STEP = 0.048
+"""Steps that a mesh follows by moving: what differs is then the can and not the mesh."""
+CUTOFF_MARGIN = 1.12
+RIM_WAVELENGTHS = 0.02
+"""The rim stands at least this far above the loop. Common practice, no source."""
+LARGEST_WAVELENGTHS = 1.4
 PRINT_FLANGE_MM = 2 * 14.0
 SEAM_MM = 15.0
 
@@ -66,7 +70,7 @@ def bore_range(job: Job) -> BoreRange:
         high = (max(job.limits.sheet_mm) - SEAM_MM) / math.pi - wall
         reason = f"sheet of {max(job.limits.sheet_mm):g} mm length for the wall"
     else:
-        return BoreRange(low, 2.0 * job.wavelength_mm, "two wavelengths")
+        return BoreRange(low, LARGEST_WAVELENGTHS * job.wavelength_mm, f"{LARGEST_WAVELENGTHS:g} wavelengths")
     if high < low:
         raise NoSolutionError(
             f"{reason} allows a bore of {high:.0f} mm, but below {low:.0f} mm the can is cut off at "
@@ -100,7 +104,10 @@ class _Search:
         progress: Progress,
     ) -> None:
         self.job, self.stock, self.place = job, stock, place
-        self.solve, self.progress = solve, progress
+        self.solve, self.progress, self.step = solve, progress, job.limits.resolution_mm
+        self.half_angle = math.degrees(half_angle_rad(job.dish.focal_ratio))
+        height = job.fixed.loop_height_mm or place.height * job.wavelength_mm
+        self.least_depth = height + RIM_WAVELENGTHS * job.wavelength_mm
         self.trials: list[CanTrial] = []
         self.remarks: list[str] = []
         fixed = job.fixed.can_bore_mm
@@ -114,15 +121,14 @@ class _Search:
 
     def start(self) -> CanShape:
         job, wavelength, step = self.job, self.job.wavelength_mm, self.job.limits.resolution_mm
-        angle = math.degrees(half_angle_rad(job.dish.focal_ratio))
-        ratio = start_can(angle, job.wishes.goal, choke=bool(job.can.choke))
+        ratio = start_can(self.half_angle, job.wishes.goal, choke=bool(job.can.choke))
         wanted = ratio.bore * wavelength
         bore = job.fixed.can_bore_mm or self.clip(round_to(wanted, step))
         if job.fixed.can_bore_mm is None and wanted > self.range.high_mm:
             self.remarks.append(
                 f"The dish asks for a bore of about {wanted:.0f} mm; {self.range.reason} limits it to {bore:.0f} mm."
             )
-        depth = job.fixed.can_depth_mm or round_to(ratio.depth * wavelength, step)
+        depth = job.fixed.can_depth_mm or round_to(max(ratio.depth * wavelength, self.least_depth), step)
         return self.with_choke(CanShape(bore, depth))
 
     def clip(self, bore_mm: float) -> float:
@@ -141,7 +147,8 @@ class _Search:
     def along(self, can: CanShape, name: str, step: float) -> CanShape:
         """The best of three values of one size and of the top of the parabola through them."""
         size: float = getattr(can, name)
-        points = [(x, self.merit(self.moved(can, name, x))) for x in (size, size * (1 - step), size * (1 + step))]
+        cans = [self.moved(can, name, x) for x in (size, size * (1 - step), size * (1 + step))]
+        points: list[tuple[float, float]] = [(getattr(c, name), self.merit(c)) for c in cans]
         best = parabola_top(points)
         found = self.moved(can, name, best)
         value: float = getattr(found, name)
@@ -154,7 +161,7 @@ class _Search:
         rounded = round_to(value, self.job.limits.resolution_mm)
         if name == "bore_mm":
             return self.with_choke(replace(can, bore_mm=self.clip(rounded)))
-        return self.with_choke(replace(can, depth_mm=rounded))
+        return self.with_choke(replace(can, depth_mm=max(rounded, round_to(self.least_depth, self.step))))
 
     def merit(self, can: CanShape) -> float:
         for known in self.trials:
@@ -163,7 +170,7 @@ class _Search:
         self.progress.step(f"searching the can: bore {can.bore_mm:.1f} mm, depth {can.depth_mm:.1f} mm")
         solution = self.solve(first_sizes(Setting(self.job, self.stock, can), self.place))
         figures = in_dish(self.job, solution)
-        merit = figures.merit(self.job.wishes.goal)
+        merit = figures.merit(self.job.wishes.goal, least_efficiency(self.half_angle))
         self.trials.append(
             CanTrial(
                 can.bore_mm, can.depth_mm, figures.dish.aperture_efficiency, figures.noise.g_over_t_db_per_k, merit

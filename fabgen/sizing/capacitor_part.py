@@ -23,9 +23,10 @@ PTFE_PERMITTIVITY = 2.05
 TRIM_DOWN, TRIM_UP = 0.6, 1.5
 SHORTEST_OVERLAP_MM = 0.3
 OVERLAP_STEP_MM = 0.1
-SLEEVE_PLAY_MM = 0.1
-TUBE_WALL_MM = 0.45
-"""Brass tube that slides on the coax's own dielectric: play on the diameter, wall. Common practice, no source."""
+SLEEVE_TUBES_MM = ((2.0, 1.1), (2.5, 1.6), (3.0, 2.1), (4.0, 3.1), (5.0, 4.1))
+"""Outside and bore of metric brass tube as model shops stock it. Common practice, no source."""
+LEAST_SLEEVE_MM = 0.25
+"""Thinnest wall of PTFE tube that survives assembly. Common practice, no source."""
 FILMS_MM = (0.05, 0.1, 0.25, 0.5, 1.0)
 """PTFE film by the sheet. Common practice, no source."""
 # Field of a wire's flat end inside a longer tube, C_end / (e0 er D) over d/D: finite differences on the
@@ -43,21 +44,18 @@ def series_capacitor_pf(reactance_ohm: float, frequency_mhz: float) -> float:
     return 1e6 / (2 * math.pi * frequency_mhz * reactance_ohm)
 
 
-def sleeve_pf(
-    overlap_mm: float, inner_mm: float, dielectric_mm: float, bore_mm: float, permittivity: float = PTFE_PERMITTIVITY
-) -> float:
-    """Coaxial capacitor with a thin ring of air around the dielectric, and the end of the wire, pF:
+def sleeve_pf(overlap_mm: float, inner_mm: float, bore_mm: float, permittivity: float = PTFE_PERMITTIVITY) -> float:
+    """Coaxial capacitor C = 2 pi e0 er L / ln(D/d) + end correction of the wire's flat end, pF.
 
-        C = 2 pi e0 L / (ln(d_e/d)/er + ln(D/d_e)) + C_end
-
-    Valid for L above D/2 and d/D 0.2 to 0.8; the field at the tube's mouth is left out (a few hundredths of a pF).
-    Pozar, Microwave Engineering, table 2.1, for the line; the end by our own electrostatic computation.
+    The PTFE tube fills the room between wire and brass. Valid for L above D/2 and d/D 0.2 to 0.8; the field at the
+    tube's mouth is left out (a few hundredths of a pF). Pozar, Microwave Engineering, table 2.1, for the line; the
+    end by our own electrostatic computation.
     """
     import numpy as np
 
-    series = math.log(dielectric_mm / inner_mm) / permittivity + math.log(bore_mm / dielectric_mm)
+    per_mm = 2 * math.pi * EPSILON_0_PF_PER_MM * permittivity / math.log(bore_mm / inner_mm)
     end = EPSILON_0_PF_PER_MM * permittivity * bore_mm * float(np.interp(inner_mm / bore_mm, _END_RATIO, _END_VALUE))
-    return 2 * math.pi * EPSILON_0_PF_PER_MM * overlap_mm / series + end
+    return per_mm * overlap_mm + end
 
 
 def plates_pf(
@@ -94,24 +92,29 @@ def capacitor_part(
 
 
 def sleeve_tube_mm(coax: Coax) -> tuple[float, float]:
-    """Outside and bore of the tube that slides on the coax's dielectric."""
-    bore = round_to(coax.dielectric_mm + SLEEVE_PLAY_MM, 0.01)
-    return bore + 2 * TUBE_WALL_MM, bore
+    """Outside and bore of the narrowest stock tube with room for a PTFE tube around the coax's bare centre."""
+    for outer, bore in SLEEVE_TUBES_MM:
+        if (bore - coax.inner_mm) / 2 >= LEAST_SLEEVE_MM:
+            return outer, bore
+    raise NoSolutionError(
+        f"no stock tube takes a centre conductor of {coax.inner_mm:g} mm with {LEAST_SLEEVE_MM:g} mm of PTFE; "
+        "choose a thinner coax"
+    )
 
 
 def _sleeve(capacitance: float, coax: Coax, voltage: float) -> CapacitorPart:
-    _, bore = sleeve_tube_mm(coax)
+    outer, bore = sleeve_tube_mm(coax)
 
     def value(overlap: float) -> float:
-        return sleeve_pf(overlap, coax.inner_mm, coax.dielectric_mm, bore, coax.relative_permittivity)
+        return sleeve_pf(overlap, coax.inner_mm, bore)
 
     overlap, least, most = _overlaps(value, capacitance)
     return CapacitorPart(
         form="sleeve", capacitance_pf=capacitance, minimum_pf=value(least), maximum_pf=value(most),
         overlap_mm=overlap, overlap_max_mm=most, inner_mm=coax.inner_mm, outer_mm=bore,
-        tube_wall_mm=TUBE_WALL_MM, plate_width_mm=0.0, film_mm=0.0,
-        relative_permittivity=coax.relative_permittivity, pf_per_mm=value(1.0) - value(0.0), peak_voltage_v=voltage,
-        formula="C = 2 pi e0 L / (ln(d_e/d)/er + ln(D/d_e)) + end correction of the wire's flat end",
+        tube_wall_mm=round_to((outer - bore) / 2, 0.01), plate_width_mm=0.0, film_mm=0.0,
+        relative_permittivity=PTFE_PERMITTIVITY, pf_per_mm=value(1.0) - value(0.0), peak_voltage_v=voltage,
+        formula="C = 2 pi e0 er L / ln(D/d) + end correction of the wire's flat end",
         source="Pozar, Microwave Engineering, table 2.1 (from memory); end correction by finite differences",
     )  # fmt: skip
 

@@ -1,7 +1,8 @@
 """What a feed pattern does in a paraboloid: efficiencies, phase centre, taper, widths, directivity.
 
 The pattern is a callable (theta, phi in radians) -> (E_theta, E_phi); theta = 0 looks at the vertex, the wanted
-polarisation is along y. Blockage and surface errors are left out.
+polarisation is along y, and the feed is its own mirror image in y = 0, so half of the sphere is sampled. Blockage
+and surface errors are left out.
 
 With t = theta and the half angle T, the field over the aperture is E cos^2(t/2)/f at radius 2 f tan(t/2), so
 
@@ -24,8 +25,8 @@ from fabgen.errors import NumericalError
 from fabgen.sizing.solver import Complex, Pattern, Real
 from fabgen.theory.dish import half_angle_deg
 
-THETA_POINTS = 32
-PHI_POINTS = 24
+THETA_POINTS = 28
+PHI_POINTS = 10
 CUT_STEP_DEG = 1.0
 
 
@@ -91,12 +92,16 @@ def co_cross(e_theta: Complex, e_phi: Complex, phi_rad: Real) -> tuple[Complex, 
     return e_theta * sine + e_phi * cosine, e_theta * cosine - e_phi * sine
 
 
+def _azimuths() -> Real:
+    """Angles over the half y > 0, half a step off its ends, where single nulls would count double."""
+    return math.pi * (np.arange(PHI_POINTS) + 0.5) / PHI_POINTS
+
+
 def _sample(pattern: Pattern, start_rad: float, stop_rad: float) -> _Grid:
     node, weight = np.polynomial.legendre.leggauss(THETA_POINTS)
     half = (stop_rad - start_rad) / 2
     theta = (start_rad + half * (node + 1))[:, None]
-    # Offset by half a step: no sample on the planes of symmetry, where single nulls would count double.
-    phi = (2 * math.pi * (np.arange(PHI_POINTS) + 0.5) / PHI_POINTS)[None, :]
+    phi = _azimuths()[None, :]
     grid_theta, grid_phi = np.broadcast_arrays(theta, phi)
     e_theta, e_phi = pattern(np.ascontiguousarray(grid_theta), np.ascontiguousarray(grid_phi))
     if not (np.all(np.isfinite(e_theta)) and np.all(np.isfinite(e_phi))):
@@ -104,11 +109,29 @@ def _sample(pattern: Pattern, start_rad: float, stop_rad: float) -> _Grid:
     return _Grid(theta, (weight * half)[:, None], grid_phi, e_theta, e_phi)
 
 
-def dish_figures(pattern: Pattern, half_angle: float, wavelength_mm: float) -> DishFigures:
-    """Efficiencies of the dish of ``half_angle`` (radians, above 0, below pi) with the feed's phase centre put
-    in the focus. Raises ``NumericalError`` for a pattern without power."""
-    inside = _sample(pattern, 0.0, half_angle)
-    outside = _sample(pattern, half_angle, math.pi)
+@dataclass(frozen=True)
+class DishSample:
+    """A pattern sampled once: on the dish and past its edge (``half_angle`` in radians)."""
+
+    half_angle: float
+    inside: _Grid
+    outside: _Grid
+
+
+def sample_pattern(pattern: Pattern, half_angle: float) -> DishSample:
+    """Sample a pattern for a dish of ``half_angle`` (radians, above 0, below pi).
+
+    Raises ``NumericalError`` for values that are not finite.
+    """
+    return DishSample(half_angle, _sample(pattern, 0.0, half_angle), _sample(pattern, half_angle, math.pi))
+
+
+def dish_figures(sample: DishSample, wavelength_mm: float) -> DishFigures:
+    """Efficiencies of the dish with the feed's phase centre put in the focus.
+
+    Raises ``NumericalError`` for a pattern without power.
+    """
+    half_angle, inside, outside = sample.half_angle, sample.inside, sample.outside
     power_in = inside.integral(inside.intensity * np.sin(inside.theta)).real
     power = power_in + outside.integral(outside.intensity * np.sin(outside.theta)).real
     if not power > 0:
@@ -148,7 +171,7 @@ def _phase_centre(co: Complex, grid: _Grid, wavelength_mm: float) -> float:
 def edge_taper_db(pattern: Pattern, half_angle: float) -> float:
     """Illumination of the dish's edge against its vertex in dB (negative): co-polar pattern averaged over the
     edge, with the space attenuation cos^4(T/2)."""
-    phi = 2 * math.pi * (np.arange(PHI_POINTS) + 0.5) / PHI_POINTS
+    phi = _azimuths()
     edge, _ = co_cross(*pattern(np.full(phi.shape, half_angle), phi), phi)
     axis, _ = co_cross(*pattern(np.zeros(phi.shape), phi), phi)
     ratio = float(np.mean(np.abs(edge) ** 2) / np.mean(np.abs(axis) ** 2))
@@ -210,9 +233,8 @@ def beam(pattern: Pattern, power: float) -> Beam:
     )
 
 
-def ring_power(pattern: Pattern, start_rad: float, stop_rad: float) -> tuple[Real, Real]:
-    """Gauss-Legendre angles in [start, stop] and the power in each ring, weights and sin(theta) included; their
-    sum is the integral of |E|^2 over the zone."""
-    grid = _sample(pattern, start_rad, stop_rad)
+def ring_power(grid: _Grid) -> tuple[Real, Real]:
+    """Angles of the grid's rings and the power in each, weights and sin(theta) included; their sum is the integral
+    of |E|^2 over the zone."""
     rings = np.sum(grid.intensity, axis=1) * grid.phi_step * (np.sin(grid.theta) * grid.weight)[:, 0]
     return grid.theta[:, 0], rings

@@ -34,11 +34,6 @@ class SolvedFeed:
         return self.fields.input_power_w
 
     @property
-    def radiated_power_w(self) -> float:
-        """Through the far sphere, for 1 A peak."""
-        return self.fields.radiated_power_w
-
-    @property
     def ohmic_power_w(self) -> float:
         """Lost in the surfaces, for 1 A peak."""
         return self.fields.ohmic_power_w

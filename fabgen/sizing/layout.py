@@ -23,7 +23,7 @@ from fabgen.stock.records import Coax, Metal
 from fabgen.theory.bending import min_inside_radius_mm
 
 STRIP_WIDTH_WAVELENGTHS = 0.034
-BAR_GAP_WAVELENGTHS = 0.038
+BAR_GAP_WAVELENGTHS = 0.045
 CROSSING_LIMIT_WAVELENGTHS = 0.03
 WIRE_AXIS_RADIUS_RATIO = 1.5
 FOLD_RELIEF_MM = 1.0

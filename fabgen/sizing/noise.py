@@ -13,8 +13,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from fabgen.sizing.dish import ring_power
-from fabgen.sizing.solver import Pattern, Real
+from fabgen.sizing.dish import DishSample, ring_power
+from fabgen.sizing.solver import Real
 
 GROUND_K = 290.0
 PHYSICAL_K = 290.0
@@ -58,8 +58,7 @@ def ground_fraction(theta_rad: Real, elevation_deg: float) -> Real:
 
 
 def noise_figures(
-    pattern: Pattern,
-    half_angle: float,
+    sample: DishSample,
     *,
     elevation_deg: float,
     frequency_mhz: float,
@@ -73,8 +72,8 @@ def noise_figures(
     Power beyond the dish's edge sees ground or sky by its direction; all power on the dish sees the sky. The
     dish is tight (no leakage through a mesh) and the edge does not diffract.
     """
-    _, inside = ring_power(pattern, 0.0, half_angle)
-    theta, outside = ring_power(pattern, half_angle, math.pi)
+    _, inside = ring_power(sample.inside)
+    theta, outside = ring_power(sample.outside)
     total = float(np.sum(inside) + np.sum(outside))
     ground = float(np.sum(outside * ground_fraction(theta, elevation_deg))) / total
     sky = sky_k(frequency_mhz, elevation_deg) * (1 - ground)

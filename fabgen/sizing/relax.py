@@ -37,25 +37,32 @@ def nearest_that_works(job: Job, tell: Progress, make_solver: Callable[[Job, flo
 
 
 def relaxed_jobs(job: Job) -> Iterator[tuple[str, Job]]:
-    """Jobs with one wish or size less, the smallest loss first."""
+    """Jobs with one wish or size less, the smallest loss first; those that the job's own rules refuse are left out."""
+    for change, section, values in _relaxations(job):
+        try:
+            yield change, _with(job, section, values)
+        except ValueError:
+            continue
+
+
+def _relaxations(job: Job) -> Iterator[tuple[str, str, dict[str, Any]]]:
     for key, value in job.fixed.model_dump().items():
         if value is not None:
-            yield f"leave fixed.{key} out", _with(job, "fixed", {key: None})
+            yield f"leave fixed.{key} out", "fixed", {key: None}
     if job.can.choke:
-        yield "set can.choke = false", _with(job, "can", {"choke": False})
+        yield "set can.choke = false", "can", {"choke": False}
     if job.loop.bend_radius_mm is not None:
-        yield "leave loop.bend_radius_mm out", _with(job, "loop", {"bend_radius_mm": None})
+        yield "leave loop.bend_radius_mm out", "loop", {"bend_radius_mm": None}
     wavelength = job.wavelength_mm
     if job.loop.form == "wire":
         wire = round(TYPICAL_WIRE * wavelength, 1)
-        yield f"use wire of {wire:g} mm", _with(job, "loop", {"wire_mm": wire, "bend_radius_mm": None})
+        yield f"use wire of {wire:g} mm", "loop", {"wire_mm": wire, "bend_radius_mm": None}
     else:
         sheet = max(0.3, round(TYPICAL_SHEET * wavelength, 1))
         plain = {"sheet_mm": sheet, "strip_width_mm": None, "bend_radius_mm": None}
-        yield f"use sheet of {sheet:g} mm and leave the strip's width out", _with(job, "loop", plain)
-    free = dict.fromkeys(job.fixed.model_dump())
-    yield "fix no size at all", _with(job, "fixed", free)
-    yield 'use can.make = "tube"', _with(job, "can", {"make": "tube"})
+        yield f"use sheet of {sheet:g} mm and leave the strip's width out", "loop", plain
+    yield "fix no size at all", "fixed", dict.fromkeys(job.fixed.model_dump())
+    yield 'use can.make = "tube"', "can", {"make": "tube"}
 
 
 def _with(job: Job, section: str, changes: dict[str, Any]) -> Job:

@@ -20,8 +20,8 @@ from fabgen.sizing.dish import co_cross, half_power_width_deg, plane_cut
 from fabgen.sizing.match import LINE_OHM
 from fabgen.sizing.records import GainPoint, Response, Sizes
 from fabgen.sizing.solver import Complex, Real, Solution, Sweep
+from fabgen.theory.constants import FREE_SPACE_OHM
 
-FREE_SPACE_OHM = 376.730313412
 START, STOP = 0.3, 2.2
 COARSE_STEP, FINE_STEP, FINE_SPAN = 0.005, 0.0005, 0.06
 FLOOR_DB = -120.0

@@ -6,7 +6,7 @@ Depends on: errors, job, progress, stock, fields, and the other modules of sizin
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -18,7 +18,6 @@ from fabgen.sizing.can_search import find_can
 from fabgen.sizing.capacitor_part import capacitor_part
 from fabgen.sizing.counting import CountingSolver
 from fabgen.sizing.field_solver import FieldSolver
-from fabgen.sizing.fixed_sizes import check_fixed
 from fabgen.sizing.layout import loop_stock
 from fabgen.sizing.loop_search import NAMED, Matched
 from fabgen.sizing.match import reflection, return_loss_db
@@ -32,12 +31,13 @@ from fabgen.sizing.solver import Solver, Sweep
 from fabgen.sizing.tolerances import fit_model, sensitivities
 from fabgen.sizing.trial import Setting, front_place
 from fabgen.sizing.wishes import choose_loop
-from fabgen.sizing.yields import Bench, yield_of
+from fabgen.sizing.yields import Bench, model_error, yield_of
 from fabgen.stock import tables
 
 MakeSolver = Callable[[Job, float], Solver]
-SECOND_MESH = 0.72
-"""Density of the second mesh over the first: half the triangles."""
+COARSE = 0.7
+"""Density of the second mesh over the first: half the triangles. It serves the can search and the sensitivities,
+which ask for differences, and tells how much the discretisation may still move."""
 SLOPE_SPAN = 1e-3
 METHOD = (
     "electric-field integral equation, edge-based functions on triangles, Galerkin; can eliminated once per "
@@ -59,11 +59,10 @@ def size_feed(job: Job, progress: Progress | None = None, make_solver: MakeSolve
 
     ``make_solver``: (job, mesh density) -> solver; the field computation unless a test gives another.
     Raises ``NoSolutionError`` when the job is valid but nothing that can be built matches (the message names the
-    limit and the nearest job that works), ``JobError`` for sizes that contradict each other, ``NumericalError``
+    limit and the nearest job that works), ``JobError`` for stock that cannot be a loop, ``NumericalError``
     when the field computation fails its own checks.
     """
     tell = progress or Silent()
-    check_fixed(job)
     try:
         return _size(job, tell, make_solver)
     except (NoSolutionError, GeometryError) as error:
@@ -72,14 +71,15 @@ def size_feed(job: Job, progress: Progress | None = None, make_solver: MakeSolve
 
 
 def _size(job: Job, tell: Progress, make_solver: MakeSolver) -> Feed:
-    search = CountingSolver(make_solver(job, DEFAULT_DENSITY))
+    search = CountingSolver(make_solver(job, COARSE * DEFAULT_DENSITY))
     stock, target = loop_stock(job), job.target.frequency_mhz
     place = front_place(NAMED[job.wishes.selectivity])
     found = find_can(job, stock, place, lambda sizes: search.solve(sizes, target), tell)
     setting = Setting(job, stock, found.can)
     tell.step("matching the loop: tap height and series capacitor")
-    # A fresh solver plans its mesh on the can that was found, so the result does not depend on the search before.
+    # Fresh solvers plan their meshes on the can that was found, so the result does not depend on the search before.
     final = CountingSolver(make_solver(job, DEFAULT_DENSITY))
+    coarse = CountingSolver(make_solver(job, COARSE * DEFAULT_DENSITY))
     matched = choose_loop(setting, final, tell)
     sizes = matched.sizes
     tell.step("sweeping the frequency from 0.3 to 2.2 times the target")
@@ -90,19 +90,21 @@ def _size(job: Job, tell: Progress, make_solver: MakeSolver) -> Feed:
         coax=tables.coax(job.cable.coax), plate_width_mm=sizes.crossing_width_mm, transmit_w=job.wishes.transmit_w,
     )  # fmt: skip
     slope = reactance_slope(sweep, sizes, target)
-    model = fit_model(setting, sizes, lambda s: final.solve(s, target), tell)
-    rows = sensitivities(model, sizes, part, target, slope)
+    model = fit_model(setting, sizes, lambda s: coarse.solve(s, target), tell)
     tell.step("checking the tolerances against true solves")
+    error = model_error(setting, sizes, model, lambda s: coarse.solve(s, target))
+    # Slopes come from the coarse mesh, the feed that they start from is that of the fine one.
+    model = replace(model, impedance_ohm=matched.solution.impedance_ohm)
+    rows = sensitivities(model, sizes, part, target, slope)
     bench = _bench(job, sizes, sweep, slope)
-    yields = yield_of(setting, sizes, model, rows, part=part, bench=bench, solve=lambda s: final.solve(s, target))
-    tell.step("solving once more on another mesh")
-    second = _second_mesh(job, matched, make_solver, slope)
+    yields = yield_of(job, sizes, model, rows, part=part, bench=bench, error=error)
+    second = _second_mesh(job, matched, coarse, slope)
     checks = self_checks(matched.solution, sweep.error_estimate, second.reflection_change)
     require_passed(checks)
     return Feed(
         job=job, sizes=sizes, predicted=predicted, capacitor=part, sensitivities=rows, yields=yields,
         modes=bore_modes(sizes.can_bore_mm, target), self_checks=checks,
-        settings=_settings(matched, second, search.solves + final.solves + 1),
+        settings=_settings(matched, second, search.solves + final.solves + coarse.solves),
         remarks=(*found.remarks, *matched.remarks, *_band_remark(job, predicted)), can_trials=found.trials,
     )  # fmt: skip
 
@@ -121,10 +123,10 @@ def _bench(job: Job, sizes: Sizes, sweep: Sweep, slope: float) -> Bench:
     return Bench(frequency, sweep.impedance_ohm(frequency), target, job.wishes.return_loss_db, slope)
 
 
-def _second_mesh(job: Job, matched: Matched, make_solver: MakeSolver, slope: float) -> _SecondMesh:
+def _second_mesh(job: Job, matched: Matched, coarse: Solver, slope: float) -> _SecondMesh:
     """The same sizes on a coarser mesh: what the discretisation may still move."""
     target, sizes = job.target.frequency_mhz, matched.sizes
-    other = make_solver(job, SECOND_MESH * DEFAULT_DENSITY).solve(sizes, target)
+    other = coarse.solve(sizes, target)
     change = other.impedance_ohm - matched.solution.impedance_ohm
     first = matched.reflection(target)
     second = reflection(other.impedance_ohm, sizes.series_capacitor_pf, target)

@@ -33,9 +33,6 @@ class Solution(Protocol):
     def input_power_w(self) -> float: ...
 
     @property
-    def radiated_power_w(self) -> float: ...
-
-    @property
     def ohmic_power_w(self) -> float: ...
 
     @property

@@ -42,16 +42,16 @@ class Bench:
 
 
 def yield_of(
-    setting: Setting,
+    job: Job,
     sizes: Sizes,
     model: FittedModel,
     rows: tuple[Sensitivity, ...],
     *,
     part: CapacitorPart,
     bench: Bench,
-    solve: Callable[[Sizes], Solution],
+    error: float,
 ) -> Yield:
-    """Monte Carlo with a fixed seed, ``CHECKS`` true solves of the model, trimming and thermal drift."""
+    """Monte Carlo with a fixed seed, trimming and thermal drift. ``error``: what ``model_error`` found."""
     rng = np.random.default_rng(SEED)
     draws = rng.uniform(-1, 1, (SAMPLES, len(model.deviations)))
     pf = rng.uniform(-1, 1, SAMPLES) * next(r.tolerance_mm for r in rows if r.size == CAPACITOR)
@@ -59,11 +59,11 @@ def yield_of(
     capacitors = np.maximum(sizes.series_capacitor_pf + pf, 1e-3)
     before = worst_return_loss(shift, capacitors, bench) >= bench.return_loss_db
     after = trimmed_return_loss(model, shift, sizes, part=part, bench=bench) >= bench.return_loss_db
-    cold, hot = (thermal(setting.job, model, sizes, bench, t) for t in (COLD_DEG_C, HOT_DEG_C))
+    cold, hot = (thermal(job, model, sizes, bench, t) for t in (COLD_DEG_C, HOT_DEG_C))
     return Yield(
         samples=SAMPLES,
         model_check_samples=CHECKS,
-        model_error=model_error(setting, sizes, model, solve),
+        model_error=error,
         before_trimming=float(np.mean(before)),
         after_trimming=float(np.mean(before | after)),
         dominant=tuple(r.size for r in rows[:3]),

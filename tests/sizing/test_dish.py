@@ -9,6 +9,7 @@ import pytest
 
 from fabgen.errors import JobError, NumericalError
 from fabgen.sizing.dish import (
+    DishFigures,
     beam,
     co_cross,
     dish_figures,
@@ -16,6 +17,7 @@ from fabgen.sizing.dish import (
     half_angle_rad,
     half_power_width_deg,
     plane_cut,
+    sample_pattern,
 )
 from fabgen.sizing.solver import Complex, Pattern, Real
 
@@ -35,8 +37,12 @@ def cos_feed(n: float, shift_mm: float = 0.0, cross: float = 0.0) -> Pattern:
     return pattern
 
 
+def figures_of(pattern: Pattern, half_angle: float) -> DishFigures:
+    return dish_figures(sample_pattern(pattern, half_angle), WAVELENGTH_MM)
+
+
 def efficiency(n: float, half_angle_deg: float) -> float:
-    return dish_figures(cos_feed(n), math.radians(half_angle_deg), WAVELENGTH_MM).aperture_efficiency
+    return figures_of(cos_feed(n), math.radians(half_angle_deg)).aperture_efficiency
 
 
 # EM-39, EM-40, EM-42: optimum of cos^n feeds; Balanis fig. 15.19/15.20 (curves, 0.82..0.83);
@@ -54,7 +60,7 @@ def test_optimum_of_cos_feeds(n: int, angle: float, eta: float, caught: float, t
     values = [efficiency(n, a) for a in angles]
     assert angles[int(np.argmax(values))] == pytest.approx(angle, abs=0.1)
     assert max(values) == pytest.approx(eta, abs=0.002)
-    figures = dish_figures(cos_feed(n), math.radians(angle), WAVELENGTH_MM)
+    figures = figures_of(cos_feed(n), math.radians(angle))
     assert 1 - figures.spillover == pytest.approx(caught, abs=5e-4)
     assert figures.illumination_efficiency == pytest.approx(taper, abs=5e-4)
     assert figures.phase_efficiency == pytest.approx(1.0, abs=1e-9)
@@ -71,7 +77,7 @@ def test_spot_values_n4(angle: float, eta: float) -> None:
 @pytest.mark.parametrize("n", [2, 4, 8])
 def test_spillover_closed_form(n: int) -> None:
     angle = math.radians(55)
-    figures = dish_figures(cos_feed(n), angle, WAVELENGTH_MM)
+    figures = figures_of(cos_feed(n), angle)
     assert figures.spillover == pytest.approx(math.cos(angle) ** (n + 1), abs=2e-4)
 
 
@@ -89,24 +95,24 @@ def test_half_angle(ratio: float, angle: float) -> None:
 
 
 def test_half_angle_refuses_zero() -> None:
-    with pytest.raises(JobError, match="above 0"):
+    with pytest.raises(JobError, match="above zero"):
         half_angle_rad(0.0)
 
 
 @pytest.mark.parametrize("shift", [-120.0, -13.0, 0.0, 40.0, 300.0])
 def test_phase_centre_of_a_shifted_source(shift: float) -> None:
-    figures = dish_figures(cos_feed(4, shift), math.radians(60), WAVELENGTH_MM)
+    figures = figures_of(cos_feed(4, shift), math.radians(60))
     assert figures.phase_centre_mm == pytest.approx(shift, abs=1e-6)
     assert figures.aperture_efficiency == pytest.approx(efficiency(4, 60), abs=1e-9)
 
 
 def test_cross_polar_loss_is_power_share() -> None:
-    figures = dish_figures(cos_feed(4, cross=0.2), math.radians(60), WAVELENGTH_MM)
+    figures = figures_of(cos_feed(4, cross=0.2), math.radians(60))
     assert figures.polarisation_efficiency == pytest.approx(1 / 1.04, abs=1e-9)
 
 
 def test_factors_multiply_to_the_whole() -> None:
-    figures = dish_figures(cos_feed(3, 25.0, 0.1), math.radians(62), WAVELENGTH_MM)
+    figures = figures_of(cos_feed(3, 25.0, 0.1), math.radians(62))
     product = (
         (1 - figures.spillover)
         * figures.polarisation_efficiency
@@ -125,7 +131,7 @@ def test_co_and_cross_keep_the_power() -> None:
 
 def test_beam_of_cos_feed() -> None:
     # cos^n falls to half at acos(2^(-1/n)); directivity 2 (n + 1): arithmetic.
-    figures = dish_figures(cos_feed(4), math.radians(60), WAVELENGTH_MM)
+    figures = figures_of(cos_feed(4), math.radians(60))
     shape = beam(cos_feed(4), figures.power)
     width = 2 * math.degrees(math.acos(2 ** (-1 / 4)))
     assert shape.half_power_e_deg == pytest.approx(width, abs=0.02)
@@ -138,7 +144,7 @@ def test_short_dipole_over_nothing() -> None:
     def dipole(theta: Real, phi: Real) -> tuple[Complex, Complex]:
         return np.cos(theta) * np.sin(phi) + 0j, np.cos(phi) + 0j * theta
 
-    figures = dish_figures(dipole, math.radians(60), WAVELENGTH_MM)
+    figures = figures_of(dipole, math.radians(60))
     shape = beam(dipole, figures.power)
     assert shape.directivity_dbi == pytest.approx(10 * math.log10(1.5), abs=1e-6)
     assert shape.half_power_e_deg == pytest.approx(90.0, abs=0.02)
@@ -159,6 +165,6 @@ def test_patterns_without_power_or_not_finite_are_refused() -> None:
         return np.full(theta.shape, np.nan) + 0j, 0j * phi
 
     with pytest.raises(NumericalError, match="no power"):
-        dish_figures(nothing, 1.0, WAVELENGTH_MM)
+        figures_of(nothing, 1.0)
     with pytest.raises(NumericalError, match="not finite"):
-        dish_figures(broken, 1.0, WAVELENGTH_MM)
+        figures_of(broken, 1.0)
