@@ -86,34 +86,38 @@ def potential_integrals(px: float, py: float, pz: float, v: Any, out: Any) -> No
 @compiled(fastmath=False)
 def static_moments(first: int, last: int, test: Any, source: Any, corners: Any, images: Any, bary: Any, weight: Any,
                    area: Any, out: Any) -> None:
-    """Averaged moments of 1/(4 pi R) for the near pairs first..last-1; corners (T, 3, 3), images likewise."""
+    """Averaged moments of 1/(4 pi R) for the near pairs first..last-1; corners (T, 3, 3), images likewise.
+
+    The mean of both orders (outer quadrature on p, and on q), so that no numbering of triangles is favoured.
+    """
     pot = np.empty(4)
     for n in range(first, last):
         p = test[n]
         q = source[n]
         for m in range(8):
             out[n, m] = 0.0
-        for i in range(weight.shape[0]):
-            x = y = z = 0.0
-            for c in range(3):
-                x += bary[i, c] * corners[p, c, 0]
-                y += bary[i, c] * corners[p, c, 1]
-                z += bary[i, c] * corners[p, c, 2]
-            potential_integrals(x, y, z, images[q], pot)
-            w = weight[i] / (area[q] * 12.566370614359172)
-            out[n, 0] += w * pot[0]
-            out[n, 1] += w * x * pot[0]
-            out[n, 2] += w * y * pot[0]
-            out[n, 3] += w * z * pot[0]
-            out[n, 4] += w * pot[1]
-            out[n, 5] += w * pot[2]
-            out[n, 6] += w * pot[3]
-            out[n, 7] += w * (x * pot[1] + y * pot[2] + z * pot[3])
-        if p == q:
-            for m in range(1, 4):
-                mean = 0.5 * (out[n, m] + out[n, m + 3])
-                out[n, m] = mean
-                out[n, m + 3] = mean
+        for order in range(2):
+            outer = corners[p] if order == 0 else images[q]
+            inner = images[q] if order == 0 else corners[p]
+            inner_area = area[q] if order == 0 else area[p]
+            at_outer = 1 if order == 0 else 4
+            at_inner = 4 if order == 0 else 1
+            for i in range(weight.shape[0]):
+                x = y = z = 0.0
+                for c in range(3):
+                    x += bary[i, c] * outer[c, 0]
+                    y += bary[i, c] * outer[c, 1]
+                    z += bary[i, c] * outer[c, 2]
+                potential_integrals(x, y, z, inner, pot)
+                w = 0.5 * weight[i] / (inner_area * 12.566370614359172)
+                out[n, 0] += w * pot[0]
+                out[n, at_outer] += w * x * pot[0]
+                out[n, at_outer + 1] += w * y * pot[0]
+                out[n, at_outer + 2] += w * z * pot[0]
+                out[n, at_inner] += w * pot[1]
+                out[n, at_inner + 1] += w * pot[2]
+                out[n, at_inner + 2] += w * pot[3]
+                out[n, 7] += w * (x * pot[1] + y * pot[2] + z * pot[3])
 
 
 @compiled(fastmath=True)

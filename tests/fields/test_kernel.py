@@ -1,0 +1,71 @@
+"""Quadrature and the analytic potentials."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+import pytest
+from scipy.integrate import dblquad
+
+from fabgen.errors import GeometryError
+from fabgen.fields import kernel
+from fabgen.fields.quadrature import triangle_rule
+
+TRIANGLE = np.array([[0.0, 0.0, 0.0], [1.0, 0.1, 0.0], [0.2, 0.8, 0.0]])
+
+
+@pytest.mark.parametrize(("points", "degree"), [(1, 1), (3, 2), (6, 4), (12, 6)])
+def test_rule_is_exact_to_its_degree(points: int, degree: int) -> None:
+    # integral of x^i y^j over the unit triangle: i! j! / (i + j + 2)! (Abramowitz and Stegun, beta function)
+    bary, weight = triangle_rule(points)
+    for i in range(degree + 1):
+        for j in range(degree + 1 - i):
+            value = 0.5 * float(weight @ (bary[:, 1] ** i * bary[:, 2] ** j))
+            exact = math.factorial(i) * math.factorial(j) / math.factorial(i + j + 2)
+            assert value == pytest.approx(exact, abs=1e-13)
+
+
+def test_rule_of_other_size_is_refused() -> None:
+    with pytest.raises(GeometryError, match="allowed are 1, 3, 6 and 12"):
+        triangle_rule(5)
+
+
+@pytest.mark.parametrize("point", [(0.4, 0.3, 0.5), (1.4, 0.9, -0.2), (0.4, 0.3, 0.05), (2.0, 0.2, 0.0)])
+def test_potential_integrals_against_adaptive_quadrature(point: tuple[float, float, float]) -> None:
+    # reference: scipy's adaptive double integral over the triangle in barycentric coordinates
+    a, b, c = TRIANGLE
+    area2 = float(np.linalg.norm(np.cross(b - a, c - a)))
+
+    def integrand(v: float, u: float, component: int) -> float:
+        r = a + u * (b - a) + v * (c - a)
+        distance = float(np.linalg.norm(r - point))
+        return area2 * (1.0 if component < 0 else r[component]) / distance
+
+    out = np.zeros(4)
+    kernel.potential_integrals(*point, TRIANGLE, out)
+    for row, component in enumerate((-1, 0, 1, 2)):
+        exact, _ = dblquad(integrand, 0, 1, 0, lambda u: 1 - u, args=(component,), epsabs=1e-9, epsrel=1e-9)
+        assert out[row] == pytest.approx(exact, abs=2e-7)
+
+
+def test_potential_on_the_triangle_itself_is_finite_and_known() -> None:
+    # centre of an equilateral triangle of side s: integral of 1/R = s sqrt(3) ln(2 + sqrt(3)) (from memory,
+    # three times the wedge formula rho ln((1 + sin a)/(1 - sin a)) with a = 60 degrees)
+    side = 2.0
+    v = np.array([[0, 0, 0], [side, 0, 0], [side / 2, side * math.sqrt(3) / 2, 0.0]])
+    out = np.zeros(4)
+    kernel.potential_integrals(*v.mean(0), v, out)
+    rho = side / (2 * math.sqrt(3))
+    expected = 3 * rho * math.log((1 + math.sin(math.pi / 3)) / (1 - math.sin(math.pi / 3)))
+    assert out[0] == pytest.approx(expected, rel=1e-12)
+
+
+def test_kernel_values_against_numpy() -> None:
+    rng = np.random.default_rng(3)
+    points = rng.random((3, 1, 64)) * 4
+    out = np.zeros((2, kernel.BLOCK))
+    kernel._kernel_values(0.1, -0.2, 0.3, 37.0, points, 0, 0, 64, out)
+    r = np.linalg.norm(points[:, 0, :] - np.array([[0.1], [-0.2], [0.3]]), axis=0)
+    exact = np.exp(-1j * 37.0 * r) / (4 * np.pi * r)
+    np.testing.assert_allclose(out[0, :64] + 1j * out[1, :64], exact, rtol=0, atol=2e-10)
