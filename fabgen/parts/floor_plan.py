@@ -251,7 +251,8 @@ def flange_plan(feed: Feed, outer_mm: float) -> FlangePlan | None:
     if flange.pattern == "circle":
         width = circle + 2 * edge
         return FlangePlan(Circle(0, 0, width), _notch(width), width, thickness, circle, screw.key, drilled)
-    width = max(circle / math.sqrt(2) + 2 * edge, outer_mm + 2.0)
+    # The notch must not reach the wall.
+    width = max(circle / math.sqrt(2) + 2 * edge, outer_mm + 2 * (MARK_MM + 1.5))
     return FlangePlan(_rounded_square(width, edge), _notch(width), width, thickness, circle, screw.key, drilled)
 
 

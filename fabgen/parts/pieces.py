@@ -137,10 +137,11 @@ def _bells(joint: Joint) -> list[cadquery.Shape]:
     out = wall + bell_mm(joint.rules)
     shapes = []
     for level in joint.split.levels_mm:
-        top = level + SPIGOT_MM
+        # The cone starts lower, so that the bell keeps its wall at the foot of the gap.
+        low, top = level - gap, level + SPIGOT_MM
         bell = kernel.revolved(
             (
-                (wall, level - (out - wall)), (out, level), (out, top),
+                (wall, low - (out - wall)), (out, low), (out, top),
                 (wall + gap, top), (wall + gap, level), (wall, level),
             )
         )

@@ -1,0 +1,143 @@
+"""All parts together: order, keys, places, no two solids in one place, and what importing costs."""
+
+from __future__ import annotations
+
+import dataclasses
+import itertools
+import subprocess
+import sys
+
+import pytest
+
+from fabgen.errors import GeometryError
+from fabgen.parts.build import assembly, build_parts
+from fabgen.sizing.records import Feed
+from fabgen.stock import tables
+from tests.parts.feeds import with_cable
+from tests.samples import sample_feed
+
+
+def overlaps(feed: Feed) -> list[tuple[str, str, float]]:
+    """Pairs of placed solids with more than a thousandth of a cubic millimetre in common."""
+    copies = [(f"{c.part.key} {c.number}", c.solid()) for c in assembly(build_parts(feed))]
+    boxes = [solid.BoundingBox() for _, solid in copies]
+    found = []
+    for i, j in itertools.combinations(range(len(copies)), 2):
+        a, b = boxes[i], boxes[j]
+        if a.xmin > b.xmax or b.xmin > a.xmax or a.ymin > b.ymax or b.ymin > a.ymax:
+            continue
+        if a.zmin > b.zmax or b.zmin > a.zmax:
+            continue
+        volume = copies[i][1].intersect(copies[j][1]).Volume()
+        if volume > 1e-3:
+            found.append((copies[i][0], copies[j][0], volume))
+    return found
+
+
+@pytest.mark.parametrize(
+    ("form", "make", "choke", "connector", "pattern"),
+    [
+        ("wire", "printed", False, "sma-4", "circle"),
+        ("sheet", "printed", True, "sma-4", "square"),
+        ("sheet", "turned", True, "n-4", "circle"),
+        ("wire", "turned", False, "sma-2", "none"),
+        ("wire", "tube", True, "bnc-4", "circle"),
+        ("sheet", "tube", False, "sma-2", "square"),
+    ],
+)
+def test_no_two_parts_are_in_one_place(form: str, make: str, choke: bool, connector: str, pattern: str) -> None:
+    flange = {"pattern": pattern, "count": 4}
+    feed = with_cable(sample_feed(form, make, choke=choke, radome=True, flange=flange), connector=connector)
+    assert overlaps(feed) == []
+
+
+@pytest.mark.parametrize("form", ["wire", "sheet"])
+@pytest.mark.parametrize("make", ["printed", "tube", "turned", "rolled", "folded"])
+def test_parts_have_unique_ascii_keys_and_say_all(form: str, make: str) -> None:
+    parts = build_parts(sample_feed(form, make, choke=True, radome=True))
+    keys = [p.key for p in parts]
+    assert len(set(keys)) == len(keys)
+    assert keys.index("loop") < keys.index("connector") < keys.index("coax-stub")
+    for part in parts:
+        assert part.key.isascii()
+        assert part.name.isascii()
+        assert part.mass_kg > 0, part.key
+        assert part.sizes, part.key
+        assert part.quantity == len(part.places) or part.solid is None, part.key
+        assert part.material_name
+
+
+def test_importing_the_parts_does_not_import_the_kernel() -> None:
+    code = (
+        "import sys, fabgen.parts.build, fabgen.parts.containment, fabgen.writers.step, fabgen.writers.stl\n"
+        "from tests.samples import sample_feed\n"
+        "fabgen.parts.build.build_parts(sample_feed('wire', 'printed', choke=True, radome=True))\n"
+        "heavy = [m for m in ('cadquery', 'OCP', 'vtkmodules', 'netgen', 'matplotlib') if m in sys.modules]\n"
+        "sys.exit(', '.join(heavy) or 0)\n"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=False)
+    assert done.returncode == 0, done.stderr
+
+
+def test_connector_screws_are_a_standard_length_and_reach_their_nuts() -> None:
+    feed = sample_feed("wire", "turned")
+    parts = {p.key: p for p in build_parts(feed)}
+    row = tables.connector("sma-4")
+    nut = tables.screw("M2.5").nut_height_mm
+    grip = feed.sizes.floor_mm + row.flange_thickness_mm + nut
+    length = dict(parts["screw-connector"].sizes)["length_mm"]
+    assert grip < length < grip + 4.0
+    tip = min(c.solid().BoundingBox(1e-6).zmin for c in assembly([parts["screw-connector"]]))
+    assert tip == pytest.approx(-length, abs=1e-4)
+
+
+def test_connector_holes_are_at_the_standard_pitch() -> None:
+    # Hole pitch 8.64 mm (0.340 in): MIL-STD-348 / MIL-PRF-39012 drawings, CN-05, partly read, rest from memory.
+    from fabgen.parts.floor_plan import connector_hole_points
+
+    points = connector_hole_points(sample_feed("wire", "turned"))
+    sides = sorted(((a[0] - b[0]) ** 2 + (a[1] - b[1]) ** 2) ** 0.5 for a, b in itertools.combinations(points, 2))
+    assert sides[:4] == pytest.approx([8.64] * 4)
+
+
+@pytest.mark.parametrize("form", ["wire", "sheet"])
+def test_coax_touches_its_bar_and_core_slides_in_the_tube(form: str) -> None:
+    feed = sample_feed(form, "turned")
+    parts = {p.key: p for p in build_parts(feed)}
+    stub, tube, loop = (parts[k].solid() for k in ("coax-stub", "capacitor-tube", "loop"))
+    assert stub.distance(loop) < 0.75
+    assert stub.intersect(loop).Volume() < 1e-3
+    assert tube.distance(loop) < 0.75
+    box, core = tube.BoundingBox(1e-6), stub.BoundingBox(1e-6)
+    overlap = box.ymax - core.ymin
+    assert overlap == pytest.approx(feed.capacitor.overlap_mm, abs=1e-3)
+    assert box.ylen >= feed.capacitor.overlap_max_mm
+
+
+def test_plate_capacitor_has_its_overlap_and_film() -> None:
+    feed = sample_feed("wire", "turned")
+    plates = dataclasses.replace(feed.capacitor, form="plates", plate_width_mm=8.0, film_mm=0.5, overlap_mm=5.0)
+    parts = {p.key: p for p in build_parts(dataclasses.replace(feed, capacitor=plates))}
+    a, b = (parts[k].solid().BoundingBox(1e-6) for k in ("capacitor-plate-coax", "capacitor-plate-bar"))
+    assert min(a.ymax, b.ymax) - max(a.ymin, b.ymin) == pytest.approx(5.0, abs=1e-3)
+    assert a.xmin - b.xmax == pytest.approx(0.5, abs=1e-3)
+    assert min(a.zlen, b.zlen) == pytest.approx(8.0, abs=1e-3)
+
+
+def test_bars_too_close_for_the_coax_are_refused_with_a_cure() -> None:
+    feed = sample_feed("wire", "turned")
+    close = dataclasses.replace(feed, sizes=dataclasses.replace(feed.sizes, leg_pitch_mm=5.0))
+    with pytest.raises(GeometryError, match="choose a thinner coax or fix leg_pitch_mm"):
+        build_parts(close)
+
+
+def test_square_flange_with_a_count_that_does_not_fit_is_refused() -> None:
+    feed = sample_feed("wire", "turned", flange={"pattern": "square", "count": 6})
+    with pytest.raises(GeometryError, match="count = 4, 8, 12 or 16"):
+        build_parts(feed)
+
+
+def test_bolt_circle_inside_the_can_is_refused() -> None:
+    feed = sample_feed("wire", "turned", flange={"bolt_circle_mm": 100.0})
+    with pytest.raises(GeometryError, match="bolt_circle_mm = 100"):
+        build_parts(feed)
