@@ -92,7 +92,8 @@ def joint_to_the_floor(context: Context) -> Iterator[Fault]:
         sizes = dict(part.sizes)
         if "tab_count" not in sizes or "flat_length_mm" not in sizes:
             continue
-        pitch = sizes["flat_length_mm"] / max(sizes["tab_count"], 1.0)
+        length = min(sizes["flat_length_mm"], _once_round_mm(context, part.key))
+        pitch = length / max(sizes["tab_count"], 1.0)
         if pitch > most:
             yield Fault(
                 part=part.key,
@@ -101,8 +102,16 @@ def joint_to_the_floor(context: Context) -> Iterator[Fault]:
                 limit=mm(most),
                 message=f"{sizes['tab_count']:g} tabs hold the wall at {mm(pitch)} pitch; between them the joint opens "
                 "and radiates",
-                cure=f"use {math.ceil(sizes['flat_length_mm'] / most)} tabs, or solder the joint all round",
+                cure=f"use {math.ceil(length / most)} tabs, or solder the joint all round",
             )
+
+
+def _once_round_mm(context: Context, key: str) -> float:
+    """Once round the middle of the wall, without the lap of its seam."""
+    s = context.sizes
+    bore = s.choke.bore_mm if s.choke is not None and key.startswith("choke") else s.can_bore_mm
+    turn = 2 * s.can_flats * math.tan(math.pi / s.can_flats) if s.can_flats else 2 * math.pi
+    return turn * (bore + s.wall_mm) / 2
 
 
 @check("ELEC-304", "caution", "seam_current_max", source="TE11 in round guide: circumferential current of the wall "

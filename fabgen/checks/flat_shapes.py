@@ -76,6 +76,29 @@ def hole_to_fold_mm(hole: Hole, fold: FoldLine) -> float:
     return float(region(hole.outline).distance(LineString([fold.start, fold.end])))
 
 
+def hangs_on(hole: Hole, fold: FoldLine) -> bool:
+    """Whether the fold ends on the hole's edge on both sides: a tab that hangs into an opening."""
+    from shapely import Point
+
+    edge = region(hole.outline).exterior
+    return all(edge.distance(Point(end)) < 0.05 for end in (fold.start, fold.end))
+
+
+def step_folds(flat: FlatPattern, closer_than_mm: float) -> frozenset[int]:
+    """Numbers of folds that make a step: two parallel folds, one up and one down, close to each other."""
+    from shapely import LineString
+
+    found: set[int] = set()
+    for i, first in enumerate(flat.folds):
+        for second in flat.folds[i + 1 :]:
+            if first.angle_deg * second.angle_deg >= 0 or abs(first.angle_deg) > 60 or abs(second.angle_deg) > 60:
+                continue
+            gap = LineString([first.start, first.end]).distance(LineString([second.start, second.end]))
+            if gap < closer_than_mm:
+                found |= {first.number, second.number}
+    return frozenset(found)
+
+
 def closest_holes(flat: FlatPattern) -> tuple[float, int, int] | None:
     """The narrowest web between two holes and their numbers; None with less than two holes."""
     shapes = [(hole.number, region(hole.outline)) for hole in holes(flat)]
@@ -109,6 +132,7 @@ def _reach(flat: FlatPattern, fold: FoldLine, side: float) -> float | None:
     normal = (-side * (y1 - y0) / length, side * (x1 - x0) / length)
     ray = LineString([middle, (middle[0] + 1e4 * normal[0], middle[1] + 1e4 * normal[1])])
     stops = [region(flat.outline).exterior]
+    stops += [region(hole.outline).exterior for hole in holes(flat) if hangs_on(hole, fold)]
     stops += [LineString([f.start, f.end]) for f in flat.folds if f.number != fold.number]
     hits = [Point(middle).distance(ray.intersection(stop)) for stop in stops if ray.intersects(stop)]
     return min((float(hit) for hit in hits if hit > AROUND_MM), default=None)
@@ -121,7 +145,7 @@ def relieved(flat: FlatPattern, fold: FoldLine, width_mm: float) -> bool:
     (x0, y0), (x1, y1) = fold.start, fold.end
     length = math.hypot(x1 - x0, y1 - y0) or 1.0
     along = ((x1 - x0) / length, (y1 - y0) / length)
-    sheet = region(flat.outline)
+    sheet = material(flat)
     step = 0.5 * width_mm
     ends = ((x0 - step * along[0], y0 - step * along[1]), (x1 + step * along[0], y1 + step * along[1]))
     return not any(sheet.contains(Point(end)) for end in ends)

@@ -190,7 +190,7 @@ def flange_length(context: Context) -> Iterator[Fault]:
     for part, flat, fold in folds(context):
         least, rule = _least_leg(context, flat.thickness_mm)
         leg = flat_shapes.leg_mm(flat, fold)
-        if leg >= least - 0.01:
+        if leg >= least - 0.01 or fold.number in flat_shapes.step_folds(flat, least):
             continue
         named = context.job.limits.die_opening_mm is not None
         yield Fault(
@@ -203,6 +203,24 @@ def flange_length(context: Context) -> Iterator[Fault]:
             + ("use a narrower die" if named else "fold it by hand over a bar; name your die in limits.die_opening_mm"),
             severity="stop" if named else "caution",
         )
+
+
+@check("SHEET-203", "note", "flange_min_thicknesses", "flange_min_die_openings")
+def step_at_the_seam(context: Context) -> Iterator[Fault]:
+    """Two folds so close, one up and one down, that they are made as one step (a joggle)."""
+    for part, flat in flats(context):
+        least, rule = _least_leg(context, flat.thickness_mm)
+        step = [fold for fold in flat.folds if fold.number in flat_shapes.step_folds(flat, least)]
+        if step:
+            names = "folds " + " and ".join(str(fold.number) for fold in step)
+            yield Fault(
+                part=part.key,
+                feature=names,
+                value=" and ".join(f"{abs(fold.angle_deg):.0f} deg" for fold in step),
+                limit=mm(least),
+                message=f"{names} make a step of one thickness; a brake needs {mm(least)} between folds ({rule})",
+                cure=f"press the step with a joggling tool, or in a vice between two bars of {mm(flat.thickness_mm)} sheet",
+            )
 
 
 @check("SHEET-202", "note", source="workshop rules: air bending leaves 16 % of V in steel, 15 % in aluminium, 21 % "
@@ -237,7 +255,7 @@ def hole_to_fold(context: Context) -> Iterator[Fault]:
         least = ratio * flat.thickness_mm + fold.inside_radius_mm
         for hole in flat_shapes.holes(flat):
             distance = flat_shapes.hole_to_fold_mm(hole, fold)
-            if distance < least - 0.01:
+            if distance < least - 0.01 and not flat_shapes.hangs_on(hole, fold):
                 yield Fault(
                     part=part.key,
                     feature=f"hole {hole.number}, fold {fold.number}",

@@ -104,7 +104,7 @@ def drop_shaped_ends(context: Context) -> Iterator[Fault]:
                 limit=mm(least),
                 message="the bar bends meet the loop's arc without straight wire between; the loop's ends tend to "
                 "a drop shape there",
-                cure=f"bend the bars first, wind the loop last, then dress the last {up(2 * least, 1.0):g} mm at each end "
+                cure=f"bend the bars first, wind the loop last, dress the last {up(2 * least, 1.0):g} mm at each end "
                 "on the mandrel or jig until the true-scale page covers them",
             )
 

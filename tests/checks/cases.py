@@ -326,6 +326,12 @@ PAIRS: dict[str, Pair] = {
         "note",
         "makes about 3 mm",
     ),
+    "SHEET-203": Pair(
+        lambda: alone(base(), sheet_part(bracket(folds=(fold(30.0, angle=40.0), fold(33.0, angle=-40.0, number=2))))),
+        lambda: alone(base(), sheet_part(bracket(folds=(fold(30.0, angle=40.0), fold(38.0, angle=-40.0, number=2))))),
+        "note",
+        "step",
+    ),
     "SHEET-301": Pair(
         lambda: alone(base(), sheet_part(bracket(holes=(Circle(24, 10, 4),)))),
         lambda: alone(base(), sheet_part(bracket(holes=(Circle(23.4, 10, 4),)))),

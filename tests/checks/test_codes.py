@@ -134,7 +134,7 @@ def test_limits_against_the_reference_table() -> None:
 
 
 @pytest.mark.parametrize("form", ["wire", "sheet"])
-@pytest.mark.parametrize("make", ["printed", "tube", "turned"])
+@pytest.mark.parametrize("make", ["printed", "tube", "turned", "rolled", "folded"])
 @pytest.mark.parametrize("choke", [False, True])
 def test_no_false_stop_on_sensible_feeds(form: str, make: str, choke: bool) -> None:
     findings = run_checks(base(form, make, choke=choke), parts_of(form, make, choke))
