@@ -9,6 +9,7 @@ import hashlib
 
 from fabgen.checks.records import Finding
 from fabgen.drawing.fonts import require_printable
+from fabgen.drawing.hidden import ISOMETRIC, look
 from fabgen.drawing.model import Sheet
 from fabgen.drawing.pages import assembly, bench, closing, general, part, stock, truescale, wire
 from fabgen.drawing.pages.base import Context, Draft
@@ -24,7 +25,9 @@ def sheets(feed: Feed, parts: tuple[Part, ...], findings: tuple[Finding, ...]) -
     target = feed.job.target
     require_printable(target.name, "target.name")
     require_printable(target.owner, "target.owner")
-    context = Context(feed, parts, findings, bodies(parts), PAPERS[feed.job.limits.paper])
+    things = bodies(parts)
+    seen = look([b.shape for b in things], ISOMETRIC) if things else ()
+    context = Context(feed, parts, findings, things, seen, PAPERS[feed.job.limits.paper])
     drafts = [
         *general.drafts(context),
         *stock.drafts(context),

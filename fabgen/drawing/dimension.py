@@ -10,7 +10,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from typing import Literal
 
 from fabgen.drawing.fonts import DESCENT, text_width_mm
@@ -293,39 +293,39 @@ def _leader_at(scene: _Scene, ask: Ask, tip: Point, angle_deg: float, reach: flo
     )
 
 
+Mark = tuple[str, Point]
+
+
 def marks(
-    labels: Iterable[tuple[str, Point]], items: Sequence[Item], scale: float, height_mm: float = 1.8
+    wanted: Iterable[Mark], items: Sequence[Item], scale: float, placed: Placed | None = None
 ) -> tuple[Text, ...]:
-    """Short labels set beside points (corner and hole numbers), clear of the view's lines where room allows."""
+    """Short labels set beside points (corner and hole numbers), clear of the view's lines and its dimensions.
+
+    A label that finds no place is left out: labels run in order along the contour, so that its number is known.
+    """
     occupied = Occupied(items)
+    for item in items:
+        if isinstance(item, Text):
+            occupied.take(item.box(), ())
+    for dimension in placed.dimensions if placed is not None else ():
+        occupied.take(dimension.text_box.grown(0.2), dimension.lines)
     out: list[Text] = []
-    for label, point in labels:
-        text = _mark(label, (point[0] * scale, point[1] * scale), occupied, height_mm)
+    for label, point in wanted:
+        text = _mark(label, (point[0] * scale, point[1] * scale), occupied)
         if text is not None:
             occupied.take(text.box().grown(0.15), ())
             out.append(text)
     return tuple(out)
 
 
-def _mark(label: str, at: Point, occupied: Occupied, height: float) -> Text | None:
+def _mark(label: str, at: Point, occupied: Occupied, height: float = 1.8) -> Text | None:
     width, high = text_width_mm(label, height), height * (1 + DESCENT)
-    for avoid_view in (True, False):
-        for reach in (1.0, 1.8, 2.8, 4.0, 6.0, 8.5):
-            for k in (1, 3, 5, 7, 0, 2, 4, 6):
-                c, s = math.cos(k * math.pi / 4), math.sin(k * math.pi / 4)
-                x = at[0] + c * (reach + width / 2)
-                y = at[1] + s * (reach + high / 2) - high / 2 + DESCENT * height
-                text = Text(x, y, label, height, "middle")
-                if occupied.text_is_free(text.box().grown(0.15), avoid_view):
-                    return text
+    for reach in (1.0, 1.8, 2.8, 4.0):
+        for k in (1, 3, 5, 7, 0, 2, 4, 6):
+            c, s = math.cos(k * math.pi / 4), math.sin(k * math.pi / 4)
+            x = at[0] + c * (reach + width / 2)
+            y = at[1] + s * (reach + high / 2) - high / 2 + DESCENT * height
+            text = Text(x, y, label, height, "middle")
+            if occupied.text_is_free(text.box().grown(0.15)):
+                return text
     return None
-
-
-def dimension_lines(dimensions: Iterable[Dimension]) -> tuple[Line, ...]:
-    """All dimension and extension lines."""
-    return tuple(line for d in dimensions for line in d.lines)
-
-
-def renamed(ask: Ask, text: str) -> Ask:
-    """The same dimension with another text."""
-    return replace(ask, text=text)

@@ -12,13 +12,11 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, leader, marks
-from fabgen.drawing.model import Arc, Item, Line, Point, Text, number
+from fabgen.drawing.dimension import DIAMETER, Ask, Mark, along_x, along_y, leader
+from fabgen.drawing.model import Arc, Item, Line, Point, number
 from fabgen.drawing.texts import say
 from fabgen.parts import contour as c
 from fabgen.parts.records import FlatPattern
-
-LABELLED_CORNERS = 60
 
 
 @dataclass(frozen=True)
@@ -109,33 +107,46 @@ def hole_rows(flat: FlatPattern) -> tuple[tuple[str, str, str, str], ...]:
 
 
 def fold_rows(flat: FlatPattern) -> tuple[tuple[str, ...], ...]:
-    """Rows of the bend table: number, order, angle, direction, inside radius, K, allowance, deduction, ends."""
-    return tuple(
-        (
-            str(f.number),
+    """Rows of the bend table, folds of one kind together: numbers, order, angle, direction, inside radius, K,
+    allowance, deduction."""
+    groups: dict[tuple[str, ...], list[int]] = {}
+    for f in flat.folds:
+        kind = (
             str(f.order),
-            f"{abs(f.angle_deg):g}°",
+            f"{number(abs(f.angle_deg), 1)}°",
             say("flat.up") if f.angle_deg > 0 else say("flat.down"),
             number(f.inside_radius_mm),
             number(f.k_factor, 3),
             number(f.allowance_mm, 2),
             number(f.deduction_mm, 2),
-            f"{_plain(f.start[0])}; {_plain(f.start[1])}",
-            f"{_plain(f.end[0])}; {_plain(f.end[1])}",
         )
-        for f in flat.folds
-    )
+        groups.setdefault(kind, []).append(f.number)
+    return tuple((_runs(numbers), *kind) for kind, numbers in groups.items())
 
 
-def labels(flat: FlatPattern, scale: float, items: Sequence[Item]) -> tuple[Text, ...]:
-    """Numbers of holes, corners and folds set beside them."""
-    wanted: list[tuple[str, Point]] = [(f"F{f.number}", _middle(f.start, f.end)) for f in flat.folds]
+def _runs(numbers: Sequence[int]) -> str:
+    """``1, 3–7`` for 1, 3, 4, 5, 6, 7."""
+    runs: list[list[int]] = []
+    for n in sorted(numbers):
+        if runs and n == runs[-1][1] + 1:
+            runs[-1][1] = n
+        else:
+            runs.append([n, n])
+    return ", ".join(str(a) if a == b else f"{a}–{b}" for a, b in runs)
+
+
+def fold_line_rows(flat: FlatPattern) -> tuple[tuple[str, ...], ...]:
+    """Rows: fold, and both ends of its line."""
+    return tuple((f"F{f.number}", *(_plain(v) for v in (*f.start, *f.end))) for f in flat.folds)
+
+
+def labels(flat: FlatPattern) -> tuple[Mark, ...]:
+    """Numbers of folds, holes and corners, and where they belong."""
+    wanted: list[Mark] = [(f"F{f.number}", _middle(f.start, f.end)) for f in flat.folds]
     wanted += [(h.label, _edge_point(h)) for h in round_holes(flat)]
     for letter, contour in contours(flat):
-        corners = [(v.x_mm, v.y_mm) for v in contour.vertices]
-        step = max(1, math.ceil(len(corners) / LABELLED_CORNERS))
-        wanted += [(f"{letter}{i + 1}", p) for i, p in enumerate(corners) if i % step == 0]
-    return marks(wanted, items, scale)
+        wanted += [(f"{letter}{i}", (v.x_mm, v.y_mm)) for i, v in enumerate(contour.vertices, start=1)]
+    return tuple(wanted)
 
 
 def _middle(a: Point, b: Point) -> Point:

@@ -161,6 +161,11 @@ def paragraph(
     return [*blocks, gap(size * 0.5)]
 
 
+def kept(blocks: Sequence[Block]) -> list[Block]:
+    """The blocks bound to each other and to what follows."""
+    return [replace(block, stay=True) for block in blocks]
+
+
 def shares(head: Sequence[str], rows: Sequence[Sequence[str]], width: float, size: float) -> tuple[list[float], bool]:
     """Column widths: each at least its longest word, the rest by the width of whole texts; False when they do
     not fit at this size of text."""
@@ -219,11 +224,14 @@ def side_by_side(
     """A long narrow table set in ``count`` columns, read down each column; one record for the whole."""
     if len(rows) < 6:
         return table(name, head, rows)
+    size = 2.5
+    if len(rows) > 80:
+        count, size = count + 1, 1.8
     each = -(-len(rows) // count)
     width = (COLUMN_WIDTH_MM - space * (count - 1)) / count
-    cols, fits = shares(head, rows, width, 2.5)
-    size = 2.5 if fits else 1.8
+    cols, fits = shares(head, rows, width, size)
     if not fits:
+        size = 1.8
         cols, _ = shares(head, rows, width, size)
     record = Table(name, tuple(head), tuple(tuple(row) for row in rows))
     lefts = [i * (width + space) for i in range(count)]

@@ -5,6 +5,7 @@ Depends on: drawing.model.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterable
 from dataclasses import dataclass
 from itertools import pairwise
@@ -60,13 +61,22 @@ def segments(items: Iterable[Item], step_deg: float = 15.0) -> list[Line]:
     return out
 
 
+CELL_MM = 6.0
+
+
 class Occupied:
-    """What a drawing has taken: boxes of texts, dimension lines, and the lines of the view itself."""
+    """What a drawing has taken: boxes of texts, dimension lines, and the lines of the view itself.
+
+    The view's lines are kept by the cells of a grid, since most questions concern a few millimetres of it.
+    """
 
     def __init__(self, view: Iterable[Item] = ()) -> None:
         self.texts: list[Box] = []
         self.lines: list[Line] = []
-        self.view = [(s, s.box()) for s in segments(view)]
+        self._cells: dict[tuple[int, int], list[Line]] = {}
+        for segment in segments(view):
+            for cell in _cells(segment.box()):
+                self._cells.setdefault(cell, []).append(segment)
 
     def text_is_free(self, box: Box, avoid_view: bool = True) -> bool:
         """True when a text may stand here."""
@@ -74,18 +84,23 @@ class Occupied:
             return False
         if not avoid_view:
             return True
-        wide = box.grown(1e-6)
-        return not any(wide.overlaps(b.grown(1e-6)) and crosses(box, s) for s, b in self.view)
+        return not any(crosses(box, line) for cell in _cells(box) for line in self._cells.get(cell, ()))
 
     def lines_are_free(self, lines: Iterable[Line]) -> bool:
         """True when none of the lines runs through a text."""
-        return not any(crosses(t, line) for t in self.texts for line in lines)
+        return not any(crosses(t, line) for line in lines for t in self.texts)
 
     def take(self, box: Box | None, lines: Iterable[Line]) -> None:
         """Note a text and lines as set."""
         if box is not None:
             self.texts.append(box)
         self.lines += lines
+
+
+def _cells(box: Box) -> Iterable[tuple[int, int]]:
+    for i in range(math.floor(box.x0 / CELL_MM), math.floor(box.x1 / CELL_MM) + 1):
+        for j in range(math.floor(box.y0 / CELL_MM), math.floor(box.y1 / CELL_MM) + 1):
+            yield (i, j)
 
 
 def clashes(sheet: Sheet) -> tuple[Clash, ...]:

@@ -10,7 +10,7 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 from fabgen.drawing.clip import clipped
-from fabgen.drawing.dimension import Ask, arrow, place
+from fabgen.drawing.dimension import Ask, Mark, arrow, marks, place
 from fabgen.drawing.flow import Block
 from fabgen.drawing.hidden import Direction, dressed, look
 from fabgen.drawing.model import SCALES, Box, Item, Line, Text, View, bounds, moved, scale_text
@@ -116,15 +116,22 @@ Extras = Callable[[float, tuple[Item, ...]], tuple[Item, ...]]
 
 
 def dimensioned(
-    drawn: Drawn, asks: Sequence[Ask], scale: float, extras: Extras | None = None, title: bool = True
+    drawn: Drawn,
+    asks: Sequence[Ask],
+    scale: float,
+    extras: Extras | None = None,
+    *,
+    labels: Sequence[Mark] = (),
+    title: bool = True,
 ) -> Set:
-    """The view at ``scale`` with dimensions and its name; ``extras`` adds marks in paper mm."""
+    """The view at ``scale`` with dimensions, labels beside points, and its name; ``extras`` adds marks in paper mm."""
     items = at_scale(drawn, scale)
     if extras is not None:
         items = (*items, *extras(scale, items))
     placed_ = place(drawn.name, items, asks, scale)
-    drawings = (*items, *placed_.items)
-    box = placed_.box
+    texts = marks(labels, items, scale, placed_)
+    drawings = (*items, *placed_.items, *texts)
+    box = placed_.box.joined(bounds(texts)) if texts else placed_.box
     if title and drawn.name:
         caption = Text((box.x0 + box.x1) / 2, box.y1 + 3.0, f"{drawn.name}  {scale_text(scale)}", 3.5, "middle")
         drawings = (*drawings, caption)
@@ -178,7 +185,7 @@ def fitted(drawn: Drawn, build: Callable[[float], Set], width: float, height: fl
 def cutting_plane(letter: str) -> Extras:
     """Marks of a cutting plane through the origin along x, seen from below on the paper: wide ends, arrows up."""
 
-    def marks(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
+    def plane(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
         del scale
         box = bounds(items)
         left, right = box.x0 - 7, box.x1 + 7
@@ -188,7 +195,7 @@ def cutting_plane(letter: str) -> Extras:
             out.append(Text(x, -9.5, letter, 3.5, "middle"))
         return tuple(out)
 
-    return marks
+    return plane
 
 
 def free(drawn: Drawn, width: float, height: float) -> Block:
@@ -230,6 +237,12 @@ def close_up(drawn: Drawn, around: Box, asks: Sequence[Ask], width: float, heigh
     dims = tuple(d.moved(-window.x0, -window.y1) for d in placed_.dimensions)
     view = View(drawn.name, scale, (-window.x0, -window.y1), window.moved(-window.x0, -window.y1))
     return Block(height, every, dims, (view,))
+
+
+def alone(made: Set, width: float) -> Block:
+    """One view with its dimensions, centred in the width."""
+    x = (width - made.box.width) / 2 - made.box.x0
+    return replace(shifted(made, x, -made.box.y1), height=made.box.height)
 
 
 def stacked(upper: Set, lower: Set, width: float) -> Block:

@@ -48,14 +48,17 @@ def _axis(direction: Direction) -> tuple[int, float]:
 
 def cut_faces(shape: Any, direction: Direction) -> list[Any]:
     """The faces in the cutting plane as shapely polygons in view coordinates."""
+    from OCP.BRepAdaptor import BRepAdaptor_Surface
+
     axis, _ = _axis(direction)
     faces = []
     for face in shape.Faces():
         if face.geomType() != "PLANE":
             continue
-        box = face.BoundingBox(1e-4)
-        span = ((box.xmin, box.xmax), (box.ymin, box.ymax), (box.zmin, box.zmax))[axis]
-        if max(abs(span[0]), abs(span[1])) < 1e-2:
+        plane = BRepAdaptor_Surface(face.wrapped).Plane()
+        way, at = plane.Axis().Direction(), plane.Location()
+        square = abs(abs((way.X(), way.Y(), way.Z())[axis]) - 1) < 1e-9
+        if square and abs((at.X(), at.Y(), at.Z())[axis]) < FLAT_MM:
             faces.append(_polygon(face, direction))
     return [f for f in faces if not f.is_empty]
 

@@ -10,7 +10,7 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from typing import Any
 
-from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, leader
+from fabgen.drawing.dimension import DIAMETER, Ask, Mark, along_x, along_y, leader
 from fabgen.drawing.flat import HoleRow, hole_asks
 from fabgen.drawing.model import Item, Line, number
 
@@ -53,17 +53,20 @@ class Measured:
 
 def measured(shape: Any) -> Measured:
     """Read the solid's plane and cylindrical faces."""
+    from OCP.BRepAdaptor import BRepAdaptor_Surface
+
     box = shape.BoundingBox(1e-4)
     levels: set[float] = set()
     pieces: dict[tuple[float, ...], list[tuple[float, float, float]]] = {}
     crosses: dict[tuple[float, ...], float] = {}
     for face in shape.Faces():
         kind = face.geomType()
-        span = face.BoundingBox(1e-4)
-        if kind == "PLANE" and span.zlen < 1e-2:
-            levels.add(round((span.zmin + span.zmax) / 2, 3))
+        if kind == "PLANE":
+            plane = BRepAdaptor_Surface(face.wrapped).Plane()
+            if abs(abs(plane.Axis().Direction().Z()) - 1) < 1e-9:
+                levels.add(round(plane.Location().Z(), 3))
         elif kind == "CYLINDER":
-            _note_cylinder(face, span, pieces, crosses)
+            _note_cylinder(face, pieces, crosses)
     return Measured(
         (box.xmin, box.ymin, box.zmin),
         (box.xmax, box.ymax, box.zmax),
@@ -74,30 +77,31 @@ def measured(shape: Any) -> Measured:
 
 
 def _note_cylinder(
-    face: Any, span: Any, pieces: dict[tuple[float, ...], list[tuple[float, float, float]]],
+    face: Any,
+    pieces: dict[tuple[float, ...], list[tuple[float, float, float]]],
     crosses: dict[tuple[float, ...], float],
-) -> None:  # fmt: skip
+) -> None:
     from OCP.BRepAdaptor import BRepAdaptor_Surface
     from OCP.TopAbs import TopAbs_REVERSED
 
     surface = BRepAdaptor_Surface(face.wrapped)
     cylinder = surface.Cylinder()
-    axis, at = cylinder.Axis().Direction(), cylinder.Axis().Location()
+    way, at = cylinder.Axis().Direction(), cylinder.Axis().Location()
+    axis, base = (way.X(), way.Y(), way.Z()), (at.X(), at.Y(), at.Z())
     # The outward normal points to the axis when the face is reversed or its surface left-handed, not both.
     hole = (face.wrapped.Orientation() == TopAbs_REVERSED) == cylinder.Position().Direct()
     angle = math.degrees(abs(surface.LastUParameter() - surface.FirstUParameter()))
-    if abs(abs(axis.Z()) - 1) < 1e-6:
-        key = (round(at.X(), 2) + 0.0, round(at.Y(), 2) + 0.0, round(2 * cylinder.Radius(), 3), float(hole))
-        pieces.setdefault(key, []).append((span.zmin, span.zmax, angle))
+    first, last = surface.FirstVParameter(), surface.LastVParameter()
+    diameter = round(2 * cylinder.Radius(), 3)
+    if abs(abs(axis[2]) - 1) < 1e-6:
+        ends = sorted((base[2] + first * axis[2], base[2] + last * axis[2]))
+        key = (round(base[0], 2) + 0.0, round(base[1], 2) + 0.0, diameter, float(hole))
+        pieces.setdefault(key, []).append((ends[0], ends[1], angle))
     elif hole and angle > 170:
-        sign = 1.0 if (axis.X(), axis.Y(), axis.Z()) > (0.0, 0.0, 0.0) else -1.0
-        centre = (span.center.x, span.center.y, span.center.z)
-        along = sum(c * a for c, a in zip(centre, (axis.X(), axis.Y(), axis.Z()), strict=True))
-        base = (at.X(), at.Y(), at.Z())
-        shift = along - sum(c * a for c, a in zip(base, (axis.X(), axis.Y(), axis.Z()), strict=True))
-        where = [round(b + shift * a, 2) + 0.0 for b, a in zip(base, (axis.X(), axis.Y(), axis.Z()), strict=True)]
-        way = [round(sign * a, 3) + 0.0 for a in (axis.X(), axis.Y(), axis.Z())]
-        crosses[(*where, *way)] = round(2 * cylinder.Radius(), 3)
+        sign = 1.0 if tuple(round(a, 6) for a in axis) > (0.0, 0.0, 0.0) else -1.0
+        middle = (first + last) / 2
+        where = [round(b + middle * a, 2) + 0.0 for b, a in zip(base, axis, strict=True)]
+        crosses[(*where, *(round(sign * a, 3) + 0.0 for a in axis))] = diameter
 
 
 def _rounds(pieces: dict[tuple[float, ...], list[tuple[float, float, float]]]) -> Iterable[Round]:
@@ -179,6 +183,14 @@ def plan_asks(m: Measured) -> list[Ask]:
             asks.append(leader("radius", r.diameter_mm / 2, f"R{number(r.diameter_mm / 2)}", at, turn))
     rows = [HoleRow("", h.x_mm, h.y_mm, h.diameter_mm) for h in holes(m)]
     return [*asks, *hole_asks(rows)]
+
+
+def labels(m: Measured) -> tuple[Mark, ...]:
+    """Numbers of the holes, at their edges."""
+    return tuple(
+        (str(i), (h.x_mm + h.diameter_mm * 0.36, h.y_mm + h.diameter_mm * 0.36))
+        for i, h in enumerate(holes(m), start=1)
+    )
 
 
 def centre_lines(m: Measured, scale: float) -> tuple[Item, ...]:

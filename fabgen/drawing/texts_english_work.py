@@ -45,7 +45,8 @@ WORK: dict[str, str] = {
     "true.too_large": "This part would need {tiles} tiles; work from the part drawing or the cutting file instead.",
     "assembly.head": "Assembly in steps",
     "assembly.intro": (
-        "New parts are drawn in wide lines with their item numbers, what is there already in narrow grey ones. "
+        "New parts are drawn in wide lines with their item numbers, what is there already in narrow grey ones; "
+        "close-ups leave the wall out. "
         "Do not go on before the measurement at the end of a step is right."
     ),
     "assembly.item": "({item}) {part}, {quantity} off",

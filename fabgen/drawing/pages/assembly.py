@@ -46,6 +46,8 @@ JOINS: tuple[tuple[str, str], ...] = (
     ("flange", "body"),
 )
 ORDER = ("body", "wall", "lining", "choke", "loop", "connector", "coax", "capacitor", "radome", "other")
+CLOSE_UPS = {"loop", "connector", "coax", "capacitor"}
+LEFT_OUT = {"wall", "choke", "lining"}  # the wall would only hide what the step is about
 SEEN_FROM_BELOW = {"connector"}
 FASTENERS = {"screw", "nut", "rivet", "insert", "washer"}
 
@@ -100,6 +102,8 @@ def _step_block(context: Context, n: int, step: Step, old: list[Body], new: list
 def picture_block(context: Context, step: Step, old: list[Body], new: list[Body]) -> Block:
     """The state after the step: new parts in wide lines with item numbers, the rest narrow and grey."""
     numbers = items_of(context.parts)
+    if step.kind in CLOSE_UPS:
+        old = [b for b in old if _kind_of(b.part.key) not in LEFT_OUT]
     direction = BELOW_EYE if step.kind in SEEN_FROM_BELOW else ABOVE_EYE
     seen = look([b.shape for b in (*old, *new)], direction)
     items: list[Item] = []

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 
 from fabgen.checks.records import Finding
 from fabgen.drawing.flow import Block, Page, flow
+from fabgen.drawing.hidden import Seen
 from fabgen.drawing.model import number
 from fabgen.drawing.paper import Paper
 from fabgen.drawing.picture import Body
@@ -24,6 +25,7 @@ class Context:
     parts: tuple[Part, ...]
     findings: tuple[Finding, ...]
     bodies: tuple[Body, ...]
+    isometric: tuple[Seen, ...]
     paper: Paper
 
 

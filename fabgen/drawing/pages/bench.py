@@ -11,7 +11,7 @@ import math
 from dataclasses import dataclass
 
 from fabgen.drawing.dimension import DIAMETER, along_x, along_y
-from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, gap, heading, paragraph, table
+from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, gap, heading, kept, paragraph, table
 from fabgen.drawing.model import Arc, Item, Line, Polyline, Text, number
 from fabgen.drawing.pages import performance
 from fabgen.drawing.pages.base import Context, Draft, draft
@@ -56,7 +56,7 @@ def decision_blocks(feed: Feed) -> list[Block]:
     head = (say("bench.seen"), say("bench.do"), say("bench.amount"))
     return [
         heading(say("bench.table_head")),
-        *paragraph(say("bench.table_intro")),
+        *kept(paragraph(say("bench.table_intro"))),
         *table("decisions", head, rows, widths=(56, 64, 50)),
     ]
 

@@ -8,13 +8,13 @@ from __future__ import annotations
 import math
 
 from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, leader
-from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, gap, heading, paragraph, stack, table
+from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, gap, heading, paragraph, table
 from fabgen.drawing.flow import column_height as height_of
-from fabgen.drawing.hidden import APERTURE, FROM_GAP, GAP_PLAN, ISOMETRIC, SIDE
+from fabgen.drawing.hidden import APERTURE, FROM_GAP, GAP_PLAN, SIDE, dressed
 from fabgen.drawing.model import RED, Arc, Item, Line, bounds, number, scale_text
 from fabgen.drawing.pages import performance
 from fabgen.drawing.pages.base import Context, Draft, draft, quantity, toleranced
-from fabgen.drawing.picture import Drawn, cut, cutting_plane, dimensioned, free, outside, scales_for, stacked
+from fabgen.drawing.picture import Drawn, alone, cut, cutting_plane, dimensioned, free, outside, scales_for, stacked
 from fabgen.drawing.texts import say, size_name
 
 WIDTH_MM = COLUMN_WIDTH_MM
@@ -29,7 +29,7 @@ def drafts(context: Context) -> list[Draft]:
     """The general arrangement with its tables."""
     views, scale = arrangement(context)
     blocks = [
-        views,
+        *views,
         *detail(context),
         *_purpose(context),
         *_sizes(context),
@@ -40,24 +40,34 @@ def drafts(context: Context) -> list[Draft]:
     return [draft(context, "general", say("page.general"), blocks, scale=scale)]
 
 
-def arrangement(context: Context) -> tuple[Block, str]:
-    """Section over the view into the aperture (first angle; third angle the other way round), one scale."""
+def arrangement(context: Context) -> tuple[list[Block], str]:
+    """Section over the view into the aperture (first angle; third angle the other way round), one scale; on two
+    sheets where that allows a larger scale."""
     section = cut(say("view.section_e"), context.bodies, SIDE)
     front = outside(say("view.aperture"), context.bodies, APERTURE)
     room = height_of(context.paper) - 1
-    for scale in scales_for((section, front), WIDTH_MM, room):
-        if scale > 1:
+    first = context.feed.job.limits.projection == "first"
+    for scale in scales_for((section,), WIDTH_MM, room):
+        if scale > 1 or max(section.box.width, front.box.width) * scale > WIDTH_MM:
             continue
         a = dimensioned(section, section_asks(context), scale, lambda s, i: _axis_and_focus(context, s, i))
         b = dimensioned(front, front_asks(front), scale, cutting_plane("A"))
-        if max(a.box.width, b.box.width) <= WIDTH_MM and a.box.height + b.box.height + 8 <= room:
-            break
-    upper, lower = (a, b) if context.feed.job.limits.projection == "first" else (b, a)
-    views = stacked(upper, lower, WIDTH_MM)
-    left = room - views.height
-    if left > 55:
-        views = stack((views, free(outside("", context.bodies, ISOMETRIC), WIDTH_MM, left)))
+        if max(a.box.width, b.box.width) > WIDTH_MM or max(a.box.height, b.box.height) > room:
+            continue
+        upper, lower = (a, b) if first else (b, a)
+        if a.box.height + b.box.height + 8 <= room:
+            views = [stacked(upper, lower, WIDTH_MM)]
+        else:
+            views = [alone(upper, WIDTH_MM), alone(lower, WIDTH_MM)]
+        break
+    left = room - views[0].height - 2
+    if left > 55 and context.isometric:
+        views.insert(1, free(_isometric(context), WIDTH_MM, left))
     return views, scale_text(scale)
+
+
+def _isometric(context: Context) -> Drawn:
+    return Drawn("", tuple(item for seen in context.isometric for item in dressed(seen.visible, "outline")))
 
 
 def section_asks(context: Context) -> list[Ask]:
@@ -207,19 +217,33 @@ def _sizes(context: Context) -> list[Block]:
 
 def _performance(context: Context) -> list[Block]:
     p, u = context.feed.predicted, context.feed.settings
+    db, mhz, widths = say("unit.db"), say("unit.mhz"), (p.half_power_beamwidth_e_deg, p.half_power_beamwidth_h_deg)
     rows = [
-        (say("perf.return_loss"), f"{number(p.return_loss_db, 1)} dB", f"±{number(u.return_loss_uncertainty_db, 1)} dB"),
-        (say("perf.bandwidth", level=number(p.bandwidth_return_loss_db, 0)), f"{number(p.bandwidth_mhz, 1)} MHz",
-         say("perf.resonance", value=number(u.resonance_uncertainty_mhz, 1))),
-        (say("perf.efficiency"), f"{number(100 * p.aperture_efficiency, 1)} %",
-         say("perf.spillover", value=number(100 * p.spillover, 1))),
-        (say("perf.taper"), f"{number(p.edge_taper_db, 1)} dB", ""),
-        (say("perf.width"), f"{number(p.half_power_beamwidth_e_deg, 1)}° / {number(p.half_power_beamwidth_h_deg, 1)}°", ""),
-        (say("perf.directivity"), f"{number(p.directivity_dbi, 2)} dBi",
-         say("perf.loss", value=number(p.ohmic_loss_db, 3))),
+        (
+            say("perf.return_loss"),
+            f"{number(p.return_loss_db, 1)} {db}",
+            f"±{number(u.return_loss_uncertainty_db, 1)} {db}",
+        ),
+        (
+            say("perf.bandwidth", level=number(p.bandwidth_return_loss_db, 0)),
+            f"{number(p.bandwidth_mhz, 1)} {mhz}",
+            say("perf.resonance", value=number(u.resonance_uncertainty_mhz, 1)),
+        ),
+        (
+            say("perf.efficiency"),
+            f"{number(100 * p.aperture_efficiency, 1)} %",
+            say("perf.spillover", value=number(100 * p.spillover, 1)),
+        ),
+        (say("perf.taper"), f"{number(p.edge_taper_db, 1)} {db}", ""),
+        (say("perf.width"), f"{number(widths[0], 1)}° / {number(widths[1], 1)}°", ""),
+        (
+            say("perf.directivity"),
+            f"{number(p.directivity_dbi, 2)} dBi",
+            say("perf.loss", value=number(p.ohmic_loss_db, 3)),
+        ),
         (say("perf.phase_centre"), f"z = {number(p.phase_centre_mm, 1)} mm", say("perf.above_floor")),
         (say("perf.system"), f"{number(p.system_noise_k, 1)} K", f"G/T {number(p.g_over_t_db_per_k, 1)} dB/K"),
-    ]  # fmt: skip
+    ]
     head = (say("perf.head"), say("table.value"), say("perf.remark"))
     return [heading(say("general.performance_head")), *table("performance", head, rows, widths=(75, 42, 53))]
 

@@ -6,11 +6,13 @@ Depends on: drawing, parts.records.
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 from fabgen.drawing import flat as flat_view
 from fabgen.drawing import solid as solid_view
-from fabgen.drawing.dimension import Ask, marks
+from fabgen.drawing.clip import clipped
+from fabgen.drawing.dimension import Ask
 from fabgen.drawing.flow import (
     COLUMN_WIDTH_MM,
     Block,
@@ -24,7 +26,7 @@ from fabgen.drawing.flow import (
     table,
 )
 from fabgen.drawing.hidden import ABOVE, GAP, ISOMETRIC
-from fabgen.drawing.model import Item, number, scale_text
+from fabgen.drawing.model import SCALES, Box, Item, number, scale_text
 from fabgen.drawing.pages.base import Context, Draft, draft, quantity
 from fabgen.drawing.picture import (
     Body,
@@ -37,6 +39,7 @@ from fabgen.drawing.picture import (
     free,
     outside,
     scales_for,
+    shifted,
     stacked,
 )
 from fabgen.drawing.section import opened
@@ -58,10 +61,11 @@ def _draft(context: Context, part: Part) -> Draft:
     room = column_height(context.paper)
     words = [*sizes_blocks(part), *making(part), *notes(part), *_tables(part)]
     height = sum(b.height for b in words) + 6
+    strip = part.flat is not None and _slender(Drawn("", flat_view.flat_items(part.flat)))
     # On one sheet when the words leave half of it to the views, else the views first and the words as they come.
-    views = room - height if height < 0.5 * room else 0.8 * room
+    views = room - height if height < 0.5 * room and not strip else 0.84 * room
     pictured = part.solid is not None and part.wire is None and _tells_more(part)
-    share = 0.68 if pictured else 1.0
+    share = 0.68 if pictured and not strip else 1.0
     blocks: list[Block] = []
     scale = ""
     left_over: tuple[Ask, ...] = ()
@@ -72,12 +76,25 @@ def _draft(context: Context, part: Part) -> Draft:
         block, scale, left_over = solid_block(part, views * share - 3, context.feed.job.limits.projection)
         blocks += [block, gap(3)]
     if pictured:
-        blocks += [picture(part, min(views - sum(b.height for b in blocks) - 3, 70.0)), gap(3)]
+        left = room if strip else views - sum(b.height for b in blocks) - 3
+        blocks += [picture(part, min(left, 70.0)), gap(3)]
     blocks += [*left_over_blocks(left_over), *words]
     return draft(
-        context, "part", part.name, blocks, part_key=part.key, scale=scale, group="parts",
-        material=material_text(part), finish=part.finish, tolerance=part.tolerance,
-    )  # fmt: skip
+        context,
+        "part",
+        part.name,
+        blocks,
+        part_key=part.key,
+        scale=scale,
+        group="parts",
+        material=material_text(part),
+        finish=part.finish,
+        tolerance=part.tolerance,
+    )
+
+
+def _slender(drawn: Drawn) -> bool:
+    return drawn.box.width > 4 * drawn.box.height
 
 
 def _tells_more(part: Part) -> bool:
@@ -100,18 +117,38 @@ def material_text(part: Part) -> str:
 
 
 def flat_block(flat: FlatPattern, room: float) -> tuple[Block, str, tuple[Ask, ...]]:
-    """The flat pattern with dimensions, at the largest scale that fits."""
+    """The flat pattern with dimensions, at the largest scale that fits; a long strip gets its ends enlarged."""
     drawn = Drawn(say("view.flat", face=flat.face), flat_view.flat_items(flat))
+    slender = _slender(drawn)
+    labels = flat_view.labels(flat)
 
     def extras(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
-        lines = flat_view.centre_lines(flat, scale)
-        return (*lines, *flat_view.labels(flat, scale, (*items, *lines)))
+        del items
+        return flat_view.centre_lines(flat, scale)
 
     def build(scale: float) -> Set:
-        return dimensioned(drawn, flat_view.asks(flat), scale, extras)
+        return dimensioned(drawn, flat_view.asks(flat), scale, extras, labels=() if slender else labels)
 
-    block, made, scale = fitted(drawn, build, WIDTH_MM, room)
+    block, made, scale = fitted(drawn, build, WIDTH_MM, room * (0.4 if slender else 1.0))
+    if slender:
+        block = stack((block, gap(2), *_ends(flat, drawn, room - block.height - 2)))
     return block, scale_text(scale), made.left_over
+
+
+def _ends(flat: FlatPattern, drawn: Drawn, room: float) -> list[Block]:
+    """Both ends of a long strip, enlarged, with all numbers."""
+    box = drawn.box
+    scale = next((s for s in SCALES if box.height * s <= room / 2 - 24 and s <= 5), SCALES[-1])
+    reach = min(box.width, (WIDTH_MM - 24) / scale)
+    blocks = []
+    for name, x0 in (("view.left_end", box.x0 - 1), ("view.right_end", box.x1 + 1 - reach)):
+        window = Box(x0, box.y0 - 1, x0 + reach, box.y1 + 1)
+        part = Drawn(say(name), clipped((*drawn.items, *flat_view.centre_lines(flat, 1.0)), window))
+        inside = [m for m in flat_view.labels(flat) if window.x0 <= m[1][0] <= window.x1]
+        made = dimensioned(part, (), scale, labels=inside)
+        x = (WIDTH_MM - made.box.width) / 2 - made.box.x0
+        blocks += [replace(shifted(made, x, -made.box.y1), height=made.box.height), gap(2)]
+    return blocks
 
 
 def solid_block(part: Part, room: float, projection: str) -> tuple[Block, str, tuple[Ask, ...]]:
@@ -125,19 +162,15 @@ def solid_block(part: Part, room: float, projection: str) -> tuple[Block, str, t
     else:
         front = outside(say("view.front"), bodies, GAP, with_hidden=True)
     plan = outside(say("view.above"), bodies, ABOVE, with_hidden=not hollow)
+    labels = solid_view.labels(m)
 
     def extras(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
-        lines = solid_view.centre_lines(m, scale)
-        wanted = [
-            (str(i), (h.x_mm + h.diameter_mm * 0.36, h.y_mm + h.diameter_mm * 0.36))
-            for i, h in enumerate(solid_view.holes(m), start=1)
-        ]
-        lines = (*lines, *(cutting_plane("B")(scale, items) if hollow else ()))
-        return (*lines, *marks(wanted, (*items, *lines), scale))
+        plane = cutting_plane("B")(scale, items) if hollow else ()
+        return (*solid_view.centre_lines(m, scale), *plane)
 
     for scale in scales_for((front, plan), WIDTH_MM, room):
         a = dimensioned(front, solid_view.front_asks(m), scale)
-        b = dimensioned(plan, solid_view.plan_asks(m), scale, extras)
+        b = dimensioned(plan, solid_view.plan_asks(m), scale, extras, labels=labels)
         if max(a.box.width, b.box.width) <= WIDTH_MM and a.box.height + b.box.height + 8 <= room:
             break
     upper, lower = (a, b) if projection == "first" else (b, a)
@@ -198,8 +231,11 @@ def flat_tables(flat: FlatPattern) -> list[Block]:
     """Bends, holes, corners."""
     blocks: list[Block] = []
     if flat.folds:
-        head = tuple(say(f"fold.{k}") for k in ("no", "order", "angle", "way", "radius", "k", "ba", "bd", "from", "to"))
+        head = tuple(say(f"fold.{k}") for k in ("no", "order", "angle", "way", "radius", "k", "ba", "bd"))
         blocks += [heading(say("fold.head"), 2.5), *table("bends", head, flat_view.fold_rows(flat))]
+        ends = (say("fold.no"), "x1", "y1", "x2", "y2")
+        blocks += [heading(say("fold.lines_head"), 2.5)]
+        blocks += side_by_side("fold lines", ends, flat_view.fold_line_rows(flat))
     holes = flat_view.hole_rows(flat)
     if holes:
         head = (say("flat.hole"), "x", "y", say("flat.diameter"))

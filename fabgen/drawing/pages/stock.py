@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from fabgen.drawing.dimension import Ask, leader
 from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, column_height, gap, heading, paragraph, table
-from fabgen.drawing.hidden import ISOMETRIC, Curve, dressed, look
+from fabgen.drawing.hidden import Curve, dressed
 from fabgen.drawing.model import Arc, Item, Line, Point, Polyline, number
 from fabgen.drawing.pages.base import Context, Draft, draft
 from fabgen.drawing.picture import Drawn, free_labelled
@@ -37,7 +37,7 @@ def items_of(parts: tuple[Part, ...]) -> dict[str, int]:
 def numbered_picture(context: Context, room: float) -> Block:
     """The whole feed with item numbers on leaders."""
     numbers = items_of(context.parts)
-    seen = look([b.shape for b in context.bodies], ISOMETRIC)
+    seen = context.isometric
     items: list[Item] = []
     for s in seen:
         items += dressed(s.visible, "outline")

@@ -10,6 +10,7 @@ from dataclasses import dataclass
 
 from fabgen.drawing import flat as flat_view
 from fabgen.drawing.clip import clipped
+from fabgen.drawing.dimension import marks
 from fabgen.drawing.flow import Page, columns
 from fabgen.drawing.hidden import ABOVE, GAP, look
 from fabgen.drawing.hidden import dressed as dress
@@ -66,7 +67,7 @@ def _flat(part: Part) -> tuple[Item, ...]:
         return ()
     items = flat_view.flat_items(part.flat)
     lines = flat_view.centre_lines(part.flat, 1.0)
-    return (*items, *lines, *flat_view.labels(part.flat, 1.0, (*items, *lines)))
+    return (*items, *lines, *marks(flat_view.labels(part.flat), (*items, *lines), 1.0))
 
 
 def _wire(part: Part) -> list[Template]:
