@@ -8,9 +8,11 @@ Depends on: nothing.
 
 from __future__ import annotations
 
+import atexit
 import contextlib
 import hashlib
 import os
+import shutil
 import tempfile
 from dataclasses import dataclass
 from pathlib import Path
@@ -40,6 +42,26 @@ def default_folder() -> Path | None:
         return Path(base) / "fabgen"
     home = os.environ.get("HOME") or os.environ.get("LOCALAPPDATA")
     return Path(home) / ".cache" / "fabgen" if home and Path(home).is_absolute() else None
+
+
+def place_compiled_code(folder: Path | None) -> None:
+    """Says where just-in-time compiled code is kept, when the installation itself cannot be written.
+
+    ``folder`` is the cache's; without one a folder for this run alone is made and removed at the end. A place that
+    the user named (NUMBA_CACHE_DIR) is kept. To be called before compiled modules are imported.
+    """
+    if os.access(Path(__file__).parent, os.W_OK) or "NUMBA_CACHE_DIR" in os.environ:
+        return
+    place = None if folder is None else folder / "compiled"
+    try:
+        if place is not None:
+            place.mkdir(parents=True, exist_ok=True)
+    except OSError:
+        place = None
+    if place is None or not os.access(place, os.W_OK):
+        place = Path(tempfile.mkdtemp(prefix="fabgen-compiled-"))
+        atexit.register(shutil.rmtree, place, ignore_errors=True)
+    os.environ["NUMBA_CACHE_DIR"] = str(place)
 
 
 @dataclass(frozen=True)

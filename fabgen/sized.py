@@ -11,7 +11,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from fabgen import __version__
-from fabgen.cache import Cache, key_of
+from fabgen.cache import Cache, key_of, place_compiled_code
 from fabgen.job import Job, Rates, Target
 from fabgen.progress import Progress
 from fabgen.sizing.records import Feed
@@ -33,6 +33,7 @@ def sized_feed(job: Job, progress: Progress, cache: Cache) -> Feed:
         if stored is not None:
             return stored
         cache.drop(key)
+    place_compiled_code(cache.folder)
     from fabgen.resources import require_memory
     from fabgen.sizing.size_feed import size_feed
 

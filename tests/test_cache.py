@@ -10,6 +10,7 @@ from pathlib import Path
 
 import pytest
 
+from fabgen import cache as cache_module
 from fabgen import sized
 from fabgen.cache import Cache, default_folder, key_of
 from fabgen.progress import Silent
@@ -113,6 +114,30 @@ def test_where_it_lies(monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:
     assert default_folder() == tmp_path / "own"
     monkeypatch.setenv("FABGEN_CACHE", "")
     assert default_folder() is None
+
+
+@pytest.mark.parametrize("kept", [True, False])
+def test_compiled_code_of_a_read_only_installation_has_a_place(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, kept: bool
+) -> None:
+    writable = os.access
+
+    def access(path: object, mode: int) -> bool:
+        return path != Path(cache_module.__file__).parent and writable(str(path), mode)
+
+    monkeypatch.setattr(os, "access", access)
+    monkeypatch.delenv("NUMBA_CACHE_DIR", raising=False)
+    cache_module.place_compiled_code(tmp_path / "cache" if kept else None)
+    place = Path(os.environ.pop("NUMBA_CACHE_DIR"))
+    assert place.is_dir()
+    assert (place == tmp_path / "cache" / "compiled") == kept
+
+
+def test_compiled_code_stays_beside_a_writable_installation(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.delenv("NUMBA_CACHE_DIR", raising=False)
+    cache_module.place_compiled_code(None)
+    assert ("NUMBA_CACHE_DIR" in os.environ) != os.access(Path(cache_module.__file__).parent, os.W_OK)
+    os.environ.pop("NUMBA_CACHE_DIR", None)
 
 
 @pytest.mark.parametrize("form", ["wire", "sheet"])
