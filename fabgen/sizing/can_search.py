@@ -15,7 +15,7 @@ from dataclasses import dataclass, replace
 from fabgen.errors import JobError, NoSolutionError
 from fabgen.job import Choke, Job
 from fabgen.progress import Progress
-from fabgen.sizing.can_start import least_efficiency, start_can, start_choke
+from fabgen.sizing.can_start import CHOKE, least_efficiency, start_can
 from fabgen.sizing.dish import half_angle_rad
 from fabgen.sizing.evaluate import in_dish
 from fabgen.sizing.layout import LoopStock
@@ -200,12 +200,12 @@ def choke_for(job: Job, given: Choke, can: CanShape) -> ChokeSizes:
     """The choke's sizes: what the job gives, the rest from the starting table."""
     step, wavelength = job.limits.resolution_mm, job.wavelength_mm
     wall = job.can.wall_mm or WALL_MM[job.can.make]
-    ratio = start_choke(math.degrees(half_angle_rad(job.dish.focal_ratio)), job.wishes.goal)
-    bore = given.bore_mm or round_to(can.bore_mm + 2 * (wall + ratio.gap * wavelength), step)
-    depth = given.depth_mm or round_to(ratio.depth * wavelength, step)
+    bore = given.bore_mm or round_to(can.bore_mm + 2 * (wall + CHOKE.gap * wavelength), step)
+    room = can.depth_mm - CHOKE.set_back * wavelength
+    depth = given.depth_mm or round_to(min(CHOKE.depth * wavelength, room), step)
     floor = given.floor_z_mm
     if floor is None:
-        floor = max(0.0, round_to(can.depth_mm - ratio.set_back * wavelength - depth, step))
+        floor = max(0.0, round_to(room - depth, step))
     if bore <= can.bore_mm + 2 * wall:
         raise JobError(
             f"can.choke.bore_mm is {bore:g} mm; it must clear the can's outside of {can.bore_mm + 2 * wall:g} mm"

@@ -43,12 +43,17 @@ PLAIN = {
 wavelength, G/T with 35 K receiver at 45 degrees elevation and at most 0.02 of efficiency given away."""
 BEST_EFFICIENCY = (0.69, 0.74, 0.775, 0.780, 0.766, 0.751, 0.749, 0.745, 0.733, 0.715, 0.665)
 EFFICIENCY_GIVEN = 0.02
-CHOKED_ANGLES_DEG = (40.0, 50.0, 60.0, 70.0, 80.0)
+CHOKED_ANGLES_DEG = (50.0, 55.0, 60.0, 65.0, 70.0, 75.0, 80.0, 90.0)
 CHOKED = {
-    "efficiency": ((1.20, 0.35), (1.10, 0.35), (0.90, 0.30), (0.75, 0.30), (0.70, 0.25)),
-    "g_over_t": ((1.20, 0.35), (1.10, 0.35), (0.95, 0.30), (0.80, 0.30), (0.70, 0.25)),
-}
-CHOKE = ChokeRatio(gap=0.20, depth=0.25, set_back=0.0)
+    "efficiency": (
+        (1.14, 0.30), (1.14, 0.20), (1.02, 0.20), (0.90, 0.20), (0.80, 0.20), (0.72, 0.20), (0.68, 0.20), (0.68, 0.22),
+    ),
+    "g_over_t": (
+        (1.14, 0.30), (1.14, 0.30), (1.14, 0.28), (1.08, 0.20), (0.92, 0.20), (0.80, 0.20), (0.74, 0.20), (0.68, 0.20),
+    ),
+}  # fmt: skip
+CHOKE = ChokeRatio(gap=0.28, depth=0.15, set_back=0.08)
+"""Best compromise of 5 bores, 2 can depths, 3 gaps, 3 choke depths and 3 set-backs, computed like ``PLAIN``."""
 
 
 def start_can(half_angle_deg: float, goal: str, choke: bool) -> CanRatio:
@@ -63,12 +68,6 @@ def start_can(half_angle_deg: float, goal: str, choke: bool) -> CanRatio:
         float(np.interp(half_angle_deg, angles, bores)),
         float(np.interp(half_angle_deg, angles, depths)),
     )
-
-
-def start_choke(half_angle_deg: float, goal: str) -> ChokeRatio:
-    """The choke that goes with ``start_can``."""
-    del half_angle_deg, goal
-    return CHOKE
 
 
 def least_efficiency(half_angle_deg: float) -> float:
