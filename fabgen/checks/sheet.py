@@ -187,22 +187,24 @@ def _least_leg(context: Context, thickness_mm: float) -> tuple[float, str]:
        source="press-brake maker's air-bending chart; read in a secondary page that quotes the source")  # fmt: skip
 def flange_length(context: Context) -> Iterator[Fault]:
     """Shortest leg of each fold against the die: stop where the job names the die, else caution."""
-    for part, flat, fold in folds(context):
+    named = context.job.limits.die_opening_mm is not None
+    for part, flat in flats(context):
         least, rule = _least_leg(context, flat.thickness_mm)
-        leg = flat_shapes.leg_mm(flat, fold)
-        if leg >= least - 0.01 or fold.number in flat_shapes.step_folds(flat, least):
-            continue
-        named = context.job.limits.die_opening_mm is not None
-        yield Fault(
-            part=part.key,
-            feature=f"fold {fold.number}",
-            value=mm(leg),
-            limit=mm(least),
-            message=f"the short leg of fold {fold.number} is {mm(leg)} outside; {rule} needs {mm(least)}",
-            cure=f"make the leg {up(least - leg):g} mm longer, or "
-            + ("use a narrower die" if named else "fold it by hand over a bar; name your die in limits.die_opening_mm"),
-            severity="stop" if named else "caution",
-        )
+        steps = flat_shapes.step_folds(flat, least)
+        for index, fold in enumerate(flat.folds):
+            leg = flat_shapes.leg_mm(flat, index)
+            if leg >= least - 0.01 or fold.number in steps:
+                continue
+            other = "use a narrower die" if named else "fold it by hand; name your die in limits.die_opening_mm"
+            yield Fault(
+                part=part.key,
+                feature=f"fold {fold.number}",
+                value=mm(leg),
+                limit=mm(least),
+                message=f"the short leg of fold {fold.number} is {mm(leg)} outside; {rule} needs {mm(least)}",
+                cure=f"make the leg {up(least - leg):g} mm longer, or {other}",
+                severity="stop" if named else "caution",
+            )
 
 
 @check("SHEET-203", "note", "flange_min_thicknesses", "flange_min_die_openings")
@@ -219,7 +221,7 @@ def step_at_the_seam(context: Context) -> Iterator[Fault]:
                 value=" and ".join(f"{abs(fold.angle_deg):.0f} deg" for fold in step),
                 limit=mm(least),
                 message=f"{names} make a step of one thickness; a brake needs {mm(least)} between folds ({rule})",
-                cure=f"press the step with a joggling tool, or in a vice between two bars of {mm(flat.thickness_mm)} sheet",
+                cure=f"press it with a joggling tool, or in a vice between two bars of {mm(flat.thickness_mm)} sheet",
             )
 
 
@@ -251,11 +253,14 @@ def die_makes_the_radius(context: Context) -> Iterator[Fault]:
 def hole_to_fold(context: Context) -> Iterator[Fault]:
     """Edge of each hole to the fold lines: 2 t + r."""
     ratio = context.limit("hole_to_fold_thicknesses")
-    for part, flat, fold in folds(context):
-        least = ratio * flat.thickness_mm + fold.inside_radius_mm
-        for hole in flat_shapes.holes(flat):
-            distance = flat_shapes.hole_to_fold_mm(hole, fold)
-            if distance < least - 0.01 and not flat_shapes.hangs_on(hole, fold):
+    for part, flat in flats(context):
+        shapes = flat_shapes.shapes_of(flat)
+        for fold, distances, hangs in zip(flat.folds, shapes.to_fold_mm, shapes.hangs, strict=True):
+            least = ratio * flat.thickness_mm + fold.inside_radius_mm
+            for hole, value, on in zip(shapes.holes, distances, hangs, strict=True):
+                distance = float(value)
+                if distance >= least - 0.01 or on:
+                    continue
                 yield Fault(
                     part=part.key,
                     feature=f"hole {hole.number}, fold {fold.number}",
@@ -272,15 +277,14 @@ def hole_to_edge(context: Context) -> Iterator[Fault]:
     ratio = context.limit("hole_to_edge_thicknesses")
     for part, flat in flats(context):
         least = ratio * flat.thickness_mm
-        for hole in flat_shapes.holes(flat):
-            distance = flat_shapes.hole_to_edge_mm(flat, hole)
+        for number, distance in enumerate(flat_shapes.holes_to_edge_mm(flat), start=1):
             if distance < least - 0.02:
                 yield Fault(
                     part=part.key,
-                    feature=f"hole {hole.number}",
+                    feature=f"hole {number}",
                     value=mm(distance),
                     limit=mm(least),
-                    message=f"hole {hole.number} leaves {mm(distance)} to the edge",
+                    message=f"hole {number} leaves {mm(distance)} to the edge",
                     cure=f"move it {up(least - distance):g} mm inwards",
                 )
 
@@ -290,7 +294,7 @@ def hole_size(context: Context) -> Iterator[Fault]:
     """Holes and slots narrower than a laser cuts cleanly."""
     for part, flat in flats(context):
         least = max(context.limit("hole_min_thicknesses") * flat.thickness_mm, context.limit("hole_min_mm"))
-        for hole in flat_shapes.holes(flat):
+        for hole in flat_shapes.shapes_of(flat).holes:
             if hole.width_mm < least - 1e-6:
                 yield Fault(
                     part=part.key,
