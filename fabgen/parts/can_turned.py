@@ -16,6 +16,7 @@ parts.floor_holes, parts.records, sizing.records.
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING
 
 from fabgen.errors import GeometryError
@@ -101,13 +102,14 @@ def _choke(feed: Feed, body: Body) -> Part:
         (inner, low - hub), (hub_outer, low - hub), (hub_outer, low), (wall + sizes.wall_mm, low),
         (wall + sizes.wall_mm, rim), (wall, rim), (wall, choke.floor_z_mm), (inner, choke.floor_z_mm),
     )
+    drilled = HUB_SCREWS * math.pi / 4 * screw.tap_drill_mm**2 * (hub_outer - inner)
     return metal_part(
         "choke",
         "turned choke ring",
         ("turn", "drill"),
         (feed.job.can.metal, feed.job.can.temper),
         feed,
-        volume_mm3=revolved_volume_mm3(points),
+        volume_mm3=revolved_volume_mm3(points) - drilled,
         sizes=(
             ("choke_bore_mm", choke.bore_mm), ("choke_depth_mm", choke.depth_mm), ("hub_bore_mm", bore),
             ("hub_mm", hub), ("wall_mm", sizes.wall_mm), ("floor_mm", sizes.floor_mm),

@@ -11,11 +11,13 @@ from __future__ import annotations
 
 import hashlib
 import re
+from collections.abc import Mapping
 
 from fabgen.errors import OutputError
 
 _ENTITY = re.compile(r"#(\d+)\s*=\s*(.*?);\s*(?=#\d+\s*=|ENDSEC)", re.DOTALL)
-_REFERENCE = re.compile(r"#(\d+)")
+_REFERENCE = re.compile(r"'(?:[^']|'')*'|#(\d+)")
+"""A text, which is passed over, or a reference."""
 _OCCURRENCE = re.compile(r"NEXT_ASSEMBLY_USAGE_OCCURRENCE\('[^']*'")
 _BREAK = re.compile(r"\s*\n\s*")
 
@@ -30,14 +32,14 @@ def canonical_step(text: str) -> str:
     if not mark:
         raise OutputError("the CAD kernel wrote no STEP data; check that the disk is not full and try again")
     bodies = {int(n): _BREAK.sub("", _OCCURRENCE.sub(_reset, body)) for n, body in _ENTITY.findall(data)}
-    children = {n: tuple(int(c) for c in _REFERENCE.findall(body)) for n, body in bodies.items()}
+    children = {n: tuple(int(c) for c in _REFERENCE.findall(body) if c) for n, body in bodies.items()}
     hashes = _hashes(bodies, children)
     used = {c for cs in children.values() for c in cs}
     roots = sorted((n for n in bodies if n not in used), key=lambda n: hashes[n])
     numbers = {old: new for new, old in enumerate(_post_order(roots, children), start=1)}
     lines = []
     for old, new in numbers.items():
-        body = _REFERENCE.sub(lambda m: f"#{numbers[int(m.group(1))]}", bodies[old])
+        body = _replaced(bodies[old], numbers)
         lines.append(f"#{new}={_numbered(body, new)};\n")
     return f"{head}DATA;\n{''.join(lines)}ENDSEC;\nEND-ISO-10303-21;\n"
 
@@ -70,6 +72,9 @@ def _post_order(roots: list[int], children: dict[int, tuple[int, ...]]) -> list[
 def _hashes(bodies: dict[int, str], children: dict[int, tuple[int, ...]]) -> dict[int, str]:
     hashes: dict[int, str] = {}
     for node in _post_order(list(bodies), children):
-        text = _REFERENCE.sub(lambda m: hashes[int(m.group(1))], bodies[node])
-        hashes[node] = hashlib.sha256(text.encode()).hexdigest()
+        hashes[node] = hashlib.sha256(_replaced(bodies[node], hashes).encode()).hexdigest()
     return hashes
+
+
+def _replaced(body: str, names: Mapping[int, object]) -> str:
+    return _REFERENCE.sub(lambda m: f"#{names[int(m.group(1))]}" if m.group(1) else m.group(0), body)
