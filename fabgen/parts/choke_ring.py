@@ -38,7 +38,7 @@ from fabgen.parts.kernel import once
 from fabgen.parts.making import metal_part
 from fabgen.parts.records import Part
 from fabgen.parts.strip_path import Stretch, offset_side, outward, part_of
-from fabgen.parts.wall_plan import SOLDERED_PITCH_FACTOR, joint_screw, tab_shape
+from fabgen.parts.wall_plan import SOLDERED_PITCH_FACTOR, Fixings, joint_screw, tab_shape
 from fabgen.parts.wall_strip import SEAM_GAP_MM, TabShape, Wall, corner_round_mm, tab_holes, tabs_width_mm
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
@@ -60,8 +60,8 @@ def _down(feed: Feed) -> bool:
     return tip >= feed.sizes.wall_mm + screw.head_height_mm + 0.5
 
 
-def choke_fixings(feed: Feed) -> tuple[float, int] | None:
-    """Height over the floor and number of the holes in the can's wall that hold the ring; None without a choke."""
+def choke_fixings(feed: Feed) -> Fixings | None:
+    """The holes in the can's wall that hold the ring; None without a choke."""
     choke, s = feed.sizes.choke, feed.sizes
     if choke is None:
         return None
@@ -69,16 +69,16 @@ def choke_fixings(feed: Feed) -> tuple[float, int] | None:
     along = shape.inside_radius_mm + s.floor_mm / 2 + shape.hole_from_bend_mm
     height = choke.floor_z_mm - s.floor_mm / 2 + (-along if _down(feed) else along)
     if not shape.hole_mm < height < s.can_depth_mm - 2 * shape.hole_mm:
+        change = max(height - s.can_depth_mm + 2 * shape.hole_mm, height - shape.hole_mm)
         raise GeometryError(
             f"the choke's ring at z = {choke.floor_z_mm:g} mm puts its screws at {height:.1f} mm on a wall of "
-            f"{s.can_depth_mm:g} mm; set can.choke.floor_z_mm lower by {height - s.can_depth_mm + 2 * shape.hole_mm:.1f} mm"
+            f"{s.can_depth_mm:g} mm; set can.choke.floor_z_mm to {choke.floor_z_mm - change:.1f} mm"
         )
     pitch = tables.limit("seam_screw_pitch_max_wavelengths", feed.job.overrides).value * feed.job.wavelength_mm
     if tables.metal(feed.job.can.metal).solderable:
         pitch *= SOLDERED_PITCH_FACTOR
-    round_mm = math.pi * s.can_bore_mm
-    most = math.floor(round_mm / (shape.width_mm + 2 * shape.relief_mm + 2.0)) - 2
-    return height, max(3, min(math.ceil(round_mm / pitch), most))
+    count = max(3, math.ceil(math.pi * s.can_bore_mm / pitch))
+    return Fixings(height, count, shape.width_mm + 2 * shape.relief_mm + 2.0)
 
 
 def _tab_edge(shape: TabShape, root: float, tip: float, half_mm: float) -> list[Vertex]:
@@ -137,7 +137,9 @@ def _inner_edge(feed: Feed, wall: Wall, shape: TabShape, root: float, tip: float
             if not cursor < share < last:
                 continue
             reach = piece.radius_mm + edge
-            span = math.asin(outer / reach) / math.radians(piece.sweep_deg) if piece.radius_mm else outer / piece.flat_mm
+            span = outer / piece.flat_mm
+            if piece.radius_mm:
+                span = math.asin(outer / reach) / math.radians(piece.sweep_deg)
             left = part_of(piece, cursor, share - span)
             vertices += [*offset_side(left, edge), _end_of(left, edge)]
             place, heading = piece.at(share)

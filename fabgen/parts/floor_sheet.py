@@ -20,10 +20,12 @@ Depends on: errors, stock, parts (contour, floor_plan, floor_holes, wall_strip, 
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from functools import partial
 
 from fabgen.errors import NotCoveredError
 from fabgen.parts.contour import (
+    Arc,
     Circle,
     Contour,
     Outline,
@@ -82,32 +84,53 @@ def floor_sheet(feed: Feed, wall: Wall) -> Part:
 
 
 def with_e_marks(outline: Outline, radius_mm: float = E_MARK_MM) -> Contour:
-    """The outline with a half-round notch where the y axis crosses it, above and below."""
+    """The outline (counter-clockwise) with a half-round notch where the y axis crosses it, above and below."""
     if isinstance(outline, Circle):
-        # Cut at 45 degrees so that no vertex hides a crossing of the axis.
-        outline = Contour(split_arc((outline.x_mm, outline.y_mm), outline.diameter_mm / 2, 45.0, 360.0))
+        outline = Contour(split_arc((outline.x_mm, outline.y_mm), outline.diameter_mm / 2, 0.0, 360.0))
     vertices: list[Vertex] = []
-    for a, b in pairs(outline):
-        vertices += _notched(a, b, radius_mm)
+    for run in _runs(outline):
+        vertices += _notched_line(*run, radius_mm) if isinstance(run, tuple) else _notched_arc(run, radius_mm)
     return tidied(Contour(tuple(vertices)))
 
 
-def _notched(a: Vertex, b: Vertex, r: float) -> list[Vertex]:
-    """The segment from ``a`` (without ``b``), with a notch about x = 0 where it reaches past x = -+r."""
-    if a.bulge == 0.0:
-        if min(a.x_mm, b.x_mm) >= -r or max(a.x_mm, b.x_mm) <= r or abs(a.y_mm - b.y_mm) > 1e-9:
-            return [a]
-        side = math.copysign(1.0, a.x_mm - b.x_mm)
-        return [a, *split_arc((0.0, a.y_mm), r, 0.0 if side > 0 else 180.0, -180.0), Vertex(-side * r, a.y_mm)]
-    arc = arc_between(a, b)
+def _runs(contour: Contour) -> list[Arc | tuple[Vertex, Vertex]]:
+    """Lines, and arcs with all their pieces put together."""
+    runs: list[Arc | tuple[Vertex, Vertex]] = []
+    for a, b in pairs(contour):
+        if a.bulge == 0.0:
+            runs.append((a, b))
+            continue
+        arc = arc_between(a, b)
+        last = runs[-1] if runs else None
+        if isinstance(last, Arc) and math.dist(last.centre, arc.centre) < 1e-6:
+            runs[-1] = replace(last, sweep_deg=last.sweep_deg + arc.sweep_deg)
+        else:
+            runs.append(arc)
+    return runs
+
+
+def _notch(y_mm: float, top: bool, r: float) -> tuple[Vertex, ...]:
+    return split_arc((0.0, y_mm), r, 0.0 if top else 180.0, -180.0)
+
+
+def _notched_line(a: Vertex, b: Vertex, r: float) -> list[Vertex]:
+    level = abs(a.y_mm - b.y_mm) < 1e-9 and min(a.x_mm, b.x_mm) < -r and max(a.x_mm, b.x_mm) > r
+    if not level:
+        return [a]
+    top = a.x_mm > b.x_mm
+    return [a, *_notch(a.y_mm, top, r), Vertex(-r if top else r, a.y_mm)]
+
+
+def _notched_arc(arc: Arc, r: float) -> list[Vertex]:
+    """The arc without its end, with notches where it passes the y axis; only arcs about the axis are notched."""
     half = math.degrees(math.asin(r / arc.radius_mm))
-    for quarter in (90.0, 270.0, 450.0, -90.0, -270.0):
-        inside = arc.start_deg < quarter - half and quarter + half < arc.start_deg + arc.sweep_deg
-        if inside and abs(arc.centre[0]) < 1e-9:
-            side = math.copysign(1.0, math.sin(math.radians(quarter)))
-            y = arc.centre[1] + side * arc.radius_mm * math.cos(math.radians(half))
-            first = split_arc(arc.centre, arc.radius_mm, arc.start_deg, quarter - half - arc.start_deg)
-            notch = split_arc((0.0, y), r, 0.0 if side > 0 else 180.0, -180.0)
-            rest = arc.start_deg + arc.sweep_deg - quarter - half
-            return [*first, *notch, *split_arc(arc.centre, arc.radius_mm, quarter + half, rest)]
-    return [a]
+    at, end = arc.start_deg, arc.start_deg + arc.sweep_deg
+    out: list[Vertex] = []
+    for quarter in (-270.0, -90.0, 90.0, 270.0, 450.0):
+        if math.hypot(*arc.centre) > 1e-6 or not at < quarter - half < quarter + half < end:
+            continue
+        top = math.sin(math.radians(quarter)) > 0
+        y = math.copysign(arc.radius_mm * math.cos(math.radians(half)), 1.0 if top else -1.0)
+        out += [*split_arc(arc.centre, arc.radius_mm, at, quarter - half - at), *_notch(y, top, r)]
+        at = quarter + half
+    return [*out, *split_arc(arc.centre, arc.radius_mm, at, end - at)]

@@ -5,6 +5,7 @@ Depends on: errors, stock, parts (strip_path, wall_strip, bend_rule), theory.ben
 
 from __future__ import annotations
 
+import itertools
 import math
 from dataclasses import dataclass
 
@@ -30,6 +31,16 @@ class _Bends:
     step_mm: float
 
 
+@dataclass(frozen=True)
+class Fixings:
+    """What holds a choke on the wall: holes at a height over the lower edge, about so many, each with that much
+    room along the wall."""
+
+    height_mm: float
+    count: int
+    room_mm: float
+
+
 def joint_screw(bore_mm: float) -> Screw:
     """Screw of seam and tabs by the can's size; a blind rivet of the same hole does as well."""
     return tables.screw("M3" if bore_mm >= 120 else "M2.5" if bore_mm >= 70 else "M2")
@@ -43,11 +54,11 @@ def fold_radius_mm(feed: Feed, thickness_mm: float) -> float:
 
 
 def wall_plan(
-    feed: Feed, bore_mm: float, depth_mm: float, base_z_mm: float, name: str, fixings: tuple[float, int] | None = None
+    feed: Feed, bore_mm: float, depth_mm: float, base_z_mm: float, name: str, fixings: Fixings | None = None
 ) -> Wall:
     """The wall of a can of that bore (across flats where the can has flats).
 
-    ``fixings``: height over the lower edge and number of holes that hold a choke. Raises GeometryError where
+    ``fixings``: the holes that hold a choke. Raises GeometryError where
     tabs, seam or folds do not fit.
     """
     t = feed.sizes.wall_mm
@@ -159,18 +170,25 @@ def _tab_places(feed: Feed, path: StripPath, seam: Seam, tab: TabShape) -> tuple
 
 
 def _fixing_holes(
-    path: StripPath, tabs_mm: tuple[float, ...], seam: Seam, overlap: float, fixings: tuple[float, int], hole_mm: float
+    path: StripPath, tabs_mm: tuple[float, ...], seam: Seam, overlap: float, fixings: Fixings, hole_mm: float
 ) -> tuple[WallHole, ...]:
-    """Holes above tabs, spread evenly, clear of the lap; on a folded can in the middle of each whole flat."""
-    height, count = fixings
-    if path.stretches[0].rolled:
-        free = [s for s in tabs_mm if s > overlap + 2 * hole_mm]
-        count = min(count, len(free))
-        chosen = (free[math.floor((i + 0.5) * len(free) / count)] for i in range(count))
-        return tuple(WallHole(s, height, hole_mm) for s in chosen)
-    whole = [
-        at + piece.flat_mm / 2
-        for at, piece in zip(path.starts_mm(), path.stretches, strict=False)
-        if not piece.radius_mm and at > 0 and at + piece.flat_mm < seam.step_at_mm - 1e-6
-    ]
-    return tuple(WallHole(s, height, hole_mm) for s in whole)
+    """Holes above tabs, spread evenly, clear of the lap and of folds."""
+    free: list[float] = []
+    half = fixings.room_mm / 2
+    for at, piece in zip(path.starts_mm(), path.stretches, strict=False):
+        low, high = max(at, overlap), min(at + piece.flat_mm, seam.step_at_mm)
+        if piece.rolled or not piece.radius_mm:
+            free += [s for s in tabs_mm if low + half <= s <= high - half]
+    if len(free) < 3:
+        raise GeometryError(
+            f"the can's wall has room for {len(free)} of the choke's fixings and needs 3; "
+            "use a rolled can or fewer flats"
+        )
+    count = min(fixings.count, len(free))
+    while count > 3 and min(b - a for a, b in itertools.pairwise(_spread(free, count))) < fixings.room_mm:
+        count -= 1
+    return tuple(WallHole(s, fixings.height_mm, hole_mm) for s in _spread(free, count))
+
+
+def _spread(places: list[float], count: int) -> list[float]:
+    return [places[math.floor((i + 0.5) * len(places) / count)] for i in range(count)]
