@@ -178,15 +178,15 @@ def edge_taper_db(pattern: Pattern, half_angle: float) -> float:
     return 10 * math.log10(max(ratio, 1e-30)) + 40 * math.log10(math.cos(half_angle / 2))
 
 
-def cut_angles() -> Real:
+def cut_angles(step_deg: float = CUT_STEP_DEG) -> Real:
     """The angles of a plane cut, -180 to 180 degrees."""
-    count = round(360 / CUT_STEP_DEG) + 1
+    count = round(360 / step_deg) + 1
     return np.linspace(-180.0, 180.0, count)
 
 
-def plane_cut(pattern: Pattern, phi_deg: float) -> tuple[Real, Real, Real]:
+def plane_cut(pattern: Pattern, phi_deg: float, step_deg: float = CUT_STEP_DEG) -> tuple[Real, Real, Real]:
     """A cut through the axis in the plane of ``phi_deg``: (angle in degrees, |co|^2, |cross|^2)."""
-    angle = cut_angles()
+    angle = cut_angles(step_deg)
     phi = np.where(angle < 0, math.radians(phi_deg) + math.pi, math.radians(phi_deg))
     co, cross = co_cross(*pattern(np.radians(np.abs(angle)), phi), phi)
     return angle, np.abs(co) ** 2, np.abs(cross) ** 2

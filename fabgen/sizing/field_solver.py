@@ -16,6 +16,9 @@ from fabgen.sizing.records import Sizes
 from fabgen.sizing.solver import Complex, Real, Solution
 from fabgen.stock import tables
 
+PAIR_RATIO = 1.02
+"""Solves of a sweep come in close pairs; of those nearer than this one is kept."""
+
 
 @dataclass(frozen=True)
 class SolvedFeed:
@@ -99,13 +102,34 @@ class SolvedSweep:
         return self.fields.on_axis_field(frequency_mhz)
 
 
+class _KeepingModel(FieldModel):
+    """A field model that keeps the solutions behind a sweep, for their patterns."""
+
+    def __init__(self, target_mhz: float, edges_per_wavelength: float, losses: Losses) -> None:
+        super().__init__(target_mhz, edges_per_wavelength, losses)
+        self.kept: list[FieldSolution] = []
+
+    def _quantities(self, solution: FieldSolution) -> list[complex]:
+        self.kept.append(solution)
+        return super()._quantities(solution)
+
+    def kept_apart(self) -> tuple[tuple[float, SolvedFeed], ...]:
+        """Kept solutions by frequency in MHz, one of each close pair."""
+        found: list[tuple[float, SolvedFeed]] = []
+        for solution in sorted(self.kept, key=lambda s: s.frequency_hz):
+            frequency = solution.frequency_hz / 1e6
+            if not found or frequency > PAIR_RATIO * found[-1][0]:
+                found.append((frequency, SolvedFeed(solution)))
+        return tuple(found)
+
+
 class FieldSolver:
     """Solves sizes with one mesh plan per neighbourhood of sizes. A new one forgets all meshes, so what it says does
     not depend on what was solved before it was made."""
 
     def __init__(self, job: Job, edges_per_wavelength: float = DEFAULT_DENSITY) -> None:
         self.edges_per_wavelength: float = edges_per_wavelength
-        self._model = FieldModel(job.target.frequency_mhz, edges_per_wavelength, job_losses(job))
+        self._model = _KeepingModel(job.target.frequency_mhz, edges_per_wavelength, job_losses(job))
 
     def solve(self, sizes: Sizes, frequency_mhz: float) -> SolvedFeed:
         """One frequency."""
@@ -114,7 +138,9 @@ class FieldSolver:
     def sweep(self, sizes: Sizes, start_mhz: float, stop_mhz: float, target_mhz: float) -> SolvedSweep:
         """A band; the capacitor of ``sizes`` weighs where the interpolation must be good."""
         del target_mhz
-        return SolvedSweep(self._model.sweep(sizes, start_mhz, stop_mhz, sizes.series_capacitor_pf), ())
+        self._model.kept.clear()
+        sweep = self._model.sweep(sizes, start_mhz, stop_mhz, sizes.series_capacitor_pf)
+        return SolvedSweep(sweep, self._model.kept_apart())
 
 
 def job_losses(job: Job) -> Losses:

@@ -25,6 +25,7 @@ from fabgen.theory.constants import FREE_SPACE_OHM
 START, STOP = 0.3, 2.2
 COARSE_STEP, FINE_STEP, FINE_SPAN = 0.005, 0.0005, 0.06
 FLOOR_DB = -120.0
+WIDTH_STEP_DEG = 3.0
 
 
 @dataclass(frozen=True)
@@ -101,8 +102,8 @@ def build_response(sweep: Sweep, sizes: Sizes, job: Job) -> Response:
 
 
 def _widths(solution: Solution) -> tuple[float, float]:
-    angle, e_plane, _ = plane_cut(solution.far_field, 90.0)
-    _, h_plane, _ = plane_cut(solution.far_field, 0.0)
+    angle, e_plane, _ = plane_cut(solution.far_field, 90.0, WIDTH_STEP_DEG)
+    _, h_plane, _ = plane_cut(solution.far_field, 0.0, WIDTH_STEP_DEG)
     return half_power_width_deg(angle, e_plane), half_power_width_deg(angle, h_plane)
 
 

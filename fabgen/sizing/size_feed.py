@@ -14,7 +14,7 @@ from fabgen.errors import GeometryError, NoSolutionError
 from fabgen.fields.plan import DEFAULT_DENSITY
 from fabgen.job import Job
 from fabgen.progress import Progress, Silent
-from fabgen.sizing.can_search import find_can
+from fabgen.sizing.can_search import CanFound, find_can
 from fabgen.sizing.capacitor_part import capacitor_part
 from fabgen.sizing.counting import CountingSolver
 from fabgen.sizing.field_solver import FieldSolver
@@ -70,17 +70,38 @@ def size_feed(job: Job, progress: Progress | None = None, make_solver: MakeSolve
         raise NoSolutionError(f"{error}. {advice}") from error
 
 
-def _size(job: Job, tell: Progress, make_solver: MakeSolver) -> Feed:
+@dataclass(frozen=True)
+class MatchedFeed:
+    """A feed that is matched at its rounded sizes, before its response is swept: can, loop, and the solvers used."""
+
+    setting: Setting
+    matched: Matched
+    can: CanFound
+    search: CountingSolver
+    final: CountingSolver
+
+
+def find_matched(job: Job, progress: Progress | None = None, make_solver: MakeSolver = FieldSolver) -> MatchedFeed:
+    """Can, loop, match and rounding for a job: everything but what the feed will do over frequency and tolerance.
+
+    Raises like ``size_feed``, without looking for the nearest job that works.
+    """
+    tell = progress or Silent()
     search = CountingSolver(make_solver(job, COARSE * DEFAULT_DENSITY))
     stock, target = loop_stock(job), job.target.frequency_mhz
     place = front_place(NAMED[job.wishes.selectivity])
-    found = find_can(job, stock, place, lambda sizes: search.solve(sizes, target), tell)
-    setting = Setting(job, stock, found.can)
+    can = find_can(job, stock, place, lambda sizes: search.solve(sizes, target), tell)
+    setting = Setting(job, stock, can.can)
     tell.step("matching the loop: tap height and series capacitor")
-    # Fresh solvers plan their meshes on the can that was found, so the result does not depend on the search before.
+    # A fresh solver plans its mesh on the can that was found, so the result does not depend on the search before.
     final = CountingSolver(make_solver(job, DEFAULT_DENSITY))
+    return MatchedFeed(setting, choose_loop(setting, final, tell), can, search, final)
+
+
+def _size(job: Job, tell: Progress, make_solver: MakeSolver) -> Feed:
+    found = find_matched(job, tell, make_solver)
+    setting, matched, final, target = found.setting, found.matched, found.final, job.target.frequency_mhz
     coarse = CountingSolver(make_solver(job, COARSE * DEFAULT_DENSITY))
-    matched = choose_loop(setting, final, tell)
     sizes = matched.sizes
     tell.step("sweeping the frequency from 0.3 to 2.2 times the target")
     sweep = final.sweep(sizes, START * target, STOP * target, target)
@@ -104,8 +125,8 @@ def _size(job: Job, tell: Progress, make_solver: MakeSolver) -> Feed:
     return Feed(
         job=job, sizes=sizes, predicted=predicted, capacitor=part, sensitivities=rows, yields=yields,
         modes=bore_modes(sizes.can_bore_mm, target), self_checks=checks,
-        settings=_settings(matched, second, search.solves + final.solves + coarse.solves),
-        remarks=(*found.remarks, *matched.remarks, *_band_remark(job, predicted)), can_trials=found.trials,
+        settings=_settings(matched, second, found.search.solves + final.solves + coarse.solves),
+        remarks=(*found.can.remarks, *matched.remarks, *_band_remark(job, predicted)), can_trials=found.can.trials,
     )  # fmt: skip
 
 
