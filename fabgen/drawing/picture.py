@@ -123,12 +123,21 @@ def dimensioned(
     *,
     labels: Sequence[Mark] = (),
     title: bool = True,
+    width: float | None = None,
 ) -> Set:
-    """The view at ``scale`` with dimensions, labels beside points, and its name; ``extras`` adds marks in paper mm."""
+    """The view at ``scale`` with dimensions, labels beside points, and its name.
+
+    ``extras`` adds marks in paper mm; ``width`` is the room that texts on leaders keep to.
+    """
     items = at_scale(drawn, scale)
     if extras is not None:
         items = (*items, *extras(scale, items))
-    placed_ = place(drawn.name, items, asks, scale)
+    limits = None
+    if width is not None:
+        body = bounds(items)
+        middle = (body.x0 + body.x1) / 2
+        limits = Box(middle - width / 2, body.y0 - 40, middle + width / 2, body.y1 + 40)
+    placed_ = place(drawn.name, items, asks, scale, limits=limits)
     texts = marks(labels, items, scale, placed_)
     drawings = (*items, *placed_.items, *texts)
     box = placed_.box.joined(bounds(texts)) if texts else placed_.box

@@ -232,8 +232,8 @@ ENGLISH: dict[str, str] = {
     "part.sizes": "Sizes that make the part",
     "part.notes": "Notes",
     "flat.line": "line",
-    "flat.arc_left": "arc R{radius} left",
-    "flat.arc_right": "arc R{radius} right",
+    "flat.arc_left": "R{radius} left",
+    "flat.arc_right": "R{radius} right",
     "flat.up": "up",
     "flat.down": "down",
     "flat.on_circle": "on {diameter}",
@@ -242,7 +242,9 @@ ENGLISH: dict[str, str] = {
     "flat.holes_head": "Hole table (mm, from the origin of the cutting file)",
     "flat.corner": "Corner",
     "flat.next": "To the next",
-    "flat.corners_head": "Corner table of contour {letter} (mm, from the origin of the cutting file)",
+    "flat.corners_head": (
+        "Corner table of contour {letter} (mm, from the origin of the cutting file; R: arc turning left or right)"
+    ),
     "fold.head": "Bend table (mm)",
     "fold.no": "Fold",
     "fold.order": "Order",

@@ -127,7 +127,9 @@ def flat_block(flat: FlatPattern, room: float) -> tuple[Block, str, tuple[Ask, .
         return flat_view.centre_lines(flat, scale)
 
     def build(scale: float) -> Set:
-        return dimensioned(drawn, flat_view.asks(flat), scale, extras, labels=() if slender else labels)
+        return dimensioned(
+            drawn, flat_view.asks(flat), scale, extras, labels=() if slender else labels, width=WIDTH_MM - 14
+        )
 
     block, made, scale = fitted(drawn, build, WIDTH_MM, room * (0.4 if slender else 1.0))
     if slender:
@@ -170,7 +172,7 @@ def solid_block(part: Part, room: float, projection: str) -> tuple[Block, str, t
 
     for scale in scales_for((front, plan), WIDTH_MM, room):
         a = dimensioned(front, solid_view.front_asks(m), scale)
-        b = dimensioned(plan, solid_view.plan_asks(m), scale, extras, labels=labels)
+        b = dimensioned(plan, solid_view.plan_asks(m), scale, extras, labels=labels, width=WIDTH_MM - 14)
         if max(a.box.width, b.box.width) <= WIDTH_MM and a.box.height + b.box.height + 8 <= room:
             break
     upper, lower = (a, b) if projection == "first" else (b, a)

@@ -1,0 +1,137 @@
+"""The sheets alone are enough: flat parts are rebuilt from the printed tables and held against the cutting contour."""
+
+from __future__ import annotations
+
+import math
+import re
+
+import pytest
+import shapely
+
+from fabgen.drawing.model import Sheet, Table
+from fabgen.drawing.texts import say, size_name
+from fabgen.parts import contour as c
+from fabgen.parts.records import FlatPattern
+from tests.drawing.books import KINDS, book_of, feed_of, parts_of
+
+PRINTED_MM = 0.005  # tables are printed to 0.01 mm
+
+
+def _tables(pages: list[Sheet]) -> list[Table]:
+    return [t for p in pages for t in p.tables]
+
+
+def _part_pages(kind: str, key: str) -> list[Sheet]:
+    return [s for s in book_of(kind) if s.kind == "part" and s.part_key == key]
+
+
+def _rebuilt(rows: tuple[tuple[str, ...], ...]) -> c.Contour:
+    points = [(float(r[1]), float(r[2])) for r in rows]
+    vertices = []
+    for i, row in enumerate(rows):
+        (x, y), (x1, y1) = points[i], points[(i + 1) % len(rows)]
+        found = re.fullmatch(r"R([\d.]+) (left|right)", row[3])
+        bulge = 0.0
+        if found:
+            half = math.hypot(x1 - x, y1 - y) / 2
+            sweep = 2 * math.asin(min(1.0, half / float(found.group(1))))
+            bulge = math.tan(sweep / 4) * (1 if found.group(2) == "left" else -1)
+        else:
+            assert row[3] == say("flat.line")
+        vertices.append(c.Vertex(x, y, bulge))
+    return c.Contour(tuple(vertices))
+
+
+def _same(a: c.Outline, b: c.Outline) -> float:
+    """Largest distance between two outlines, mm."""
+    first, second = (shapely.LinearRing(c.sampled(o, 0.002)) for o in (a, b))
+    return float(first.hausdorff_distance(second))
+
+
+def _outlines_from(pages: list[Sheet], flat: FlatPattern) -> list[c.Outline]:
+    out: list[c.Outline] = []
+    for table in _tables(pages):
+        if table.name.startswith("corners:"):
+            out.append(_rebuilt(table.rows))
+        elif table.name == "holes":
+            out += [c.Circle(float(r[1]), float(r[2]), float(r[3].lstrip("⌀"))) for r in table.rows]
+    if isinstance(flat.outline, c.Circle):
+        texts = [d for p in pages for d in p.dimensions if d.name == "outline"]
+        assert len(texts) == 1
+        diameter = float(texts[0].text.lstrip("⌀"))
+        out.append(c.Circle(0.0, 0.0, diameter))
+    return out
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_flat_parts_can_be_rebuilt_from_their_sheets(kind: str) -> None:
+    flats = [(p.key, p.flat) for p in parts_of(kind) if p.flat is not None]
+    for key, flat in flats:
+        found = _outlines_from(_part_pages(kind, key), flat)
+        wanted = [flat.outline, *flat.holes]
+        assert len(found) == len(wanted), key
+        for outline in wanted:
+            # An arc nearly as wide as its radius amplifies the printed rounding: five times it is allowed.
+            assert min(_same(outline, other) for other in found if type(other) is type(outline)) < 10 * PRINTED_MM, key
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_fold_lines_and_bends_are_listed(kind: str) -> None:
+    for part in parts_of(kind):
+        if part.flat is None or not part.flat.folds:
+            continue
+        tables = {t.name: t for t in _tables(_part_pages(kind, part.key))}
+        lines = tables["fold lines"].rows
+        assert len(lines) == len(part.flat.folds)
+        for row, fold in zip(lines, part.flat.folds, strict=True):
+            got = [float(v) for v in row[1:]]
+            assert got == pytest.approx([*fold.start, *fold.end], abs=0.0051)
+        assert sum(_count(r[0]) for r in tables["bends"].rows) == len(part.flat.folds)
+
+
+def _count(runs: str) -> int:
+    total = 0
+    for run in runs.split(", "):
+        first, _, last = run.partition("–")
+        total += int(last or first) - int(first) + 1
+    return total
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_every_part_has_its_page_and_its_sizes(kind: str) -> None:
+    book = book_of(kind)
+    tables = {t.name: t for s in book for t in s.tables}
+    texts = [t.text for s in book for t in s.texts]
+    for part in parts_of(kind):
+        assert any(s.part_key == part.key for s in book) or part.process == ("buy",), part.key
+        if not part.sizes:
+            continue
+        rows = dict(tables[f"sizes:{part.key}"].rows)
+        for key, value in part.sizes:
+            shown = rows[size_name(key)]
+            assert float(shown.split()[0]) == pytest.approx(value, abs=0.0051), (part.key, key)
+            assert shown in texts
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_sizes_of_the_record_are_on_the_general_arrangement(kind: str) -> None:
+    feed = feed_of(kind)
+    pages = [s for s in book_of(kind) if s.kind == "general"]
+    rows = {r[0]: r[1] for t in _tables(pages) if t.name == "sizes" for r in t.rows}
+    for key, value in vars(feed.sizes).items():
+        if isinstance(value, float):
+            assert float(rows[size_name(key)].split()[0]) == pytest.approx(value, abs=0.0051), key
+
+
+@pytest.mark.parametrize("kind", ["wire-rolled"])
+def test_wire_marks_are_drawn_in_place(kind: str) -> None:
+    (part,) = [p for p in parts_of(kind) if p.wire is not None]
+    assert part.wire is not None
+    (page,) = [s for s in book_of(kind) if s.kind == "wire"]
+    marks = [d for d in page.dimensions if d.view == "wire"]
+    view = next(v for v in page.views if v.name == "wire")
+    wanted = [0.0, *(v for b in part.wire.bends for v in (b.start_mm, b.end_mm)), part.wire.cut_length_mm]
+    assert [d.value for d in marks] == pytest.approx(wanted)
+    for d in marks:
+        assert d.lines[0].x0 == pytest.approx(view.origin[0] + view.scale * d.value, abs=1e-6)
+        assert float(d.text) == pytest.approx(d.value, abs=0.051)
