@@ -101,7 +101,10 @@ def _extents(document: Drawing, flat: FlatPattern, kerf_mm: float) -> None:
     x0, y0, x1, y1 = bounds_mm(compensated(flat.outline, kerf_mm / 2))
     if document.dxfversion > "AC1009":
         document.header["$MEASUREMENT"] = 1
+    # Both places: the library takes the layout's for the header unless a corner is the origin.
     document.modelspace().reset_extents((x0, y0, 0.0), (x1, y1, 0.0))
+    document.header["$EXTMIN"] = (x0, y0, 0.0)
+    document.header["$EXTMAX"] = (x1, y1, 0.0)
     document.set_modelspace_vport(1.1 * max(x1 - x0, y1 - y0), center=((x0 + x1) / 2, (y0 + y1) / 2))
 
 

@@ -221,6 +221,8 @@ def _nested(outer: Any, holes: list[Any]) -> Iterator[Fault]:
         if not outer.contains_properly(hole):
             x, y = hole.centroid.x, hole.centroid.y
             yield Fault("hole outside", f"the hole at ({x:.2f}, {y:.2f}) is not inside the outline")
+    if not holes:
+        return
     tree = shapely.STRtree(holes)
     for i, j in tree.query(holes, predicate="intersects").T.tolist():
         if i < j:
