@@ -10,6 +10,7 @@ from functools import partial
 from fabgen.parts.bend_rule import rule_text
 from fabgen.parts.choke_ring import choke_fixings, choke_ring
 from fabgen.parts.floor_sheet import floor_sheet
+from fabgen.parts.joint_screws import joint_screws
 from fabgen.parts.kernel import once
 from fabgen.parts.making import metal_part
 from fabgen.parts.records import Part
@@ -35,13 +36,13 @@ def choke_wall(feed: Feed) -> Wall | None:
 
 
 def sheet_can(feed: Feed) -> tuple[Part, ...]:
-    """Floor and wall, ring and wall of the choke."""
+    """Floor and wall, ring and wall of the choke, screws and nuts."""
     wall = can_wall(feed)
     parts = [floor_sheet(feed, wall), _wall_part(feed, wall, "wall", "wall of the can")]
     outer = choke_wall(feed)
     if outer is not None:
         parts += [choke_ring(feed, wall, outer), _wall_part(feed, outer, "choke-wall", "wall of the choke")]
-    return tuple(parts)
+    return (*parts, *joint_screws(feed, wall, outer))
 
 
 def _wall_part(feed: Feed, wall: Wall, key: str, name: str) -> Part:

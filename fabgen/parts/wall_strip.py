@@ -23,7 +23,7 @@ import math
 from dataclasses import dataclass
 
 from fabgen.errors import GeometryError
-from fabgen.parts.contour import Circle, Contour, FoldLine, Point, Vertex, area_mm2, rounded
+from fabgen.parts.contour import Circle, FoldLine, area_mm2, rounded
 from fabgen.parts.records import FlatPattern
 from fabgen.parts.strip_path import StripPath, outward
 from fabgen.theory.bending import bend_allowance, bend_deduction
