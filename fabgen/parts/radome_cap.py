@@ -8,7 +8,7 @@ Section, right half; printed disc down::
                    wall  |<||   groove over the bead of a printed can
                          | |'   z = can_depth - skirt
 
-For a can with flats the skirt has the same flats. Around a rolled wall the skirt is wider by the wall, so that it
+For a can with flats the skirt has the same flats. Around a wall of sheet the skirt is wider by the wall, so that it
 goes over the lapped seam; the cap is bedded in silicone there. Larger than the bed the cap comes in sectors with
 strips to bond over the joints.
 
@@ -101,7 +101,7 @@ def radome_cap(feed: Feed) -> tuple[Part, ...]:
 def _inner_radius(feed: Feed, rules: PrintRules) -> float:
     sizes = feed.sizes
     wall = sizes.can_bore_mm / 2 + lining_mm(feed) + sizes.wall_mm
-    seam = sizes.wall_mm if feed.job.can.make == "rolled" else 0.0
+    seam = sizes.wall_mm if feed.job.can.make in {"rolled", "folded"} else 0.0
     return wall + seam + rules.clearance_mm
 
 
