@@ -99,6 +99,8 @@ def _add_size(commands: _Commands, common: argparse.ArgumentParser) -> None:
     parser = _add(commands, common, "size", "Find every size and say what the feed will do.")
     _add_run_options(parser)
     parser.add_argument("--json", action="store_true", help="the record's text instead of a table")
+    parser.add_argument("--front", action="store_true", help="rejection of the neighbours against efficiency")
+    parser.add_argument("--plots", metavar="DIR", type=Path, help="write plots as SVG into this folder")
 
 
 def _add_check(commands: _Commands, common: argparse.ArgumentParser) -> None:

@@ -62,16 +62,29 @@ def _out(line: str) -> None:
 
 
 def size(arguments: argparse.Namespace) -> int:
-    """Prints sizes and predictions."""
+    """Prints sizes and predictions, or the selectivity front; writes plots where asked."""
     from fabgen.job_reader import read_job
     from fabgen.resources import time_limit
 
     job = read_job(arguments.job)
     with time_limit(arguments.time_limit), _display(arguments) as display:
-        from fabgen.sized import sized_feed
+        if arguments.front:
+            from fabgen.sized import selectivity_front_of
 
-        feed = sized_feed(job, display, _cache(arguments))
-    if arguments.json:
+            front = selectivity_front_of(job, display)
+        else:
+            from fabgen.sized import sized_feed
+
+            feed = sized_feed(job, display, _cache(arguments))
+    if arguments.plots is not None:
+        from fabgen.plots import feed_plots, front_plot, write_plots
+
+        write_plots({"front.svg": front_plot(front)} if arguments.front else feed_plots(feed), arguments.plots)
+    if arguments.front:
+        from fabgen.report import front_report
+
+        sys.stdout.write(json.dumps(asdict(front), indent=2) + "\n" if arguments.json else front_report(job, front))
+    elif arguments.json:
         from fabgen.writers.record import record_data, record_text
 
         sys.stdout.write(record_text(record_data(feed)))

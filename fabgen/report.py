@@ -6,12 +6,15 @@ Depends on: units, job, sizing.records, checks.records.
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Mapping, Sequence
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from fabgen.checks.records import Finding
 from fabgen.job import Job
 from fabgen.sizing.records import Feed, Sizes
 from fabgen.units import INCH_MM
+
+if TYPE_CHECKING:
+    from fabgen.sizing.front import Front
 
 _SEVERITIES = (("stop", "Stops the pack"), ("caution", "Caution"), ("note", "Note"))
 _COLOURS = {"stop": "\x1b[31m", "caution": "\x1b[33m", "note": "\x1b[36m"}
@@ -132,6 +135,28 @@ def _sensitivity_rows(feed: Feed) -> list[tuple[str, ...]]:
             )
         )
     return rows
+
+
+def front_report(job: Job, front: Front) -> str:
+    """The selectivity front: one row per matched point, sharp first."""
+    lines = [f"{job.target.name}: rejection against efficiency at {job.target.frequency_mhz:g} MHz", ""]
+    neighbours = front.points[0].neighbour_mhz
+    head = ("place", "loop", "height", *(f"{f:g} MHz" for f in neighbours), "efficiency", "G/T", "return loss")
+    rows = [
+        (
+            f"{point.share:.2f}",
+            f"{point.sizes.loop_diameter_mm:.1f} mm",
+            f"{point.sizes.loop_height_mm:.1f} mm",
+            *(f"{value:+.1f} dB" for value in point.rejection_db),
+            f"{point.aperture_efficiency:.3f}",
+            f"{point.g_over_t_db_per_k:.2f} dB/K",
+            f"{point.return_loss_db:.1f} dB",
+        )
+        for point in front.points
+    ]
+    lines += table([head, *rows])
+    lines += ["", *(f"Not matched: {text}" for text in front.refused)] if front.refused else []
+    return "\n".join(lines) + "\n"
 
 
 def findings_report(job: Job, findings: Sequence[Finding], colour: bool) -> str:

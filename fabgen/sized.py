@@ -20,6 +20,8 @@ from fabgen.stock import tables
 if TYPE_CHECKING:
     from pydantic import TypeAdapter
 
+    from fabgen.sizing.front import Front
+
 # What a feed's numbers depend on, besides the job: these modules and packages of this program.
 _SOURCES = ("units.py", "job.py", "stock", "theory", "fields", "sizing")
 
@@ -41,6 +43,17 @@ def sized_feed(job: Job, progress: Progress, cache: Cache) -> Feed:
     feed = size_feed(job, progress)
     cache.put(key, feed_to_text(feed))
     return feed
+
+
+def selectivity_front_of(job: Job, progress: Progress) -> Front:
+    """The front between rejection and efficiency for a job, each point matched. Errors of the sizing pass through."""
+    place_compiled_code(None)
+    from fabgen.resources import require_memory
+    from fabgen.sizing.field_solver import FieldSolver
+    from fabgen.sizing.front import selectivity_front
+
+    require_memory()
+    return selectivity_front(job, FieldSolver(job), progress)
 
 
 def feed_key(job: Job) -> str:

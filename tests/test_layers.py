@@ -27,7 +27,7 @@ LAYERS: tuple[tuple[str, ...], ...] = (
     ("fabgen.drawing",),
     ("fabgen.writers",),
     ("fabgen.sized",),
-    ("fabgen.pack", "fabgen.report", "fabgen.start", "fabgen.completion", "fabgen.job_page"),
+    ("fabgen.pack", "fabgen.report", "fabgen.start", "fabgen.completion", "fabgen.job_page", "fabgen.plots"),
     ("fabgen.commands",),
     ("fabgen.cli", "fabgen.__main__"),
 )
