@@ -50,10 +50,12 @@ SKIRT_MM = 8.0
 """How far the radome cap reaches over the wall."""
 
 
-def wider(outline: Outline, by_mm: float) -> Outline:
-    """A round hole with a larger diameter; other outlines are drawn with their clearance already."""
+def as_printed(outline: Outline, rules: PrintRules) -> Outline:
+    """A round hole with the printer's allowance, never under the smallest that prints open; other outlines are
+    drawn with their clearance already."""
     if isinstance(outline, Circle):
-        return Circle(outline.x_mm, outline.y_mm, outline.diameter_mm + by_mm)
+        diameter = max(outline.diameter_mm + rules.hole_mm, rules.hole_min_mm)
+        return Circle(outline.x_mm, outline.y_mm, diameter)
     return outline
 
 
@@ -104,8 +106,8 @@ def body_of(feed: Feed) -> Body:
 
 def openings(feed: Feed) -> tuple[Outline, ...]:
     """All openings through the floor as printed."""
-    allowance = print_rules(feed).hole_mm
-    return tuple(wider(hole.outline, allowance) for hole in floor_holes(feed))
+    rules = print_rules(feed)
+    return tuple(as_printed(hole.outline, rules) for hole in floor_holes(feed))
 
 
 def choke_screw_points(feed: Feed, body: Body) -> tuple[Point, ...]:
@@ -173,7 +175,7 @@ def _ear_top(body: Body) -> float:
 
 
 def _flange_holes(body: Body, rules: PrintRules) -> tuple[Outline, ...]:
-    return tuple(wider(hole, rules.hole_mm) for hole in body.flange.holes) if body.flange else ()
+    return tuple(as_printed(hole, rules) for hole in body.flange.holes) if body.flange else ()
 
 
 def _insert_holes(body: Body, at: tuple[Point, ...]) -> list[kernel.Shape]:

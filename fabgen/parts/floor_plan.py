@@ -218,13 +218,24 @@ def coax_holes(feed: Feed) -> tuple[FloorHole, ...]:
 
 
 def drain_holes(feed: Feed) -> tuple[FloorHole, ...]:
-    """Four holes close to the wall, half way between the axes so that no seam meets them."""
+    """Up to four holes close to the wall, half way between the axes so that no seam meets them.
+
+    In a small can the ones under the connector or beside the bars are left out.
+    """
     if not feed.job.can.drain_holes:
         return ()
     radius = feed.sizes.can_bore_mm / 2 - 1.5 * DRAIN_HOLE_MM
     at = radius * math.sqrt(0.5)
-    signs = ((1, 1), (-1, 1), (-1, -1), (1, -1))
-    return tuple(FloorHole("drain", Circle(a * at, b * at, DRAIN_HOLE_MM)) for a, b in signs)
+    points = ((at, at), (-at, at), (-at, -at), (at, -at))
+    return tuple(FloorHole("drain", Circle(*p, DRAIN_HOLE_MM)) for p in points if _drains_freely(feed, p))
+
+
+def _drains_freely(feed: Feed, at: Point) -> bool:
+    sizes = feed.sizes
+    reach = max(connector_reach_mm(feed), tables.connector(feed.job.cable.connector).flange_width_mm / math.sqrt(2))
+    bars = ((sizes.leg_x_mm, side * sizes.leg_pitch_mm / 2, sizes.leg_width_mm) for side in (1, -1))
+    keep = ((*coax_axis(feed), reach), *bars)
+    return all(math.hypot(at[0] - x, at[1] - y) > r + DRAIN_HOLE_MM / 2 + LEAST_WEB_MM for x, y, r in keep)
 
 
 def flange_plan(feed: Feed, outer_mm: float) -> FlangePlan | None:
