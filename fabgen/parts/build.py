@@ -11,6 +11,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from fabgen.errors import GeometryError
+from fabgen.parts.bend_strip import bend_strip
 from fabgen.parts.can_folded import can_folded
 from fabgen.parts.can_printed import can_printed
 from fabgen.parts.can_rolled import can_rolled
@@ -20,6 +21,8 @@ from fabgen.parts.capacitor import capacitor_parts, coax_stub
 from fabgen.parts.choke_printed import choke_printed
 from fabgen.parts.connector import connector, spacer
 from fabgen.parts.fastening import connector_fasteners, foot_fasteners
+from fabgen.parts.foil import foil_patterns
+from fabgen.parts.jig import bending_jig
 from fabgen.parts.kernel import placed
 from fabgen.parts.loop_sheet import loop_sheet
 from fabgen.parts.loop_wire import loop_wire
@@ -47,13 +50,13 @@ class Placement:
 
 
 def build_parts(feed: Feed) -> tuple[Part, ...]:
-    """Every part of the feed, can first, in assembly order; keys are unique.
+    """Every part of the feed, can first, in assembly order, then the workshop aids; keys are unique.
 
     Raises GeometryError where sizes do not fit together, NotCoveredError for what is not built.
     """
-    parts: list[Part | None] = [*_can(feed), *_loop(feed), *foot_fasteners(feed)]
+    parts: list[Part | None] = [*_can(feed), *foil_patterns(feed), *_loop(feed), *foot_fasteners(feed)]
     parts += [spacer(feed), connector(feed), *connector_fasteners(feed)]
-    parts += [coax_stub(feed), *capacitor_parts(feed), *radome_cap(feed)]
+    parts += [coax_stub(feed), *capacitor_parts(feed), *radome_cap(feed), *bend_strip(feed), *bending_jig(feed)]
     made = tuple(part for part in parts if part is not None)
     keys = [part.key for part in made]
     if len(set(keys)) < len(keys):
