@@ -174,13 +174,17 @@ class Arc:
         return tuple(self.at(self.start_deg + self.sweep_deg * i / n) for i in range(n + 1))
 
     def box(self) -> Box:
-        """Bounds, from points 10 degrees apart and the quadrant points of an upright arc."""
-        pts = list(self.points())
-        if self.turn_deg % 90 == 0:
-            for k in range(-8, 9):
-                if 0 <= (k * 90 - self.start_deg) * math.copysign(1, self.sweep_deg) <= abs(self.sweep_deg):
-                    pts.append(self.at(k * 90))
-        return bounds_of_points(pts)
+        """Bounds: both ends and those of the four extreme points that lie on the arc."""
+        turn = math.radians(self.turn_deg)
+        c, s = math.cos(turn), math.sin(turn)
+        across = math.degrees(math.atan2(-self.ry * s, self.rx * c))
+        along = math.degrees(math.atan2(self.ry * c, self.rx * s))
+        way = math.copysign(1.0, self.sweep_deg)
+        points = [self.at(self.start_deg), self.at(self.start_deg + self.sweep_deg)]
+        for t in (across, across + 180.0, along, along + 180.0):
+            if (t - self.start_deg) * way % 360.0 <= abs(self.sweep_deg):
+                points.append(self.at(t))
+        return bounds_of_points(points)
 
     def beziers(self) -> tuple[tuple[Point, Point, Point, Point], ...]:
         """Cubic pieces of at most 45 degrees; the radial error is below 5e-6 of the radius."""

@@ -42,8 +42,11 @@ class Drawn:
         return bounds(self.items)
 
 
+MOST_COPIES = 8  # of a bought part with more places only the first is drawn; its number stands in the parts list
+
+
 def bodies(parts: Sequence[Part]) -> tuple[Body, ...]:
-    """Every solid of the parts at every place."""
+    """The solids of the parts at their places; of many equal screws one stands for all."""
     from fabgen.parts.kernel import placed
 
     out = []
@@ -51,7 +54,8 @@ def bodies(parts: Sequence[Part]) -> tuple[Body, ...]:
         if part.solid is None:
             continue
         solid = part.solid()
-        out += [Body(part, placed(solid, place_)) for place_ in part.places]
+        many = part.process == ("buy",) and len(part.places) > MOST_COPIES
+        out += [Body(part, placed(solid, spot)) for spot in (part.places[:1] if many else part.places)]
     return tuple(out)
 
 

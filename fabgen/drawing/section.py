@@ -20,9 +20,7 @@ def opened(shape: Any, direction: Direction) -> Any | None:
     """The half of the shape beyond the plane through the origin square to the view; None when nothing is left."""
     from fabgen.parts import kernel
 
-    bounds = shape.BoundingBox(1e-4)
-    low = (bounds.xmin, bounds.ymin, bounds.zmin)
-    high = (bounds.xmax, bounds.ymax, bounds.zmax)
+    low, high = rough_bounds(shape)
     axis, sign = _axis(direction)
     near, far = (low[axis], high[axis]) if sign < 0 else (-high[axis], -low[axis])
     if near >= -FLAT_MM:
@@ -35,8 +33,23 @@ def opened(shape: Any, direction: Direction) -> Any | None:
         corner_a[axis] = 0.0
     else:
         corner_b[axis] = 0.0
-    half = shape.intersect(kernel.box((*corner_a,), (*corner_b,)))
+    half = shape.intersect(kernel.box(_point(corner_a), _point(corner_b)))
     return half if half.Solids() else None
+
+
+def _point(values: Sequence[float]) -> tuple[float, float, float]:
+    return values[0], values[1], values[2]
+
+
+def rough_bounds(shape: Any) -> tuple[tuple[float, float, float], tuple[float, float, float]]:
+    """Lower and upper corner of a box round the shape, quickly; it may be a little too large."""
+    from OCP.Bnd import Bnd_Box
+    from OCP.BRepBndLib import BRepBndLib
+
+    box = Bnd_Box()
+    BRepBndLib.Add_s(shape.wrapped, box, False)
+    low, high = box.CornerMin(), box.CornerMax()
+    return (low.X(), low.Y(), low.Z()), (high.X(), high.Y(), high.Z())
 
 
 def _axis(direction: Direction) -> tuple[int, float]:

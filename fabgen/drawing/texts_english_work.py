@@ -46,7 +46,7 @@ WORK: dict[str, str] = {
     "assembly.head": "Assembly in steps",
     "assembly.intro": (
         "New parts are drawn in wide lines with their item numbers, what is there already in narrow grey ones; "
-        "close-ups leave the wall out. "
+        "close-ups leave the wall out, and of many equal screws one is drawn. "
         "Do not go on before the measurement at the end of a step is right."
     ),
     "assembly.item": "({item}) {part}, {quantity} off",

@@ -6,8 +6,8 @@ from dataclasses import replace
 from functools import cache
 
 from fabgen.checks.records import Finding
-from fabgen.drawing.pages.sheets import sheets
 from fabgen.drawing.model import Sheet
+from fabgen.drawing.pages.sheets import sheets
 from fabgen.parts.build import build_parts
 from fabgen.parts.records import Part
 from fabgen.sizing.records import Feed

@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+import os
 import shutil
 import subprocess
 import sys
 import time
+from io import BytesIO
 from pathlib import Path
 
 import numpy
@@ -33,8 +35,6 @@ def pdf(tmp_path_factory: pytest.TempPathFactory) -> Path:
 def _image(pdf: Path, page: int, dpi: int) -> numpy.ndarray:
     command = ["pdftoppm", "-r", str(dpi), "-f", str(page), "-l", str(page), "-gray", str(pdf)]
     raw = subprocess.run(command, capture_output=True, check=True).stdout
-    from io import BytesIO
-
     return numpy.asarray(Image.open(BytesIO(raw)))
 
 
@@ -62,7 +62,8 @@ def test_bars_of_true_scale_pages_are_100_mm(pdf: Path) -> None:
     px = 300 / 25.4
     sheet = book_of("wire-rolled")[page - 1]
     left, bottom = sheet.frame.x0 + 5, sheet.frame.y0 + 36
-    strip = image[int((297 - bottom - 4.2) * px) : int((297 - bottom - 2.0) * px), int((left + 10) * px) : int((left + 125) * px)]
+    rows = slice(int((297 - bottom - 4.2) * px), int((297 - bottom - 2.0) * px))
+    strip = image[rows, int((left + 10) * px) : int((left + 125) * px)]
     line = strip.sum(axis=1).argmax()
     run = numpy.flatnonzero(strip[line])
     assert (run[-1] - run[0]) / px == pytest.approx(100.5, abs=0.3)  # the line's round ends add its width of 0.5
@@ -130,6 +131,8 @@ def test_same_bytes_in_other_processes(pdf: Path, tmp_path: Path) -> None:
 @pytest.mark.slow
 @pytest.mark.parametrize("kind", KINDS)
 def test_size_and_time(kind: str, tmp_path: Path) -> None:
+    if os.getloadavg()[0] > 2.0:
+        pytest.skip("the machine is busy: times would say nothing")
     parts = parts_of(kind)
     for part in parts:
         if part.solid is not None:

@@ -14,7 +14,19 @@ from fabgen.drawing.hidden import APERTURE, FROM_GAP, GAP_PLAN, SIDE, dressed
 from fabgen.drawing.model import RED, Arc, Item, Line, bounds, number, scale_text
 from fabgen.drawing.pages import performance
 from fabgen.drawing.pages.base import Context, Draft, draft, quantity, toleranced
-from fabgen.drawing.picture import Drawn, alone, cut, cutting_plane, dimensioned, free, outside, scales_for, stacked
+from fabgen.drawing.picture import (
+    Body,
+    Drawn,
+    alone,
+    cut,
+    cutting_plane,
+    dimensioned,
+    free,
+    outside,
+    scales_for,
+    stacked,
+)
+from fabgen.drawing.section import rough_bounds
 from fabgen.drawing.texts import say, size_name
 
 WIDTH_MM = COLUMN_WIDTH_MM
@@ -44,7 +56,7 @@ def arrangement(context: Context) -> tuple[list[Block], str]:
     """Section over the view into the aperture (first angle; third angle the other way round), one scale; on two
     sheets where that allows a larger scale."""
     section = cut(say("view.section_e"), context.bodies, SIDE)
-    front = outside(say("view.aperture"), context.bodies, APERTURE)
+    front = outside(say("view.aperture"), [b for b in context.bodies if _reaches_inside(b)], APERTURE)
     room = height_of(context.paper) - 1
     first = context.feed.job.limits.projection == "first"
     for scale in scales_for((section,), WIDTH_MM, room):
@@ -64,6 +76,11 @@ def arrangement(context: Context) -> tuple[list[Block], str]:
     if left > 55 and context.isometric:
         views.insert(1, free(_isometric(context), WIDTH_MM, left))
     return views, scale_text(scale)
+
+
+def _reaches_inside(body: Body) -> bool:
+    """False for what lies wholly under the floor's inner face: the floor hides it in a view into the aperture."""
+    return body.part.process != ("buy",) or rough_bounds(body.shape)[1][2] > 0.05
 
 
 def _isometric(context: Context) -> Drawn:
