@@ -1,0 +1,148 @@
+"""Flat pattern and folded solid come from one list: held against an independent folding of the pattern, closed
+forms, and the CAD kernel's own measures."""
+
+from __future__ import annotations
+
+import math
+import random
+from pathlib import Path
+
+import numpy as np
+import pytest
+import shapely
+
+from fabgen.errors import GeometryError
+from fabgen.parts.bend_table import fold_edges_mm
+from fabgen.parts.contour import Circle, Contour, Vertex, area_mm2, rectangle, sampled
+from fabgen.parts.folding import (
+    Bend,
+    Face,
+    FoldedSheet,
+    allowance_mm,
+    box_face,
+    flat_area_mm2,
+    flat_pattern,
+    folded_solid,
+    folded_volume_mm3,
+    frames,
+)
+from tests.parts.flat_folder import fold
+
+
+def random_sheet(seed: int) -> FoldedSheet:
+    """A plate with tabs on its four edges, each narrower than its edge, some with a second fold at their end."""
+    dice = random.Random(seed)
+    t = dice.uniform(0.3, 3.0)
+    a, b = dice.uniform(40, 90), dice.uniform(40, 90)
+    corners = [(0.0, 0.0), (a, 0.0), (a, b), (0.0, b)]
+    vertices: list[Vertex] = []
+    edges: list[tuple[int, float]] = []
+    for i in range(4):
+        (x0, y0), (x1, y1) = corners[i], corners[(i + 1) % 4]
+        length = math.hypot(x1 - x0, y1 - y0)
+        low, high = dice.uniform(0.05, 0.3), dice.uniform(0.6, 0.95)
+        vertices += [Vertex(x0, y0), Vertex(x0 + low * (x1 - x0), y0 + low * (y1 - y0))]
+        edges.append((len(vertices) - 1, (high - low) * length))
+        vertices.append(Vertex(x0 + high * (x1 - x0), y0 + high * (y1 - y0)))
+
+    def bend() -> Bend:
+        angle = dice.uniform(10, 130) * dice.choice((1, -1))
+        return Bend(angle, dice.uniform(0.3, 3.0) * t, dice.uniform(0.2, 0.5))
+
+    faces = [Face("plate", Contour(tuple(vertices)), (Circle(a / 2, b / 2, 5.0),))]
+    for number, (index, width) in enumerate(edges[: dice.randint(1, 4)]):
+        first = box_face(width, dice.uniform(5, 30))
+        faces.append(Face(f"tab {number}", first, (), "plate", (0, index), bend()))
+        if dice.random() < 0.6:
+            faces.append(Face(f"end {number}", box_face(width, dice.uniform(5, 20)), (), f"tab {number}", (0, 2), bend()))
+    return FoldedSheet(tuple(faces), t)
+
+
+@pytest.mark.parametrize("block", range(10))
+def test_folding_the_pattern_gives_the_mid_surface_of_500_random_parts(block: int) -> None:
+    """50 parts a block; corners of every face, folded both ways, agree within 0.01 mm (the issue's figure)."""
+    for seed in range(50 * block, 50 * block + 50):
+        sheet = random_sheet(seed)
+        pattern = flat_pattern(sheet)
+        base = shapely.Polygon(sampled(sheet.faces[0].outline)).representative_point()
+        pieces = fold(pattern, (base.x + 4.0, base.y))
+        assert len(pieces) == len(sheet.faces)
+        lying, folded = frames(sheet, folded=False), frames(sheet)
+        for face in sheet.faces:
+            corners = [(v.x_mm, v.y_mm) for v in face.outline.vertices]
+            middle = np.mean(corners, axis=0)
+            spot = lying[face.name].at(middle[0] * 0.9, middle[1] * 0.9)
+            piece = min(pieces, key=lambda p, s=spot: p.region.distance(shapely.Point(s[:2])))
+            for x, y in corners:
+                flat_at = lying[face.name].at(x, y)
+                assert np.allclose(piece.folded(flat_at[0], flat_at[1]), folded[face.name].at(x, y), atol=0.01)
+
+
+@pytest.mark.parametrize("seed", range(40))
+def test_outline_of_the_pattern_has_the_area_of_faces_and_bend_zones(seed: int) -> None:
+    sheet = random_sheet(seed)
+    pattern = flat_pattern(sheet)
+    area = area_mm2(pattern.outline) - sum(area_mm2(h) for h in pattern.holes)
+    assert area == pytest.approx(flat_area_mm2(sheet), rel=1e-12)
+    t = sheet.thickness_mm
+    term = sum(
+        f.outline.vertices[1].x_mm * t * t * math.radians(abs(f.bend.angle_deg)) * (0.5 - f.bend.k_factor)
+        for f in sheet.faces
+        if f.bend
+    )
+    assert folded_volume_mm3(sheet) - area * t == pytest.approx(term, abs=1e-9)
+
+
+@pytest.mark.parametrize("seed", [1, 7, 23])
+def test_the_kernels_volume_differs_from_flat_area_by_the_neutral_fibre_term(seed: int) -> None:
+    sheet = random_sheet(seed)
+    solid = folded_solid(sheet)
+    assert solid.isValid()
+    assert solid.Volume() == pytest.approx(folded_volume_mm3(sheet), rel=1e-9)
+
+
+def test_cylinder_radii_read_back_from_step_are_r_and_r_plus_t(tmp_path: Path) -> None:
+    import cadquery as cq
+
+    bend = Bend(90.0, 2.0, 0.4)
+    faces = (Face("a", box_face(20.0, 30.0)), Face("b", box_face(20.0, 15.0), (), "a", (0, 2), bend))
+    solid = folded_solid(FoldedSheet(faces, 1.5))
+    path = tmp_path / "angle.step"
+    cq.exporters.export(cq.Workplane(solid), str(path))
+    back = cq.importers.importStep(str(path))
+    radii = sorted(f.toPln() if f.geomType() == "PLANE" else f._geomAdaptor().Cylinder().Radius()
+                   for f in back.faces("%CYLINDER").vals())  # fmt: skip
+    assert radii == pytest.approx([2.0, 3.5])
+
+
+def test_a_90_degree_angle_is_as_long_as_din_6935_says() -> None:
+    """SB-06: r 1, s 1, legs 50 + 50 to the outside: flat 98.0813 (DIN 6935 formula, computed apart)."""
+    bend = Bend(90.0, 1.0, 0.325)
+    leg = 50.0 - 2.0
+    faces = (Face("a", box_face(10.0, leg)), Face("b", box_face(10.0, leg), (), "a", (0, 2), bend))
+    pattern = flat_pattern(FoldedSheet(faces, 1.0))
+    assert area_mm2(pattern.outline) / 10.0 == pytest.approx(98.0813, abs=1e-4)
+    assert pattern.folds[0].deduction_mm == pytest.approx(1.9187, abs=1e-4)
+    assert fold_edges_mm(pattern, pattern.folds[0]) == pytest.approx((98.0813 / 2, 98.0813 / 2), abs=1e-3)
+
+
+def test_tabs_inside_a_hole_are_spliced_into_the_hole() -> None:
+    bend = Bend(-90.0, 1.0, 0.33)
+    hole = rectangle((20, 20), (40, 50))
+    plate = rectangle((0, 0), (80, 80))
+    # Clockwise from the lower left: (20, 20), (20, 50), (40, 50), (40, 20).
+    sheet = FoldedSheet(
+        (Face("plate", plate, (hole,)), Face("tab", box_face(20.0, 8.0), (), "plate", (1, 1), bend)), 1.0
+    )
+    pattern = flat_pattern(sheet)
+    width = allowance_mm(bend, 1.0) + 8.0
+    assert area_mm2(pattern.holes[0]) == pytest.approx(600.0 - 20.0 * width)
+    assert folded_solid(sheet).Volume() == pytest.approx(folded_volume_mm3(sheet), rel=1e-9)
+
+
+def test_faces_that_hang_on_nothing_or_on_a_wrong_edge_are_refused() -> None:
+    plate, bend = Face("plate", rectangle((0, 0), (30, 20))), Bend(90.0, 1.0, 0.4)
+    with pytest.raises(GeometryError, match="hang on"):
+        FoldedSheet((plate, Face("tab", box_face(30.0, 5.0), (), "wall", (0, 0), bend)), 1.0)
+    with pytest.raises(GeometryError, match="as wide as"):
+        FoldedSheet((plate, Face("tab", box_face(10.0, 5.0), (), "plate", (0, 0), bend)), 1.0)
