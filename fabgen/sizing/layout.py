@@ -80,7 +80,7 @@ def loop_stock(job: Job) -> LoopStock:
         return LoopStock(wire, None, None, wire, pitch, axis, max(round_to(crossing, step), step))
     sheet = job.loop.sheet_mm or 0.0
     _refuse_thick(sheet, wavelength, "loop.sheet_mm")
-    width = job.loop.strip_width_mm or round_to(max(STRIP_WIDTH_WAVELENGTHS * wavelength, _least_width_mm(sheet)), step)
+    width = job.loop.strip_width_mm or _strip_width_mm(sheet, wavelength, step)
     _refuse_thick(width, wavelength, "loop.strip_width_mm")
     inside = job.loop.bend_radius_mm
     if inside is None:
@@ -91,9 +91,16 @@ def loop_stock(job: Job) -> LoopStock:
     return LoopStock(None, sheet, width, width, pitch, inside, max(crossing, step))
 
 
-def _least_width_mm(sheet_mm: float) -> float:
-    """Narrowest bar whose foot takes the smallest screw with 1.5 thicknesses, at least 1 mm, on each side."""
-    return tables.screw(LEAST_FOOT_SCREW).clearance_medium_mm + 2 * max(1.0, 1.5 * sheet_mm)
+def _strip_width_mm(sheet_mm: float, wavelength: float, step: float) -> float:
+    """Width of ring and bars: 0.034 wavelengths, or what a foot with the smallest screw needs (1.5 thicknesses, at
+    least 1 mm, on each side of its hole)."""
+    foot = tables.screw(LEAST_FOOT_SCREW).clearance_medium_mm + 2 * max(1.0, 1.5 * sheet_mm)
+    if foot > wavelength / 10:
+        raise NoSolutionError(
+            f"sheet of {sheet_mm:g} mm needs bars {foot:.1f} mm wide for an {LEAST_FOOT_SCREW} screw in their feet, "
+            f"more than a tenth of the wavelength ({wavelength / 10:.1f} mm); use a wire loop, or thinner sheet"
+        )
+    return round_to(max(STRIP_WIDTH_WAVELENGTHS * wavelength, foot), step)
 
 
 def sleeve_crossing_mm(coax: Coax) -> float:

@@ -1,6 +1,6 @@
 """When nothing fits: the nearest job that does, found by really matching it.
 
-Depends on: errors, job, sizing.can_search, sizing.counting, sizing.layout, sizing.loop_search, sizing.trial.
+Depends on: errors, job, progress.
 """
 
 from __future__ import annotations
@@ -9,29 +9,24 @@ from collections.abc import Callable, Iterator
 from typing import Any
 
 from fabgen.errors import FabgenError
-from fabgen.fields.plan import DEFAULT_DENSITY
 from fabgen.job import Job
 from fabgen.progress import Progress
-from fabgen.sizing.can_search import find_can
-from fabgen.sizing.counting import CountingSolver
-from fabgen.sizing.layout import loop_stock
-from fabgen.sizing.loop_search import NAMED, match_nearby
-from fabgen.sizing.records import Sizes
-from fabgen.sizing.solver import Solution, Solver
-from fabgen.sizing.trial import Setting, front_place
 
 TYPICAL_WIRE, TYPICAL_SHEET = 0.019, 0.007
 """Wire and sheet over the wavelength that match well: 4 mm and 1.5 mm at 1420 MHz."""
 MOST_TRIALS = 6
 
 
-def nearest_that_works(job: Job, tell: Progress, make_solver: Callable[[Job, float], Solver]) -> str:
-    """A sentence that names the smallest change after which the job can be matched, or says that none was found."""
+def nearest_that_works(job: Job, tell: Progress, find: Callable[[Job, Progress], object]) -> str:
+    """A sentence that names the smallest change after which the job can be matched, or says that none was found.
+
+    ``find`` matches a job or raises.
+    """
     for count, (change, other) in enumerate(relaxed_jobs(job)):
         if count == MOST_TRIALS:
             break
         tell.step(f"looking for the nearest job that works: {change}")
-        if _matches(other, tell, make_solver):
+        if _matches(other, tell, find):
             return f"The nearest job that works: {change}"
     return "No nearby job that works was found; start again from a template"
 
@@ -55,14 +50,18 @@ def _relaxations(job: Job) -> Iterator[tuple[str, str, dict[str, Any]]]:
         yield "leave loop.bend_radius_mm out", "loop", {"bend_radius_mm": None}
     wavelength = job.wavelength_mm
     if job.loop.form == "wire":
-        wire = round(TYPICAL_WIRE * wavelength, 1)
+        wire = max(1.0, round(TYPICAL_WIRE * wavelength, 1))
         yield f"use wire of {wire:g} mm", "loop", {"wire_mm": wire, "bend_radius_mm": None}
     else:
         sheet = max(0.3, round(TYPICAL_SHEET * wavelength, 1))
         plain = {"sheet_mm": sheet, "strip_width_mm": None, "bend_radius_mm": None}
         yield f"use sheet of {sheet:g} mm and leave the strip's width out", "loop", plain
+    if job.loop.form == "sheet":
+        wire = max(1.0, round(TYPICAL_WIRE * wavelength, 1))
+        change = {"form": "wire", "wire_mm": wire, "sheet_mm": None, "strip_width_mm": None, "metal": "cu-etp"}
+        yield f"use a loop of {wire:g} mm wire", "loop", {**change, "temper": None, "bend_radius_mm": None}
     yield "fix no size at all", "fixed", dict.fromkeys(job.fixed.model_dump())
-    yield 'use can.make = "tube"', "can", {"make": "tube"}
+    yield 'use can.make = "turned"', "can", {"make": "turned"}
 
 
 def _with(job: Job, section: str, changes: dict[str, Any]) -> Job:
@@ -71,17 +70,9 @@ def _with(job: Job, section: str, changes: dict[str, Any]) -> Job:
     return Job.model_validate(data)
 
 
-def _matches(job: Job, tell: Progress, make_solver: Callable[[Job, float], Solver]) -> bool:
-    solver, target = CountingSolver(make_solver(job, DEFAULT_DENSITY)), job.target.frequency_mhz
-
-    def solve(sizes: Sizes) -> Solution:
-        return solver.solve(sizes, target)
-
+def _matches(job: Job, tell: Progress, find: Callable[[Job, Progress], object]) -> bool:
     try:
-        stock = loop_stock(job)
-        share = NAMED[job.wishes.selectivity]
-        can = find_can(job, stock, front_place(share), solve, tell).can
-        match_nearby(Setting(job, stock, can), share, solve)
+        find(job, tell)
     except FabgenError:
         return False
     return True

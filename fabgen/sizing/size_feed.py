@@ -18,8 +18,8 @@ from fabgen.sizing.can_search import CanFound, find_can
 from fabgen.sizing.capacitor_part import capacitor_part
 from fabgen.sizing.counting import CountingSolver
 from fabgen.sizing.field_solver import FieldSolver
-from fabgen.sizing.layout import loop_stock
-from fabgen.sizing.loop_search import NAMED, Matched
+from fabgen.sizing.layout import LoopStock, loop_stock
+from fabgen.sizing.loop_search import NAMED, Matched, nearby_places
 from fabgen.sizing.match import reflection, return_loss_db
 from fabgen.sizing.modes import bore_modes
 from fabgen.sizing.predict import predict
@@ -29,7 +29,7 @@ from fabgen.sizing.response import START, STOP
 from fabgen.sizing.self_checks import require_passed, self_checks
 from fabgen.sizing.solver import Solver, Sweep
 from fabgen.sizing.tolerances import fit_model, sensitivities
-from fabgen.sizing.trial import Setting, front_place
+from fabgen.sizing.trial import Setting
 from fabgen.sizing.wishes import choose_loop
 from fabgen.sizing.yields import Bench, model_error, yield_of
 from fabgen.stock import tables
@@ -66,7 +66,7 @@ def size_feed(job: Job, progress: Progress | None = None, make_solver: MakeSolve
     try:
         return _size(job, tell, make_solver)
     except (NoSolutionError, GeometryError) as error:
-        advice = nearest_that_works(job, tell, make_solver)
+        advice = nearest_that_works(job, tell, lambda other, quiet: find_matched(other, quiet, make_solver))
         raise NoSolutionError(f"{error}. {advice}") from error
 
 
@@ -88,14 +88,24 @@ def find_matched(job: Job, progress: Progress | None = None, make_solver: MakeSo
     """
     tell = progress or Silent()
     search = CountingSolver(make_solver(job, COARSE * DEFAULT_DENSITY))
-    stock, target = loop_stock(job), job.target.frequency_mhz
-    place = front_place(NAMED[job.wishes.selectivity])
-    can = find_can(job, stock, place, lambda sizes: search.solve(sizes, target), tell)
+    stock = loop_stock(job)
+    can = _can_for_some_place(job, stock, search, tell)
     setting = Setting(job, stock, can.can)
     tell.step("matching the loop: tap height and series capacitor")
     # A fresh solver plans its mesh on the can that was found, so the result does not depend on the search before.
     final = CountingSolver(make_solver(job, DEFAULT_DENSITY))
     return MatchedFeed(setting, choose_loop(setting, final, tell), can, search, final)
+
+
+def _can_for_some_place(job: Job, stock: LoopStock, search: CountingSolver, tell: Progress) -> CanFound:
+    """The can for the wanted selectivity, or for the nearest place of the front whose loop can be built at all."""
+    first: NoSolutionError | GeometryError | None = None
+    for place in nearby_places(NAMED[job.wishes.selectivity]):
+        try:
+            return find_can(job, stock, place, lambda sizes: search.solve(sizes, job.target.frequency_mhz), tell)
+        except (NoSolutionError, GeometryError) as error:
+            first = first or error
+    raise NoSolutionError(str(first)) from first
 
 
 def _size(job: Job, tell: Progress, make_solver: MakeSolver) -> Feed:

@@ -20,7 +20,7 @@ from tests.samples import sample_job
 from tests.sizing.toy_solver import ToySolution, ToySolver
 
 
-def job_with(form: str = "wire", make: str = "tube", frequency_mhz: float = 1420.406, **sections: Any) -> Job:
+def job_with(form: str = "wire", make: str = "turned", frequency_mhz: float = 1420.406, **sections: Any) -> Job:
     data = sample_job(form, make, frequency_mhz).model_dump()
     for section, values in sections.items():
         data[section].update(values)
@@ -231,7 +231,7 @@ def test_random_jobs_are_matched_or_refused_with_advice(data: st.DataObject) -> 
     )
     try:
         job = job_with(
-            form, data.draw(st.sampled_from(["tube", "rolled", "turned"])), frequency, loop=stock,
+            form, data.draw(st.sampled_from(["folded", "rolled", "turned"])), frequency, loop=stock,
             dish={"focal_ratio": data.draw(st.floats(0.25, 1.2))},
             cable={"coax": data.draw(st.sampled_from(["rg402", "rg405"]))},
         )  # fmt: skip

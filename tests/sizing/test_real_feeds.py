@@ -1,0 +1,91 @@
+"""The templates and common practice with the real field computation. Slow: each matches at least one feed."""
+
+from __future__ import annotations
+
+from functools import cache
+from pathlib import Path
+
+import pytest
+
+from fabgen.job import Job
+from fabgen.job_reader import read_job
+from fabgen.sizing.dish import beam, edge_taper_db, plane_cut
+from fabgen.sizing.evaluate import in_dish
+from fabgen.sizing.field_solver import FieldSolver
+from fabgen.sizing.match import reflection, return_loss_db
+from fabgen.sizing.response import gain_at
+from fabgen.sizing.size_feed import MatchedFeed, find_matched
+from tests.samples import sample_job
+
+TEMPLATES = sorted((Path(__file__).parents[2] / "templates").glob("*.toml"))
+FINE = ("hydrogen-wire",)
+"""Templates whose half-edge mesh runs in the suite; the others were held to the same limit once, see the guide."""
+
+pytestmark = pytest.mark.slow
+
+
+@cache
+def template(name: str) -> MatchedFeed:
+    return find_matched(read_job(next(p for p in TEMPLATES if p.stem == name)))
+
+
+@pytest.mark.parametrize("name", [p.stem for p in TEMPLATES])
+def test_template_is_matched(name: str) -> None:
+    found = template(name)
+    job = found.setting.job
+    assert return_loss_db(found.matched.reflection(job.target.frequency_mhz)) >= 20
+    if job.fixed.can_bore_mm is None and 0.35 <= job.dish.focal_ratio <= 0.5:
+        least = 0.72 if job.dish.focal_ratio >= 0.40 or job.can.choke else 0.68
+        assert in_dish(job, found.matched.solution).dish.aperture_efficiency >= least
+
+
+@pytest.mark.parametrize("name", FINE)
+def test_template_on_a_mesh_of_half_the_edge(name: str) -> None:
+    found = template(name)
+    job, sizes = found.setting.job, found.matched.sizes
+    target = job.target.frequency_mhz
+    fine = FieldSolver(job, 2 * found.final.edges_per_wavelength).solve(sizes, target)
+    assert return_loss_db(reflection(fine.impedance_ohm, sizes.series_capacitor_pf, target)) >= 16
+
+
+def practice_job() -> Job:
+    data = sample_job("wire", "turned").model_dump()
+    data["loop"]["wire_mm"] = 3.6
+    data["dish"]["focal_ratio"] = 0.433
+    data["fixed"]["can_bore_mm"] = 232.0
+    return Job.model_validate(data)
+
+
+def test_hydrogen_line_feed_against_common_practice() -> None:
+    # Common practice, no source: 3.6 mm copper wire in a can of about 1.1 wavelengths, edge angle 60 degrees:
+    # 56 +- 5 degrees between half powers in both planes, 10 dB or more down at 60 degrees, 30 dB or more below the
+    # target at 500 MHz, a few dB less gain and a wider pattern at 2.5 GHz.
+    job = practice_job()
+    found = find_matched(job)
+    sizes, solution, target = found.matched.sizes, found.matched.solution, job.target.frequency_mhz
+    shape = beam(solution.far_field, in_dish(job, solution).dish.power)
+    assert shape.half_power_e_deg == pytest.approx(56, abs=5)
+    assert shape.half_power_h_deg == pytest.approx(56, abs=5)
+    for plane in (0.0, 90.0):
+        angle, co, _ = plane_cut(solution.far_field, plane)
+        at = {round(a): c for a, c in zip(angle, co, strict=True)}
+        assert at[60] / at[0] <= 0.1
+    assert edge_taper_db(solution.far_field, 1.0472) <= -10
+    pf = sizes.series_capacitor_pf
+    reference = gain_at(solution, pf, target)
+    low, high = (found.final.solve(sizes, f) for f in (500.0, 2500.0))
+    assert gain_at(low, pf, 500.0) <= reference - 30
+    assert -10 <= gain_at(high, pf, 2500.0) - reference <= 0
+
+
+@pytest.mark.parametrize(
+    ("focal_ratio", "choke", "least"),
+    [(0.35, False, 0.68), (0.35, True, 0.72), (0.40, False, 0.72), (0.50, False, 0.72)],
+)
+def test_efficiency_with_a_free_can(focal_ratio: float, choke: bool, least: float) -> None:
+    # The search for G/T, the default, gives some efficiency away, so it is the harder case.
+    data = sample_job("wire", "turned", choke=choke).model_dump()
+    data["dish"]["focal_ratio"] = focal_ratio
+    job = Job.model_validate(data)
+    found = find_matched(job, make_solver=lambda j, density: FieldSolver(j, min(density, 11.2)))
+    assert in_dish(job, found.matched.solution).dish.aperture_efficiency >= least
