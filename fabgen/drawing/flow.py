@@ -10,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
-from fabgen.drawing.fonts import text_width_mm, wrap
+from fabgen.drawing.fonts import fit, text_width_mm, wrap
 from fabgen.drawing.model import (
     BLACK,
     RED,
@@ -131,9 +131,10 @@ def gap(height: float = 4.0) -> Block:
     return Block(height, ())
 
 
-def heading(text: str, size: float = 3.5) -> Block:
-    """A heading that stays with what follows."""
-    return Block(size * 2.2, (Text(0, -size * 1.35, text, size, bold=True),), stay=True)
+def heading(text: str, size: float = 3.5, width: float = COLUMN_WIDTH_MM) -> Block:
+    """A heading that stays with what follows, made smaller or cut where it is too long for the column."""
+    text, fitted = fit(tidy_text(text), width, size, bold=True)
+    return Block(size * 2.2, (Text(0, -size * 1.35, text, fitted, bold=True),), stay=True)
 
 
 def paragraph(

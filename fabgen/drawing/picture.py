@@ -42,6 +42,12 @@ class Drawn:
         return bounds(self.items)
 
 
+def shape_of(part: Part) -> Any | None:
+    """The part's solid: in the feed, or as printed for a tool that is no part of the feed."""
+    build = part.solid or part.print_solid
+    return build() if build is not None else None
+
+
 MOST_COPIES = 8  # of a bought part with more places only the first is drawn; its number stands in the parts list
 
 

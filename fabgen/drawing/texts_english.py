@@ -239,12 +239,10 @@ ENGLISH: dict[str, str] = {
     "flat.on_circle": "on {diameter}",
     "flat.hole": "Hole",
     "flat.diameter": "Diameter",
-    "flat.holes_head": "Hole table (mm, from the origin of the cutting file)",
+    "flat.holes_head": "Hole table (mm, in the cutting file)",
     "flat.corner": "Corner",
     "flat.next": "To the next",
-    "flat.corners_head": (
-        "Corner table of contour {letter} (mm, from the origin of the cutting file; R: arc turning left or right)"
-    ),
+    "flat.corners_head": "Corners of contour {letter} (mm, in the cutting file; R: arc turning left or right)",
     "fold.head": "Bend table (mm)",
     "fold.no": "Fold",
     "fold.order": "Order",
@@ -254,7 +252,7 @@ ENGLISH: dict[str, str] = {
     "fold.k": "K",
     "fold.ba": "Allowance",
     "fold.bd": "Deduction",
-    "fold.lines_head": "Fold lines (mm, from the origin of the cutting file)",
+    "fold.lines_head": "Fold lines (mm, in the cutting file)",
     "size.can_bore_mm": "bore of the can",
     "size.can_depth_mm": "depth of the can, floor to rim",
     "size.wall_mm": "wall",

@@ -54,6 +54,13 @@ WORK: dict[str, str] = {
     "assembly.tools": "Tools:",
     "assembly.join": "Joint:",
     "assembly.measure": "Measure before going on:",
+    "step.tool.title": "{n}. Forms and test bend",
+    "step.tool.do": (
+        "Print the bending forms. Cut and bend the test strip first when the sheet or the brake is new, and put the "
+        "K that it gives into the job."
+    ),
+    "step.tool.tools": "printer, brake or vice with a bending bar, calliper.",
+    "step.tool.measure": "flange of the test strip after bending, as on its page.",
     "step.body.title": "{n}. Floor and flange",
     "step.body.do": "Deburr all edges. Mark the direction of the gap (+x) and the floor's inner face on the part.",
     "step.body.tools": "fine file, countersink, calliper, marker.",

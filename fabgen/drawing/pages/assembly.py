@@ -27,6 +27,8 @@ BELOW_EYE = Direction("below", (-0.5, -0.5, -0.7071067811865476), (0.70710678118
 
 # The step that a part joins in, by the beginning of its key; the first that fits counts.
 JOINS: tuple[tuple[str, str], ...] = (
+    ("bend-strip", "tool"),
+    ("jig", "tool"),
     ("can-tube", "wall"),
     ("can-wall", "wall"),
     ("wall", "wall"),
@@ -45,7 +47,7 @@ JOINS: tuple[tuple[str, str], ...] = (
     ("floor", "body"),
     ("flange", "body"),
 )
-ORDER = ("body", "wall", "lining", "choke", "loop", "connector", "coax", "capacitor", "radome", "other")
+ORDER = ("tool", "body", "wall", "lining", "choke", "loop", "connector", "coax", "capacitor", "radome", "other")
 CLOSE_UPS = {"loop", "connector", "coax", "capacitor"}
 LEFT_OUT = {"wall", "choke", "lining"}  # the wall would only hide what the step is about
 SEEN_FROM_BELOW = {"connector"}
@@ -122,7 +124,7 @@ def picture_block(context: Context, step: Step, old: list[Body], new: list[Body]
 def _text(context: Context, n: int, step: Step) -> Block:
     numbers = items_of(context.parts)
     names = "; ".join(say("assembly.item", item=numbers[p.key], part=p.name, quantity=p.quantity) for p in step.parts)
-    blocks = [Block(1.5, ()), heading(say(_key(context, step.kind, "title"), n=n), 3.5)]
+    blocks = [Block(1.5, ()), heading(say(_key(context, step.kind, "title"), n=n), 3.5, TEXT_MM)]
     blocks += paragraph(names, 2.5, TEXT_MM)
     values = _values(context)
     for field in ("do", "tools", "join", "measure"):

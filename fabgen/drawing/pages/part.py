@@ -39,6 +39,7 @@ from fabgen.drawing.picture import (
     free,
     outside,
     scales_for,
+    shape_of,
     shifted,
     stacked,
 )
@@ -64,7 +65,7 @@ def _draft(context: Context, part: Part) -> Draft:
     strip = part.flat is not None and _slender(Drawn("", flat_view.flat_items(part.flat)))
     # On one sheet when the words leave half of it to the views, else the views first and the words as they come.
     views = room - height if height < 0.5 * room and not strip else 0.84 * room
-    pictured = part.solid is not None and part.wire is None and _tells_more(part)
+    pictured = shape_of(part) is not None and part.wire is None and _tells_more(part)
     share = 0.68 if pictured and not strip else 1.0
     blocks: list[Block] = []
     scale = ""
@@ -72,7 +73,7 @@ def _draft(context: Context, part: Part) -> Draft:
     if part.flat is not None:
         block, scale, left_over = flat_block(part.flat, views * share - 3)
         blocks += [block, gap(3)]
-    elif part.solid is not None:
+    elif shape_of(part) is not None:
         block, scale, left_over = solid_block(part, views * share - 3, context.feed.job.limits.projection)
         blocks += [block, gap(3)]
     if pictured:
@@ -105,7 +106,8 @@ def _tells_more(part: Part) -> bool:
 def _tables(part: Part) -> list[Block]:
     if part.flat is not None:
         return flat_tables(part.flat)
-    return solid_tables(part.solid()) if part.solid is not None else []
+    shape = shape_of(part)
+    return solid_tables(shape) if shape is not None else []
 
 
 def material_text(part: Part) -> str:
@@ -155,7 +157,7 @@ def _ends(flat: FlatPattern, drawn: Drawn, room: float) -> list[Block]:
 
 def solid_block(part: Part, room: float, projection: str) -> tuple[Block, str, tuple[Ask, ...]]:
     """Front view (cut open where it is hollow) and view from above, one scale, on one axis."""
-    shape = _solid(part)
+    shape = shape_of(part)
     m = solid_view.measured(shape)
     bodies = [Body(part, shape)]
     hollow = any(r.hole for r in solid_view.about_axis(m)) and m.low[1] < -1 < 1 < m.high[1]
@@ -179,13 +181,9 @@ def solid_block(part: Part, room: float, projection: str) -> tuple[Block, str, t
     return stacked(upper, lower, WIDTH_MM), scale_text(scale), (*a.left_over, *b.left_over)
 
 
-def _solid(part: Part) -> Any:
-    return part.solid() if part.solid is not None else None
-
-
 def picture(part: Part, room: float, width: float = WIDTH_MM) -> Block:
     """The part as it looks when made; not to scale."""
-    return free(outside("", [Body(part, _solid(part))], ISOMETRIC), width, room)
+    return free(outside("", [Body(part, shape_of(part))], ISOMETRIC), width, room)
 
 
 def making(part: Part) -> list[Block]:
@@ -269,11 +267,11 @@ def _bought(context: Context, parts: list[Part]) -> Draft:
     """Bought parts: a picture and the sizes to order by."""
     blocks: list[Block] = []
     for part in parts:
-        lines = [heading(f"{part.name}, {part.quantity} {say('part.off')}", 2.5)]
+        lines = [heading(f"{part.name}, {part.quantity} {say('part.off')}", 2.5, 110.0)]
         lines += paragraph(material_text(part), width=110.0)
         lines += sizes_blocks(part, 110.0)
         text = stack(lines)
-        if part.solid is None:
+        if shape_of(part) is None:
             blocks += [text, gap(3)]
             continue
         image = picture(part, max(22.0, text.height - 2), 50.0)

@@ -10,7 +10,7 @@ from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, column_height, gap, head
 from fabgen.drawing.hidden import Curve, dressed
 from fabgen.drawing.model import Arc, Item, Line, Point, Polyline, number
 from fabgen.drawing.pages.base import Context, Draft, draft
-from fabgen.drawing.picture import Drawn, free_labelled
+from fabgen.drawing.picture import Drawn, free_labelled, shape_of
 from fabgen.drawing.texts import say
 from fabgen.parts.contour import bounds_mm
 from fabgen.parts.records import Part
@@ -91,9 +91,10 @@ def cut_size(part: Part) -> str:
     if part.flat is not None:
         x0, y0, x1, y1 = bounds_mm(part.flat.outline)
         return f"{number(x1 - x0, 1)} × {number(y1 - y0, 1)} × {number(part.flat.thickness_mm)}"
-    if part.process == ("buy",) or part.solid is None:
+    shape = shape_of(part)
+    if part.process == ("buy",) or shape is None:
         return say("stock.bought")
-    box = part.solid().BoundingBox(1e-3)
+    box = shape.BoundingBox(1e-3)
     return say("stock.box", x=number(box.xlen, 1), y=number(box.ylen, 1), z=number(box.zlen, 1))
 
 
