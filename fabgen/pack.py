@@ -38,6 +38,7 @@ class Content:
     findings: tuple[Finding, ...]
     options: PackOptions
     folder: Path
+    progress: Progress
 
     def write(self, name: str, text: str) -> None:
         """A text file of the pack: UTF-8, line feeds on every system."""
@@ -89,11 +90,10 @@ def write_pack(
     parts, findings = build_content(feed)
     require_no_stop(findings, options.despite)
     with new_folder(target) as folder:
-        content = Content(feed, parts, findings, options, folder)
-        for count, group in enumerate(chosen, start=1):
+        content = Content(feed, parts, findings, options, folder, progress)
+        for group in chosen:
             progress.step(GROUPS[group].doing)
             GROUPS[group].write(content)
-            progress.share(count, len(chosen))
         files = {name: sha256_of(folder / name) for name in files_in(folder)}
         record = record_data(feed, parts, findings, files, options.despite)
         content.write(RECORD_NAME, record_text(record))
@@ -162,6 +162,7 @@ def _write_print(content: Content) -> None:
 
     for part in content.parts:
         if "print" in part.process:
+            content.progress.step(f"meshing printed parts: {part.name}")
             (content.folder / "print").mkdir(exist_ok=True)
             write_stl(part, content.folder / "print" / f"{part.key}.stl")
             write_3mf(part, content.folder / "print" / f"{part.key}.3mf")
@@ -172,9 +173,12 @@ def _write_model(content: Content) -> None:
 
     folder = content.folder / "model"
     folder.mkdir()
-    for part in content.parts:
-        if part.solid is not None:
-            write_step(part, folder / f"{part.key}.step")
+    solids = [part for part in content.parts if part.solid is not None]
+    for count, part in enumerate(solids):
+        content.progress.step(f"building solids: {part.name}")
+        content.progress.share(count, len(solids))
+        write_step(part, folder / f"{part.key}.step")
+    content.progress.step("building solids: assembly")
     write_step_assembly(content.parts, folder / "assembly.step", content.feed.job.target.name)
 
 
