@@ -2,15 +2,15 @@
 
 Seen along -x, bars cut::
 
-      bar -y      brass tube        coax core     bar +y
-       | |====================..........----.      | |
-       | |  tube, open end ->  core, overlap  \\    | |     z = tap_height
-       | |====================..........----.  |   | |
-       | |                                   | |coax| |
-     =======================================| |====|=|==  z = 0
+      bar -y      brass tube       centre conductor    bar +y
+       | |====================..........----.           | |
+       | |  PTFE, open end ->  wire, overlap  \\         | |     z = tap_height
+       | |====================..........----.  |        | |
+       | |                                  |coax|      | |
+     =======================================|====|======|=|==  z = 0
 
-``form`` "sleeve": the coax's own dielectric and centre conductor slide in a tube that lies on the other bar.
-``form`` "plates": a plate on the centre conductor and one on the bar overlap with a film between them.
+``form`` "sleeve": the coax's bare centre conductor slides in a PTFE tube in a brass tube that lies on the other
+bar. ``form`` "plates": a plate on the centre conductor and one on the bar overlap with a film between them.
 
 Depends on: errors, stock, parts.records, parts.kernel, parts.floor_plan, sizing.records.
 """
@@ -23,7 +23,7 @@ from typing import TYPE_CHECKING
 
 from fabgen.errors import GeometryError
 from fabgen.parts import kernel
-from fabgen.parts.floor_plan import coax_axis, floor_bottom_mm, leg_depth_mm
+from fabgen.parts.floor_plan import PLATE_MM, coax_axis, floor_bottom_mm, leg_depth_mm
 from fabgen.parts.records import Part
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
@@ -32,9 +32,10 @@ if TYPE_CHECKING:
     import cadquery
 
 END_GAP_MM = 1.0
-"""From the coax's bend to the open end of the tube: a blade's width to measure the overlap. Common practice."""
-PLATE_MM = 0.5
-"""Thickness of a capacitor plate. Common practice, no source."""
+"""From the wire's bend to the open end of the tube: a blade's width to measure the overlap. Common practice."""
+BEND_RATIO = 1.5
+"""Axis radius of the centre conductor's bend over its diameter: an inside radius of one diameter, soft copper."""
+PTFE_DENSITY = 2200.0
 FILM_COLOUR = (0.93, 0.93, 0.90)
 
 
@@ -56,14 +57,14 @@ def crossing_of(feed: Feed) -> Crossing:
     """Lay out the crossing. Raises GeometryError when the bars stand too close for coax and overlap."""
     sizes, coax, capacitor = feed.sizes, tables.coax(feed.job.cable.coax), feed.capacitor
     x, y = coax_axis(feed)
-    bend = coax.dielectric_mm
+    bend = BEND_RATIO * coax.inner_mm
     if sizes.tap_height_mm - bend <= 0:
         raise GeometryError(
-            f"tap_height_mm = {sizes.tap_height_mm:g} leaves no room to bend the core of {coax.key} "
-            f"({coax.dielectric_mm:g} mm thick); choose a thinner coax"
+            f"tap_height_mm = {sizes.tap_height_mm:g} leaves no room to bend the centre conductor of {coax.key} "
+            f"({coax.inner_mm:g} mm thick); choose a thinner coax"
         )
     bar = -sizes.leg_pitch_mm / 2
-    open_end = y - bend - END_GAP_MM
+    open_end = y - max(bend, coax.outer_mm / 2) - END_GAP_MM
     inner_edge = bar + sizes.leg_width_mm / 2
     if open_end <= inner_edge:
         raise GeometryError(
@@ -84,12 +85,12 @@ def crossing_of(feed: Feed) -> Crossing:
 
 
 def coax_stub(feed: Feed) -> Part:
-    """The piece of coax from the connector up the bar and across, one body: jacket, then bared core."""
+    """The piece of coax from the connector up the bar and across, one body: cable, then bare centre conductor."""
     row, metal, run = tables.coax(feed.job.cable.coax), tables.metal("cu-etp"), crossing_of(feed)
     bottom = floor_bottom_mm(feed)
     jacket = run.jacket_top_mm - bottom
     core = math.pi / 2 * run.bend_mm + (run.coax_y_mm - run.bend_mm) - run.core_end_y_mm
-    volume = math.pi / 4 * (row.outer_mm**2 * jacket + row.dielectric_mm**2 * core)
+    volume = math.pi / 4 * (row.outer_mm**2 * jacket + row.inner_mm**2 * core)
     return Part(
         key="coax-stub",
         name=f"coax stub {row.key}",
@@ -106,18 +107,18 @@ def coax_stub(feed: Feed) -> Part:
             ("cut_length_mm", round(jacket + core, 2)),
             ("overlap_mm", feed.capacitor.overlap_mm),
         ),
-        tolerance="bared length +0.5/0 mm, cut after the first measurement",
+        tolerance="bare length +0.5/0 mm, cut after the first measurement",
         finish="jacket soldered along the bar at +y",
         solid=kernel.once(lambda: _stub_solid(feed)),
         mass_kg=volume * 1e-9 * 5500.0,
-        notes=(f"bend the bared core by {run.bend_mm:g} mm radius at the tap height",),
+        notes=(f"bend the bare centre conductor over {run.bend_mm:.1f} mm radius (of its axis) at the tap height",),
     )
 
 
 def capacitor_parts(feed: Feed) -> tuple[Part, ...]:
     """The parts of the series capacitor other than the coax's core."""
     if feed.capacitor.form == "sleeve":
-        return (_sleeve(feed),)
+        return (_liner(feed), _sleeve(feed))
     return _plates(feed)
 
 
@@ -133,12 +134,40 @@ def _stub_solid(feed: Feed) -> cadquery.Shape:
     path = cq.Wire.assembleEdges(
         [cq.Edge.makeThreePointArc(start, middle, level), cq.Edge.makeLine(level, end)]
     )
-    ring = cq.Wire.makeCircle(row.dielectric_mm / 2, start, cq.Vector(0, 0, 1))
+    ring = cq.Wire.makeCircle(row.inner_mm / 2, start, cq.Vector(0, 0, 1))
     core = cq.Solid.sweep(ring, [], path)
     jacket = kernel.rod(
         (run.x_mm, run.coax_y_mm, floor_bottom_mm(feed)), start.toTuple(), row.outer_mm
     )
     return kernel.fused(jacket, core, what="coax stub")
+
+
+def _liner(feed: Feed) -> Part:
+    """The PTFE tube between wire and brass; it reaches a little out of the brass at the open end."""
+    capacitor, run = feed.capacitor, crossing_of(feed)
+    length = capacitor.overlap_max_mm + END_GAP_MM
+    start = (run.x_mm, run.open_end_y_mm + END_GAP_MM / 2, run.tap_z_mm)
+    end = (run.x_mm, start[1] - length, run.tap_z_mm)
+    volume = math.pi / 4 * (capacitor.outer_mm**2 - capacitor.inner_mm**2) * length
+    return Part(
+        key="capacitor-liner",
+        name="capacitor PTFE tube",
+        process=("buy",),
+        material="ptfe",
+        material_name="PTFE tube",
+        temper="",
+        colour=FILM_COLOUR,
+        quantity=1,
+        sizes=(
+            ("bore_mm", capacitor.inner_mm),
+            ("outer_mm", capacitor.outer_mm),
+            ("length_mm", round(length, 2)),
+        ),
+        tolerance="length +-0.5 mm; a sliding fit in the brass tube",
+        finish="cut square with a blade",
+        solid=kernel.once(lambda: kernel.tube(start, end, capacitor.outer_mm, capacitor.inner_mm)),
+        mass_kg=volume * 1e-9 * PTFE_DENSITY,
+    )
 
 
 def _sleeve(feed: Feed) -> Part:
@@ -163,7 +192,7 @@ def _sleeve(feed: Feed) -> Part:
             ("length_mm", round(length, 2)),
             ("overlap_mm", capacitor.overlap_mm),
         ),
-        tolerance="length +-0.5 mm; bore a sliding fit on the coax's dielectric",
+        tolerance="length +-0.5 mm; bore a sliding fit on the PTFE tube",
         finish="deburred, soldered along the bar at -y",
         solid=kernel.once(lambda: kernel.tube(start, end, outer, capacitor.outer_mm)),
         mass_kg=volume * 1e-9 * metal.density_kg_per_m3,
@@ -172,19 +201,24 @@ def _sleeve(feed: Feed) -> Part:
 
 
 def _plates(feed: Feed) -> tuple[Part, ...]:
-    capacitor, run = feed.capacitor, crossing_of(feed)
+    """From the bar outwards along x: plate on the bar, film, plate on the centre conductor, conductor."""
+    capacitor, run, coax = feed.capacitor, crossing_of(feed), tables.coax(feed.job.cable.coax)
     half, film = capacitor.plate_width_mm / 2, capacitor.film_mm
     low, high = run.tap_z_mm - half, run.tap_z_mm + half
-    # Films lie in planes x = const: a screwdriver from the aperture then slides the plates along y.
-    inner = run.x_mm - film / 2
+    outer = run.x_mm - coax.inner_mm / 2
+    inner = outer - PLATE_MM
+    face = feed.sizes.leg_x_mm + leg_depth_mm(feed) / 2
+    # In tenths, as sheet is sold; solder fills the rest.
+    on_bar = max(PLATE_MM, math.floor(10 * (inner - film - face) + 1e-6) / 10)
+    end = min(run.core_end_y_mm + capacitor.overlap_max_mm + END_GAP_MM, run.open_end_y_mm + END_GAP_MM)
     reach = run.open_end_y_mm - run.core_end_y_mm
     boxes = (
-        ("capacitor-plate-coax", "capacitor plate on the coax",
-         (inner + film, run.core_end_y_mm, low), (inner + film + PLATE_MM, run.open_end_y_mm, high)),
         ("capacitor-plate-bar", "capacitor plate on the bar",
-         (inner - PLATE_MM, run.far_end_y_mm, low), (inner, run.open_end_y_mm, high)),
+         (inner - film - on_bar, run.far_end_y_mm, low), (inner - film, run.open_end_y_mm, high)),
         ("capacitor-film", "capacitor film",
-         (inner, run.core_end_y_mm - 1.0, low), (inner + film, run.open_end_y_mm, high)),
+         (inner - film, run.core_end_y_mm - 1.0, low - 1.0), (inner, run.open_end_y_mm + 1.0, high + 1.0)),
+        ("capacitor-plate-coax", "capacitor plate on the coax",
+         (inner, run.core_end_y_mm, low), (outer, end, high)),
     )
     return tuple(_plate(key, name, a, b, reach) for key, name, a, b in boxes)
 
@@ -212,5 +246,5 @@ def _plate(key: str, name: str, low: kernel.Point3, high: kernel.Point3, overlap
         finish="deburred",
         thickness_mm=x,
         solid=kernel.once(lambda: kernel.box(low, high)),
-        mass_kg=x * y * z * 1e-9 * (2200.0 if film else metal.density_kg_per_m3),
+        mass_kg=x * y * z * 1e-9 * (PTFE_DENSITY if film else metal.density_kg_per_m3),
     )

@@ -34,6 +34,8 @@ FOOT_CLEARANCE_MM = 0.2
 """On the diameter of a wire's foot hole: the wire goes in and solder draws in. Common practice."""
 COAX_CLEARANCE_MM = 0.2
 """On the diameter of a hole for the coax alone. Common practice, no source."""
+PLATE_MM = 0.5
+"""Thickness of a capacitor plate. Common practice, no source."""
 MARK_MM = 2.0
 """Depth and half width of the notch that marks the gap's side. Common practice, no source."""
 HEAD_GAP_MM = 0.2
@@ -78,11 +80,14 @@ def coax_axis(feed: Feed) -> Point:
     """Axis of the coax: it touches the bar at +y on the side away from the axis of the can.
 
     The foot of a sheet loop lies on the other side. For bars of strip the coax stands near the strip's inner
-    edge, so that the crossing is as short as between round bars. The capacitor's tube, which lies on the other
-    bar in line with the coax, may be the thicker of the two and then sets the distance.
+    edge, so that the crossing is as short as between round bars. The capacitor's tube or plates, which lie on the
+    other bar in line with the coax, may be the thicker of the two and then set the distance.
     """
     sizes, coax, capacitor = feed.sizes, tables.coax(feed.job.cable.coax), feed.capacitor
-    sleeve = capacitor.outer_mm + 2 * capacitor.tube_wall_mm if capacitor.form == "sleeve" else 0.0
+    sleeve = capacitor.outer_mm + 2 * capacitor.tube_wall_mm
+    if capacitor.form != "sleeve":
+        # Two plates and the film between the bar and the centre conductor, twice as for a radius.
+        sleeve = coax.inner_mm + 2 * (2 * PLATE_MM + capacitor.film_mm)
     beside = max(coax.outer_mm, sleeve) / 2
     connector = tables.connector(feed.job.cable.connector)
     if sizes.conductor != "wire":

@@ -11,6 +11,7 @@ import pytest
 
 from fabgen.errors import GeometryError
 from fabgen.parts.build import assembly, build_parts
+from fabgen.parts.capacitor import crossing_of
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
 from tests.parts.feeds import with_cable
@@ -104,7 +105,13 @@ def test_connector_holes_are_at_the_standard_pitch() -> None:
 def test_coax_touches_its_bar_and_core_slides_in_the_tube(form: str) -> None:
     feed = sample_feed(form, "turned")
     parts = {p.key: p for p in build_parts(feed)}
-    stub, tube, loop = (parts[k].solid() for k in ("coax-stub", "capacitor-tube", "loop"))
+    stub, tube, liner, loop = (
+        parts[k].solid() for k in ("coax-stub", "capacitor-tube", "capacitor-liner", "loop")
+    )
+    for a, b in ((stub, tube), (stub, liner), (liner, tube)):
+        assert a.intersect(b).Volume() < 1e-3
+    assert stub.distance(liner) == pytest.approx(0.0, abs=1e-6)
+    assert tube.distance(liner) == pytest.approx(0.0, abs=1e-6)
     assert stub.distance(loop) < 0.75
     assert stub.intersect(loop).Volume() < 1e-3
     assert tube.distance(loop) < 0.75
@@ -126,9 +133,9 @@ def test_plate_capacitor_has_its_overlap_and_film() -> None:
 
 def test_bars_too_close_for_the_coax_are_refused_with_a_cure() -> None:
     feed = sample_feed("wire", "turned")
-    close = dataclasses.replace(feed, sizes=dataclasses.replace(feed.sizes, leg_pitch_mm=5.0))
+    close = dataclasses.replace(feed, sizes=dataclasses.replace(feed.sizes, leg_pitch_mm=4.4))
     with pytest.raises(GeometryError, match="choose a thinner coax or fix leg_pitch_mm"):
-        build_parts(close)
+        crossing_of(close)
 
 
 def test_square_flange_with_a_count_that_does_not_fit_is_refused() -> None:
