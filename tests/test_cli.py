@@ -11,6 +11,7 @@ import types
 from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
+from xml.etree import ElementTree
 
 import pytest
 
@@ -19,6 +20,7 @@ from fabgen.checks.records import Finding
 from fabgen.cli import build_parser, main
 from fabgen.errors import FabgenError, NoSolutionError, NotCoveredError, NumericalError
 from fabgen.job_reader import parse_job
+from fabgen.sizing.front import Front, FrontPoint
 from fabgen.sizing.records import SelfCheck
 from fabgen.start import ask_job, templates, with_value
 from tests.samples import sample_feed
@@ -104,6 +106,37 @@ def test_size_json_is_the_record(sizing: object, capsys: pytest.CaptureFixture[s
     assert record["fabgen_version"] == __version__
     assert record["sizes"]["conductor"] == "wire"
     assert record["files"] == {}
+
+
+def test_plots_are_written_as_svg(sizing: object, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    folder = tmp_path / "plots"
+    assert main(["size", JOB, "--quiet", "--plots", str(folder)]) == 0
+    names = ["pattern.svg", "reflection.svg", "sensitivities.svg", "smith.svg"]
+    assert sorted(path.name for path in folder.iterdir()) == names
+    for name in names:
+        assert ElementTree.parse(folder / name).getroot().tag.endswith("svg")
+    blocked = tmp_path / "file"
+    blocked.write_text("x", encoding="utf-8")
+    assert main(["size", JOB, "--quiet", "--plots", str(blocked)]) == 5
+    assert "name another after --plots" in capsys.readouterr().err
+
+
+def test_the_front_is_shown(
+    monkeypatch: pytest.MonkeyPatch, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    sizes = sample_feed().sizes
+    points = tuple(
+        FrontPoint(i / 8, sizes, (900.0, 1300.0), (-60.0 + 5 * i, -9.0 + i), 0.7, 12.0, 40.0) for i in range(9)
+    )
+    front = Front(points, ("place 0.5: no tap fits",))
+    monkeypatch.setattr("fabgen.sized.selectivity_front_of", lambda job, progress: front)
+    assert main(["size", JOB, "--front", "--quiet", "--plots", str(tmp_path)]) == 0
+    text = capsys.readouterr().out
+    assert text.count("dB/K") == 9
+    assert "Not matched: place 0.5: no tap fits" in text
+    assert [path.name for path in tmp_path.iterdir()] == ["front.svg"]
+    assert main(["size", JOB, "--front", "--quiet", "--json"]) == 0
+    assert len(json.loads(capsys.readouterr().out)["points"]) == 9
 
 
 @pytest.mark.parametrize(
