@@ -2,13 +2,14 @@
 
     python -m fabgen.checks.catalogue > fabgen/checks/CATALOGUE.md
 
-Depends on: checks (run, registry), stock.
+Depends on: checks (run, readback, registry), stock.
 """
 
 from __future__ import annotations
 
 import sys
 
+from fabgen.checks.readback import PACK_CODES, SOURCE
 from fabgen.checks.registry import GROUPS, Check, all_checks, source_text
 from fabgen.checks.run import MODULES
 from fabgen.stock import tables
@@ -29,6 +30,8 @@ def catalogue_text() -> str:
         rows = [entry for entry in entries if entry.code.startswith(f"{group}-")]
         lines += [f"## {title}", "", "| code | severity | what it checks | limits | source |", "|---|---|---|---|---|"]
         lines += [_row(entry) for entry in rows]
+        if group == "CONS":
+            lines += [f"| {code} | stop | {title} |  | {SOURCE} |" for code, (title, _) in sorted(PACK_CODES.items())]
         lines.append("")
     lines += ["## Limits", "", "| key | value | meaning | source |", "|---|---|---|---|"]
     for row in tables.all_rows("limit"):

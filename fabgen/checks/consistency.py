@@ -15,6 +15,7 @@ from collections.abc import Iterator
 from fabgen.checks.registry import Context, Fault, check
 from fabgen.checks.texts import mm
 from fabgen.parts.contour import Arc, Circle, Contour, Outline, arc_between, bounds_mm, pairs
+from fabgen.parts.floor_plan import floor_bottom_mm
 from fabgen.parts.records import Part, WirePath
 from fabgen.sizing.match import reflection, return_loss_db
 from fabgen.stock import tables
@@ -258,3 +259,21 @@ def metal_in_the_job(context: Context) -> Iterator[Fault]:
     ):
         if drawn is not None and wanted is not None and _differs(drawn, wanted, context):
             yield _fault("feed", name, drawn, wanted, f"{name} against the job's stock")
+
+
+@check("CONS-111", "stop", "consistency_mm")
+def bought_and_cut_lengths(context: Context) -> Iterator[Fault]:
+    """Lengths of tube and coax against depth and tap height: what is cut from stock has no drawing to measure."""
+    s = context.sizes
+    for part in context.parts:
+        sizes = dict(part.sizes)
+        tube = {"length_mm": s.can_depth_mm, "bore_mm": s.can_bore_mm, "wall_mm": s.wall_mm}
+        for name, wanted in tube.items() if part.key == "can-tube" else ():
+            if name in sizes and _differs(sizes[name], wanted, context):
+                yield _fault(part.key, name, sizes[name], wanted, f"{name} of the tube")
+        if "jacket_mm" in sizes:
+            # The core bends by one dielectric diameter, so the jacket ends that much under the tap.
+            bend = tables.coax(context.job.cable.coax).dielectric_mm
+            wanted = s.tap_height_mm - bend - floor_bottom_mm(context.feed)
+            if _differs(sizes["jacket_mm"], wanted, context):
+                yield _fault(part.key, "jacket_mm", sizes["jacket_mm"], wanted, "jacket of the coax up to the tap")

@@ -513,5 +513,8 @@ PAIRS: dict[str, Pair] = {
     "CONS-108": Pair(lambda: (with_sizes(base(), series_capacitor_pf=1.2), parts_of()), good(), "stop", "gives"),
     "CONS-109": Pair(lambda: (with_sizes(base(), series_capacitor_pf=1.12), parts_of()), good(), "stop", "sized for"),
     "CONS-110": Pair(lambda: (with_job(base(), loop={"wire_mm": 3.0}), parts_of()), good(), "stop", "stock"),
+    "CONS-111": Pair(
+        lambda: (with_sizes(base(), tap_height_mm=13.4), parts_of()), good(), "stop", "jacket of the coax"
+    ),
     "NOTE-101": Pair(lambda: overridden("hole_min_mm", 0.8), good(), "note", "overrides the limit"),
 }
