@@ -35,8 +35,8 @@ from fabgen.sizing.yields import Bench, model_error, yield_of
 from fabgen.stock import tables
 
 MakeSolver = Callable[[Job, float], Solver]
-COARSE = 0.7
-"""Density of the second mesh over the first: half the triangles. It serves the can search and the sensitivities,
+COARSE = 0.625
+"""Density of the second mesh over the first: four tenths of the triangles. It serves the can search and the sensitivities,
 which ask for differences, and tells how much the discretisation may still move."""
 SLOPE_SPAN = 1e-3
 METHOD = (

@@ -98,7 +98,7 @@ def test_sensitivities_against_the_closed_form(feed: Feed) -> None:
     slope = (
         (5 / feed.job.wavelength_mm)
         / by_name["can_bore_mm"].resonance_mhz_per_mm
-        * (1 + 0.002 * (1 / 0.7 - 1))
+        * (1 + 0.002 * (1 / 0.625 - 1))
     )
     pf = feed.sizes.series_capacitor_pf
     per_pf = 1e6 / (2 * math.pi * feed.job.target.frequency_mhz * pf**2)
