@@ -1,0 +1,255 @@
+"""Rolled and folded cans: holes that meet, equal flats, neutral-fibre length, seam in the E-plane."""
+
+from __future__ import annotations
+
+import math
+from functools import cache
+from pathlib import Path
+from typing import Any
+
+import pytest
+import shapely
+
+from fabgen.errors import FabgenError, GeometryError, NotCoveredError
+from fabgen.parts.can_folded import can_folded
+from fabgen.parts.can_rolled import can_rolled
+from fabgen.parts.can_sheet import can_wall, choke_wall, sheet_can
+from fabgen.parts.choke_ring import folded_ring
+from fabgen.parts.contour import Circle, sampled
+from fabgen.parts.folding import Frame, frames
+from fabgen.parts.records import Part
+from fabgen.parts.strip_path import outward
+from fabgen.parts.wall_strip import Wall, tab_holes, tab_tip_mm
+from fabgen.sizing.records import Feed
+from tests.samples import sample_feed
+
+MAKES: dict[str, dict[str, Any]] = {
+    "rolled": {"make": "rolled", "choke": True},
+    "rolled brass": {"make": "rolled", "metal": "cuzn37", "choke": True},
+    "rolled small": {"make": "rolled", "frequency_mhz": 5760.0},
+    "folded 6": {"make": "folded", "flats": 6, "choke": True},
+    "folded 8": {"make": "folded", "metal": "cuzn37", "choke": True},
+    "folded 12": {"make": "folded", "flats": 12},
+}
+QUICK = ("rolled brass", "folded 8")
+SOLIDS = [pytest.param(name, marks=() if name in QUICK else pytest.mark.slow) for name in MAKES]
+
+
+@cache
+def feed_of(name: str) -> Feed:
+    kind = dict(MAKES[name])
+    return sample_feed("wire", kind.pop("make"), **kind)
+
+
+@cache
+def parts_of(name: str) -> dict[str, Part]:
+    return {part.key: part for part in sheet_can(feed_of(name))}
+
+
+@cache
+def solid_of(name: str, key: str) -> Any:
+    build = parts_of(name)[key].solid
+    assert build is not None
+    return build()
+
+
+def cylinders(solid: Any, diameter: float) -> list[tuple[tuple[float, float, float], tuple[float, float, float]]]:
+    """Axis points and directions of the solid's cylindrical faces of that diameter."""
+    found = []
+    for face in solid.Faces():
+        if face.geomType() == "CYLINDER":
+            surface = face._geomAdaptor().Cylinder()
+            if abs(2 * surface.Radius() - diameter) < 1e-6:
+                at, along = surface.Axis().Location(), surface.Axis().Direction()
+                found.append(((at.X(), at.Y(), at.Z()), (along.X(), along.Y(), along.Z())))
+    return found
+
+
+@pytest.mark.parametrize("name", SOLIDS)
+def test_holes_of_tabs_and_floor_meet(name: str) -> None:
+    """The tabs' holes in the wall's B-rep against the circles of the floor's flat pattern, within 0.05 mm."""
+    wall = can_wall(feed_of(name))
+    flat = parts_of(name)["floor"].flat
+    assert flat is not None
+    upright = [a for a, d in cylinders(solid_of(name, "wall"), wall.tab.hole_mm) if abs(d[2]) > 0.99]
+    circles = [h for h in flat.holes if isinstance(h, Circle) and h.diameter_mm == wall.tab.hole_mm]
+    assert len({(round(x, 3), round(y, 3)) for x, y, _ in upright}) == len(wall.tabs_mm)
+    for x, y, _ in upright:
+        assert min(math.hypot(x - h.x_mm, y - h.y_mm) for h in circles) < 0.05
+
+
+@pytest.mark.parametrize("name", SOLIDS)
+def test_hole_rows_of_the_seam_meet(name: str) -> None:
+    """Each height has a hole in the inner and one in the outer layer; their axes agree within 0.05 mm."""
+    wall = can_wall(feed_of(name))
+    level = [(a, d) for a, d in cylinders(solid_of(name, "wall"), wall.seam.hole_mm) if abs(d[2]) < 0.01]
+    for z in wall.seam.heights_mm:
+        inner = _spot(wall, wall.seam.inner_row_mm)
+        outer = _spot(wall, wall.seam.outer_row_mm)
+        at_height = [(a, d) for a, d in level if abs(a[2] - z) < 1e-6]
+        near = [(a, d) for a, d in at_height if _off_axis(a, d, inner) < 0.05 and _off_axis(a, d, outer) < 0.05]
+        assert len(near) >= 2
+
+
+def _spot(wall: Wall, along: float) -> tuple[float, float]:
+    return wall.path.at(along)[0]
+
+
+def _off_axis(at: tuple[float, ...], along: tuple[float, ...], spot: tuple[float, float]) -> float:
+    return abs((spot[0] - at[0]) * along[1] - (spot[1] - at[1]) * along[0])
+
+
+@pytest.mark.parametrize("name", ["rolled", "rolled brass", "folded 6", "folded 8"])
+def test_holes_of_the_choke_ring_meet_the_cans_wall_and_the_chokes_tabs(name: str) -> None:
+    feed = feed_of(name)
+    wall, outer = can_wall(feed), choke_wall(feed)
+    assert outer is not None and feed.sizes.choke is not None
+    base = Frame((0.0, 0.0, feed.sizes.choke.floor_z_mm - feed.sizes.floor_mm / 2), (1, 0, 0), (0, 1, 0), (0, 0, 1))
+    sheet = folded_ring(feed, wall, outer)
+    at = frames(sheet, base)
+    tabs = [f for f in sheet.faces if f.parent]
+    assert len(tabs) == len(wall.holes) >= 3
+    for tab in tabs:
+        hole = tab.holes[0]
+        assert isinstance(hole, Circle)
+        x, y, z = at[tab.name].at(hole.x_mm, hole.y_mm)
+        gaps = []
+        for other in wall.holes:
+            (px, py), heading = wall.path.at(other.along_mm)
+            ox, oy = outward(heading)
+            gaps.append(math.hypot((x - px) * oy - (y - py) * ox, z - other.height_mm))
+        assert min(gaps) < 0.05
+    ring = {(round(h.x_mm, 6), round(h.y_mm, 6)) for h in sheet.faces[0].holes if isinstance(h, Circle)}
+    assert ring == {(round(h.x_mm, 6), round(h.y_mm, 6)) for h in tab_holes(outer)}
+
+
+@pytest.mark.parametrize("name", SOLIDS)
+def test_every_solid_is_sound_and_has_the_flat_patterns_volume(name: str) -> None:
+    """Mass is computed from the flat; a rolled wall differs by the circle in its tabs and reliefs."""
+    from fabgen.stock import tables
+
+    for part in parts_of(name).values():
+        if part.solid is None:
+            continue
+        solid = solid_of(name, part.key)
+        volume = part.mass_kg / tables.metal(part.material).density_kg_per_m3 * 1e9
+        assert solid.isValid()
+        assert len(solid.Solids()) == 1
+        assert solid.Volume() == pytest.approx(volume, rel=6e-4 if "wall" in part.key else 1e-9)
+
+
+@pytest.mark.parametrize("name", [pytest.param("rolled", marks=pytest.mark.slow), "rolled brass"])
+def test_cylinder_radii_read_back_from_step_are_r_and_r_plus_t(name: str, tmp_path: Path) -> None:
+    import cadquery as cq
+
+    path = tmp_path / "wall.step"
+    cq.exporters.export(cq.Workplane(solid_of(name, "wall")), str(path))
+    faces = cq.importers.importStep(str(path)).faces("%CYLINDER").vals()
+    radii = {round(f._geomAdaptor().Cylinder().Radius(), 6) for f in faces if _on_axis(f)}
+    s = feed_of(name).sizes
+    assert {s.can_bore_mm / 2, s.can_bore_mm / 2 + s.wall_mm} <= radii
+
+
+def _on_axis(face: Any) -> bool:
+    axis = face._geomAdaptor().Cylinder().Axis()
+    return math.hypot(axis.Location().X(), axis.Location().Y()) < 1e-6 and abs(axis.Direction().Z()) > 0.99
+
+
+def test_rolled_strip_is_as_long_as_its_neutral_fibre() -> None:
+    """pi (bore + t) round the middle of the sheet, plus step and overlap, from the flat's bounding box."""
+    feed = feed_of("rolled")
+    s, wall = feed.sizes, can_wall(feed)
+    flat = parts_of("rolled")["wall"].flat
+    assert flat is not None
+    length = shapely.Polygon(sampled(flat.outline)).bounds[2]
+    overlap = wall.path.stretches[-1].flat_mm
+    assert wall.path.flat_mm == pytest.approx(length, abs=1e-9)
+    # The step takes a little more than the arc that it stands over: two bends of 42 degrees over t.
+    assert length - overlap == pytest.approx(math.pi * (s.can_bore_mm + s.wall_mm), abs=1.0)
+
+
+@pytest.mark.parametrize("name", MAKES)
+def test_seam_is_in_the_e_plane(name: str) -> None:
+    """phi = 90 degrees at the strip's beginning; with six flats beside the corner that lies there."""
+    x, y = can_wall(feed_of(name)).path.at(0.0)[0]
+    off = abs(math.degrees(math.atan2(y, x)) - 90.0)
+    assert y > 0
+    assert off < (5.0 if name == "folded 6" else 1e-6)
+
+
+@pytest.mark.parametrize("name", ["folded 6", "folded 8", "folded 12"])
+def test_flats_are_equal_and_lie_at_half_the_bore(name: str) -> None:
+    feed = feed_of(name)
+    wall, s = can_wall(feed), feed.sizes
+    starts = wall.path.starts_mm()
+    folds = [i for i, p in enumerate(wall.path.stretches) if p.radius_mm and p.sweep_deg == 360.0 / s.can_flats]
+    assert len(folds) == s.can_flats
+    middles = [starts[i] + wall.path.stretches[i].flat_mm / 2 for i in folds]
+    pitches = [b - a for a, b in zip(middles, middles[1:], strict=False)]
+    assert max(pitches) - min(pitches) < 1e-9
+    for i in folds[:-1]:
+        (x, y), heading = wall.path.stretches[i + 1].at(0.5)
+        ox, oy = outward(heading)
+        assert x * ox + y * oy == pytest.approx((s.can_bore_mm + s.wall_mm) / 2)
+        # One flat's middle lies on +x, so all middles are at multiples of the corner's angle.
+        assert (math.degrees(math.atan2(oy, ox)) / (360.0 / s.can_flats)) % 1.0 == pytest.approx(0.0, abs=1e-6) or (
+            math.degrees(math.atan2(oy, ox)) / (360.0 / s.can_flats)
+        ) % 1.0 == pytest.approx(1.0, abs=1e-6)
+
+
+@pytest.mark.parametrize("name", SOLIDS)
+def test_wall_stands_on_the_floor_and_reaches_the_rim(name: str) -> None:
+    feed = feed_of(name)
+    box = solid_of(name, "wall").BoundingBox()
+    assert (box.zmin, box.zmax) == pytest.approx((0.0, feed.sizes.can_depth_mm), abs=1e-6)
+    assert tab_tip_mm(can_wall(feed)) < 0
+
+
+def test_floor_carries_marks_bolts_connector_and_drains() -> None:
+    feed = feed_of("rolled")
+    flat = parts_of("rolled")["floor"].flat
+    assert flat is not None
+    ring = shapely.Polygon(sampled(flat.outline, 0.001))
+    width = dict(parts_of("rolled")["floor"].sizes)["flange_width_mm"]
+    for x, y in ((width / 2 - 0.5, 0.0), (0.0, width / 2 - 0.5), (0.0, -width / 2 + 0.5)):
+        assert not ring.contains(shapely.Point(x, y))
+    assert ring.contains(shapely.Point(-width / 2 + 0.1, 0.0))
+    circles = [h for h in flat.holes if isinstance(h, Circle)]
+    bolts = [h for h in circles if h.diameter_mm == 4.5]
+    # M4 medium clearance hole 4.5 mm, ISO 273 (TO-16, read in a secondary page).
+    assert len(bolts) == feed.job.can.flange.count
+    assert all(shapely.Point(h.x_mm, h.y_mm).distance(ring.exterior) > h.diameter_mm / 2 + 1.5 for h in circles)
+
+
+def test_connectors_of_the_sma_table_have_their_screw_pitch_in_the_floor() -> None:
+    """SMA 4-hole flange: 8.64 mm pitch (CN-05, MIL-STD-348 drawings, partly read)."""
+    feed = sample_feed("sheet", "rolled")
+    floor = next(p for p in sheet_can(feed) if p.key == "floor")
+    assert floor.flat is not None
+    small = [(h.x_mm, h.y_mm) for h in floor.flat.holes if isinstance(h, Circle) and h.diameter_mm == 2.6]
+    gaps = sorted(math.dist(a, b) for i, a in enumerate(small) for b in small[i + 1:])
+    assert gaps[:2] == pytest.approx([8.64] * 2, abs=0.01)
+
+
+@pytest.mark.parametrize(
+    ("make", "sizes", "error"),
+    [
+        ("rolled", {"can_depth_mm": 12.0}, GeometryError),
+        ("rolled", {"can_flats": 8}, GeometryError),
+        ("folded", {"can_flats": 0}, GeometryError),
+        ("folded", {"can_bore_mm": 24.0}, FabgenError),
+    ],
+)
+def test_cans_that_cannot_be_made_are_refused(make: str, sizes: dict[str, float], error: type[Exception]) -> None:
+    import dataclasses
+
+    feed = sample_feed("wire", make)
+    feed = dataclasses.replace(feed, sizes=dataclasses.replace(feed.sizes, **sizes))
+    with pytest.raises(error):
+        (can_rolled if make == "rolled" else can_folded)(feed)
+
+
+def test_a_flange_of_another_thickness_is_not_covered() -> None:
+    feed = sample_feed("wire", "rolled", flange={"thickness_mm": 4.0})
+    with pytest.raises(NotCoveredError, match="one sheet"):
+        can_rolled(feed)

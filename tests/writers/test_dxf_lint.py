@@ -1,0 +1,185 @@
+"""The linter finds each seeded fault and has nothing to say about sound files."""
+
+from __future__ import annotations
+
+import io
+from collections.abc import Callable
+from typing import Any
+
+import ezdxf
+import pytest
+
+from fabgen.errors import GeometryError
+from fabgen.parts.contour import Circle, FoldLine, rectangle
+from fabgen.parts.records import FlatPattern
+from fabgen.writers.dxf import dxf_text
+from fabgen.writers.dxf_lint import lint_dxf, refuse_faults
+
+PLATE = FlatPattern(
+    rectangle((0, 0), (60, 40), 3.0),
+    (Circle(15, 15, 4.0), rectangle((30, 10), (40, 20), 1.0)),
+    (FoldLine(1, (50, 0), (50, 40), 90.0, 1.0, 0.33, 2.0, 2.0, 1),),
+    1.0,
+)
+
+
+def document(version: str = "R2010") -> Any:
+    return ezdxf.read(io.StringIO(dxf_text(PLATE, version, folds=True)))  # type: ignore[arg-type]
+
+
+def text(doc: Any) -> str:
+    stream = io.StringIO()
+    doc.write(stream)
+    return stream.getvalue()
+
+
+def outline(doc: Any) -> Any:
+    return next(e for e in doc.modelspace() if e.dxf.layer == "OUTLINE")
+
+
+def open_contour(doc: Any) -> None:
+    outline(doc).closed = False
+
+
+def loose_line(doc: Any) -> None:
+    doc.modelspace().add_line((5, 5), (9, 9), dxfattribs={"layer": "HOLES"})
+
+
+def doubled_edge(doc: Any) -> None:
+    doc.modelspace().add_entity(outline(doc).copy())
+
+
+def doubled_circle(doc: Any) -> None:
+    doc.modelspace().add_circle((15, 15), 2.0, dxfattribs={"layer": "HOLES"})
+
+
+def spline(doc: Any) -> None:
+    doc.modelspace().add_spline([(5, 5), (7, 9), (9, 5)], dxfattribs={"layer": "HOLES"})
+
+
+def ellipse(doc: Any) -> None:
+    doc.modelspace().add_ellipse((20, 30), (3, 0), 0.5, dxfattribs={"layer": "HOLES"})
+
+
+def zero_length(doc: Any) -> None:
+    points = list(outline(doc).get_points("xyb"))
+    outline(doc).set_points([points[0][:2] + (0.0,), *points], format="xyb")
+
+
+def text_on_cut_layer(doc: Any) -> None:
+    doc.modelspace().add_text("LOOP", dxfattribs={"layer": "OUTLINE"})
+
+
+def text_on_layer_0(doc: Any) -> None:
+    doc.modelspace().add_text("LOOP")
+
+
+def wrong_units(doc: Any) -> None:
+    doc.header["$INSUNITS"] = 1
+
+
+def self_crossing(doc: Any) -> None:
+    doc.modelspace().add_lwpolyline([(20, 30), (26, 36), (26, 30), (20, 36)], close=True, dxfattribs={"layer": "HOLES"})
+
+
+def hole_outside(doc: Any) -> None:
+    doc.modelspace().add_circle((80, 10), 2.0, dxfattribs={"layer": "HOLES"})
+
+
+def hole_over_the_edge(doc: Any) -> None:
+    doc.modelspace().add_circle((59, 20), 2.0, dxfattribs={"layer": "HOLES"})
+
+
+def holes_that_meet(doc: Any) -> None:
+    doc.modelspace().add_circle((18, 15), 2.0, dxfattribs={"layer": "HOLES"})
+
+
+def hole_in_hole(doc: Any) -> None:
+    doc.modelspace().add_circle((15, 15), 1.0, dxfattribs={"layer": "HOLES"})
+
+
+def fold_past_the_edge(doc: Any) -> None:
+    doc.modelspace().query("LINE")[0].dxf.end = (50, 45)
+
+
+def fold_short_of_the_edge(doc: Any) -> None:
+    doc.modelspace().query("LINE")[0].dxf.end = (50, 39)
+
+
+def fold_on_cut_layer(doc: Any) -> None:
+    doc.modelspace().query("LINE")[0].dxf.layer = "OUTLINE"
+
+
+def two_parts(doc: Any) -> None:
+    doc.modelspace().add_circle((100, 10), 5.0, dxfattribs={"layer": "OUTLINE"})
+
+
+def big_arc(doc: Any) -> None:
+    doc.modelspace().add_lwpolyline([(20, 30, 1.0), (26, 30, 1.0)], format="xyb", close=True, dxfattribs={"layer": "HOLES"})
+
+
+def lifted(doc: Any) -> None:
+    outline(doc).dxf.elevation = 2.0
+
+
+def mirrored(doc: Any) -> None:
+    doc.modelspace().query("CIRCLE")[0].dxf.extrusion = (0, 0, -1)
+
+
+def border_in_paper_space(doc: Any) -> None:
+    doc.layout("Layout1").add_line((0, 0), (10, 0))
+
+
+def block(doc: Any) -> None:
+    doc.blocks.new("B").add_circle((0, 0), 1)
+    doc.modelspace().add_blockref("B", (5, 5), dxfattribs={"layer": "HOLES"})
+
+
+def line_width(doc: Any) -> None:
+    outline(doc).dxf.const_width = 0.5
+
+
+def moved_contour(doc: Any) -> None:
+    doc.modelspace().query("CIRCLE")[0].dxf.radius = 2.01
+
+
+FAULTS: list[tuple[Callable[[Any], None], str]] = [
+    (open_contour, "open contour"), (loose_line, "open contour"), (doubled_edge, "doubled"),
+    (doubled_circle, "doubled"), (spline, "entity"), (ellipse, "entity"), (zero_length, "short segment"),
+    (text_on_cut_layer, "entity"), (text_on_layer_0, "layer"), (wrong_units, "units"),
+    (self_crossing, "self-crossing"), (hole_outside, "hole outside"), (hole_over_the_edge, "hole outside"),
+    (holes_that_meet, "crossing"), (hole_in_hole, "crossing"), (fold_past_the_edge, "fold line"),
+    (fold_short_of_the_edge, "fold line"), (fold_on_cut_layer, "open contour"), (two_parts, "outline"),
+    (big_arc, "bulge"), (lifted, "flat"), (mirrored, "flat"), (border_in_paper_space, "paper space"),
+    (block, "entity"), (line_width, "width"), (moved_contour, "model"),
+]  # fmt: skip
+
+
+@pytest.mark.parametrize(("spoil", "rule"), FAULTS, ids=[f.__name__ for f, _ in FAULTS])
+def test_each_seeded_fault_is_found(spoil: Callable[[Any], None], rule: str) -> None:
+    doc = document()
+    spoil(doc)
+    assert rule in {fault.rule for fault in lint_dxf(text(doc), PLATE)}
+    with pytest.raises(GeometryError, match="not fit to be cut"):
+        refuse_faults(text(doc), "plate", PLATE)
+
+
+@pytest.mark.parametrize("version", ["R2010", "R12"])
+@pytest.mark.parametrize("folds", [False, True])
+def test_sound_files_pass(version: str, folds: bool) -> None:
+    assert lint_dxf(dxf_text(PLATE, version, folds), PLATE) == ()  # type: ignore[arg-type]
+
+
+def test_wrong_extents_and_garbage_are_found() -> None:
+    doc = document()
+    doc.modelspace().reset_extents((1, 1, 0), (2, 2, 0))
+    assert {f.rule for f in lint_dxf(text(doc), PLATE)} == {"extents"}
+    assert lint_dxf("not a drawing")[0].rule == "unreadable"
+
+
+def test_many_faults_are_counted_in_one_message() -> None:
+    doc = document()
+    for i in range(9):
+        doc.modelspace().add_line((i, 1), (i, 2), dxfattribs={"layer": "HOLES"})
+    with pytest.raises(GeometryError, match="and 3 more"):
+        refuse_faults(text(doc), "plate")
