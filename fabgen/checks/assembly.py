@@ -9,7 +9,7 @@ import math
 from collections.abc import Iterator
 from itertools import combinations
 
-from fabgen.checks.registry import Context, Fault, check, source_text
+from fabgen.checks.registry import Context, Fault, check, row_source, source_text
 from fabgen.checks.texts import mm, up
 from fabgen.errors import GeometryError
 from fabgen.parts.contour import sampled
@@ -177,7 +177,8 @@ def metal_takes_solder(context: Context) -> Iterator[Fault]:
        "anodic_difference_indoor_v")  # fmt: skip
 def dissimilar_metals(context: Context) -> Iterator[Fault]:
     """Metals that touch, by the difference of their anodic indices, against the environment."""
-    most = context.limit(f"anodic_difference_{context.job.limits.environment}_v")
+    key = f"anodic_difference_{context.job.limits.environment}_v"
+    most = context.limit(key)
     for part, first, second in _contacts(context):
         difference = abs(first[1] - second[1])
         if difference <= most + 1e-9:
@@ -190,6 +191,7 @@ def dissimilar_metals(context: Context) -> Iterator[Fault]:
             message=f"{first[0]} on {second[0]}: {difference:.2f} V apart, {most:.2f} V allowed "
             f"{_PLACES[context.job.limits.environment]}; the lesser metal corrodes and the joint becomes a diode",
             cure=f"{_barrier(first, second, most)}, and seal the joint with varnish or grease",
+            source=row_source(tables.limit(key, context.job.overrides)),
         )
 
 
