@@ -48,8 +48,10 @@ def test_every_process_has_a_text_and_a_table(form: str, make: str) -> None:
 def test_a_laser_note_says_all_that_a_shop_asks() -> None:
     feed = sample_feed("sheet", "tube")
     note = order_notes(feed, flat_parts(feed))["laser.txt"]
-    for words in ("CuZn37 (CW508L), EN 1652, temper R350", "1.5 mm", "ISO 9013 class 1", "ISO 2768-m", "nominal, no kerf",
-                  "pierces:", "deburr:", "revision A", "cut/loop_cuzn37_r350_1.5mm_qty1_reva.dxf", "quantity:   1"):  # fmt: skip
+    for words in (
+        "CuZn37 (CW508L), EN 1652, temper R350", "1.5 mm", "ISO 9013 class 1", "ISO 2768-m", "nominal, no kerf",
+        "pierces:", "deburr:", "revision A", "cut/loop_cuzn37_r350_1.5mm_qty1_reva.dxf", "quantity:   1",
+    ):  # fmt: skip
         assert words in note
     assert "cost" not in note
     assert "estimate" not in note.lower()
