@@ -114,7 +114,7 @@ def test_same_bytes_in_other_processes_and_twice_in_one(tmp_path: Path) -> None:
         assert file_hashes(folder) == first
 
 
-@pytest.mark.parametrize("part", PARTS, ids=lambda p: p.key)
+@pytest.mark.parametrize("part", [p for p in PARTS if p.solid is not None], ids=lambda p: p.key)
 def test_step_of_a_part_is_one_valid_solid_with_name_and_colour(part: Part, tmp_path: Path) -> None:
     path = tmp_path / "part.step"
     write_step(part, path)
