@@ -8,11 +8,11 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, beside, framed, gap, heading, paragraph, stack
-from fabgen.drawing.hidden import Curve, Direction, dressed, look
+from fabgen.drawing.hidden import ISOMETRIC, Curve, Direction, dressed, look
 from fabgen.drawing.model import Item, bounds, number
 from fabgen.drawing.pages.base import Context, Draft, draft
 from fabgen.drawing.pages.stock import item_leaders, items_of
-from fabgen.drawing.picture import Body, Drawn, close_up
+from fabgen.drawing.picture import Body, Drawn, close_up, free, outside, shape_of
 from fabgen.drawing.texts import has, say
 from fabgen.parts.records import Part
 
@@ -97,8 +97,17 @@ def drafts(context: Context) -> list[Draft]:
 
 def _step_block(context: Context, n: int, step: Step, old: list[Body], new: list[Body]) -> Block:
     text = _text(context, n, step)
-    picture = picture_block(context, step, old, new) if new else Block(1.0, ())
+    picture = picture_block(context, step, old, new) if new else _forms(step)
     return framed(beside((picture, text), (1.0, PICTURE_MM + 4.0)))
+
+
+def _forms(step: Step) -> Block:
+    """Forms and strips that are no part of the feed, one under the other."""
+    shapes = [(p, shape_of(p)) for p in step.parts]
+    found = [(p, s) for p, s in shapes if s is not None][:3]
+    high = PICTURE_HEIGHT_MM / max(len(found), 1)
+    pictures = [free(outside("", [Body(p, s)], ISOMETRIC), PICTURE_MM, high) for p, s in found]
+    return stack(pictures) if pictures else Block(1.0, ())
 
 
 def picture_block(context: Context, step: Step, old: list[Body], new: list[Body]) -> Block:

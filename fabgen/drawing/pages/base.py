@@ -66,5 +66,5 @@ def quantity(key: str, value: object) -> str:
     units = {"_mm": "mm", "_mhz": "MHz", "_deg": "°", "_ohm": "Ω", "_db": "dB", "_dbi": "dBi", "_pf": "pF", "_k": "K"}
     if isinstance(value, float | int) and not isinstance(value, bool):
         unit = next((u for tail, u in units.items() if key.endswith(tail)), "")
-        return f"{number(float(value), 3 if unit == 'pF' else 2)} {unit}".strip()
+        return f"{number(float(value), 2 if unit not in {'pF', ''} else 3)} {unit}".strip()
     return str(value)

@@ -6,6 +6,7 @@ Depends on: drawing, checks.records.
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 
 from fabgen.drawing.dimension import DIAMETER, Ask, along_x, along_y, leader
 from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, gap, heading, paragraph, table
@@ -126,16 +127,20 @@ def detail(context: Context) -> list[Block]:
     things = [b for b in context.bodies if b.part.key.split("-")[0] in {"loop", "coax", "capacitor"}]
     if not things:
         return []
+    return [loop_views(context, things, 0.86 * height_of(context.paper))[0], gap(3)]
+
+
+def loop_views(context: Context, things: Sequence[Body], room: float) -> tuple[Block, str]:
+    """The bodies from the gap's side and from above, with the sizes of loop and bars."""
     side = outside(say("view.gap_side"), things, FROM_GAP)
     plan = outside(say("view.loop_above"), things, GAP_PLAN)
-    room = 0.86 * height_of(context.paper)
     for scale in scales_for((side, plan), WIDTH_MM, room):
         a = dimensioned(side, side_asks(context, side), scale, _floor_line)
         b = dimensioned(plan, plan_asks(context), scale, _cross)
         if max(a.box.width, b.box.width) <= WIDTH_MM and a.box.height + b.box.height + 8 <= room:
             break
     upper, lower = (a, b) if context.feed.job.limits.projection == "first" else (b, a)
-    return [stacked(upper, lower, WIDTH_MM), gap(3)]
+    return stacked(upper, lower, WIDTH_MM), scale_text(scale)
 
 
 def side_asks(context: Context, drawn: Drawn) -> list[Ask]:

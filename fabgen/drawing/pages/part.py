@@ -28,6 +28,7 @@ from fabgen.drawing.flow import (
 from fabgen.drawing.hidden import ABOVE, GAP, ISOMETRIC
 from fabgen.drawing.model import SCALES, Box, Item, number, scale_text
 from fabgen.drawing.pages.base import Context, Draft, draft, quantity
+from fabgen.drawing.pages.general import loop_views
 from fabgen.drawing.picture import (
     Body,
     Drawn,
@@ -72,6 +73,9 @@ def _draft(context: Context, part: Part) -> Draft:
     left_over: tuple[Ask, ...] = ()
     if part.flat is not None:
         block, scale, left_over = flat_block(part.flat, views * share - 3)
+        blocks += [block, gap(3)]
+    elif part.wire is not None and part.solid is not None:
+        block, scale = loop_views(context, [Body(part, part.solid())], views * share - 3)
         blocks += [block, gap(3)]
     elif shape_of(part) is not None:
         block, scale, left_over = solid_block(part, views * share - 3, context.feed.job.limits.projection)
