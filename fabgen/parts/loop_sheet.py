@@ -71,23 +71,36 @@ class TabPlan:
     far_y_mm: float
     bar_mm: float
     foot_mm: float
+    foot_width_mm: float
     foot_hole_mm: float
     hole_from_bend_mm: float
     screw: str
 
 
+def _pad_mm(screw: Screw, thickness_mm: float) -> float:
+    """Width of a foot about that screw: 1.5 t, and at least 1 mm, of sheet on each side of its hole."""
+    return screw.clearance_medium_mm + 2 * max(1.0, 1.5 * thickness_mm)
+
+
 def foot_screw(feed: Feed) -> Screw:
-    """Largest screw whose hole leaves 1.5 t, and at least 1 mm, of the bar's width on each side."""
-    thickness = feed.sizes.sheet_mm or 0.0
+    """Largest screw that the bar's width takes; for narrower bars M2, in a foot wider than its bar.
+
+    Raises GeometryError when the two feet would meet.
+    """
+    s = feed.sizes
+    thickness = s.sheet_mm or 0.0
     for key in FOOT_SCREWS:
         screw = tables.screw(key)
-        if screw.clearance_medium_mm + 2 * max(1.0, 1.5 * thickness) <= feed.sizes.leg_width_mm:
+        if _pad_mm(screw, thickness) <= s.leg_width_mm:
             return screw
-    least = tables.screw(FOOT_SCREWS[-1]).clearance_medium_mm + 2 * max(1.0, 1.5 * thickness)
-    raise GeometryError(
-        f"bars {feed.sizes.leg_width_mm:g} mm wide take no foot screw; make loop.strip_width_mm at least "
-        f"{math.ceil(least * 10) / 10:g} mm, or use a wire loop"
-    )
+    least = tables.screw(FOOT_SCREWS[-1])
+    room = s.leg_pitch_mm - max(1.0, thickness)
+    if _pad_mm(least, thickness) > room:
+        raise GeometryError(
+            f"bars {s.leg_width_mm:g} mm wide at a pitch of {s.leg_pitch_mm:g} mm take no foot screw; make the pitch "
+            f"{_pad_mm(least, thickness) + max(1.0, thickness):.1f} mm, use thinner sheet, or use a wire loop"
+        )
+    return least
 
 
 def tab_plan(feed: Feed) -> TabPlan:
@@ -116,8 +129,8 @@ def tab_plan(feed: Feed) -> TabPlan:
     foot = from_bend + max(hole / 2 + 1.5 * t, screw.head_mm / 2)
     half = s.leg_width_mm / 2
     return TabPlan(
-        sign, s.leg_x_mm - sign * mid, s.leg_pitch_mm / 2 - half, s.leg_pitch_mm / 2 + half, bar, foot, hole,
-        from_bend, screw.key,
+        sign, s.leg_x_mm - sign * mid, s.leg_pitch_mm / 2 - half, s.leg_pitch_mm / 2 + half, bar, foot,
+        max(s.leg_width_mm, _pad_mm(screw, t)), hole, from_bend, screw.key,
     )
 
 
@@ -210,8 +223,7 @@ def folded_loop(feed: Feed) -> FoldedSheet:
     _refuse_crossing(feed, plan, zone)
     ring = _ring(feed, plan, zone)
     out = Bend(90.0 if plan.sign < 0 else -90.0, r, k, 1)
-    corner = min(2.0, width / 4)
-    foot = rounded([(0, 0, 0), (width, 0, 0), (width, plan.foot_mm, corner), (0, plan.foot_mm, corner)])
+    foot = _foot(feed, plan)
     hole = Circle(width / 2, plan.hole_from_bend_mm, plan.foot_hole_mm)
     faces = [Face("ring", ring)]
     root, near, far = plan.root_x_mm, plan.near_y_mm, plan.far_y_mm
@@ -223,6 +235,23 @@ def folded_loop(feed: Feed) -> FoldedSheet:
     return FoldedSheet(tuple(faces), t)
 
 
+def _foot(feed: Feed, plan: TabPlan) -> Contour:
+    """Outline of a foot: as wide as its bar, or widening at 45 degrees to the pad that its screw needs."""
+    width, more = feed.sizes.leg_width_mm, (plan.foot_width_mm - feed.sizes.leg_width_mm) / 2
+    end, inner = min(2.0, width / 4), feed.job.limits.corner_radius_mm
+    low, high = (-more, plan.foot_mm, end), (width + more, plan.foot_mm, end)
+    if more < 0.05:
+        return rounded([(0, 0, 0), (width, 0, 0), high, low])
+    # The shoulders begin clear of the bend by the roundings that they need.
+    rise = 2 * inner * math.tan(math.pi / 8) + 0.2
+    return rounded(
+        [
+            (0, 0, 0), (width, 0, 0), (width, rise, inner), (width + more, rise + more, inner), high, low,
+            (-more, rise + more, inner), (0, rise, inner),
+        ]
+    )  # fmt: skip
+
+
 def _refuse_crossing(feed: Feed, plan: TabPlan, zone_mm: float) -> None:
     """A tab that leaves the ring inwards must end before the ring's far side."""
     if plan.sign > 0:
@@ -231,7 +260,8 @@ def _refuse_crossing(feed: Feed, plan: TabPlan, zone_mm: float) -> None:
     inner = (s.loop_diameter_mm - (s.strip_width_mm or 0.0)) / 2
     web = max(1.0, s.sheet_mm or 0.0)
     need = 2 * zone_mm + plan.bar_mm + plan.foot_mm
-    have = plan.root_x_mm + math.sqrt(max(0.0, inner**2 - plan.far_y_mm**2)) - web
+    outside = plan.far_y_mm + (plan.foot_width_mm - s.leg_width_mm) / 2
+    have = plan.root_x_mm + math.sqrt(max(0.0, inner**2 - outside**2)) - web
     if need > have:
         raise GeometryError(
             f"a tab inward needs {need:.1f} mm of flat length but the ring has {have:.1f} mm of room; "
@@ -253,7 +283,9 @@ def loop_sheet(feed: Feed) -> Part:
         ("leg_width_mm", s.leg_width_mm),
         ("leg_bend_radius_mm", s.leg_bend_radius_mm),
         ("foot_mm", plan.foot_mm),
+        ("foot_width_mm", plan.foot_width_mm),
         ("foot_hole_mm", plan.foot_hole_mm),
+        ("hole_from_bend_mm", plan.hole_from_bend_mm),
     )
     return metal_part(
         "loop",

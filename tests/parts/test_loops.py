@@ -109,13 +109,27 @@ def test_the_relief_reaches_past_the_fold_by_r_plus_t_and_leaves_the_band() -> N
     assert max(2 * arc.radius_mm for arc in slots if arc.radius_mm < 2) >= (feed.sizes.sheet_mm or 0) - 1e-9
 
 
+def test_narrow_bars_get_feet_wide_enough_for_their_screw() -> None:
+    """M2 medium clearance hole 2.4 mm (ISO 273, TO-15), 1.5 t of sheet on each side (SB-44)."""
+    feed = sheet_feed(leg_width_mm=4.0)
+    part = loop_sheet(feed)
+    assert dict(part.sizes)["foot_width_mm"] == pytest.approx(2.4 + 2 * 1.5 * 1.5)
+    assert part.flat is not None and part.solid is not None
+    polygon = shapely.Polygon(sampled(part.flat.outline, 0.001))
+    assert polygon.is_valid
+    for hole in part.flat.holes:
+        assert isinstance(hole, Circle)
+        assert polygon.exterior.distance(shapely.Point(hole.x_mm, hole.y_mm)) >= 1.2 + 1.5 * 1.5 - 0.01
+    assert part.solid().Volume() == pytest.approx(folded_volume_mm3(folded_loop(feed)), rel=1e-9)
+
+
 @pytest.mark.parametrize(
     ("feed", "words"),
     [
         (sheet_feed(loop_height_mm=6.0), "straight bar"),
         (sheet_feed(loop_height_mm=60.0), "tabs outward"),
         (sheet_feed("inward", -5.0), "wider strip"),
-        (sheet_feed(leg_width_mm=3.0), "wire loop"),
+        (sheet_feed(leg_width_mm=3.0, leg_pitch_mm=6.0), "wire loop"),
     ],
 )
 def test_sheet_loops_that_cannot_be_made_are_refused_with_a_cure(feed: Feed, words: str) -> None:
