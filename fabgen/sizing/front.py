@@ -1,6 +1,6 @@
 """The selectivity front: rejection of the neighbours against efficiency, each point matched.
 
-Depends on: job, sizing.counting, sizing.evaluate, sizing.loop_search, sizing.match, sizing.wishes.
+Depends on: job, fields, the other modules of sizing.
 """
 
 from __future__ import annotations
@@ -8,16 +8,19 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from fabgen.errors import GeometryError, NoSolutionError
+from fabgen.fields.plan import DEFAULT_DENSITY
 from fabgen.job import Job
 from fabgen.progress import Progress, Silent
 from fabgen.sizing.can_search import find_can
 from fabgen.sizing.counting import CountingSolver
 from fabgen.sizing.evaluate import in_dish
+from fabgen.sizing.field_solver import FieldSolver
 from fabgen.sizing.layout import loop_stock
 from fabgen.sizing.loop_search import NAMED, match_at
 from fabgen.sizing.match import return_loss_db
 from fabgen.sizing.records import Sizes
-from fabgen.sizing.solver import Solution, Solver
+from fabgen.sizing.size_feed import COARSE, MakeSolver
+from fabgen.sizing.solver import Solution
 from fabgen.sizing.trial import Setting, front_place
 from fabgen.sizing.wishes import relative_gain_db
 
@@ -48,14 +51,15 @@ class Front:
 
 
 def selectivity_front(
-    job: Job, solver: Solver, progress: Progress | None = None, points: int = POINTS
+    job: Job, progress: Progress | None = None, make_solver: MakeSolver = FieldSolver, points: int = POINTS
 ) -> Front:
     """Walk from sharp to broad in ``points`` places, with the can found for the job's own wish kept.
 
+    ``make_solver`` like for ``size_feed``. The coarse mesh of the can search serves here too, since a front compares.
     Raises ``NoSolutionError`` when no place can be matched.
     """
     tell = progress or Silent()
-    counting, target = CountingSolver(solver), job.target.frequency_mhz
+    counting, target = CountingSolver(make_solver(job, COARSE * DEFAULT_DENSITY)), job.target.frequency_mhz
 
     def solve(sizes: Sizes) -> Solution:
         return counting.solve(sizes, target)

@@ -33,7 +33,7 @@ def front_svg(front: Front) -> str:
         axes.set_xlabel("rejection relative to the target (dB)")
         axes.set_ylabel("aperture efficiency (%)")
         axes.grid(visible=True, linewidth=0.4, alpha=0.6)
-        axes.margins(0.08, 0.12)
+        axes.margins(0.08, 0.15)
         axes.legend(loc="best", frameon=False)
         text = io.StringIO()
         figure.savefig(text, format="svg", metadata={"Date": None, "Creator": None})
@@ -42,4 +42,5 @@ def front_svg(front: Front) -> str:
 
 def _label_ends(axes: Any, rejection: list[float], efficiency: list[float]) -> None:
     for at, word in ((0, "sharp"), (-1, "broad")):
-        axes.annotate(word, (rejection[at], efficiency[at]), xytext=(0, 6), textcoords="offset points", ha="center")
+        place = (rejection[at], efficiency[at])
+        axes.annotate(word, place, xytext=(0, -13), textcoords="offset points", ha="center")

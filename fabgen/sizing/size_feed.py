@@ -28,7 +28,7 @@ from fabgen.sizing.relax import nearest_that_works
 from fabgen.sizing.response import START, STOP
 from fabgen.sizing.self_checks import require_passed, self_checks
 from fabgen.sizing.solver import Solver, Sweep
-from fabgen.sizing.tolerances import fit_model, sensitivities
+from fabgen.sizing.tolerances import bench_loss_db, fit_model, sensitivities
 from fabgen.sizing.trial import Setting
 from fabgen.sizing.wishes import choose_loop
 from fabgen.sizing.yields import Bench, model_error, yield_of
@@ -36,8 +36,8 @@ from fabgen.stock import tables
 
 MakeSolver = Callable[[Job, float], Solver]
 COARSE = 0.625
-"""Density of the second mesh over the first: four tenths of the triangles. It serves the can search and the sensitivities,
-which ask for differences, and tells how much the discretisation may still move."""
+"""Density of the second mesh over the first: four tenths of the triangles. It serves the can search and the
+sensitivities, which ask for differences, and tells how much the discretisation may still move."""
 SLOPE_SPAN = 1e-3
 METHOD = (
     "electric-field integral equation, edge-based functions on triangles, Galerkin; can eliminated once per "
@@ -163,7 +163,7 @@ def _second_mesh(job: Job, matched: Matched, coarse: Solver, slope: float) -> _S
     second = reflection(other.impedance_ohm, sizes.series_capacitor_pf, target)
     return _SecondMesh(
         resonance_mhz=abs(change.imag / slope),
-        return_loss_db=abs(return_loss_db(first) - return_loss_db(second)),
+        return_loss_db=abs(bench_loss_db(return_loss_db(first)) - bench_loss_db(return_loss_db(second))),
         reflection_change=abs(second - first),
     )
 

@@ -129,7 +129,7 @@ def sensitivities(
     ``slope_ohm_per_mhz``: dX/df of tap and capacitor together. The return loss per millimetre is what is lost (from
     at most 40 dB) at the worse end of the tolerance, over the tolerance.
     """
-    nominal = _bench_loss(return_loss_db(reflection(model.impedance_ohm, sizes.series_capacitor_pf, frequency_mhz)))
+    nominal = bench_loss_db(return_loss_db(reflection(model.impedance_ohm, sizes.series_capacitor_pf, frequency_mhz)))
     rows = []
     for i, row in enumerate(model.deviations):
         shift = -float(model.linear[i].imag) / row.tolerance_mm / slope_ohm_per_mhz
@@ -142,7 +142,7 @@ def sensitivities(
     return tuple(sorted(rows, key=lambda r: (-r.effect_mhz, r.size)))
 
 
-def _bench_loss(loss_db: float) -> float:
+def bench_loss_db(loss_db: float) -> float:
     """A bench cannot tell return losses apart above 40 dB; without the cap a perfect match would look fragile."""
     return min(loss_db, BENCH_LIMIT_DB)
 
@@ -161,7 +161,7 @@ def _capacitor_row(
     capacitance = sizes.series_capacitor_pf
     per_pf = 1e6 / (2 * math.pi * frequency_mhz * capacitance**2)
     tolerance = OVERLAP_MM * part.pf_per_mm
-    nominal = _bench_loss(return_loss_db(reflection(model.impedance_ohm, capacitance, frequency_mhz)))
+    nominal = bench_loss_db(return_loss_db(reflection(model.impedance_ohm, capacitance, frequency_mhz)))
     ends = (max(capacitance + sign * tolerance, 1e-3) for sign in (1, -1))
     worst = min(nominal, *(return_loss_db(reflection(model.impedance_ohm, c, frequency_mhz)) for c in ends))
     return Sensitivity(

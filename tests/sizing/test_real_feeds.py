@@ -19,7 +19,7 @@ from tests.samples import sample_job
 
 TEMPLATES = sorted((Path(__file__).parents[2] / "templates").glob("*.toml"))
 FINE = ("hydrogen-wire",)
-"""Templates whose half-edge mesh runs in the suite; the others were held to the same limit once, see the guide."""
+"""Templates whose half-edge mesh runs in the suite: it costs eight times a template's own match."""
 
 pytestmark = pytest.mark.slow
 

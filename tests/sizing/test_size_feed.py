@@ -215,7 +215,7 @@ def test_failed_self_check_stops_with_its_number() -> None:
 
 def test_front_has_eight_points_that_trade_rejection() -> None:
     job = job_with()
-    front = selectivity_front(job, ToySolver(job))
+    front = selectivity_front(job, make_solver=ToySolver)
     assert len(front.points) >= 8
     assert all(p.return_loss_db > 20 for p in front.points)
     assert [p.share for p in front.points] == sorted(p.share for p in front.points)
@@ -251,7 +251,7 @@ def test_front_plot_is_the_same_each_time_and_names_its_axes() -> None:
     from fabgen.sizing.front_plot import front_svg
 
     job = job_with()
-    front = selectivity_front(job, ToySolver(job))
+    front = selectivity_front(job, make_solver=ToySolver)
     first, second = front_svg(front), front_svg(front)
     assert first == second
     assert "aperture efficiency" in first
