@@ -19,7 +19,7 @@ from typing import Any, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.linalg import lapack, lu_factor, lu_solve
+from scipy.linalg import lapack, lu_factor
 
 from fabgen.errors import GeometryError, NumericalError
 from fabgen.fields.far_field import CurrentElements, current_elements
@@ -29,7 +29,15 @@ from fabgen.fields.intersect import check_no_crossings
 from fabgen.fields.mesh import CROSSING, LOOP, Mesh, check_mesh
 from fabgen.fields.plan import MeshPlan
 from fabgen.fields.surfaces import feed_mesh
-from fabgen.fields.system import Assembler, ComplexArray, QuadratureSettings, check_memory, overlap
+from fabgen.fields.system import (
+    Assembler,
+    ComplexArray,
+    QuadratureSettings,
+    check_memory,
+    overlap,
+    symmetric_factors,
+    symmetric_solve,
+)
 
 SYMMETRY_PLANES = (1,)
 KEPT_CANS = 24
@@ -219,18 +227,18 @@ class _System:
         self._can = can
         self._inner = inner
         if inner:
-            self._reduced = lu_solve(can.factors, full[:inner, inner:], check_finite=False)
+            self._reduced = symmetric_solve(can.factors, full[:inner, inner:])
             schur = full[inner:, inner:] - full[inner:, :inner] @ self._reduced
         else:
             self._reduced, schur = full[:0], full.copy()
         self._schur_norm = float(np.abs(schur).sum(0).max())
-        self._factors = lu_factor(schur, overwrite_a=True, check_finite=False)
+        self._factors = symmetric_factors(schur)
 
     def solve(self, right: NDArray[Any]) -> ComplexArray:
         """Solution for one right-hand side (N,)."""
         n = self._inner
-        a = lu_solve(self._can.factors, right[:n], check_finite=False) if right[:n].any() else np.zeros(n)
-        y = lu_solve(self._factors, right[n:] - self.full[n:, :n] @ a, check_finite=False)
+        a = symmetric_solve(self._can.factors, right[:n]) if right[:n].any() else np.zeros(n)
+        y = symmetric_solve(self._factors, right[n:] - self.full[n:, :n] @ a)
         return np.concatenate([a - self._reduced @ y, y])
 
     def residual(self, currents: ComplexArray, right: NDArray[Any]) -> float:

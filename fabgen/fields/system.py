@@ -16,6 +16,7 @@ from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.linalg import lu_factor, lu_solve
 
 from fabgen.errors import GeometryError
 from fabgen.fields import kernel
@@ -197,6 +198,20 @@ def mirrored_sum(matrix: ComplexArray, block: int = 256) -> ComplexArray:
             matrix[i : i + block, j : j + block] = total
             matrix[j : j + block, i : i + block] = total.T
     return matrix
+
+
+def symmetric_factors(matrix: ComplexArray) -> tuple[ComplexArray, IntArray]:
+    """LU factors of a complex symmetric matrix, made in its own memory, which is lost.
+
+    Its transpose is the same matrix in the order of storage that LAPACK wants, so no copy is made.
+    """
+    factors: tuple[ComplexArray, IntArray] = lu_factor(matrix.T, overwrite_a=True, check_finite=False)
+    return factors
+
+
+def symmetric_solve(factors: tuple[ComplexArray, IntArray], right: NDArray[Any]) -> ComplexArray:
+    """Solution for one or several right-hand sides (N,) or (N, m)."""
+    return np.asarray(lu_solve(factors, right, check_finite=False))
 
 
 def _run_slices(work: Callable[[int, int, int], None], marks: Any) -> None:
