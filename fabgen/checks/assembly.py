@@ -12,6 +12,7 @@ from itertools import combinations
 from fabgen.checks.registry import Context, Fault, check, row_source, source_text
 from fabgen.checks.texts import mm, up
 from fabgen.errors import GeometryError
+from fabgen.parts.capacitor import crossing_of
 from fabgen.parts.contour import sampled
 from fabgen.parts.floor_holes import floor_holes
 from fabgen.parts.floor_plan import coax_axis, flange_plan, floor_bottom_mm, lining_mm
@@ -114,18 +115,21 @@ def jacket_to_solder(context: Context) -> Iterator[Fault]:
 
 @check("ASSY-105", "note", source="maker sheets of semi-rigid cable; from memory")
 def cable_bend(context: Context) -> Iterator[Fault]:
-    """Bend of the coax's core at the tap and least bend radius of the jacketed cable."""
+    """Bend of the coax's centre conductor at the tap and least bend radius of the whole cable."""
     coax = tables.coax(context.job.cable.coax)
-    if not any(part.key == "coax-stub" for part in context.parts) or coax.dielectric_mm >= coax.min_bend_radius_mm:
+    if not any(part.key == "coax-stub" for part in context.parts):
+        return
+    bend = crossing_of(context.feed).bend_mm
+    if bend >= coax.min_bend_radius_mm:
         return
     yield Fault(
         part="coax-stub",
         feature="bend at the tap",
-        value=mm(coax.dielectric_mm),
-        limit=f"{mm(coax.min_bend_radius_mm)} with the jacket on",
-        message=f"the core bends by {mm(coax.dielectric_mm)} radius at the tap; the jacketed {coax.key} needs "
+        value=mm(bend),
+        limit=f"{mm(coax.min_bend_radius_mm)} for the whole cable",
+        message=f"the bare centre conductor bends by {mm(bend)} radius at the tap; the whole {coax.key} needs "
         f"{mm(coax.min_bend_radius_mm)}",
-        cure=f"strip the jacket before bending, and bend the cable behind the connector by "
+        cure=f"bare the conductor before bending it, and bend the cable behind the connector by "
         f"{coax.min_bend_radius_mm:g} mm or more",
         source=source_text(coax.source),
     )
@@ -335,7 +339,8 @@ def yield_before_trimming(context: Context) -> Iterator[Fault]:
 @check("ASSY-304", "caution", "feed_mass_max_kg")
 def mass_at_the_focus(context: Context) -> Iterator[Fault]:
     """Mass of the whole feed, which the struts of the dish carry."""
-    mass, most = math.fsum(part.mass_kg * part.quantity for part in context.parts), context.limit("feed_mass_max_kg")
+    stays = [part for part in context.parts if not part.key.startswith(("jig", "bend-strip"))]
+    mass, most = math.fsum(part.mass_kg * part.quantity for part in stays), context.limit("feed_mass_max_kg")
     if mass > most:
         yield Fault(
             part="feed",

@@ -14,6 +14,9 @@ from collections.abc import Iterator
 
 from fabgen.checks.registry import Context, Fault, check
 from fabgen.checks.texts import mm
+from fabgen.errors import GeometryError
+from fabgen.parts.can_sheet import can_wall, choke_wall
+from fabgen.parts.capacitor import crossing_of
 from fabgen.parts.contour import Arc, Circle, Contour, Outline, arc_between, bounds_mm, pairs
 from fabgen.parts.floor_plan import floor_bottom_mm
 from fabgen.parts.records import Part, WirePath
@@ -187,17 +190,35 @@ def turned_tube_and_floor(context: Context) -> Iterator[Fault]:
             yield _fault(part.key, "wall_mm", part.flat.thickness_mm, context.sizes.wall_mm, "wall's thickness")
 
 
-@check("CONS-107", "stop", "wall_length_mm")
+@check("CONS-107", "stop", "consistency_mm")
 def wall_strip_length(context: Context) -> Iterator[Fault]:
-    """Developed length of a rolled wall against the bore: once round the neutral line plus the lap."""
+    """Developed length and width of a rolled or folded wall as drawn, against bore, flats, thickness and depth.
+
+    The wanted length is laid out anew from the sizes: once round the neutral line, step and lap of the seam."""
+    if context.job.can.make not in {"rolled", "folded"}:
+        return
+    walls = {"wall": can_wall, "choke-wall": choke_wall}
     for part in context.parts:
-        if part.key != "wall" or part.flat is None or context.sizes.can_flats:
+        if part.key not in walls or part.flat is None:
             continue
-        x0, _, x1, _ = bounds_mm(part.flat.outline)
-        round_mm = math.pi * (context.sizes.can_bore_mm + context.sizes.wall_mm)
-        lap = (x1 - x0) - round_mm
-        if not 0 <= lap <= context.limit("wall_length_mm"):
-            yield _fault(part.key, "flat length", x1 - x0, round_mm, "strip once round the can (plus its lap)")
+        try:
+            wall = walls[part.key](context.feed)
+        except GeometryError as error:
+            yield Fault(
+                part=part.key,
+                feature="flat length",
+                value="drawn",
+                limit="possible",
+                message=f"the sizes do not make this wall: {error}",
+                cure="make the pack anew from the job: 1 wall is wrong",
+            )
+            continue
+        x0, _, x1, y1 = bounds_mm(part.flat.outline)
+        if wall is None:
+            continue
+        for feature, drawn, wanted in (("flat length", x1 - x0, wall.path.flat_mm), ("rim", y1, wall.depth_mm)):
+            if _differs(drawn, wanted, context):
+                yield _fault(part.key, feature, drawn, wanted, f"{feature} of {part.name}")
 
 
 @check("CONS-108", "stop", source="Z - j/(omega C) against 50 ohm")
@@ -261,19 +282,30 @@ def metal_in_the_job(context: Context) -> Iterator[Fault]:
             yield _fault("feed", name, drawn, wanted, f"{name} against the job's stock")
 
 
+def _stock_sizes(context: Context, key: str) -> dict[str, float]:
+    """Sizes of tubes and of the choke under the names that the parts give them."""
+    s, choke = context.sizes, context.sizes.choke
+    if key == "can-tube":
+        return {"length_mm": s.can_depth_mm, "bore_mm": s.can_bore_mm, "wall_mm": s.wall_mm}
+    if key == "wall":
+        return {"depth_mm": s.can_depth_mm}
+    if choke is None or not key.startswith("choke"):
+        return {}
+    if key == "choke-tube":
+        return {"length_mm": choke.depth_mm, "bore_mm": choke.bore_mm, "wall_mm": s.wall_mm}
+    wall = {"depth_mm": choke.depth_mm, "wall_mm": s.wall_mm} if key == "choke-wall" else {}
+    return {"choke_bore_mm": choke.bore_mm, "choke_depth_mm": choke.depth_mm, **wall}
+
+
 @check("CONS-111", "stop", "consistency_mm")
 def bought_and_cut_lengths(context: Context) -> Iterator[Fault]:
-    """Lengths of tube and coax against depth and tap height: what is cut from stock has no drawing to measure."""
-    s = context.sizes
+    """Tubes, walls, choke and coax against bore, depth, choke and tap height, by the names of their sizes."""
     for part in context.parts:
         sizes = dict(part.sizes)
-        tube = {"length_mm": s.can_depth_mm, "bore_mm": s.can_bore_mm, "wall_mm": s.wall_mm}
-        for name, wanted in tube.items() if part.key == "can-tube" else ():
+        for name, wanted in _stock_sizes(context, part.key).items():
             if name in sizes and _differs(sizes[name], wanted, context):
-                yield _fault(part.key, name, sizes[name], wanted, f"{name} of the tube")
+                yield _fault(part.key, name, sizes[name], wanted, f"{name} of {part.name}")
         if "jacket_mm" in sizes:
-            # The core bends by one dielectric diameter, so the jacket ends that much under the tap.
-            bend = tables.coax(context.job.cable.coax).dielectric_mm
-            wanted = s.tap_height_mm - bend - floor_bottom_mm(context.feed)
+            wanted = crossing_of(context.feed).jacket_top_mm - floor_bottom_mm(context.feed)
             if _differs(sizes["jacket_mm"], wanted, context):
                 yield _fault(part.key, "jacket_mm", sizes["jacket_mm"], wanted, "jacket of the coax up to the tap")

@@ -211,9 +211,6 @@ def tabs(count: float, length_mm: float = 700.0) -> Part:
     return replace(strip(length_mm), sizes=(("flat_length_mm", length_mm), ("tab_count", count)))
 
 
-ROUND_MM = 3.141592653589793 * (base().sizes.can_bore_mm + base().sizes.wall_mm)
-
-
 PAIRS: dict[str, Pair] = {
     "ELEC-101": Pair(
         lambda: (
@@ -463,7 +460,7 @@ PAIRS: dict[str, Pair] = {
     ),
     "ASSY-103": Pair(lambda: (with_sizes(base(), can_bore_mm=70.0), ()), good(), "caution", "connector"),
     "ASSY-104": Pair(lambda: changed_part("coax-stub", sizes=(("jacket_mm", 5.0),)), good(), "caution", "too short"),
-    "ASSY-105": Pair(good(), lambda: (base(), ()), "note", "core bends"),
+    "ASSY-105": Pair(good(), lambda: (base(), ()), "note", "conductor bends"),
     "ASSY-201": Pair(good(WIRE, "printed"), good(), "caution", "solder"),
     "ASSY-202": Pair(good(), lambda: (with_job(base(), can={"metal": "cuzn37"}), parts_of()), "caution", "cannot be"),
     "ASSY-203": Pair(
@@ -508,7 +505,10 @@ PAIRS: dict[str, Pair] = {
     "CONS-105": Pair(lambda: changed_wire(cut_length_mm=262.0), good(), "stop", "last end"),
     "CONS-106": Pair(lambda: (with_sizes(base(), floor_mm=2.0), parts_of()), good(), "stop", "floor"),
     "CONS-107": Pair(
-        lambda: alone(base(), strip(ROUND_MM - 2)), lambda: alone(base(), strip(ROUND_MM + 15)), "stop", "once round"
+        lambda: (with_sizes(base(WIRE, "rolled"), can_bore_mm=222.0), parts_of(WIRE, "rolled")),
+        good(WIRE, "rolled"),
+        "stop",
+        "flat length",
     ),
     "CONS-108": Pair(lambda: (with_sizes(base(), series_capacitor_pf=1.2), parts_of()), good(), "stop", "gives"),
     "CONS-109": Pair(lambda: (with_sizes(base(), series_capacitor_pf=1.12), parts_of()), good(), "stop", "sized for"),

@@ -42,11 +42,15 @@ def wire_pack(tmp_path_factory: pytest.TempPathFactory) -> Path:
     return folder
 
 
-def codes(folder: Path) -> set[str]:
-    return {finding.code for finding in check_pack(folder)}
+@pytest.fixture(scope="module")
+def rolled_pack(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    folder = tmp_path_factory.mktemp("rolled") / "pack"
+    write_pack(sample_feed("wire", "rolled", choke=True), folder, PackOptions(only=FLAT_GROUPS))
+    return folder
 
 
-def test_packs_as_written_pass(sheet_pack: Path, wire_pack: Path) -> None:
+def test_packs_as_written_pass(sheet_pack: Path, wire_pack: Path, rolled_pack: Path) -> None:
+    assert check_pack(rolled_pack) == ()
     assert check_pack(sheet_pack) == ()
     assert check_pack(wire_pack) == ()
 
@@ -167,6 +171,23 @@ def test_a_changed_sheet_pack_is_found(sheet_pack: Path, tmp_path: Path, name: s
 def test_a_changed_wire_pack_is_found(wire_pack: Path, tmp_path: Path, name: str) -> None:
     change, code = WIRE_CHANGES[name]
     _changed(wire_pack, tmp_path, change, code)
+
+
+@pytest.mark.parametrize(
+    ("change", "code"),
+    [
+        (record(lambda d: d["sizes"]["choke"].update(bore_mm=330.0)), "CONS-107"),
+        (record(lambda d: d["sizes"]["choke"].update(depth_mm=45.0)), "CONS-111"),
+        (sizes(can_bore_mm=225.0), "CONS-107"),
+        (sizes(can_depth_mm=68.0), "CONS-111"),
+        (sizes(wall_mm=1.2), "CONS-106"),
+        (scaled_dxf("cut/wall*_fold.dxf"), "CONS-107"),
+    ],
+)
+def test_a_changed_rolled_pack_is_found(
+    rolled_pack: Path, tmp_path: Path, change: Callable[[Path], None], code: str
+) -> None:
+    _changed(rolled_pack, tmp_path, change, code)
 
 
 def _changed(pack: Path, tmp_path: Path, change: Callable[[Path], None], code: str) -> None:

@@ -1,0 +1,184 @@
+"""The sizing model against the drawn parts: where the surfaces lie, and what the true solid computes to.
+
+Depends on: errors, fields, parts, sizing, writers of STEP through the caller.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fabgen.errors import NotCoveredError
+from fabgen.fields.geometry import FeedGeometry
+from fabgen.fields.mesh import CHOKE, FLOOR, LOOP, PATCH, WALL
+from fabgen.fields.model import solve_mesh
+from fabgen.fields.plan import plan_mesh
+from fabgen.fields.solid_mesh import SolidLoop, solid_mesh
+from fabgen.fields.surfaces import feed_mesh
+from fabgen.parts.containment import gaps_mm
+from fabgen.parts.contour import Circle
+from fabgen.parts.records import Part
+from fabgen.sizing.field_model import FieldModel, feed_geometry
+from fabgen.sizing.records import Feed, Sizes
+
+STEP_OF_FREQUENCY = 0.01
+SOLID_DENSITY = 14.0
+
+
+@dataclass(frozen=True)
+class Containment:
+    """Largest distance of the simulated surfaces outside the drawn metal, and half its thickness, for one group."""
+
+    name: str
+    points: int
+    gap_mm: float
+    limit_mm: float
+
+    @property
+    def passed(self) -> bool:
+        """Whether the surfaces lie within half the thickness."""
+        return self.gap_mm <= self.limit_mm
+
+
+@dataclass(frozen=True)
+class SolidComparison:
+    """Sizing model against the surfaces of the drawn loop: impedance at the tap, return loss, resonance."""
+
+    model_ohm: complex
+    solid_ohm: complex
+    model_return_loss_db: float
+    solid_return_loss_db: float
+    resonance_shift_mhz: float
+    unknowns: int
+    trimmed_capacitor_pf: float
+    trimmed_return_loss_db: float
+
+
+def containment(feed: Feed, parts: Sequence[Part]) -> tuple[Containment, ...]:
+    """Sample the simulated surfaces densely and measure them against the solids of the parts.
+
+    Strips are sampled over the width of the metal they stand for (a wire: on its axis). Points in holes of the
+    floor are left out: there the metal is meant to be missing.
+    """
+    sizes = feed.sizes
+    drawn = _metal_widths(feed_geometry(sizes), sizes)
+    mesh, _ = feed_mesh(drawn, plan_mesh(drawn, feed.job.wavelength_mm / 1e3, 20.0))
+    centres = mesh.corners_m.mean(1) * 1e3
+    metal = [p for p in parts if p.solid is not None and p.process != ("buy",)]
+    conductor = sizes.wire_mm or sizes.sheet_mm or 0.0
+    groups = [
+        ("loop and bars", (LOOP,), conductor / 2),
+        ("floor", (FLOOR, PATCH), sizes.floor_mm / 2),
+        ("wall", (WALL,), sizes.wall_mm / 2),
+        ("choke", (CHOKE,), sizes.wall_mm / 2),
+    ]
+    found = []
+    for name, labels, limit in groups:
+        points = centres[np.isin(mesh.label, labels)]
+        if name == "floor":
+            points = points[~_in_holes(points, parts)]
+        if len(points):
+            found.append(Containment(name, len(points), float(gaps_mm(points, metal).max()), limit))
+    return tuple(found)
+
+
+def _metal_widths(geometry: FeedGeometry, sizes: Sizes) -> FeedGeometry:
+    loop = geometry.loop
+    if sizes.wire_mm is not None:
+        thin = 0.02 * sizes.wire_mm / 1e3
+        return replace(
+            geometry, loop=replace(loop, band_m=thin, leg_band_m=thin, bend_radius_m=sizes.leg_bend_radius_mm / 1e3)
+        )
+    return replace(
+        geometry, loop=replace(loop, band_m=(sizes.strip_width_mm or 0.0) / 1e3, leg_band_m=sizes.leg_width_mm / 1e3)
+    )
+
+
+def _in_holes(points: NDArray[np.float64], parts: Sequence[Part]) -> NDArray[np.bool_]:
+    inside = np.zeros(len(points), dtype=bool)
+    for part in parts:
+        if not part.key.startswith("floor") or part.flat is None:
+            continue
+        for hole in part.flat.holes:
+            if isinstance(hole, Circle):
+                x, y, r = hole.x_mm, hole.y_mm, hole.diameter_mm / 2
+            else:
+                xs, ys = [v.x_mm for v in hole.vertices], [v.y_mm for v in hole.vertices]
+                x, y = sum(xs) / len(xs), sum(ys) / len(ys)
+                r = max(math.hypot(a - x, b - y) for a, b in zip(xs, ys, strict=True)) * 1.3
+            inside |= np.hypot(points[:, 0] - x, points[:, 1] - y) <= r
+    return inside
+
+
+def compare_solid(
+    feed: Feed, loop_step: Path, progress: Callable[[str], None] = lambda _: None
+) -> SolidComparison:
+    """Solve the feed on the true surface of the drawn loop (STEP in the feed's frame) near the target.
+
+    Perfect conductors on both sides. Raises NotCoveredError for cans with flats or a choke.
+    """
+    sizes, target = feed.sizes, feed.job.target.frequency_mhz
+    if sizes.choke is not None or sizes.can_flats:
+        raise NotCoveredError(
+            "the comparison with the drawn solid covers round cans without choke; "
+            "give a job with a rolled, printed, tube or turned can and choke = false"
+        )
+    drawn = _solid_loop(feed, loop_step)
+    progress("meshing the drawn loop")
+    mesh = solid_mesh(drawn)
+    model = FieldModel(target)
+    frequencies = target * np.array([1.0, 1.0 - STEP_OF_FREQUENCY, 1.0 + STEP_OF_FREQUENCY])
+    pairs = []
+    unknowns = 0
+    for frequency in frequencies:
+        progress(f"solving the drawn loop at {frequency:.1f} MHz")
+        solid = solve_mesh(mesh, frequency * 1e6)
+        unknowns = solid.unknowns
+        pairs.append((model.solve(sizes, float(frequency)).impedance_ohm, solid.impedance_ohm))
+    impedance = np.array(pairs)
+    return _compared(impedance, frequencies, sizes.series_capacitor_pf, unknowns)
+
+
+def _compared(
+    impedance: NDArray[np.complex128], frequencies: NDArray[np.float64], capacitor_pf: float, unknowns: int
+) -> SolidComparison:
+    series = 1 / (2j * np.pi * frequencies * 1e6 * capacitor_pf * 1e-12)
+    total = impedance + series[:, None]
+    slope = (total[2].imag - total[1].imag) / (frequencies[2] - frequencies[1])
+    zero = frequencies[0] - total[0].imag / slope
+    trimmed = complex(impedance[0, 1]).imag
+    loss = [_return_loss_db(complex(z)) for z in total[0]]
+    return SolidComparison(
+        complex(impedance[0, 0]), complex(impedance[0, 1]), loss[0], loss[1], float(zero[1] - zero[0]), unknowns,
+        1e6 / (2 * math.pi * float(frequencies[0]) * trimmed),
+        _return_loss_db(complex(impedance[0, 1].real)),
+    )
+
+
+def _return_loss_db(impedance: complex) -> float:
+    return -20 * math.log10(max(abs((impedance - 50) / (impedance + 50)), 1e-9))
+
+
+def _solid_loop(feed: Feed, step_file: Path) -> SolidLoop:
+    sizes = feed.sizes
+    width = sizes.wire_mm or sizes.strip_width_mm or 1.0
+    wire = sizes.wire_mm is not None
+    bend = sizes.leg_bend_radius_mm + (0.0 if wire else sizes.sheet_mm or 0.0)
+    return SolidLoop(
+        step_file=step_file,
+        bore_mm=sizes.can_bore_mm,
+        depth_mm=sizes.can_depth_mm,
+        leg_x_mm=sizes.leg_x_mm,
+        bar_reach_mm=sizes.leg_pitch_mm / 2 + sizes.leg_width_mm,
+        bar_top_mm=sizes.loop_height_mm - bend - (0.0 if wire else (sizes.sheet_mm or 0.0) / 2),
+        gap_mm=sizes.leg_pitch_mm - sizes.leg_width_mm,
+        tap_height_mm=sizes.tap_height_mm,
+        crossing_mm=feed_geometry(sizes).loop.crossing_band_m * 1e3,
+        cell_mm=(0.4 if wire else 0.22) * width,
+        edge_mm=feed.job.wavelength_mm / SOLID_DENSITY,
+    )
