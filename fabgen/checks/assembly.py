@@ -13,6 +13,7 @@ from fabgen.checks.registry import Context, Fault, check, row_source, source_tex
 from fabgen.checks.texts import mm, up
 from fabgen.errors import GeometryError
 from fabgen.parts.capacitor import crossing_of
+from fabgen.parts.connector import flange_face_mm
 from fabgen.parts.contour import sampled
 from fabgen.parts.floor_holes import floor_holes
 from fabgen.parts.floor_plan import coax_axis, flange_plan, floor_bottom_mm, lining_mm
@@ -254,8 +255,7 @@ def screw_lengths(context: Context) -> Iterator[Fault]:
     """Length of the connector's screws against what they have to hold."""
     row = tables.connector(context.job.cable.connector)
     nut = tables.screw(row.screw).nut_height_mm
-    stack = -floor_bottom_mm(context.feed) + row.flange_thickness_mm + nut
-    stack += sum(dict(part.sizes).get("height_mm", 0.0) for part in context.parts if part.key == "spacer")
+    stack = -flange_face_mm(context.feed) + row.flange_thickness_mm + nut
     proud = context.limit("nut_proud_max_mm")
     for part in context.parts:
         if part.key != "screw-connector":
