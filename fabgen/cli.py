@@ -81,8 +81,8 @@ def _add(commands: _Commands, common: argparse.ArgumentParser, name: str, text: 
     return commands.add_parser(name, help=text, description=text, parents=[common], allow_abbrev=False)
 
 
-def _add_run_options(parser: argparse.ArgumentParser) -> None:
-    parser.add_argument("job", metavar="JOB", type=Path, help="the job file (TOML)")
+def _add_run_options(parser: argparse.ArgumentParser, job: str = "the job file (TOML)") -> None:
+    parser.add_argument("job", metavar="JOB", type=Path, help=job)
     parser.add_argument("--no-cache", action="store_true", help="size anew, neither reading nor writing the cache")
     parser.add_argument("--time-limit", metavar="SECONDS", type=float, help="give up after so long")
 
@@ -105,7 +105,7 @@ def _add_size(commands: _Commands, common: argparse.ArgumentParser) -> None:
 
 def _add_check(commands: _Commands, common: argparse.ArgumentParser) -> None:
     parser = _add(commands, common, "check", "List all findings; exit status 4 when one stops the pack.")
-    _add_run_options(parser)
+    _add_run_options(parser, "the job file (TOML), or the folder of a written pack to read it back")
     parser.add_argument("--json", action="store_true", help="findings as JSON")
     parser.add_argument("--strict", action="store_true", help="exit status 4 for a caution too")
 

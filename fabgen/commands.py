@@ -9,13 +9,16 @@ import argparse
 import json
 import os
 import sys
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import asdict
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from fabgen.errors import JobError
 from fabgen.progress import Display, open_display
+
+if TYPE_CHECKING:
+    from fabgen.checks.records import Finding
 
 
 def _wants_colour(arguments: argparse.Namespace, stream: Any) -> bool:
@@ -96,9 +99,29 @@ def size(arguments: argparse.Namespace) -> int:
 
 
 def check(arguments: argparse.Namespace) -> int:
-    """Prints all findings; the exit status tells the worst."""
-    from fabgen.job_reader import read_job
+    """Prints all findings of a job, or of a written pack; the exit status tells the worst."""
     from fabgen.report import findings_report
+
+    name, findings = _pack_findings(arguments) if arguments.job.is_dir() else _job_findings(arguments)
+    if arguments.json:
+        sys.stdout.write(json.dumps([asdict(f) for f in findings], indent=2, ensure_ascii=False) + "\n")
+    else:
+        sys.stdout.write(findings_report(name, findings, _wants_colour(arguments, sys.stdout)))
+    worst = {"stop", "caution"} if arguments.strict else {"stop"}
+    return 4 if any(finding.severity in worst for finding in findings) else 0
+
+
+def _pack_findings(arguments: argparse.Namespace) -> tuple[str, Sequence[Finding]]:
+    from fabgen.checks.readback import check_pack
+    from fabgen.resources import time_limit
+
+    with time_limit(arguments.time_limit), _display(arguments) as display:
+        display.step("reading the pack back")
+        return f"pack {arguments.job}", check_pack(arguments.job, solids=True)
+
+
+def _job_findings(arguments: argparse.Namespace) -> tuple[str, Sequence[Finding]]:
+    from fabgen.job_reader import read_job
     from fabgen.resources import time_limit
 
     job = read_job(arguments.job)
@@ -108,13 +131,7 @@ def check(arguments: argparse.Namespace) -> int:
 
         feed = sized_feed(job, display, _cache(arguments))
         display.step("planning the parts and checking them")
-        _, findings = build_content(feed)
-    if arguments.json:
-        sys.stdout.write(json.dumps([asdict(f) for f in findings], indent=2, ensure_ascii=False) + "\n")
-    else:
-        sys.stdout.write(findings_report(job, findings, _wants_colour(arguments, sys.stdout)))
-    worst = {"stop", "caution"} if arguments.strict else {"stop"}
-    return 4 if any(finding.severity in worst for finding in findings) else 0
+        return job.target.name, build_content(feed)[1]
 
 
 def pack(arguments: argparse.Namespace) -> int:

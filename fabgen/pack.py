@@ -97,6 +97,9 @@ def write_pack(
         files = {name: sha256_of(folder / name) for name in files_in(folder)}
         record = record_data(feed, parts, findings, files, options.despite)
         content.write(RECORD_NAME, record_text(record))
+        if "tables" in chosen:
+            progress.step("reading the pack back")
+            require_agreement(folder)
     return PackReport(target, files, findings)
 
 
@@ -128,6 +131,20 @@ def require_no_stop(findings: Sequence[Finding], despite: Sequence[str]) -> None
         flags = " ".join(f"--despite {code}" for code in sorted({f.code for f in stops}))
         raise ChecksFailedError(
             f"{len(stops)} finding(s) stop the pack:\n" + "\n".join(lines) + f"\nCure them, or accept the risk: {flags}"
+        )
+
+
+def require_agreement(folder: Path) -> None:
+    """Refuses a pack whose files, read back alone, do not agree with each other."""
+    from fabgen.checks.readback import check_pack
+
+    found = check_pack(folder)
+    if found:
+        lines = [f"  {f.code} {f.part}: {f.message}" for f in found]
+        raise ChecksFailedError(
+            "the files of the pack do not agree when read back, so it is not kept:\n"
+            + "\n".join(lines)
+            + "\nThis is a fault in fabgen; report the job file"
         )
 
 

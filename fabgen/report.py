@@ -159,15 +159,15 @@ def front_report(job: Job, front: Front) -> str:
     return "\n".join(lines) + "\n"
 
 
-def findings_report(job: Job, findings: Sequence[Finding], colour: bool) -> str:
+def findings_report(title: str, findings: Sequence[Finding], colour: bool) -> str:
     """All findings grouped by severity, worst first."""
-    lines = [f"{job.target.name}: {len(findings)} findings"]
-    for severity, title in _SEVERITIES:
+    lines = [f"{title}: {len(findings)} findings"]
+    for severity, heading in _SEVERITIES:
         chosen = [finding for finding in findings if finding.severity == severity]
         if not chosen:
             continue
         start, end = (_COLOURS[severity], _RESET) if colour else ("", "")
-        lines += ["", f"{start}{title} ({len(chosen)}){end}"]
+        lines += ["", f"{start}{heading} ({len(chosen)}){end}"]
         for finding in chosen:
             lines += [
                 f"  {start}{finding.code}{end}  {finding.part}, {finding.feature}: {finding.value}, "

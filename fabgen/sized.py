@@ -49,11 +49,10 @@ def selectivity_front_of(job: Job, progress: Progress) -> Front:
     """The front between rejection and efficiency for a job, each point matched. Errors of the sizing pass through."""
     place_compiled_code(None)
     from fabgen.resources import require_memory
-    from fabgen.sizing.field_solver import FieldSolver
     from fabgen.sizing.front import selectivity_front
 
     require_memory()
-    return selectivity_front(job, FieldSolver(job), progress)
+    return selectivity_front(job, progress)
 
 
 def feed_key(job: Job) -> str:

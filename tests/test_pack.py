@@ -5,6 +5,7 @@ from __future__ import annotations
 import csv
 import json
 import re
+import shutil
 import subprocess
 import sys
 import time
@@ -116,6 +117,21 @@ def test_size_says_what_the_pack_says(real_pack: Callable[[str], Path], real_env
     sized = json.loads(result.stdout)
     for key in ("sizes", "predicted", "capacitor", "job", "settings"):
         assert sized[key] == record[key]
+
+
+def test_a_written_pack_is_checked_from_its_files_alone(
+    pack: Path, real_environment: dict[str, str], tmp_path: Path
+) -> None:
+    result = run(["check", str(pack), "--quiet"], real_environment)
+    assert result.returncode == 0, result.stdout
+    assert "0 findings" in result.stdout
+    changed = tmp_path / "changed"
+    shutil.copytree(pack, changed)
+    with (changed / "parts.csv").open("a", encoding="utf-8") as stream:
+        stream.write("more,than,was,written\n")
+    result = run(["check", str(changed), "--quiet"], real_environment)
+    assert result.returncode == 4
+    assert "parts.csv was changed after the pack was written" in result.stdout
 
 
 def test_groups() -> None:
