@@ -211,6 +211,7 @@ def _envelope(feed: Feed, body: Body, rules: PrintRules) -> Envelope:
         bottom_mm=body.floor_bottom_mm,
         top_mm=body.rim_mm,
         keep_clear=_keep_clear(feed, body, rules),
+        prefer_clear=(_connector_circle(feed),),
         bands=tuple(bands),
     )
 
@@ -222,6 +223,11 @@ def _reach(flange: FlangePlan) -> float:
     return max(math.hypot(v.x_mm, v.y_mm) for v in flange.outline.vertices)
 
 
+def _connector_circle(feed: Feed) -> Circle:
+    row = tables.connector(feed.job.cable.connector)
+    return Circle(*coax_axis(feed), math.hypot(row.flange_width_mm, row.flange_height_mm))
+
+
 def _keep_clear(feed: Feed, body: Body, rules: PrintRules) -> tuple[Circle, ...]:
     margin = 2 * (rules.wall_min_mm + 1.5)
     circles = []
@@ -229,8 +235,6 @@ def _keep_clear(feed: Feed, body: Body, rules: PrintRules) -> tuple[Circle, ...]
         low_x, low_y, high_x, high_y = bounds_mm(outline)
         size = max(high_x - low_x, high_y - low_y)
         circles.append(Circle((low_x + high_x) / 2, (low_y + high_y) / 2, size + margin))
-    row = tables.connector(feed.job.cable.connector)
-    circles.append(Circle(*coax_axis(feed), math.hypot(row.flange_width_mm, row.flange_height_mm)))
     if body.flange is not None:
         head = tables.screw(body.flange.screw).head_mm
         circles += [Circle(h.x_mm, h.y_mm, head + 2 * EAR_HALF_MM + 2.0) for h in body.flange.holes]

@@ -10,7 +10,10 @@ Section through the axis::
      '------------------------------------'  z = -floor
      |<------------- flange ------------->|
 
-Depends on: errors, parts.contour, parts.kernel, parts.making, parts.shell, parts.floor_plan,
+A choke is a ring of its own on a hub with set screws; where its floor is too low for a hub, it is a groove turned
+in the same piece.
+
+Depends on: stock, parts.contour, parts.kernel, parts.making, parts.shell, parts.floor_plan,
 parts.floor_holes, parts.records, sizing.records.
 """
 
@@ -19,15 +22,14 @@ from __future__ import annotations
 import math
 from typing import TYPE_CHECKING
 
-from fabgen.errors import GeometryError
 from fabgen.parts import kernel
 from fabgen.parts.contour import Outline
 from fabgen.parts.floor_holes import floor_holes
 from fabgen.parts.floor_plan import flange_plan
 from fabgen.parts.making import metal_part
 from fabgen.parts.records import Part
-from fabgen.parts.shell import Body, revolved_volume_mm3, shell_solid, shell_volume_mm3
-from fabgen.sizing.records import Feed
+from fabgen.parts.shell import Body, Channel, revolved_volume_mm3, shell_solid, shell_volume_mm3
+from fabgen.sizing.records import ChokeSizes, Feed
 from fabgen.stock import tables
 
 if TYPE_CHECKING:
@@ -35,21 +37,44 @@ if TYPE_CHECKING:
 
 HUB_SCREW = "M4"
 HUB_SCREWS = 3
+HUB_CLEAR_MM = 0.5
+"""Between the hub and the flange."""
 HUB_FIT_MM = 0.1
 """On the diameter between can and choke hub: slides on by hand. Common practice, no source."""
 
 
+def hub_mm(feed: Feed) -> float:
+    """Height of the choke's hub below its floor: three screw diameters, or what there is above the flange."""
+    choke, sizes = feed.sizes.choke, feed.sizes
+    if choke is None:
+        return 0.0
+    flange = feed.job.can.flange
+    flange_top = (flange.thickness_mm or sizes.floor_mm) - sizes.floor_mm if flange.pattern != "none" else 0.0
+    room = choke.floor_z_mm - sizes.floor_mm - flange_top - HUB_CLEAR_MM
+    return min(3 * tables.screw(HUB_SCREW).diameter_mm, room)
+
+
+def choke_in_one(feed: Feed) -> bool:
+    """Whether can and choke are turned from one piece: the choke's floor is too low for a hub with screws."""
+    return feed.sizes.choke is not None and hub_mm(feed) < 2 * tables.screw(HUB_SCREW).diameter_mm
+
+
 def body_of(feed: Feed) -> Body:
     """The turned body's radii and heights."""
-    sizes = feed.sizes
-    outer = sizes.can_bore_mm / 2 + sizes.wall_mm
+    sizes, channel = feed.sizes, None
+    outer = widest = sizes.can_bore_mm / 2 + sizes.wall_mm
+    if sizes.choke is not None and choke_in_one(feed):
+        choke = sizes.choke
+        widest = choke.bore_mm / 2 + sizes.wall_mm
+        channel = Channel(choke.bore_mm / 2, widest, choke.floor_z_mm, choke.floor_z_mm + choke.depth_mm)
     return Body(
         inner_radius_mm=sizes.can_bore_mm / 2,
         outer_radius_mm=outer,
         floor_top_mm=0.0,
         floor_bottom_mm=-sizes.floor_mm,
         rim_mm=sizes.can_depth_mm,
-        flange=flange_plan(feed, 2 * outer),
+        flange=flange_plan(feed, 2 * widest),
+        channel=channel,
     )
 
 
@@ -58,7 +83,7 @@ def can_turned(feed: Feed) -> tuple[Part, ...]:
     sizes, body = feed.sizes, body_of(feed)
     openings = tuple(h.outline for h in floor_holes(feed))
     flange_holes: tuple[Outline, ...] = body.flange.holes if body.flange else ()
-    widest = max(2 * body.outer_radius_mm, body.flange.width_mm if body.flange else 0.0)
+    widest = max(2 * body.hull_radius_mm, body.flange.width_mm if body.flange else 0.0)
     can = metal_part(
         "can",
         "turned can",
@@ -77,24 +102,13 @@ def can_turned(feed: Feed) -> tuple[Part, ...]:
         solid=kernel.once(lambda: shell_solid(body, openings, flange_holes, "turned can")),
         notes=("inside corner radius 0.4 mm at most", "bore and floor turned in one setting"),
     )
-    return (can,) if sizes.choke is None else (can, _choke(feed, body))
+    return (can,) if sizes.choke is None or body.channel else (can, _choke(feed, body, sizes.choke))
 
 
-def _choke(feed: Feed, body: Body) -> Part:
-    sizes = feed.sizes
-    choke = sizes.choke
-    if choke is None:
-        raise GeometryError("this feed has no choke; set can.choke = true in the job")
-    screw = tables.screw(HUB_SCREW)
+def _choke(feed: Feed, body: Body, choke: ChokeSizes) -> Part:
+    sizes, screw, hub = feed.sizes, tables.screw(HUB_SCREW), hub_mm(feed)
     bore = 2 * body.outer_radius_mm + HUB_FIT_MM
     low = choke.floor_z_mm - sizes.floor_mm
-    hub = min(3 * screw.diameter_mm, low - body.flange_top_mm - 0.5)
-    if hub < 2 * screw.diameter_mm:
-        need = 2 * screw.diameter_mm - hub
-        raise GeometryError(
-            f"the choke's hub has {hub:.1f} mm of height and needs {2 * screw.diameter_mm:g} mm for its "
-            f"{HUB_SCREW} screws; raise can.choke.floor_z_mm by {need:.1f} mm"
-        )
     inner, hub_outer = bore / 2, bore / 2 + 2 * screw.diameter_mm
     wall = choke.bore_mm / 2
     rim = choke.floor_z_mm + choke.depth_mm

@@ -35,6 +35,8 @@ END_GAP_MM = 1.0
 """From the wire's bend to the open end of the tube: a blade's width to measure the overlap. Common practice."""
 BEND_RATIO = 1.5
 """Axis radius of the centre conductor's bend over its diameter: an inside radius of one diameter, soft copper."""
+WIDEST_FILLET_MM = 0.3
+"""A gap that solder fills by itself. Common practice, no source."""
 PTFE_DENSITY = 2200.0
 FILM_COLOUR = (0.93, 0.93, 0.90)
 
@@ -90,6 +92,10 @@ def coax_stub(feed: Feed) -> Part:
     bottom = floor_bottom_mm(feed)
     jacket = run.jacket_top_mm - bottom
     core = math.pi / 2 * run.bend_mm + (run.coax_y_mm - run.bend_mm) - run.core_end_y_mm
+    gap = run.x_mm - feed.sizes.leg_x_mm - (leg_depth_mm(feed) + row.outer_mm) / 2
+    bond = "solder the jacket along the bar at +y"
+    if gap > WIDEST_FILLET_MM:
+        bond += f", with a strip of copper in the gap of {gap:.1f} mm"
     volume = math.pi / 4 * (row.outer_mm**2 * jacket + row.inner_mm**2 * core)
     return Part(
         key="coax-stub",
@@ -108,7 +114,7 @@ def coax_stub(feed: Feed) -> Part:
             ("overlap_mm", feed.capacitor.overlap_mm),
         ),
         tolerance="bare length +0.5/0 mm, cut after the first measurement",
-        finish="jacket soldered along the bar at +y",
+        finish=bond,
         solid=kernel.once(lambda: _stub_solid(feed)),
         mass_kg=volume * 1e-9 * 5500.0,
         notes=(f"bend the bare centre conductor over {run.bend_mm:.1f} mm radius (of its axis) at the tap height",),

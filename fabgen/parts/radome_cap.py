@@ -36,6 +36,7 @@ from fabgen.stock import tables
 
 COVER_MM = 1.2
 """Thickness of the disc where the wavelength allows it: six layers of 0.2 mm. Common practice, no source."""
+NO_CAP = "leave can.radome out and close the can with a bought sheet of plastic"
 STRIP_MM = 12.0
 """Width of a strip over a joint of the disc. Common practice, no source."""
 
@@ -59,7 +60,7 @@ def radome_cap(feed: Feed) -> tuple[Part, ...]:
     outer_line, inner_line = _section(feed, inner + skirt), _section(feed, inner)
     rim, low = feed.sizes.can_depth_mm, feed.sizes.can_depth_mm - SKIRT_MM
     corner = 1.0 / math.cos(math.pi / feed.sizes.can_flats) if feed.sizes.can_flats else 1.0
-    envelope = Envelope("radome cap", inner + skirt, (inner + skirt) * corner, low, rim + cover, ())
+    envelope = Envelope("radome cap", inner + skirt, (inner + skirt) * corner, low, rim + cover, (), instead=NO_CAP)
     # No ears, hence an ear top under the bottom; the disc is too thin for a tongue.
     joint = Joint(envelope, plan_split(envelope, rules), rules, skirt, cover, low)
     drains = _drains(feed)

@@ -40,7 +40,11 @@ BELL_LINES = 4
 
 @dataclass(frozen=True)
 class Envelope:
-    """What the cuts must know of a body: radii, heights, keep-clear circles and keep-clear bands of height."""
+    """What the cuts must know of a body: radii, heights, keep-clear circles and keep-clear bands of height.
+
+    ``prefer_clear`` are circles that a cut crosses only when no other angle is left; ``instead`` is what to do when
+    the body cannot be cut.
+    """
 
     name: str
     wall_radius_mm: float
@@ -50,6 +54,8 @@ class Envelope:
     keep_clear: tuple[Circle, ...]
     bands: tuple[tuple[float, float], ...] = ()
     hub_radius_mm: float = 0.0
+    prefer_clear: tuple[Circle, ...] = ()
+    instead: str = "use can.make = 'rolled', which has no such limit"
 
 
 @dataclass(frozen=True)
@@ -97,8 +103,8 @@ def plan_split(envelope: Envelope, rules: PrintRules) -> Split:
     raise GeometryError(
         f"{envelope.name}: {2 * envelope.edge_radius_mm:.0f} mm wide and "
         f"{envelope.top_mm - envelope.bottom_mm:.0f} mm high cannot be cut into {MOST_PIECES} pieces or fewer for "
-        f"a printer bed of {bed[0]:g} x {bed[1]:g} x {bed[2]:g} mm; use can.make = 'rolled', "
-        "which has no such limit, or a larger limits.bed_mm"
+        f"a printer bed of {bed[0]:g} x {bed[1]:g} x {bed[2]:g} mm; "
+        f"{envelope.instead}, or a larger limits.bed_mm"
     )
 
 
@@ -175,13 +181,22 @@ def _clear_angle(envelope: Envelope, sectors: int) -> float | None:
     """Angle of the first cut, as near as can be to half a sector from +x, at which all cuts keep clear."""
     if sectors == 1:
         return 0.0
+    every = (*envelope.keep_clear, *envelope.prefer_clear)
+    return next(
+        (a for keep in (every, envelope.keep_clear) for a in _angles(sectors) if _all_clear(keep, a, sectors)), None
+    )
+
+
+def _angles(sectors: int) -> Iterator[float]:
     pitch = 360.0 / sectors
     for step in range(int(pitch)):
-        for first in (pitch / 2 + step / 2, pitch / 2 - step / 2):
-            angles = [math.radians(first + pitch * i) for i in range(sectors)]
-            if all(_clears(hole, a) for hole in envelope.keep_clear for a in angles):
-                return first
-    return None
+        yield pitch / 2 + step / 2
+        yield pitch / 2 - step / 2
+
+
+def _all_clear(keep: Sequence[Circle], first_deg: float, sectors: int) -> bool:
+    angles = [math.radians(first_deg + 360.0 * i / sectors) for i in range(sectors)]
+    return all(_clears(hole, angle) for hole in keep for angle in angles)
 
 
 def _clears(hole: Circle, angle: float) -> bool:

@@ -120,6 +120,7 @@ def _write(document: Any, name: str, path: Path) -> None:
         return TCollection_HAsciiString(ascii_text(text))
 
     header.SetName(ascii_string(name))
+    header.SetDescriptionValue(1, ascii_string(name))
     header.SetTimeStamp(ascii_string(STAMP))
     header.SetPreprocessorVersion(ascii_string("fabgen"))
     header.SetOriginatingSystem(ascii_string("fabgen"))

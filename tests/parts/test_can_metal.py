@@ -6,13 +6,14 @@ import math
 
 import pytest
 
-from fabgen.errors import GeometryError, NotCoveredError
+from fabgen.errors import NotCoveredError
 from fabgen.parts.can_tube import can_tube
 from fabgen.parts.can_turned import can_turned
 from fabgen.parts.contour import area_mm2
 from fabgen.parts.floor_plan import flange_plan
 from fabgen.parts.records import Part
 from fabgen.stock import tables
+from tests.parts.feeds import with_cable
 from tests.samples import sample_feed
 
 
@@ -119,10 +120,17 @@ def test_square_flange_has_its_holes_on_the_sides_of_a_square(count: int) -> Non
         assert math.hypot(x, y) > 223.6 / 2 + 3.5  # half the head of an M4 socket screw, ISO 4762, from memory
 
 
-def test_low_choke_names_the_floor_height_that_works() -> None:
-    feed = sample_feed("wire", "turned", frequency_mhz=5800.0, choke=True)
-    with pytest.raises(GeometryError, match=r"raise can\.choke\.floor_z_mm by \d"):
-        can_turned(feed)
+def test_low_choke_is_turned_in_the_same_piece() -> None:
+    plain = {"drain_holes": False, "flange": {"pattern": "none"}}
+    feed = sample_feed("wire", "turned", frequency_mhz=5800.0, choke=True, **plain)
+    (part,) = can_turned(with_cable(feed, coax="rg405"))
+    sizes, choke = feed.sizes, feed.sizes.choke
+    assert choke is not None
+    assert part.solid is not None
+    assert {sizes.can_bore_mm / 2, choke.bore_mm / 2} <= cylinder_radii(part)
+    steps = {round(f.Center().z, 6) for f in part.solid().Faces() if f.geomType() == "PLANE" and f.normalAt().z > 0.5}
+    assert steps == {0.0, sizes.can_depth_mm, choke.floor_z_mm, round(choke.floor_z_mm + choke.depth_mm, 6)}
+    assert part.mass_kg == pytest.approx(part.solid().Volume() * 1e-9 * density(part), rel=1e-6)
 
 
 def test_tube_can_with_a_flange_of_another_thickness_is_refused() -> None:

@@ -195,7 +195,7 @@ def test_408_mhz_is_refused_with_the_make_that_works() -> None:
 
 
 def test_low_choke_is_one_piece_with_the_can() -> None:
-    keys = {p.key for p in printed_of("small")}
+    keys = {p.key for p in printed_of("small") if not p.key.startswith("jig")}
     assert keys == {"can", "radome"}
 
 

@@ -71,3 +71,14 @@ def test_ring_joints_stay_off_the_bands() -> None:
 def test_a_bed_too_low_for_a_joint_is_refused() -> None:
     with pytest.raises(GeometryError, match="too low for the joints"):
         plan_split(envelope(50.0, 100.0), rules((220.0, 220.0, 20.0)))
+
+
+def test_a_connector_over_the_axis_does_not_forbid_all_cuts() -> None:
+    wide = Envelope("body", 100.0, 100.0, 0.0, 40.0, (), prefer_clear=(Circle(5.0, 0.0, 36.0),))
+    assert plan_split(wide, rules((150.0, 150.0, 150.0))).sectors > 1
+
+
+def test_the_refusal_says_what_to_do_instead() -> None:
+    cap = Envelope("cap", 400.0, 400.0, 0.0, 10.0, (), instead="leave the cap out")
+    with pytest.raises(GeometryError, match=r"leave the cap out, or a larger limits\.bed_mm"):
+        plan_split(cap, rules((150.0, 150.0, 150.0)))
