@@ -19,7 +19,7 @@ from fabgen.sizing.can_start import CHOKE, least_efficiency, start_can
 from fabgen.sizing.dish import half_angle_rad
 from fabgen.sizing.evaluate import in_dish
 from fabgen.sizing.layout import LoopStock
-from fabgen.sizing.match import SolveSizes, tap_range_mm
+from fabgen.sizing.match import SolveSizes, tap_in_range_mm
 from fabgen.sizing.records import CanTrial, ChokeSizes
 from fabgen.sizing.rounding import round_to
 from fabgen.sizing.trial import WALL_MM, CanShape, FrontPlace, Setting, first_sizes
@@ -170,8 +170,7 @@ class _Search:
         self.progress.step(f"searching the can: bore {can.bore_mm:.1f} mm, depth {can.depth_mm:.1f} mm")
         # The pattern hardly depends on the tap, so any tap that the bars take will do here.
         sizes = first_sizes(Setting(self.job, self.stock, can), self.place)
-        low, high = tap_range_mm(sizes)
-        solution = self.solve(replace(sizes, tap_height_mm=min(max(sizes.tap_height_mm, low), high)))
+        solution = self.solve(replace(sizes, tap_height_mm=tap_in_range_mm(sizes)))
         figures = in_dish(self.job, solution)
         merit = figures.merit(self.job.wishes.goal, least_efficiency(self.half_angle))
         self.trials.append(

@@ -32,6 +32,8 @@ FOOT_MM = 13.0
 BEND_ROOM_MM = 1.5
 PLATE_WAVELENGTHS = 0.018
 LEAST_PLATE_MM = 1.0
+FIT_SHARE = 0.8
+"""Outer edges of the bars over the ring's inner radius: beyond this the tabs leave no ring beside them."""
 LEAST_FOOT_SCREW = "M2"
 
 
@@ -122,7 +124,7 @@ def leg_place(stock: LoopStock, loop_diameter_mm: float, loop_height_mm: float) 
     relief = max(FOLD_RELIEF_MM, thickness)
     far, near = half_pitch + stock.leg_width_mm / 2, half_pitch - stock.leg_width_mm / 2
     inner, outer = radius - width / 2, radius + width / 2
-    if far >= 0.95 * inner:
+    if far >= FIT_SHARE * inner:
         raise NoSolutionError(
             f"bars at a pitch of {stock.leg_pitch_mm:g} mm with {stock.leg_width_mm:g} mm width do not fit a ring "
             f"of {loop_diameter_mm:.1f} mm; use a narrower strip or a smaller leg pitch"

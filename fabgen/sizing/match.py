@@ -57,6 +57,17 @@ def tap_range_mm(sizes: Sizes) -> tuple[float, float]:
     return half + depth / 2, sizes.loop_height_mm - max(bend, depth) - half - depth / 2
 
 
+def tap_in_range_mm(sizes: Sizes) -> float:
+    """The tap of ``sizes``, moved into what the bars take. Raises ``MatchError`` when they are too short for any."""
+    low, high = tap_range_mm(sizes)
+    if low >= high:
+        raise MatchError(
+            f"the bars are too short for a tap: loop height {sizes.loop_height_mm:.1f} mm leaves no straight part "
+            "between floor and bend; use a higher loop, thinner stock or a smaller bend radius"
+        )
+    return min(max(sizes.tap_height_mm, low), high)
+
+
 def tap_for_resistance(
     solve: SolveSizes, sizes: Sizes, target_ohm: float = LINE_OHM, tolerance: float = RESISTANCE_TOLERANCE
 ) -> Match:
@@ -66,12 +77,7 @@ def tap_for_resistance(
     straight part of the bars ends before the resistance is reached.
     """
     low, high = tap_range_mm(sizes)
-    if low >= high:
-        raise MatchError(
-            f"the bars are too short for a tap: loop height {sizes.loop_height_mm:.1f} mm leaves no straight part "
-            "between floor and bend; use a higher loop, thinner stock or a smaller bend radius"
-        )
-    tap = min(max(sizes.tap_height_mm, low), high)
+    tap = tap_in_range_mm(sizes)
     seen: list[tuple[float, float]] = []
     for count in range(1, MOST_STEPS + 1):
         trial = replace(sizes, tap_height_mm=tap)

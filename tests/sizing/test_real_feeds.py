@@ -7,6 +7,7 @@ from pathlib import Path
 
 import pytest
 
+from fabgen.errors import NoSolutionError
 from fabgen.job import Job
 from fabgen.job_reader import read_job
 from fabgen.sizing.dish import beam, edge_taper_db, plane_cut
@@ -14,7 +15,7 @@ from fabgen.sizing.evaluate import in_dish
 from fabgen.sizing.field_solver import FieldSolver
 from fabgen.sizing.match import reflection, return_loss_db
 from fabgen.sizing.response import gain_at
-from fabgen.sizing.size_feed import MatchedFeed, find_matched
+from fabgen.sizing.size_feed import MatchedFeed, find_matched, size_feed
 from tests.samples import sample_job
 
 TEMPLATES = sorted((Path(__file__).parents[2] / "templates").glob("*.toml"))
@@ -46,6 +47,40 @@ def test_template_on_a_mesh_of_half_the_edge(name: str) -> None:
     target = job.target.frequency_mhz
     fine = FieldSolver(job, 2 * found.final.edges_per_wavelength).solve(sizes, target)
     assert return_loss_db(reflection(fine.impedance_ohm, sizes.series_capacitor_pf, target)) >= 16
+
+
+@pytest.mark.parametrize(
+    ("frequency_mhz", "loop", "refusal"),
+    [
+        (300.0, {"form": "wire", "wire_mm": 8.0}, None),
+        (3000.0, {"form": "sheet", "sheet_mm": 0.3, "metal": "cuzn37"}, None),
+        (12_000.0, {"form": "wire", "wire_mm": 1.0}, None),
+        (12_000.0, {"form": "wire", "wire_mm": 2.4}, "use wire of 1 mm"),
+        (5760.0, {"form": "sheet", "sheet_mm": 0.5, "metal": "cuzn37"}, "use a loop of 1 mm wire"),
+    ],
+)
+def test_ends_of_the_range(frequency_mhz: float, loop: dict[str, object], refusal: str | None) -> None:
+    job = Job.model_validate(
+        {
+            "target": {"frequency_mhz": frequency_mhz},
+            "dish": {"diameter_m": 3.0, "focal_ratio": 0.4},
+            "loop": loop,
+            "can": {"make": "turned"},
+            "cable": {"coax": "rg405"},
+            "limits": {"resolution_mm": 0.05},
+            "wishes": {"selectivity": "broad"},
+        }
+    )
+
+    def coarse(other: Job, density: float) -> FieldSolver:
+        return FieldSolver(other, min(density, 11.2))
+
+    if refusal is not None:
+        with pytest.raises(NoSolutionError, match=f"The nearest job that works: {refusal}"):
+            size_feed(job, make_solver=coarse)
+    else:
+        found = find_matched(job, make_solver=coarse)
+        assert return_loss_db(found.matched.reflection(frequency_mhz)) >= 20
 
 
 def practice_job() -> Job:
