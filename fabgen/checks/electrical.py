@@ -251,6 +251,22 @@ def band_of_the_target(context: Context) -> Iterator[Fault]:
         )
 
 
+@check("ELEC-406", "note", source="table of bands; the national table of allocations decides")
+def licence_to_transmit(context: Context) -> Iterator[Fault]:
+    """Transmitting outside the licence-free bands."""
+    power = context.job.wishes.transmit_w
+    if power <= 0 or any(band.kind in {"ism", "srd"} for band in _bands(context.frequency_mhz)):
+        return
+    yield Fault(
+        part="feed",
+        feature="frequency",
+        value=f"{context.frequency_mhz:g} MHz",
+        limit="a licence-free band",
+        message=f"transmitting {power:g} W at {context.frequency_mhz:g} MHz needs a licence",
+        cure=f"ask the national table of allocations who may use {context.frequency_mhz:g} MHz, and with what power",
+    )
+
+
 def _bands(frequency_mhz: float) -> list[Band]:
     rows: tuple[Band, ...] = tables.all_rows("band")
     return [row for row in rows if row.low_mhz <= frequency_mhz <= row.high_mhz]

@@ -258,6 +258,9 @@ PAIRS: dict[str, Pair] = {
     "ELEC-403": Pair(lambda: (transmit(50.0), ()), good(), "caution", "people"),
     "ELEC-404": Pair(lambda: (transmit(1.0, 1420.0), ()), lambda: (transmit(1.0, 1296.0), ()), "stop", "prohibited"),
     "ELEC-405": Pair(good(), lambda: (base(WIRE, "tube", 1296.0), ()), "note", "1400 to 1427"),
+    "ELEC-406": Pair(
+        lambda: (transmit(10.0), ()), lambda: (transmit(1.0, 2450.0), ()), "note", "needs a licence"
+    ),
     "ELEC-501": Pair(
         good(), lambda: (with_job(base(), limits={"environment": "indoor"}), parts_of()), "note", "floating"
     ),
