@@ -28,6 +28,9 @@ from fabgen.theory.waveguide import cutoff_bore_mm
 BORE_STEP = 0.028
 DEPTH_STEP = 0.048
 """Steps that a mesh follows by moving: what differs is then the can and not the mesh."""
+CHOKE_BORE_STEP, CHOKE_DEPTH_STEP = 0.045, 0.09
+LEAST_GAP_WAVELENGTHS = 0.1
+"""Least difference between the choke's bore and the can's outside. Common practice, no source."""
 CUTOFF_MARGIN = 1.12
 RIM_WAVELENGTHS = 0.02
 """The rim stands at least this far above the loop. Common practice, no source."""
@@ -86,9 +89,15 @@ def find_can(
     search = _Search(job, stock, place, solve, progress)
     can = search.start()
     if job.fixed.can_bore_mm is None:
-        can = search.along(can, "bore_mm", BORE_STEP)
+        can = search.along(can, "bore_mm", BORE_STEP * can.bore_mm)
     if job.fixed.can_depth_mm is None:
-        can = search.along(can, "depth_mm", DEPTH_STEP)
+        can = search.along(can, "depth_mm", DEPTH_STEP * can.depth_mm)
+    if can.choke is not None:
+        given = job.can.choke if isinstance(job.can.choke, Choke) else Choke()
+        if given.bore_mm is None:
+            can = search.along(can, "choke.bore_mm", CHOKE_BORE_STEP * can.choke.bore_mm)
+        if given.depth_mm is None and can.choke is not None:
+            can = search.along(can, "choke.depth_mm", CHOKE_DEPTH_STEP * can.choke.depth_mm)
     return CanFound(can, tuple(search.trials), tuple(search.remarks))
 
 
@@ -109,6 +118,7 @@ class _Search:
         height = job.fixed.loop_height_mm or place.height * job.wavelength_mm
         self.least_depth = height + RIM_WAVELENGTHS * job.wavelength_mm
         self.trials: list[CanTrial] = []
+        self.known: dict[CanShape, float] = {}
         self.remarks: list[str] = []
         fixed = job.fixed.can_bore_mm
         self.range = BoreRange(fixed, fixed, "the job") if fixed else bore_range(job)
@@ -146,39 +156,61 @@ class _Search:
 
     def along(self, can: CanShape, name: str, step: float) -> CanShape:
         """The best of three values of one size and of the top of the parabola through them."""
-        size: float = getattr(can, name)
-        cans = [self.moved(can, name, x) for x in (size, size * (1 - step), size * (1 + step))]
-        points: list[tuple[float, float]] = [(getattr(c, name), self.merit(c)) for c in cans]
+        size = _size_of(can, name)
+        cans = [self.moved(can, name, x) for x in (size, size - step, size + step)]
+        points = [(_size_of(c, name), self.merit(c)) for c in cans]
         best = parabola_top(points)
         found = self.moved(can, name, best)
-        value: float = getattr(found, name)
-        if all(abs(value - x) > 0.25 * step * size for x, _ in points):
+        value = _size_of(found, name)
+        if all(abs(value - x) > 0.25 * step for x, _ in points):
             points.append((value, self.merit(found)))
             return self.moved(can, name, max(points, key=lambda p: p[1])[0])
         return found
 
     def moved(self, can: CanShape, name: str, value: float) -> CanShape:
         rounded = round_to(value, self.job.limits.resolution_mm)
+        if name.startswith("choke."):
+            return self.with_moved_choke(can, name.removeprefix("choke."), rounded)
         if name == "bore_mm":
             return self.with_choke(replace(can, bore_mm=self.clip(rounded)))
         return self.with_choke(replace(can, depth_mm=max(rounded, round_to(self.least_depth, self.step))))
 
+    def with_moved_choke(self, can: CanShape, name: str, value: float) -> CanShape:
+        """Another choke bore or depth, kept clear of the can's wall and with its rim where it was."""
+        if can.choke is None:
+            return can
+        wall = self.job.can.wall_mm or WALL_MM[self.job.can.make]
+        if name == "bore_mm":
+            least = can.bore_mm + 2 * wall + LEAST_GAP_WAVELENGTHS * self.job.wavelength_mm
+            return replace(can, choke=replace(can.choke, bore_mm=max(value, round_to(least, self.step))))
+        rim = can.choke.floor_z_mm + can.choke.depth_mm
+        fixed = isinstance(self.job.can.choke, Choke) and self.job.can.choke.floor_z_mm is not None
+        floor = can.choke.floor_z_mm if fixed else max(0.0, round_to(rim - value, self.step))
+        return replace(can, choke=replace(can.choke, depth_mm=value, floor_z_mm=floor))
+
     def merit(self, can: CanShape) -> float:
-        for known in self.trials:
-            if (known.bore_mm, known.depth_mm) == (can.bore_mm, can.depth_mm):
-                return known.merit
+        if can in self.known:
+            return self.known[can]
         self.progress.step(f"searching the can: bore {can.bore_mm:.1f} mm, depth {can.depth_mm:.1f} mm")
         # The pattern hardly depends on the tap, so any tap that the bars take will do here.
         sizes = first_sizes(Setting(self.job, self.stock, can), self.place)
         solution = self.solve(replace(sizes, tap_height_mm=tap_in_range_mm(sizes)))
         figures = in_dish(self.job, solution)
         merit = figures.merit(self.job.wishes.goal, least_efficiency(self.half_angle))
+        self.known[can] = merit
         self.trials.append(
             CanTrial(
                 can.bore_mm, can.depth_mm, figures.dish.aperture_efficiency, figures.noise.g_over_t_db_per_k, merit
             )
         )
         return merit
+
+
+def _size_of(can: CanShape, name: str) -> float:
+    """A size of the can, or of its choke for names that start with ``choke.``."""
+    owner = can.choke if name.startswith("choke.") else can
+    size: float = getattr(owner, name.removeprefix("choke."))
+    return size
 
 
 def parabola_top(points: list[tuple[float, float]]) -> float:
