@@ -202,6 +202,8 @@ def _figures(row: Mapping[str, Any]) -> Iterator[str]:
             yield "tempers " + ", ".join(str(temper["key"]) for temper in value)
         elif name == "rows":
             yield ", ".join(f"to {up_to:g}: {figure:g}" for up_to, figure in value)
+        elif name.endswith("_mm") and isinstance(value, tuple):
+            yield f"{name} " + ", ".join(f"{item:g}" for item in value)
         elif isinstance(value, float):
             yield f"{name} {value:g}"
         elif not isinstance(value, dict | list | tuple):

@@ -146,6 +146,37 @@ class Screw:
 
 
 @dataclass(frozen=True)
+class Wire:
+    """A series of round wire that shops keep."""
+
+    key: str
+    name: str
+    diameters_mm: tuple[float, ...]
+    source: Source
+
+
+@dataclass(frozen=True)
+class Sheet:
+    """The thicknesses of sheet that shops keep in one metal."""
+
+    key: str
+    name: str
+    metal: str
+    thicknesses_mm: tuple[float, ...]
+    source: Source
+
+
+@dataclass(frozen=True)
+class Printer:
+    """A class of printer by its bed: x, y and height."""
+
+    key: str
+    name: str
+    bed_mm: tuple[float, ...]
+    source: Source
+
+
+@dataclass(frozen=True)
 class Limit:
     """One limit of the trade that a check holds a size against; a job may override its value."""
 

@@ -27,16 +27,22 @@ from fabgen.stock.records import (
     Lining,
     Metal,
     Plastic,
+    Printer,
     Screw,
+    Sheet,
     Temper,
     Tolerance,
+    Wire,
 )
 from fabgen.stock.rows import build_row
 
 KINDS: Mapping[str, type] = {
     "metal": Metal,
+    "wire": Wire,
+    "sheet": Sheet,
     "lining": Lining,
     "plastic": Plastic,
+    "printer": Printer,
     "connector": Connector,
     "coax": Coax,
     "screw": Screw,
