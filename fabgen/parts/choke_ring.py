@@ -45,6 +45,7 @@ from fabgen.stock import tables
 
 CLEARANCE_MM = 0.15
 """Between the ring and the can's wall, all round. Common practice, no source."""
+SHORTEST_MM = 0.1
 RECESS_MARGIN_MM = 1.0
 """The recess at the seam is that much longer than the lap at each end."""
 
@@ -69,16 +70,26 @@ def choke_fixings(feed: Feed) -> Fixings | None:
     along = shape.inside_radius_mm + s.floor_mm / 2 + shape.hole_from_bend_mm
     height = choke.floor_z_mm - s.floor_mm / 2 + (-along if _down(feed) else along)
     if not shape.hole_mm < height < s.can_depth_mm - 2 * shape.hole_mm:
-        change = max(height - s.can_depth_mm + 2 * shape.hole_mm, height - shape.hole_mm)
         raise GeometryError(
-            f"the choke's ring at z = {choke.floor_z_mm:g} mm puts its screws at {height:.1f} mm on a wall of "
-            f"{s.can_depth_mm:g} mm; set can.choke.floor_z_mm to {choke.floor_z_mm - change:.1f} mm"
+            f"the choke's ring at z = {choke.floor_z_mm:g} mm puts its screws at {height:.1f} mm on the can's wall; "
+            f"they have room from {shape.hole_mm:.1f} to {s.can_depth_mm - 2 * shape.hole_mm:.1f} mm: move "
+            "can.choke.floor_z_mm, use thinner sheet, or another make of can"
         )
     pitch = tables.limit("seam_screw_pitch_max_wavelengths", feed.job.overrides).value * feed.job.wavelength_mm
     if tables.metal(feed.job.can.metal).solderable:
         pitch *= SOLDERED_PITCH_FACTOR
     count = max(3, math.ceil(math.pi * s.can_bore_mm / pitch))
-    return Fixings(height, count, shape.width_mm + 2 * shape.relief_mm + 2.0)
+    # In the flat the tabs point to the axis and come closer to each other the longer they are.
+    bend = Bend(90.0, shape.inside_radius_mm, shape.k_factor)
+    long, radius = allowance_mm(bend, s.floor_mm) + shape.length_mm, s.can_bore_mm / 2
+    if long > 0.8 * radius:
+        raise GeometryError(
+            f"tabs of {long:.1f} mm for the choke's ring meet in the middle of a can of {2 * radius:.1f} mm bore; "
+            "use thinner sheet or another make of can"
+        )
+    room = max(shape.width_mm + 2 * shape.relief_mm, shape.width_mm * radius / (radius - long)) + 2.0
+    corner = long * math.tan(math.pi / s.can_flats) + shape.width_mm / 2 + 1.0 if s.can_flats else 0.0
+    return Fixings(height, count, room, max(corner, room / 2))
 
 
 def _tab_edge(shape: TabShape, root: float, tip: float, half_mm: float) -> list[Vertex]:
@@ -109,9 +120,11 @@ def _recess(feed: Feed, wall: Wall, start: Vertex, end: Vertex) -> list[Vertex]:
         return dx * ox + dy * oy, -dx * oy + dy * ox
 
     low, high = local(start)[1], local(end)[1]
-    out = wall.path.thickness_mm * 1.5 + SEAM_GAP_MM + CLEARANCE_MM
     r = max(feed.job.limits.corner_radius_mm, 0.5)
-    c = out - r
+    lap = 1.5 * wall.path.thickness_mm + SEAM_GAP_MM + CLEARANCE_MM
+    # Straight sides of the recess are never so short that a cutter would stutter.
+    c = max(lap - r, local(start)[0] + SHORTEST_MM, local(end)[0] + SHORTEST_MM)
+    out = c + r
     shape = [
         *split_arc((c, low + r), r, -90.0, 90.0), Vertex(out, low + r),
         *split_arc((c, high - r), r, 0.0, 90.0), Vertex(c, high),
@@ -140,19 +153,25 @@ def _inner_edge(feed: Feed, wall: Wall, shape: TabShape, root: float, tip: float
             span = outer / piece.flat_mm
             if piece.radius_mm:
                 span = math.asin(outer / reach) / math.radians(piece.sweep_deg)
-            left = part_of(piece, cursor, share - span)
-            vertices += [*offset_side(left, edge), _end_of(left, edge)]
+            vertices += _edge_piece(piece, cursor, share - span, edge)
             place, heading = piece.at(share)
             tab = _placed(_tab_edge(shape, root, tip, shape.width_mm / 2), place, heading)
             vertices += tab
             ends = _placed([Vertex(root, -shape.width_mm / 2), Vertex(root, shape.width_mm / 2)], place, heading)
             roots.append(((ends[1].x_mm, ends[1].y_mm), (ends[0].x_mm, ends[0].y_mm)))
             cursor = share + span
-        rest = part_of(piece, cursor, last)
-        vertices += [*offset_side(rest, edge), _end_of(rest, edge)]
+        vertices += _edge_piece(piece, cursor, last, edge)
     closing = _recess(feed, wall, vertices[-1], vertices[0])
     ring = reversed_contour(tidied(Contour((*vertices[:-1], *closing))))
     return ring, [edge_of(ring, *ends) for ends in roots]
+
+
+def _edge_piece(piece: Stretch, first: float, last: float, right_mm: float) -> list[Vertex]:
+    """The wall between two shares of a stretch, moved to the right; nothing for a piece too short to cut."""
+    if (last - first) * piece.flat_mm < SHORTEST_MM:
+        return []
+    part = part_of(piece, first, last)
+    return [*offset_side(part, right_mm), _end_of(part, right_mm)]
 
 
 def _end_of(piece: Stretch, right_mm: float) -> Vertex:

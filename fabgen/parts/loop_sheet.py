@@ -103,6 +103,14 @@ def foot_screw(feed: Feed) -> Screw:
     return least
 
 
+def _foot_width(feed: Feed, pad_mm: float) -> float:
+    """The bar's width, or the pad's with shoulders long enough for their two roundings."""
+    width, corner = feed.sizes.leg_width_mm, feed.job.limits.corner_radius_mm
+    if pad_mm < width + 0.1:
+        return width
+    return max(pad_mm, width + math.sqrt(2) * (2 * corner * math.tan(math.pi / 8) + 0.1))
+
+
 def tab_plan(feed: Feed) -> TabPlan:
     """Lengths of the tabs from the feed's sizes.
 
@@ -130,7 +138,7 @@ def tab_plan(feed: Feed) -> TabPlan:
     half = s.leg_width_mm / 2
     return TabPlan(
         sign, s.leg_x_mm - sign * mid, s.leg_pitch_mm / 2 - half, s.leg_pitch_mm / 2 + half, bar, foot,
-        max(s.leg_width_mm, _pad_mm(screw, t)), hole, from_bend, screw.key,
+        _foot_width(feed, _pad_mm(screw, t)), hole, from_bend, screw.key,
     )
 
 
@@ -240,7 +248,7 @@ def _foot(feed: Feed, plan: TabPlan) -> Contour:
     width, more = feed.sizes.leg_width_mm, (plan.foot_width_mm - feed.sizes.leg_width_mm) / 2
     end, inner = min(2.0, width / 4), feed.job.limits.corner_radius_mm
     low, high = (-more, plan.foot_mm, end), (width + more, plan.foot_mm, end)
-    if more < 0.05:
+    if more == 0.0:
         return rounded([(0, 0, 0), (width, 0, 0), high, low])
     # The shoulders begin clear of the bend by the roundings that they need.
     rise = 2 * inner * math.tan(math.pi / 8) + 0.2

@@ -34,11 +34,12 @@ class _Bends:
 @dataclass(frozen=True)
 class Fixings:
     """What holds a choke on the wall: holes at a height over the lower edge, about so many, each with that much
-    room along the wall."""
+    room along the wall, and at least ``end_mm`` from a fold, the lap or the step."""
 
     height_mm: float
     count: int
     room_mm: float
+    end_mm: float
 
 
 def joint_screw(bore_mm: float) -> Screw:
@@ -128,10 +129,12 @@ def _seam(feed: Feed, path: StripPath, depth_mm: float, bends: _Bends, overlap: 
     outer = tail + (inner + EDGE_GAP_MM) * ratio
     bottom, top = low + 2 * hole, depth_mm - 2 * hole
     pitch = tables.limit("seam_screw_pitch_max_wavelengths", feed.job.overrides).value * feed.job.wavelength_mm
-    count = max(2, math.ceil((top - bottom) / pitch) + 1)
-    while count > 2 and (top - bottom) / (count - 1) < 3 * hole:
+    count = max(1, math.ceil((top - bottom) / pitch) + 1)
+    while count > 1 and (top - bottom) / (count - 1) < 3 * hole:
         count -= 1
-    heights = tuple(bottom + (top - bottom) * i / (count - 1) for i in range(count))
+    heights = tuple(bottom + (top - bottom) * i / (count - 1) for i in range(count)) if count > 1 else (
+        (bottom + top) / 2,
+    )
     return Seam(step, tail, low, inner, outer, heights, hole, screw.key)
 
 
@@ -174,11 +177,11 @@ def _fixing_holes(
 ) -> tuple[WallHole, ...]:
     """Holes above tabs, spread evenly, clear of the lap and of folds."""
     free: list[float] = []
-    half = fixings.room_mm / 2
+    end = fixings.end_mm
     for at, piece in zip(path.starts_mm(), path.stretches, strict=False):
         low, high = max(at, overlap), min(at + piece.flat_mm, seam.step_at_mm)
         if piece.rolled or not piece.radius_mm:
-            free += [s for s in tabs_mm if low + half <= s <= high - half]
+            free += [s for s in tabs_mm if low + end <= s <= high - end]
     if len(free) < 3:
         raise GeometryError(
             f"the can's wall has room for {len(free)} of the choke's fixings and needs 3; "
