@@ -10,7 +10,7 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from fabgen.errors import GeometryError
+from fabgen.errors import GeometryError, NotCoveredError
 from fabgen.parts.bend_strip import bend_strip
 from fabgen.parts.can_folded import can_folded
 from fabgen.parts.can_printed import can_printed
@@ -73,6 +73,11 @@ def assembly(parts: Sequence[Part]) -> Iterator[Placement]:
 
 
 def _can(feed: Feed) -> tuple[Part, ...]:
+    choke = feed.sizes.choke
+    if choke is not None and choke.floor_z_mm < 0:
+        raise NotCoveredError(
+            f"can.choke.floor_z_mm = {choke.floor_z_mm:g} puts the choke's floor below the can's; give 0 or more"
+        )
     makers = {
         "rolled": can_rolled,
         "folded": can_folded,

@@ -20,7 +20,7 @@ from __future__ import annotations
 
 import math
 
-from fabgen.errors import NotCoveredError
+from fabgen.errors import GeometryError, NotCoveredError
 from fabgen.parts import kernel
 from fabgen.parts.contour import Circle, Outline, area_mm2
 from fabgen.parts.floor_holes import floor_holes
@@ -44,8 +44,9 @@ def can_tube(feed: Feed) -> tuple[Part, ...]:
     ]
     choke = sizes.choke
     if choke is not None:
+        if choke.floor_z_mm > 0:
+            parts.append(_choke_floor(feed, stock, choke))
         parts += [
-            _choke_floor(feed, stock, choke),
             _tube(
                 feed, stock, "choke-tube",
                 bore_mm=choke.bore_mm, length_mm=choke.depth_mm, z_mm=choke.floor_z_mm,
@@ -63,6 +64,9 @@ def _joint(feed: Feed) -> str:
 def _floor(feed: Feed, stock: tuple[str, str | None]) -> Part:
     sizes = feed.sizes
     outer = sizes.can_bore_mm + 2 * sizes.wall_mm
+    if sizes.choke is not None and sizes.choke.floor_z_mm == 0:
+        # A choke as deep as the can stands on the same floor.
+        outer = sizes.choke.bore_mm + 2 * sizes.wall_mm
     plan = flange_plan(feed, outer)
     holes: tuple[Outline, ...] = tuple(h.outline for h in floor_holes(feed))
     outline: Outline = Circle(0.0, 0.0, outer + 2 * LIP_MM)
@@ -115,6 +119,11 @@ def _tube(
 
 def _choke_floor(feed: Feed, stock: tuple[str, str | None], choke: ChokeSizes) -> Part:
     sizes = feed.sizes
+    if choke.floor_z_mm < sizes.floor_mm:
+        raise GeometryError(
+            f"can.choke.floor_z_mm = {choke.floor_z_mm:g} puts the choke's floor, {sizes.floor_mm:g} mm thick, into "
+            f"the can's; give 0 for one floor, or {sizes.floor_mm:g} or more"
+        )
     outer = choke.bore_mm + 2 * sizes.wall_mm + 2 * LIP_MM
     hole = sizes.can_bore_mm + 2 * sizes.wall_mm
     outline, inner = Circle(0.0, 0.0, outer), Circle(0.0, 0.0, hole)

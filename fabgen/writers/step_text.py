@@ -11,15 +11,30 @@ from __future__ import annotations
 
 import hashlib
 import re
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
 
 from fabgen.errors import OutputError
 
 _ENTITY = re.compile(r"#(\d+)\s*=\s*(.*?);\s*(?=#\d+\s*=|ENDSEC)", re.DOTALL)
-_REFERENCE = re.compile(r"'(?:[^']|'')*'|#(\d+)")
-"""A text, which is passed over, or a reference."""
+_TOKEN = re.compile(r"('(?:[^']|'')*')|#(\d+)")
 _OCCURRENCE = re.compile(r"NEXT_ASSEMBLY_USAGE_OCCURRENCE\('[^']*'")
 _BREAK = re.compile(r"\s*\n\s*")
+_NUMBER = re.compile(r"#(\d+)")
+
+
+@dataclass(frozen=True)
+class _Entity:
+    """An entity's text cut at its references: ``texts`` is one longer than ``references``."""
+
+    texts: tuple[str, ...]
+    references: tuple[int, ...]
+
+    def written(self, names: Mapping[int, str]) -> str:
+        pieces = [self.texts[0]]
+        for reference, text in zip(self.references, self.texts[1:], strict=True):
+            pieces += (names[reference], text)
+        return "".join(pieces)
 
 
 def canonical_step(text: str) -> str:
@@ -31,28 +46,45 @@ def canonical_step(text: str) -> str:
     head, mark, data = text.partition("DATA;\n")
     if not mark:
         raise OutputError("the CAD kernel wrote no STEP data; check that the disk is not full and try again")
-    bodies = {int(n): _BREAK.sub("", _OCCURRENCE.sub(_reset, body)) for n, body in _ENTITY.findall(data)}
-    children = {n: tuple(int(c) for c in _REFERENCE.findall(body) if c) for n, body in bodies.items()}
-    hashes = _hashes(bodies, children)
-    used = {c for cs in children.values() for c in cs}
-    roots = sorted((n for n in bodies if n not in used), key=lambda n: hashes[n])
-    numbers = {old: new for new, old in enumerate(_post_order(roots, children), start=1)}
-    lines = []
-    for old, new in numbers.items():
-        body = _replaced(bodies[old], numbers)
-        lines.append(f"#{new}={_numbered(body, new)};\n")
+    entities = {int(n): _entity(body) for n, body in _ENTITY.findall(data)}
+    hashes = _hashes(entities)
+    used = {c for entity in entities.values() for c in entity.references}
+    roots = sorted((n for n in entities if n not in used), key=lambda n: hashes[n])
+    order = _post_order(roots, entities)
+    names = {old: f"#{new}" for new, old in enumerate(order, start=1)}
+    lines = (f"{names[old]}={_numbered(entities[old].written(names), names[old])};\n" for old in order)
     return f"{head}DATA;\n{''.join(lines)}ENDSEC;\nEND-ISO-10303-21;\n"
 
 
-def _reset(_: re.Match[str]) -> str:
-    return "NEXT_ASSEMBLY_USAGE_OCCURRENCE(''"
+def _entity(body: str) -> _Entity:
+    if "\n" in body:
+        body = _BREAK.sub("", body)
+    if body.startswith("NEXT_"):
+        body = _OCCURRENCE.sub("NEXT_ASSEMBLY_USAGE_OCCURRENCE(''", body)
+    if "'" in body.replace("''", ""):
+        return _entity_with_text(body)
+    pieces = _NUMBER.split(body)
+    return _Entity(tuple(pieces[::2]), tuple(int(n) for n in pieces[1::2]))
 
 
-def _numbered(body: str, number: int) -> str:
-    return body.replace("NEXT_ASSEMBLY_USAGE_OCCURRENCE(''", f"NEXT_ASSEMBLY_USAGE_OCCURRENCE('{number}'", 1)
+def _entity_with_text(body: str) -> _Entity:
+    """The same for a body with a string that is not empty: what looks like a reference in it is none."""
+    texts, references, start = [], [], 0
+    for match in _TOKEN.finditer(body):
+        if match.group(2):
+            texts.append(body[start : match.start()])
+            references.append(int(match.group(2)))
+            start = match.end()
+    return _Entity((*texts, body[start:]), tuple(references))
 
 
-def _post_order(roots: list[int], children: dict[int, tuple[int, ...]]) -> list[int]:
+def _numbered(body: str, name: str) -> str:
+    if not body.startswith("NEXT_"):
+        return body
+    return body.replace("NEXT_ASSEMBLY_USAGE_OCCURRENCE(''", f"NEXT_ASSEMBLY_USAGE_OCCURRENCE('{name[1:]}'", 1)
+
+
+def _post_order(roots: Iterable[int], entities: Mapping[int, _Entity]) -> list[int]:
     """Children before parents, each once; iterative, since chains of entities run deep."""
     order: list[int] = []
     seen: set[int] = set()
@@ -64,17 +96,18 @@ def _post_order(roots: list[int], children: dict[int, tuple[int, ...]]) -> list[
                 order.append(node)
             elif node not in seen:
                 seen.add(node)
+                children = entities[node].references
+                if not children:
+                    order.append(node)
+                    continue
                 stack.append((node, True))
-                stack.extend((c, False) for c in reversed(children[node]) if c not in seen)
+                stack.extend((c, False) for c in reversed(children) if c not in seen)
     return order
 
 
-def _hashes(bodies: dict[int, str], children: dict[int, tuple[int, ...]]) -> dict[int, str]:
+def _hashes(entities: Mapping[int, _Entity]) -> dict[int, str]:
     hashes: dict[int, str] = {}
-    for node in _post_order(list(bodies), children):
-        hashes[node] = hashlib.sha256(_replaced(bodies[node], hashes).encode()).hexdigest()
+    for node in _post_order(entities, entities):
+        text = entities[node].written(hashes)
+        hashes[node] = hashlib.blake2b(text.encode(), digest_size=16).hexdigest()
     return hashes
-
-
-def _replaced(body: str, names: Mapping[int, object]) -> str:
-    return _REFERENCE.sub(lambda m: f"#{names[int(m.group(1))]}" if m.group(1) else m.group(0), body)

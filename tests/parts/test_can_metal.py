@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+import dataclasses
 import math
 
 import pytest
 
-from fabgen.errors import NotCoveredError
+from fabgen.errors import GeometryError, NotCoveredError
 from fabgen.parts.can_tube import can_tube
 from fabgen.parts.can_turned import can_turned
 from fabgen.parts.contour import area_mm2
@@ -137,3 +138,15 @@ def test_tube_can_with_a_flange_of_another_thickness_is_refused() -> None:
     feed = sample_feed("wire", "tube", flange={"thickness_mm": 5.0})
     with pytest.raises(NotCoveredError, match="make them equal"):
         can_tube(feed)
+
+
+def test_choke_as_deep_as_the_can_stands_on_the_same_floor() -> None:
+    feed = sample_feed("wire", "tube", choke=True)
+    assert feed.sizes.choke is not None
+    level = dataclasses.replace(feed.sizes, choke=dataclasses.replace(feed.sizes.choke, floor_z_mm=0.0))
+    parts = {p.key: p for p in can_tube(dataclasses.replace(feed, sizes=level))}
+    assert set(parts) == {"floor", "can-tube", "choke-tube"}
+    assert dict(parts["floor"].sizes)["width_mm"] > feed.sizes.choke.bore_mm + 2 * feed.sizes.wall_mm
+    close = dataclasses.replace(feed.sizes, choke=dataclasses.replace(feed.sizes.choke, floor_z_mm=1.0))
+    with pytest.raises(GeometryError, match=r"give 0 for one floor, or 1\.5 or more"):
+        can_tube(dataclasses.replace(feed, sizes=close))
