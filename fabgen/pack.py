@@ -59,10 +59,9 @@ class PackReport:
 def build_content(feed: Feed) -> tuple[tuple[Part, ...], tuple[Finding, ...]]:
     """Parts with the workshop's aids, and findings; each solid is built once however many files need it."""
     from fabgen.checks.run import run_checks
-    from fabgen.parts.aids import aid_parts
     from fabgen.parts.build import build_parts
 
-    parts = tuple(_built_once(part) for part in (*build_parts(feed), *aid_parts(feed)))
+    parts = tuple(_built_once(part) for part in build_parts(feed))
     return parts, tuple(run_checks(feed, parts))
 
 

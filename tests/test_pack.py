@@ -134,6 +134,12 @@ def test_a_written_pack_is_checked_from_its_files_alone(
     assert "parts.csv was changed after the pack was written" in result.stdout
 
 
+@pytest.mark.parametrize(("form", "make"), [("wire", "rolled"), ("sheet", "printed")])
+def test_every_part_is_there_once(form: str, make: str) -> None:
+    keys = [part.key for part in build_content(sample_feed(form, make))[0]]
+    assert len(keys) == len(set(keys))
+
+
 def test_groups() -> None:
     assert chosen_groups(()) == tuple(GROUPS)
     assert chosen_groups(("sheets", "tables")) == ("tables", "sheets")
