@@ -12,6 +12,7 @@ import hashlib
 import math
 from collections.abc import Callable, Iterator
 from pathlib import Path
+from typing import Any
 
 from fabgen.checks.read_files import (
     RECORD,
@@ -255,7 +256,7 @@ def findings_agree(pack: Pack) -> Iterator[Fault]:
 
 @pack_check("CONS-208")
 def solids_agree(pack: Pack) -> Iterator[Fault]:
-    """STEP of each metal part: one valid solid whose volume times density is the mass in the record."""
+    """STEP of each metal part: one valid solid, its mass as in the record, its radii those of the sizes."""
     import cadquery as cq
 
     metals = {row.key: row for row in tables.all_rows("metal")}
@@ -265,10 +266,39 @@ def solids_agree(pack: Pack) -> Iterator[Fault]:
             continue
         solids = cq.importers.importStep(str(path)).solids().vals()
         if len(solids) != 1 or not solids[0].isValid():
-            yield _differs(
-                path.name, "solids", f"{len(solids)}", "1 valid solid", f"{path.name} is not one valid solid"
-            )
+            yield _differs(path.name, "solids", f"{len(solids)}", "1 valid solid", "it is not one valid solid")
             continue
         mass = solids[0].Volume() * 1e-9 * metals[part.material].density_kg_per_m3
         if abs(mass - part.mass_kg) > 0.01 * part.mass_kg + 1e-5:
             yield _differs(path.name, "mass", f"{mass:.4f} kg", f"{part.mass_kg:.4f} kg", "solid and record differ")
+        drawn = _radii_mm(solids[0])
+        for name, radius in _wanted_radii_mm(pack, part.key).items():
+            nearest = min(drawn, key=lambda r: abs(r - radius), default=0.0)
+            if abs(nearest - radius) > 0.01:
+                yield _differs(path.name, name, f"{nearest:.3f} mm", f"{radius:.3f} mm", f"no face has the {name}")
+
+
+def _radii_mm(solid: Any) -> list[float]:
+    """Radii of cylinders and large radii of tori among the solid's faces."""
+    radii = []
+    for face in solid.Faces():
+        if face.geomType() == "CYLINDER":
+            radii.append(face._geomAdaptor().Cylinder().Radius())
+        elif face.geomType() == "TORUS":
+            radii.append(face._geomAdaptor().Torus().MajorRadius())
+    return radii
+
+
+def _wanted_radii_mm(pack: Pack, key: str) -> dict[str, float]:
+    """Radii that a part must show, from the sizes that were simulated."""
+    s, choke = pack.feed.sizes, pack.feed.sizes.choke
+    if key == "loop" and s.strip_width_mm is not None:
+        half, width = s.loop_diameter_mm / 2, s.strip_width_mm / 2
+        return {"outer radius of the ring": half + width, "inner radius of the ring": half - width}
+    if key == "loop":
+        return {"radius of the loop": s.loop_diameter_mm / 2, "radius of the bar bends": s.leg_bend_radius_mm}
+    if key in {"can", "can-tube", "wall"} and not s.can_flats:
+        return {"radius of the bore": s.can_bore_mm / 2}
+    if key in {"choke", "choke-tube", "choke-wall"} and choke is not None and not s.can_flats:
+        return {"radius of the choke": choke.bore_mm / 2}
+    return {}

@@ -14,8 +14,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fabgen.errors import NotCoveredError
-from fabgen.fields.geometry import FeedGeometry
-from fabgen.fields.mesh import CHOKE, FLOOR, LOOP, PATCH, WALL
+from fabgen.fields.geometry import CanGeometry, FeedGeometry
+from fabgen.fields.mesh import LOOP
 from fabgen.fields.model import solve_mesh
 from fabgen.fields.plan import plan_mesh
 from fabgen.fields.solid_mesh import SolidLoop, solid_mesh
@@ -28,6 +28,7 @@ from fabgen.sizing.records import Feed, Sizes
 
 STEP_OF_FREQUENCY = 0.01
 SOLID_DENSITY = 14.0
+SEAM_HALF_MM = 20.0
 
 
 @dataclass(frozen=True)
@@ -60,31 +61,51 @@ class SolidComparison:
 
 
 def containment(feed: Feed, parts: Sequence[Part]) -> tuple[Containment, ...]:
-    """Sample the simulated surfaces densely and measure them against the solids of the parts.
+    """Sample the simulated surfaces and measure them against the solids of the parts.
 
     Strips are sampled over the width of the metal they stand for (a wire: on its axis). Points in holes of the
-    floor are left out: there the metal is meant to be missing.
+    floor and beside the seam, with its screws, are left out: there metal is meant to be missing.
     """
     sizes = feed.sizes
     drawn = _metal_widths(feed_geometry(sizes), sizes)
     mesh, _ = feed_mesh(drawn, plan_mesh(drawn, feed.job.wavelength_mm / 1e3, 20.0))
-    centres = mesh.corners_m.mean(1) * 1e3
-    metal = [p for p in parts if p.solid is not None and p.process != ("buy",)]
-    conductor = sizes.wire_mm or sizes.sheet_mm or 0.0
-    groups = [
-        ("loop and bars", (LOOP,), conductor / 2),
-        ("floor", (FLOOR, PATCH), sizes.floor_mm / 2),
-        ("wall", (WALL,), sizes.wall_mm / 2),
-        ("choke", (CHOKE,), sizes.wall_mm / 2),
+    loop = mesh.corners_m[mesh.label == LOOP].mean(1) * 1e3
+    floor = _disc_points(drawn)
+    samples = [
+        ("loop and bars", loop, (sizes.wire_mm or sizes.sheet_mm or 0.0) / 2),
+        ("floor", floor[~_in_holes(floor, parts)], sizes.floor_mm / 2),
+        ("wall", _off_the_seam(_wall_points(drawn.can, 0.0)), sizes.wall_mm / 2),
     ]
-    found = []
-    for name, labels, limit in groups:
-        points = centres[np.isin(mesh.label, labels)]
-        if name == "floor":
-            points = points[~_in_holes(points, parts)]
-        if len(points):
-            found.append(Containment(name, len(points), float(gaps_mm(points, metal).max()), limit))
-    return tuple(found)
+    choke = drawn.can.choke
+    if choke is not None:
+        ring = CanGeometry(choke.radius_m, choke.depth_m)
+        samples.append(("choke wall", _off_the_seam(_wall_points(ring, choke.floor_z_m)), sizes.wall_mm / 2))
+    metal = [p for p in parts if p.solid is not None]
+    return tuple(
+        Containment(name, len(points), float(gaps_mm(points, metal).max()), limit) for name, points, limit in samples
+    )
+
+
+def _wall_points(can: CanGeometry, foot_m: float) -> NDArray[np.float64]:
+    """Points of a wall, in millimetres, over its height and the half turn; on flats between their corners."""
+    angle = np.pi * (np.arange(24) + 0.5) / 24
+    radius = np.full(len(angle), can.radius_m)
+    if can.flats:
+        half = np.pi / can.flats
+        radius = can.radius_m / np.cos(np.mod(angle + half, 2 * half) - half)
+    rows = foot_m + can.depth_m * (np.arange(6) + 0.5) / 6
+    x, y = radius * np.cos(angle), radius * np.sin(angle)
+    return 1e3 * np.stack([np.tile(x, 6), np.tile(y, 6), np.repeat(rows, len(angle))], -1)
+
+
+def _off_the_seam(points: NDArray[np.float64]) -> NDArray[np.float64]:
+    return points[np.abs(points[:, 0]) > SEAM_HALF_MM]
+
+
+def _disc_points(feed: FeedGeometry) -> NDArray[np.float64]:
+    angle, share = np.pi * (np.arange(24) + 0.5) / 24, (np.arange(8) + 0.5) / 8
+    r, phi = np.meshgrid(share * feed.can.radius_m * 0.99, angle, indexing="ij")
+    return 1e3 * np.stack([(r * np.cos(phi)).ravel(), (r * np.sin(phi)).ravel(), np.zeros(r.size)], -1)
 
 
 def _metal_widths(geometry: FeedGeometry, sizes: Sizes) -> FeedGeometry:

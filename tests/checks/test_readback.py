@@ -209,6 +209,11 @@ def test_solids_are_read_back_on_request(tmp_path: Path) -> None:
     folder = tmp_path / "pack"
     write_pack(sample_feed("wire", "tube"), folder, PackOptions(only=("tables", "model")))
     assert check_pack(folder, solids=True) == ()
+    other = tmp_path / "other"
+    shutil.copytree(folder, other)
+    record(lambda d: (d["sizes"].update(loop_diameter_mm=67.4, can_bore_mm=221.8), None)[1])(other)
+    found = {(f.part, f.feature) for f in check_pack(other, solids=True) if f.code == "CONS-208"}
+    assert {("loop.step", "radius of the loop"), ("can-tube.step", "radius of the bore")} <= found
     record(lambda d: d["parts"][0].update(mass_kg=2 * d["parts"][0]["mass_kg"]))(folder)
     assert "CONS-208" in {f.code for f in check_pack(folder, solids=True)}
 
