@@ -8,7 +8,7 @@ from types import SimpleNamespace
 from typing import Any
 
 import pytest
-from hypothesis import given, settings
+from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 
 from fabgen.errors import NoSolutionError
@@ -40,6 +40,8 @@ def test_tap_is_found_with_few_solves(exponent: float, at_13_mm: float, start: f
     low, high = tap_range_mm(SIZES)
     root = 13 * (50 / at_13_mm) ** (1 / exponent)
     sizes = replace(SIZES, tap_height_mm=start)
+    # Within the search's own tolerance of an end of the bar either answer is right.
+    assume(not any(abs(exponent * math.log(root / end)) < 0.02 for end in (low, high)))
     if low < root < high:
         found = tap_for_resistance(tapped(exponent, at_13_mm), sizes)
         assert found.solution.impedance_ohm.real == pytest.approx(50, rel=0.0101)
