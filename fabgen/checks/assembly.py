@@ -195,7 +195,7 @@ def dissimilar_metals(context: Context) -> Iterator[Fault]:
             limit=f"{most:.2f} V",
             message=f"{first[0]} on {second[0]}: {difference:.2f} V apart, {most:.2f} V allowed "
             f"{_PLACES[context.job.limits.environment]}; the lesser metal corrodes and the joint becomes a diode",
-            cure=f"{_barrier(first, second, most)}, and seal the joint with varnish or grease",
+            cure=f"{_barrier(part, first, second, most)}, and seal the joint with varnish or grease",
             source=row_source(tables.limit(key, context.job.overrides)),
         )
 
@@ -205,11 +205,12 @@ TIN_V = 0.65
 _PLACES = {"outdoor": "outdoors", "sheltered": "under shelter", "indoor": "indoors"}
 
 
-def _barrier(first: tuple[str, float], second: tuple[str, float], most: float) -> str:
+def _barrier(part: str, first: tuple[str, float], second: tuple[str, float], most: float) -> str:
     """What brings the two metals within reach of each other, by the same list."""
     worst = max(abs(first[1] - TIN_V), abs(second[1] - TIN_V))
     if worst < abs(first[1] - second[1]):
-        return f"tin the nobler metal (then {worst:.2f} V against {most:.2f} V)"
+        way = "use tin-plated screws" if part == "screws" else "tin the nobler metal"
+        return f"{way} (then {worst:.2f} V against {most:.2f} V)"
     return f"use metals within {most:.2f} V, like the same metal for both"
 
 

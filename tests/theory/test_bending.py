@@ -27,6 +27,7 @@ def test_din_k(ratio: float, k: float, engineering: float) -> None:
 
 def test_din_k_ends_at_one() -> None:
     assert bending.din_k(6, 1) == 1.0
+    assert bending.din_k(0.061, 1) > 0
     with pytest.raises(JobError, match=r"0\.06 t or more"):
         bending.din_k(0.05, 1)
 
