@@ -81,7 +81,7 @@ def file_name(part: Part, revision: str, suffix: str = "") -> str:
 
 
 def _layers(document: Drawing, folds: bool) -> None:
-    for name, colour in ((OUTLINE, 7), (HOLES, 5), (FOLD, 1)):
+    for name, colour in ((OUTLINE, 7), (HOLES, 4), (FOLD, 1)):
         if name != FOLD or folds:
             document.layers.add(name, color=colour)
 

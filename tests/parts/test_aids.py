@@ -9,8 +9,8 @@ import numpy as np
 import pytest
 import shapely
 
+from fabgen.drawing.nesting import nest_items
 from fabgen.errors import GeometryError
-from fabgen.parts.aids import aid_parts
 from fabgen.parts.bend_rule import chosen_k, rule_text
 from fabgen.parts.bend_strip import STRIP_LENGTH_MM, bend_strip
 from fabgen.parts.build import build_parts
@@ -22,6 +22,7 @@ from fabgen.parts.nesting import SPACING_MM, nest
 from fabgen.parts.records import Part
 from fabgen.stock import tables
 from fabgen.theory.bending import k_from_test_bend
+from fabgen.writers.svg import svg_text
 from tests.samples import sample_feed
 
 
@@ -133,7 +134,7 @@ def test_foil_covers_bore_depth_and_laps_and_is_for_printed_cans_only() -> None:
 def test_nested_parts_keep_their_distance_and_stay_on_the_sheet(sheet: tuple[float, float]) -> None:
     feed = sample_feed("sheet", "rolled", choke=True)
     limits = feed.job.limits.model_copy(update={"sheet_mm": sheet})
-    needs = nest((*build_parts(feed), *aid_parts(feed)), limits)
+    needs = nest(build_parts(feed), limits)
     assert [(n.material, n.thickness_mm) for n in needs] == [("cuzn37", 1.5), ("en-aw-5754", 1.0), ("en-aw-5754", 1.5)]
     for need in needs:
         boxes = [(item.sheet, shapely.box(*bounds_mm(item.outlines[0]))) for item in need.laid]
@@ -146,6 +147,16 @@ def test_nested_parts_keep_their_distance_and_stay_on_the_sheet(sheet: tuple[flo
     assert nest(build_parts(feed), limits) == nest(build_parts(feed), limits)
 
 
+def test_the_picture_shows_every_part_on_its_sheet() -> None:
+    feed = sample_feed("sheet", "rolled", choke=True)
+    needs = nest(build_parts(feed), feed.job.limits)
+    text = svg_text(nest_items(needs))
+    for need in needs:
+        assert need.material_name in text
+        assert all(f">{item.key}<" in text for item in need.laid)
+    assert svg_text(nest_items(needs)) == text
+
+
 def test_a_part_larger_than_the_sheet_is_refused_with_its_size() -> None:
     feed = sample_feed("wire", "rolled")
     limits = feed.job.limits.model_copy(update={"sheet_mm": (500.0, 500.0)})
@@ -155,4 +166,6 @@ def test_a_part_larger_than_the_sheet_is_refused_with_its_size() -> None:
 
 def test_no_aid_stands_in_the_assembly() -> None:
     for form, make in (("wire", "printed"), ("sheet", "rolled")):
-        assert all(part.solid is None for part in aid_parts(sample_feed(form, make)))
+        feed = sample_feed(form, make)
+        aids = (*bend_strip(feed), *bending_jig(feed), *foil_patterns(feed))
+        assert aids and all(part.solid is None for part in aids)

@@ -10,7 +10,7 @@ import pytest
 from pydantic import ValidationError
 
 from fabgen.errors import FabgenError
-from fabgen.parts.aids import aid_parts
+from fabgen.parts.bend_strip import bend_strip
 from fabgen.parts.can_sheet import sheet_can
 from fabgen.parts.loop_sheet import loop_sheet
 from fabgen.parts.loop_wire import loop_wire
@@ -59,7 +59,7 @@ def random_feed(dice: random.Random) -> Feed:
 def flats_of(feed: Feed) -> list[Part]:
     made: list[Part] = []
     loop = loop_wire if feed.sizes.conductor == "wire" else loop_sheet
-    for build in (sheet_can, lambda f: (loop(f),), aid_parts):
+    for build in (sheet_can, lambda f: (loop(f),), bend_strip):
         try:
             made += [part for part in build(feed) if part.flat is not None]
         except FabgenError as error:

@@ -16,7 +16,6 @@ import pytest
 import shapely
 
 from fabgen.errors import GeometryError, OutputError
-from fabgen.parts.aids import aid_parts
 from fabgen.parts.build import build_parts
 from fabgen.parts.contour import Circle, Contour, Vertex, area_mm2, bounds_mm, length_mm, sampled
 from fabgen.parts.kerf import compensated
@@ -37,7 +36,7 @@ def flat_parts() -> dict[str, Part]:
     found = {}
     for name, (form, make, can) in FEEDS.items():
         feed = sample_feed(form, make, **can)
-        for part in (*build_parts(feed), *aid_parts(feed)):
+        for part in build_parts(feed):
             if part.flat is not None:
                 found[f"{name}: {part.key}"] = part
     return found
