@@ -141,8 +141,9 @@ def small_holes(context: Context) -> Iterator[Fault]:
 @check("PRINT-201", "caution", "sun_temperature_deg_c", "softening_margin_k")
 def softening_in_the_sun(context: Context) -> Iterator[Fault]:
     """Softening temperature of the plastic against its temperature in the sun; stop where it softens."""
-    if not context.printed or context.job.limits.environment == "indoor":
+    if context.job.limits.environment == "indoor" or not (context.printed or context.job.can.radome):
         return
+    part = "can" if context.printed else "radome"
     plastic = tables.plastic(context.job.can.plastic)
     sun = context.limit("sun_temperature_deg_c") - (0 if context.outdoors else 20)
     need = sun + context.limit("softening_margin_k")
@@ -150,11 +151,11 @@ def softening_in_the_sun(context: Context) -> Iterator[Fault]:
         return
     fit = [row.name for row in tables.all_rows("plastic") if row.softening_deg_c >= need]
     yield Fault(
-        part="can",
+        part=part,
         feature="plastic",
         value=f"{plastic.softening_deg_c:g} degC",
         limit=f"{need:g} degC",
-        message=f"{plastic.name} softens at {plastic.softening_deg_c:g} degC; in the sun the can reaches {sun:g} degC",
+        message=f"{plastic.name} softens at {plastic.softening_deg_c:g} degC; in the sun the {part} reaches {sun:g} degC",
         cure=f"print {' or '.join(fit)}, or paint the outside white and shade it",
         severity="stop" if plastic.softening_deg_c < sun else "caution",
         source=source_text(plastic.source),

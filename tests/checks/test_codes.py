@@ -65,6 +65,8 @@ def test_severity_follows_the_case() -> None:
     thin = with_sizes(base("wire", "printed"), wall_mm=0.6)
     assert [f.severity for f in found("PRINT-101", (thin, ()))] == ["stop"]
     assert [f.severity for f in found("PRINT-201", (printed(plastic="petg"), ()))] == ["caution"]
+    roof = with_job(base("wire", "tube"), can={"radome": True, "plastic": "pla"})
+    assert [(f.severity, f.part) for f in found("PRINT-201", (roof, ()))] == [("stop", "radome")]
     named = PAIRS["SHEET-201"].positive()
     stopped = with_job(named[0], limits={"die_opening_mm": 12.0})
     assert [f.severity for f in found("SHEET-201", (stopped, named[1]))] == ["stop"]
