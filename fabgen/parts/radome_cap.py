@@ -29,7 +29,7 @@ from fabgen.parts.pieces import Joint
 from fabgen.parts.print_rules import PrintRules, print_rules
 from fabgen.parts.printed import Printed, printed_parts
 from fabgen.parts.records import Part, Place
-from fabgen.parts.shell import BEAD_SLOPE
+from fabgen.parts.shell import BEAD_SLOPE, revolved_volume_mm3
 from fabgen.parts.split import Envelope, plan_split
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
@@ -77,6 +77,9 @@ def radome_cap(feed: Feed) -> tuple[Part, ...]:
 
     volume = area_mm2(outer_line) * (cover + SKIRT_MM) - area_mm2(inner_line) * SKIRT_MM
     volume -= sum(area_mm2(h) for h in drains) * cover
+    if bead:
+        z, rise = rim - BEAD_BELOW_RIM_MM, BEAD_SLOPE * BEAD_MM
+        volume -= revolved_volume_mm3(((inner, z - rise), (inner + BEAD_MM, z), (inner, z + rise)))
     fixing = "snaps over the bead" if bead else "bed the skirt in neutral-cure silicone"
     printed = Printed(
         key="radome",

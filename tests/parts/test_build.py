@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import dataclasses
 import itertools
+import math
 import subprocess
 import sys
 
@@ -78,6 +79,34 @@ def test_importing_the_parts_does_not_import_the_kernel() -> None:
     )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=False)
     assert done.returncode == 0, done.stderr
+
+
+@pytest.mark.parametrize("form", ["wire", "sheet"])
+def test_bought_parts_have_the_volume_of_their_dimensions(form: str) -> None:
+    parts = {p.key: p for p in build_parts(with_cable(sample_feed(form, "turned"), connector="n-4"))}
+
+    def volume(key: str) -> float:
+        return float(parts[key].solid().Volume())
+
+    def size(key: str) -> dict[str, float]:
+        return dict(parts[key].sizes)
+
+    # ISO 4762 M3: head 5.5 x 3; ISO 4032 M3: 5.5 across flats, 2.4 high; from memory.
+    length = size("screw-connector")["length_mm"]
+    assert volume("screw-connector") == pytest.approx(math.pi / 4 * (5.5**2 * 3.0 + 9.0 * length), rel=1e-6)
+    assert volume("nut-connector") == pytest.approx(2.4 * (math.sqrt(3) / 2 * 5.5**2 - math.pi / 4 * 9.0), rel=1e-6)
+    row = tables.connector("n-4")
+    flange = (row.flange_width_mm**2 - 4 * math.pi / 4 * row.hole_mm**2) * row.flange_thickness_mm
+    body = math.pi / 4 * row.body_mm**2 * row.body_length_mm
+    assert volume("connector") == pytest.approx(flange + body, rel=1e-6)
+    for key in ("capacitor-tube", "capacitor-liner"):
+        tube = size(key)
+        ring = math.pi / 4 * (tube["outer_mm"] ** 2 - tube["bore_mm"] ** 2)
+        assert volume(key) == pytest.approx(ring * tube["length_mm"], rel=1e-3)  # the page's length has 0.01 mm
+    stub, coax = size("coax-stub"), tables.coax("rg402")
+    cable = coax.outer_mm**2 * stub["jacket_mm"] + coax.inner_mm**2 * stub["bared_mm"]
+    assert volume("coax-stub") == pytest.approx(math.pi / 4 * cable, rel=1e-3)
+    assert parts["coax-stub"].mass_kg == pytest.approx(volume("coax-stub") * 5500e-9, rel=1e-6)
 
 
 def test_connector_screws_are_a_standard_length_and_reach_their_nuts() -> None:
