@@ -29,7 +29,7 @@ def nest_items(needs: Sequence[SheetNeed]) -> tuple[Item, ...]:
         height = need.sheet_mm[1] * scale
         text = (
             f"{need.material_name}, {need.temper}, {need.thickness_mm:g} mm: {need.sheets} "
-            f"of {need.sheet_mm[0]:g} x {need.sheet_mm[1]:g} mm, {100 * need.share:.0f} % covered"
+            f"of {need.sheet_mm[0]:g} x {need.sheet_mm[1]:g} mm, {100 * need.share:.1f} % covered"
         )
         items.append(Text(0.0, top + TEXT_MM, text, TEXT_MM))
         for sheet in range(need.sheets):

@@ -33,7 +33,8 @@ class Laid:
 
 @dataclass(frozen=True)
 class SheetNeed:
-    """Sheets needed of one stock (material, temper, thickness). ``share`` of them that the parts cover."""
+    """Sheets needed of one stock (material, temper, thickness), long side along x. ``share`` of them that the
+    parts cover."""
 
     material: str
     material_name: str
@@ -55,7 +56,8 @@ def nest(parts: Sequence[Part], limits: Limits) -> tuple[SheetNeed, ...]:
         if part.flat is not None and "laser" in part.process:
             key = (part.material, part.material_name, part.temper, part.thickness_mm or part.flat.thickness_mm)
             stocks.setdefault(key, []).append(part)
-    return tuple(_need(key, group, limits.sheet_mm) for key, group in sorted(stocks.items(), key=lambda s: s[0]))
+    low, high = sorted(limits.sheet_mm)
+    return tuple(_need(key, group, (high, low)) for key, group in sorted(stocks.items(), key=lambda s: s[0]))
 
 
 def _need(stock: tuple[str, str, str, float], group: list[Part], sheet_mm: tuple[float, float]) -> SheetNeed:

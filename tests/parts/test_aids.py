@@ -139,7 +139,7 @@ def test_nested_parts_keep_their_distance_and_stay_on_the_sheet(sheet: tuple[flo
     for need in needs:
         boxes = [(item.sheet, shapely.box(*bounds_mm(item.outlines[0]))) for item in need.laid]
         for i, (number, box) in enumerate(boxes):
-            assert shapely.box(0, 0, *sheet).contains(box)
+            assert shapely.box(0, 0, *need.sheet_mm).contains(box)
             for other, second in boxes[i + 1:]:
                 assert number != other or box.distance(second) >= SPACING_MM - 0.02
         covered = sum(area_mm2(item.outlines[0]) for item in need.laid)
