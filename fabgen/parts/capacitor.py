@@ -12,7 +12,7 @@ Seen along -x, bars cut::
 ``form`` "sleeve": the coax's bare centre conductor slides in a PTFE tube in a brass tube that lies on the other
 bar. ``form`` "plates": a plate on the centre conductor and one on the bar overlap with a film between them.
 
-Depends on: errors, stock, parts.records, parts.kernel, parts.floor_plan, sizing.records.
+Depends on: errors, stock, parts.contour, parts.records, parts.kernel, parts.floor_plan, sizing.records.
 """
 
 from __future__ import annotations
@@ -23,8 +23,9 @@ from typing import TYPE_CHECKING
 
 from fabgen.errors import GeometryError
 from fabgen.parts import kernel
+from fabgen.parts.contour import rectangle
 from fabgen.parts.floor_plan import PLATE_MM, coax_axis, floor_bottom_mm, leg_depth_mm
-from fabgen.parts.records import Part
+from fabgen.parts.records import FlatPattern, Part
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
 
@@ -233,6 +234,7 @@ def _plate(key: str, name: str, low: kernel.Point3, high: kernel.Point3, overlap
     film = key == "capacitor-film"
     metal = tables.metal("cuzn37")
     x, y, z = (b - a for a, b in zip(low, high, strict=True))
+    flat = FlatPattern(rectangle((0.0, 0.0), (round(y, 2), round(z, 2))), thickness_mm=round(x, 3))
     return Part(
         key=key,
         name=name,
@@ -249,8 +251,9 @@ def _plate(key: str, name: str, low: kernel.Point3, high: kernel.Point3, overlap
             ("overlap_mm", round(overlap_mm, 2)),
         ),
         tolerance="length and width +-0.2 mm",
-        finish="deburred",
-        thickness_mm=x,
+        finish="cut with a knife" if film else "deburred",
+        flat=None if film else flat,
+        thickness_mm=round(x, 3),
         solid=kernel.once(lambda: kernel.box(low, high)),
         mass_kg=x * y * z * 1e-9 * (PTFE_DENSITY if film else metal.density_kg_per_m3),
     )
