@@ -18,6 +18,9 @@ from fabgen.drawing.model import Arc, Item, Line, Polyline
 Vector = tuple[float, float, float]
 Curve = Line | Arc | Polyline
 JOIN_MM = 0.005  # ends nearer than this are one point
+MANY_FACES = 300
+TILT = 1e-4
+COARSE_MM = 0.05
 
 
 @dataclass(frozen=True)
@@ -66,13 +69,27 @@ class Seen:
 
 
 def look(shapes: Sequence[Any], direction: Direction, with_hidden: bool = False) -> tuple[Seen, ...]:
-    """Edges of each shape in one common hidden-line view, in the order given."""
+    """Edges of each shape in one common hidden-line view, in the order given.
+
+    Solids of many faces looked at along an axis have most of their faces edge-on, which the algorithm is slow at:
+    then faces turned away are left out and the eye is tilted by 1e-4, less than 0.01 mm over any drawn height.
+    """
+    many = sum(len(shape.Faces()) for shape in shapes) > MANY_FACES
+    square = max(abs(c) for c in direction.towards_eye) > 1 - 1e-9
+    if many and square and not with_hidden:
+        seen = _look([_facing(shape, direction) for shape in shapes], _tilted(direction), False, COARSE_MM)
+        largest = max(range(len(shapes)), key=lambda i: len(shapes[i].Faces()))
+        if seen[largest].visible:
+            return seen
+    return _look([getattr(shape, "wrapped", shape) for shape in shapes], direction, with_hidden, 0.0)
+
+
+def _look(wrapped: Sequence[Any], direction: Direction, with_hidden: bool, coarse_mm: float) -> tuple[Seen, ...]:
     from OCP.gp import gp_Ax2, gp_Dir, gp_Pnt
     from OCP.HLRAlgo import HLRAlgo_Projector
     from OCP.HLRBRep import HLRBRep_Algo, HLRBRep_HLRToShape
 
     algorithm = HLRBRep_Algo()
-    wrapped = [getattr(shape, "wrapped", shape) for shape in shapes]
     for shape in wrapped:
         algorithm.Add(shape, 0)
     axes = gp_Ax2(gp_Pnt(0, 0, 0), gp_Dir(*direction.towards_eye), gp_Dir(*direction.right))
@@ -83,12 +100,69 @@ def look(shapes: Sequence[Any], direction: Direction, with_hidden: bool = False)
     seen = []
     for shape in wrapped:
         visible = _tidy(_curves((result.VCompound(shape), result.OutLineVCompound(shape))))
+        if coarse_mm:
+            visible = _distinct(visible, coarse_mm)
         hidden: tuple[Curve, ...] = ()
         if with_hidden:
             hidden = _tidy(_curves((result.HCompound(shape), result.OutLineHCompound(shape))))
             hidden = _without(hidden, visible)
         seen.append(Seen(visible, hidden))
     return tuple(seen)
+
+
+def _tilted(direction: Direction) -> Direction:
+    """The direction turned by TILT to its right and by 0.7 TILT upward, so that nothing stays edge-on."""
+    n, r, u = direction.towards_eye, direction.right, direction.up
+    eye = _unit(_mixed((n, 1.0), (r, TILT), (u, 0.7 * TILT)))
+    right = _unit(_mixed((r, 1.0), (n, -TILT)))
+    along = sum(a * b for a, b in zip(eye, right, strict=True))
+    return Direction(direction.name, eye, _unit(_mixed((right, 1.0), (eye, -along))))
+
+
+def _mixed(*terms: tuple[Vector, float]) -> Vector:
+    x, y, z = (sum(v[i] * k for v, k in terms) for i in range(3))
+    return (x, y, z)
+
+
+def _facing(shape: Any, direction: Direction) -> Any:
+    """The faces that the eye can see: plane ones turned away and those edge-on are left out."""
+    from OCP.BRep import BRep_Builder
+    from OCP.BRepAdaptor import BRepAdaptor_Surface
+    from OCP.TopAbs import TopAbs_REVERSED
+    from OCP.TopoDS import TopoDS_Compound
+
+    builder, kept = BRep_Builder(), TopoDS_Compound()
+    builder.MakeCompound(kept)
+    eye = direction.towards_eye
+    for face in shape.Faces():
+        kind, surface = face.geomType(), BRepAdaptor_Surface(face.wrapped)
+        if kind == "PLANE":
+            position = surface.Plane().Position()
+            way = position.Direction()
+            dot = way.X() * eye[0] + way.Y() * eye[1] + way.Z() * eye[2]
+            flipped = (face.wrapped.Orientation() == TopAbs_REVERSED) == position.Direct()
+            if (-dot if flipped else dot) < 1e-9:
+                continue
+        elif kind == "CYLINDER":
+            way = surface.Cylinder().Axis().Direction()
+            if abs(way.X() * eye[0] + way.Y() * eye[1] + way.Z() * eye[2]) > 1 - 1e-9:
+                continue
+        builder.Add(kept, face.wrapped)
+    return kept
+
+
+def _distinct(curves: Sequence[Curve], grid_mm: float) -> tuple[Curve, ...]:
+    """One of each group of curves that agree within the grid."""
+    found: dict[tuple[object, ...], Curve] = {}
+    for curve in curves:
+        key: tuple[object, ...] = (id(curve),)
+        if isinstance(curve, Line):
+            key = (0, *(round(v / grid_mm) for v in (curve.x0, curve.y0, curve.x1, curve.y1)))
+        elif isinstance(curve, Arc):
+            ends = (*curve.at(curve.start_deg), *curve.at(curve.start_deg + curve.sweep_deg))
+            key = (1, *(round(v / grid_mm) for v in (curve.cx, curve.cy, curve.rx, *ends)))
+        found.setdefault(key, curve)
+    return tuple(found.values())
 
 
 def dressed(curves: Iterable[Curve], role: str) -> tuple[Item, ...]:
@@ -141,7 +215,7 @@ def _curve(adaptor: Any) -> list[Curve]:
         turn = math.degrees(math.atan2(position.XDirection().Y(), position.XDirection().X()))
         start, sweep = math.degrees(first) * sign, math.degrees(last - first) * sign
         centre = conic.Location()
-        if kind == GeomAbs_Circle:
+        if rx - ry < JOIN_MM:
             return [_arc(centre.X(), centre.Y(), rx, start + turn, sweep)]
         return [Arc(centre.X(), centre.Y(), rx, ry, start, sweep, turn)]
     return _sampled(adaptor, first, last)

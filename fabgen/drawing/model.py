@@ -175,6 +175,8 @@ class Arc:
 
     def box(self) -> Box:
         """Bounds: both ends and those of the four extreme points that lie on the arc."""
+        if self.rx == self.ry and abs(self.sweep_deg) >= 360.0:
+            return Box(self.cx - self.rx, self.cy - self.rx, self.cx + self.rx, self.cy + self.rx)
         turn = math.radians(self.turn_deg)
         c, s = math.cos(turn), math.sin(turn)
         across = math.degrees(math.atan2(-self.ry * s, self.rx * c))

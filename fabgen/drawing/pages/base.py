@@ -9,8 +9,9 @@ from dataclasses import dataclass
 
 from fabgen.checks.records import Finding
 from fabgen.drawing.flow import Block, Page, flow
-from fabgen.drawing.hidden import Seen
+from fabgen.drawing.hidden import Curve, Seen
 from fabgen.drawing.model import number
+from fabgen.drawing.pages.steps import StepView, made_parts
 from fabgen.drawing.paper import Paper
 from fabgen.drawing.picture import Body
 from fabgen.parts.records import Part
@@ -26,7 +27,12 @@ class Context:
     findings: tuple[Finding, ...]
     bodies: tuple[Body, ...]
     isometric: tuple[Seen, ...]
+    steps: tuple[StepView, ...]
     paper: Paper
+
+    def shown(self, part: Part) -> tuple[Curve, ...] | None:
+        """What a part of many faces shows in its own step; None for other parts."""
+        return made_parts(self.steps).get(part.key)
 
 
 @dataclass(frozen=True)

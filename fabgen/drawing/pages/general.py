@@ -114,11 +114,11 @@ def section_asks(context: Context) -> list[Ask]:
 
 
 def front_asks(drawn: Drawn) -> list[Ask]:
-    """Overall size of the view into the aperture."""
+    """Overall size of the view into the aperture, to 0.1 mm."""
     box = drawn.box
-    asks = [along_x("overall", box.x0, box.x1, 0, "bottom")]
+    asks = [along_x("overall", box.x0, box.x1, 0, "bottom", text=number(box.width, 1))]
     if abs(box.width - box.height) > 0.1:
-        asks.append(along_y("overall", box.y0, box.y1, 0, "right"))
+        asks.append(along_y("overall", box.y0, box.y1, 0, "right", text=number(box.height, 1)))
     return asks
 
 

@@ -25,7 +25,7 @@ from fabgen.drawing.flow import (
     stack,
     table,
 )
-from fabgen.drawing.hidden import ABOVE, GAP, ISOMETRIC
+from fabgen.drawing.hidden import ABOVE, GAP, ISOMETRIC, Curve, dressed
 from fabgen.drawing.model import SCALES, Box, Item, number, scale_text
 from fabgen.drawing.pages.base import Context, Draft, draft, quantity
 from fabgen.drawing.pages.general import loop_views
@@ -82,7 +82,7 @@ def _draft(context: Context, part: Part) -> Draft:
         blocks += [block, gap(3)]
     if pictured:
         left = room if strip else views - sum(b.height for b in blocks) - 3
-        blocks += [picture(part, min(left, 70.0)), gap(3)]
+        blocks += [picture(part, min(left, 70.0), shown=context.shown(part)), gap(3)]
     blocks += [*left_over_blocks(left_over), *words]
     return draft(
         context,
@@ -185,8 +185,10 @@ def solid_block(part: Part, room: float, projection: str) -> tuple[Block, str, t
     return stacked(upper, lower, WIDTH_MM), scale_text(scale), (*a.left_over, *b.left_over)
 
 
-def picture(part: Part, room: float, width: float = WIDTH_MM) -> Block:
-    """The part as it looks when made; not to scale."""
+def picture(part: Part, room: float, width: float = WIDTH_MM, shown: tuple[Curve, ...] | None = None) -> Block:
+    """The part as it looks when made, not to scale; ``shown`` is what is known of it already."""
+    if shown is not None:
+        return free(Drawn("", dressed(shown, "outline")), width, room)
     return free(outside("", [Body(part, shape_of(part))], ISOMETRIC), width, room)
 
 
