@@ -18,7 +18,7 @@ from fabgen.sizing.records import Sizes
 from fabgen.sizing.rounding import round_to
 from fabgen.sizing.trial import place_loop
 
-SCAN = 5
+SCAN_SHARES = (0.5, 0.25, 0.75, 0.0, 1.0)
 MOST_STEPS = 6
 Point = tuple[float, float]
 
@@ -94,16 +94,19 @@ def _all_fixed(sizes: Sizes, solve: SolveSizes) -> Match:
 
 
 def _scan(size: FreeSize, solve: SolveSizes) -> list[Point]:
-    points = []
-    for i in range(SCAN):
-        value = size.low_mm + (size.high_mm - size.low_mm) * i / (SCAN - 1)
+    """Resistances from the middle of the range outwards, until two neighbours lie on either side of 50 ohm."""
+    points: list[Point] = []
+    for share in SCAN_SHARES:
+        value = size.low_mm + (size.high_mm - size.low_mm) * share
         try:
             trial = size.put(value)
             low, high = tap_range_mm(trial)
             if low <= trial.tap_height_mm <= high:
-                points.append((value, solve(trial).impedance_ohm.real))
+                points = sorted([*points, (value, solve(trial).impedance_ohm.real)])
         except (NoSolutionError, GeometryError):
             continue
+        if _crossing(points) is not None:
+            break
     return points
 
 
@@ -130,4 +133,4 @@ def _close_in(size: FreeSize, pair: tuple[Point, Point], solve: SolveSizes) -> M
         else:
             y0 /= 2
         x1, y1 = x, y
-    return Match(trial, solution, SCAN + count)
+    return Match(trial, solution, count)

@@ -84,13 +84,12 @@ def _round_inside(value: float, step: float, low: float, high: float) -> float:
     return rounded if rounded >= low else round_to(math.ceil(low / step) * step, step)
 
 
-def nearby_places(share: float) -> Iterator[FrontPlace]:
-    """Places of the front by distance from ``share``."""
-    steps = round(1 / FRONT_STEP)
-    others = sorted((abs(i * FRONT_STEP - share), i * FRONT_STEP) for i in range(steps + 1))
+def nearby_places(share: float, step: float = FRONT_STEP) -> Iterator[FrontPlace]:
+    """Places of the front in steps, by distance from ``share``."""
+    others = sorted((abs(i * step - share), i * step) for i in range(round(1 / step) + 1))
     yield front_place(share)
     for distance, place in others:
-        if distance > FRONT_STEP / 4:
+        if distance > step / 4:
             yield front_place(place)
 
 
@@ -100,7 +99,9 @@ def match_nearby(setting: Setting, share: float, solve: SolveSizes) -> Matched:
     Raises ``NoSolutionError`` with the first limit met when the whole front fails.
     """
     first: NoSolutionError | GeometryError | None = None
-    for place in nearby_places(share):
+    # A fixed tap moves the loop itself, so places far apart say as much as near ones.
+    step = FRONT_STEP if setting.job.fixed.tap_height_mm is None else 0.5
+    for place in nearby_places(share, step):
         try:
             found = match_at(setting, place, solve)
         except (NoSolutionError, GeometryError) as error:
