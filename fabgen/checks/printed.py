@@ -155,7 +155,7 @@ def softening_in_the_sun(context: Context) -> Iterator[Fault]:
         feature="plastic",
         value=f"{plastic.softening_deg_c:g} degC",
         limit=f"{need:g} degC",
-        message=f"{plastic.name} softens at {plastic.softening_deg_c:g} degC; in the sun the {part} reaches {sun:g} degC",
+        message=f"{plastic.name} softens at {plastic.softening_deg_c:g} degC; the sun heats it to {sun:g} degC",
         cure=f"print {' or '.join(fit)}, or paint the outside white and shade it",
         severity="stop" if plastic.softening_deg_c < sun else "caution",
         source=source_text(plastic.source),

@@ -50,13 +50,16 @@ def pack_check(code: str) -> Callable[[PackCheck], PackCheck]:
 
 
 def check_pack(folder: Path | str, solids: bool = False) -> tuple[Finding, ...]:
-    """What is wrong with a written pack; nothing for a pack as it was written.
+    """What is wrong with a written pack; nothing for a pack as it was written. Accepted codes are left out.
 
     ``solids`` also reads every STEP file with the CAD kernel (seconds). Raises JobError when the folder is no
     pack or its record is not whole."""
     pack = read_pack(folder)
     context = Context(pack.feed, pack.parts)
-    consistency = [entry for entry in all_checks() if entry.code.startswith("CONS-") and MODULES]
+    accepted = set(pack.record["despite"])
+    consistency = [
+        entry for entry in all_checks() if entry.code.startswith("CONS-") and entry.code not in accepted and MODULES
+    ]
     found = [finding for entry in consistency for finding in gathered(findings_of(entry, context))]
     for code, (_, function) in sorted(PACK_CODES.items()):
         if code == "CONS-208" and not solids:

@@ -218,6 +218,15 @@ def test_solids_are_read_back_on_request(tmp_path: Path) -> None:
     assert "CONS-208" in {f.code for f in check_pack(folder, solids=True)}
 
 
+def test_an_accepted_stop_is_not_told_again(tmp_path: Path) -> None:
+    feed = sample_feed("wire", "tube")
+    wrong = replace(feed, sizes=replace(feed.sizes, series_capacitor_pf=1.2))
+    with pytest.raises(ChecksFailedError, match="CONS-108"):
+        write_pack(wrong, tmp_path / "pack", PackOptions(only=("bend",)))
+    write_pack(wrong, tmp_path / "pack", PackOptions(only=("bend",), despite=("CONS-108", "CONS-109")))
+    assert check_pack(tmp_path / "pack") == ()
+
+
 def test_what_is_no_pack_is_refused(tmp_path: Path, sheet_pack: Path) -> None:
     with pytest.raises(JobError, match="not a pack"):
         check_pack(tmp_path)
