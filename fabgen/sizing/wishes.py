@@ -22,15 +22,12 @@ SEARCH_STEP = 0.25
 
 
 @dataclass(frozen=True)
-class Merits:
-    """How a matched loop meets the numeric wishes, in dB; 0 or more is met."""
+class Margin:
+    """One numeric wish: what was wished, what is reached, and by how many dB it is met (negative: missed)."""
 
-    rejection_margin_db: float | None
-    band_margin_db: float | None
-
-    @property
-    def met(self) -> bool:
-        return all(m is None or m >= 0 for m in (self.rejection_margin_db, self.band_margin_db))
+    kind: str
+    text: str
+    margin_db: float
 
 
 def relative_gain_db(solver: CountingSolver, matched: Matched, target_mhz: float, frequency_mhz: float) -> float:
@@ -40,22 +37,24 @@ def relative_gain_db(solver: CountingSolver, matched: Matched, target_mhz: float
     return gain_at(solver.solve(matched.sizes, frequency_mhz), pf, frequency_mhz) - reference
 
 
-def merits(solver: CountingSolver, job: Job, matched: Matched) -> Merits:
-    """Margins of a matched loop against the job's numeric wishes."""
+def margins(solver: CountingSolver, job: Job, matched: Matched) -> tuple[Margin, ...]:
+    """Margins of a matched loop against each of the job's numeric wishes."""
     target, pf = job.target.frequency_mhz, matched.sizes.series_capacitor_pf
-    rejections = [
-        -relative_gain_db(solver, matched, target, n.frequency_mhz) - n.rejection_db
-        for n in job.wishes.neighbours
-        if n.rejection_db is not None
-    ]
-    band = None
-    if job.wishes.bandwidth_mhz is not None:
-        edges = (target - job.wishes.bandwidth_mhz / 2, target + job.wishes.bandwidth_mhz / 2)
-        losses = [
-            return_loss_db(reflection(solver.solve(matched.sizes, f).impedance_ohm, pf, f)) for f in edges
-        ]
-        band = min(losses) - job.wishes.return_loss_db
-    return Merits(min(rejections, default=None), band)
+    found = []
+    for neighbour in job.wishes.neighbours:
+        if neighbour.rejection_db is None:
+            continue
+        f, wished = neighbour.frequency_mhz, neighbour.rejection_db
+        reached = -relative_gain_db(solver, matched, target, f)
+        text = f"{wished:g} dB wished at {f:g} MHz, {reached:.1f} dB reached"
+        found.append(Margin("rejection", text, reached - wished))
+    band, loss = job.wishes.bandwidth_mhz, job.wishes.return_loss_db
+    if band is not None:
+        edges = (target - band / 2, target + band / 2)
+        reached = min(return_loss_db(reflection(solver.solve(matched.sizes, f).impedance_ohm, pf, f)) for f in edges)
+        text = f"{loss:g} dB return loss wished over {band:g} MHz, {reached:.1f} dB reached at its edges"
+        found.append(Margin("band", text, reached - loss))
+    return tuple(found)
 
 
 def choose_loop(setting: Setting, solver: CountingSolver, progress: Progress) -> Matched:
@@ -69,30 +68,27 @@ def choose_loop(setting: Setting, solver: CountingSolver, progress: Progress) ->
 
     share = NAMED[job.wishes.selectivity]
     best = match_nearby(setting, share, solve)
-    if all(n.rejection_db is None for n in job.wishes.neighbours) and job.wishes.bandwidth_mhz is None:
+    found = margins(solver, job, best)
+    if not found:
         return best
-    found = merits(solver, job, best)
-    worst = _worst(found)
     # More rejection lies towards sharp, more band towards broad.
-    sharper = found.rejection_margin_db is not None and found.rejection_margin_db < 0
+    sharper = any(m.kind == "rejection" and m.margin_db < 0 for m in found)
     step = -SEARCH_STEP if sharper else SEARCH_STEP
     place = share + step
-    while not found.met and 0 <= place <= 1:
+    while _worst(found) < 0 and 0 <= place <= 1:
         progress.step(f"moving along the selectivity front to {place:.2f}")
         try:
             trial = match_at(setting, front_place(place), solve, best.sizes.tap_height_mm)
         except (NoSolutionError, GeometryError):
             place += step
             continue
-        found = merits(solver, job, trial)
-        if found.met or _worst(found) > worst:
-            best, worst = trial, _worst(found)
+        reached = margins(solver, job, trial)
+        if _worst(reached) > _worst(found):
+            best, found = trial, reached
         place += step
-    if worst < 0:
-        shortfall = f"The numeric wishes are missed by {-worst:.1f} dB at best on the whole front."
-        return replace(best, remarks=(*best.remarks, shortfall))
-    return best
+    missed = tuple(f"{m.text}; no loop between sharp and broad does better" for m in found if m.margin_db < 0)
+    return replace(best, remarks=(*best.remarks, *missed))
 
 
-def _worst(found: Merits) -> float:
-    return min(m for m in (found.rejection_margin_db, found.band_margin_db) if m is not None)
+def _worst(found: tuple[Margin, ...]) -> float:
+    return min(m.margin_db for m in found)
