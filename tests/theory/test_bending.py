@@ -49,6 +49,7 @@ def test_din_compensation_by_opening_angle() -> None:
     k = bending.din_k_factor(2, 1.5)
     assert bending.din_compensation_mm(2, 1.5, 135) == pytest.approx(-bending.bend_deduction(45, 2, k, 1.5))
     assert bending.din_compensation_mm(2, 1.5, 60) == pytest.approx(bending.bend_allowance(120, 2, k, 1.5) - 7)
+    assert bending.din_compensation_mm(2, 1.5, 90.9) == pytest.approx(-bending.bend_deduction(89.1, 2, k, 1.5))
     assert bending.din_compensation_mm(2, 1.5, 165.1) == 0
 
 
@@ -75,6 +76,10 @@ def test_identities() -> None:
     assert bending.bend_allowance(0, 2, 0.4, 1) == 0
     with pytest.raises(JobError, match="k_factor"):
         bending.bend_allowance(90, 2, 1.4, 1)
+    with pytest.raises(JobError, match="angle_deg is 180.5: allowed 0 to 180"):
+        bending.bend_allowance(180.5, 2, 0.4, 1)
+    with pytest.raises(JobError, match="allowed 0 to 179"):
+        bending.outside_setback(179.5, 2, 1)
 
 
 @given(st.floats(0.2, 0.5), st.floats(0.3, 6), st.floats(0.3, 3))
