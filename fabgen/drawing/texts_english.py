@@ -180,7 +180,7 @@ ENGLISH: dict[str, str] = {
     "title.see_sheet": "see sheet",
     "document.bought": "Bought parts",
     "page.bought": "Bought parts",
-    "part.off": "off",
+    "part.bought": "{part}, {count} off",
     "part.quantity": "Quantity, mass each",
     "part.quantity_value": "{count} off, {mass} g",
     "part.making": "Making",
@@ -190,7 +190,6 @@ ENGLISH: dict[str, str] = {
     "solid.axis": "Axis",
     "solid.holes_head": "Hole table (mm, in the frame of the feed)",
     "solid.cross_head": "Cross holes: middle, axis, diameter (mm, in the frame of the feed)",
-    "view.isometric": "Made part",
     "view.across_flats": "AF",
     "general.purpose_head": "What it is",
     "general.purpose": (

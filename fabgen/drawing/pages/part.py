@@ -273,7 +273,7 @@ def _bought(context: Context, parts: list[Part]) -> Draft:
     """Bought parts: a picture and the sizes to order by."""
     blocks: list[Block] = []
     for part in parts:
-        lines = [heading(f"{part.name}, {part.quantity} {say('part.off')}", 2.5, 110.0)]
+        lines = [heading(say("part.bought", part=part.name, count=part.quantity), 2.5, 110.0)]
         lines += paragraph(material_text(part), width=110.0)
         lines += sizes_blocks(part, 110.0)
         text = stack(lines)

@@ -1,0 +1,186 @@
+"""What the pages say: order of kinds, decisions, distances, findings, steps, texts, hard cases."""
+
+from __future__ import annotations
+
+import math
+import re
+from dataclasses import replace
+from pathlib import Path
+
+import pytest
+
+from fabgen.drawing.flow import flow, heading, paragraph, table
+from fabgen.drawing.model import RED, Sheet
+from fabgen.drawing.overlap import clashes
+from fabgen.drawing.pages import bench, performance
+from fabgen.drawing.pages.sheets import identification, sheets
+from fabgen.drawing.pages.steps import steps
+from fabgen.drawing.paper import PAPERS
+from fabgen.drawing.texts import say
+from fabgen.drawing.texts_english import ENGLISH
+from fabgen.errors import FabgenError, JobError
+from fabgen.parts.floor_plan import floor_bottom_mm
+from tests.drawing.books import FINDINGS, KINDS, book_of, feed_of, parts_of
+
+ORDER = (
+    "general", "stock", "part", "bought", "wire", "true", "assembly", "bench", "mounting", "findings", "cautions",
+    "settings",
+)  # fmt: skip
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_kinds_of_pages_in_order(kind: str) -> None:
+    kinds = list(dict.fromkeys(s.kind for s in book_of(kind)))
+    assert kinds == [k for k in ORDER if k != "wire" or feed_of(kind).sizes.conductor == "wire"]
+    assert [s.number for s in book_of(kind)] == list(range(1, len(book_of(kind)) + 1))
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_no_empty_page(kind: str) -> None:
+    # Frame and title block hold about 60 texts; a page must say more than they do.
+    for sheet in book_of(kind):
+        inside = [
+            t for t in sheet.texts if sheet.frame.y1 > t.y > sheet.frame.y0 + 32.5 and sheet.frame.contains(t.box())
+        ]
+        assert inside, (sheet.number, sheet.title)
+
+
+def _words(sheets_: list[Sheet]) -> str:
+    return " ".join(t.text for s in sheets_ for t in s.texts)
+
+
+def test_stop_is_said_in_words_and_red() -> None:
+    pages = [s for s in book_of("wire-rolled") if s.kind == "findings"]
+    red = [t.text for s in pages for t in s.texts if t.colour == RED]
+    assert any(t.startswith("STOP") for t in red)
+    assert "Use an inside radius of 1.5 mm or more." in _words(pages).replace("  ", " ")
+
+
+def test_without_findings_the_page_says_so() -> None:
+    book = sheets(feed_of("wire-tube-choke"), (), ())
+    assert say("findings.none") in _words([s for s in book if s.kind == "findings"])
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_each_part_joins_once(kind: str) -> None:
+    joined = [p.key for s in steps(parts_of(kind)) for p in s.parts]
+    assert sorted(joined) == sorted(p.key for p in parts_of(kind))
+    assert "other" not in {s.kind for s in steps(parts_of(kind))}
+
+
+def test_capacitor_advice_cancels_the_reactance() -> None:
+    # X + (-1/(w C')) + 1/(w C) = 0: series reactances add (circuit theory).
+    feed = feed_of("wire-rolled")
+    w = 2 * math.pi * feed.job.target.frequency_mhz * 1e6
+    for x in (-20.0, 5.0, 30.0):
+        c0, c1 = feed.sizes.series_capacitor_pf * 1e-12, bench.capacitance_for(feed, x) * 1e-12
+        assert x + 1 / (w * c0) - 1 / (w * c1) == pytest.approx(0, abs=1e-9)
+
+
+def test_decisions_move_the_dip_the_right_way() -> None:
+    feed = feed_of("wire-rolled")
+    rows = bench.advice(feed)
+    shift = bench.step_mhz(feed)
+    rate = {s.size: s.resonance_mhz_per_mm for s in feed.sensitivities}
+    low = [a for a in rows if "below" in a.seen]
+    assert low
+    for a in low:
+        size = next(k for k in rate if a.do in {ENGLISH.get(f"bench.{k}.more"), ENGLISH.get(f"bench.{k}.less")})
+        change = float(a.amount.split()[0]) * (1 if a.do == ENGLISH[f"bench.{size}.more"] else -1)
+        assert change * rate[size] == pytest.approx(shift, rel=0.02)
+
+
+def test_tap_advice_follows_the_square_law() -> None:
+    feed = feed_of("wire-rolled")
+    assert bench.tap_for(feed, 50.0) == pytest.approx(feed.sizes.tap_height_mm)
+    assert bench.tap_for(feed, 12.5) == pytest.approx(2 * feed.sizes.tap_height_mm)
+
+
+def test_distance_from_flange_to_focus() -> None:
+    feed = feed_of("sheet-printed")
+    wanted = feed.predicted.phase_centre_mm - floor_bottom_mm(feed)
+    assert bench.flange_to_focus_mm(feed) == pytest.approx(wanted)
+    pages = [s for s in book_of("sheet-printed") if s.kind == "mounting"]
+    rows = {r[0]: r[1] for s in pages for t in s.tables if t.name == "mounting" for r in t.rows}
+    assert float(rows[say("mount.flange_to_focus")].split()[0]) == pytest.approx(wanted, abs=0.051)
+    focal = 1000 * feed.job.dish.diameter_m * feed.job.dish.focal_ratio
+    assert float(rows[say("mount.vertex_to_flange")].split()[0]) == pytest.approx(focal + wanted, abs=0.051)
+
+
+@pytest.mark.parametrize(("ratio", "angle"), [(0.25, 90.0), (0.433, 60.0)])
+def test_edge_angle_of_the_dish(ratio: float, angle: float) -> None:
+    # Parabola: tan(theta/2) = 1 / (4 f/D) (antenna handbooks); f/D = 0.25 has its focus in the rim's plane.
+    feed = feed_of("wire-rolled")
+    dish = feed.job.dish.model_copy(update={"focal_ratio": ratio})
+    feed = replace(feed, job=feed.job.model_copy(update={"dish": dish}))
+    assert performance.edge_deg(feed) == pytest.approx(angle, abs=0.05)
+
+
+def test_every_text_key_exists_and_every_text_is_used() -> None:
+    root = Path(bench.__file__).parent.parent
+    source = "\n".join(p.read_text() for p in root.rglob("*.py") if not p.name.startswith("texts_english"))
+    used = set(re.findall(r'"((?:[a-z_]+\.)+[a-z_0-9]+)"', source))
+    asked = set(re.findall(r'say\("([^"{}]+)"', source))
+    assert asked <= set(ENGLISH)
+    built = (
+        "size.", "step.", "severity.", "process.", "caution.", "limits.", "form.", "make.", "document.", "mount.step",
+        "stock.", "fold.", "wire.", "source.", "settings.", "findings.", "bench.", "assembly.",
+    )  # fmt: skip
+    assert [k for k in ENGLISH if k not in used and not k.startswith(built)] == []
+    with pytest.raises(FabgenError, match=r"no .* for 'not\.there'"):
+        say("not.there")
+
+
+def test_head_of_a_table_is_set_again_after_a_break() -> None:
+    rows = [(str(i), "value") for i in range(120)]
+    pages = flow(PAPERS["A4"], [heading("Long"), *table("long", ("No.", "Word"), rows)])
+    assert len(pages) > 1
+    for page in pages:
+        texts = [i.text for i in page.items if hasattr(i, "text")]
+        assert texts.count("No.") == 1
+    assert sum(len(p.tables) for p in pages) == 1
+
+
+def test_heading_never_stands_alone_at_the_foot() -> None:
+    lines = paragraph("word " * 1500)
+    for extra in range(0, 60, 3):
+        pages = flow(PAPERS["A4"], [*lines[:extra], heading("Foot"), *table("t", ("A", "B"), [("1", "2")] * 3)])
+        for page in pages:
+            texts = [i.text for i in page.items if hasattr(i, "text")]
+            assert not texts or texts[-1] != "Foot"
+
+
+def _named(name: str, owner: str = "") -> Sheet:
+    feed = feed_of("wire-tube-choke")
+    target = feed.job.target.model_copy(update={"name": name, "owner": owner})
+    feed = replace(feed, job=feed.job.model_copy(update={"target": target}))
+    return sheets(feed, (), FINDINGS)[0]
+
+
+@pytest.mark.parametrize("name", ["W" * 60, "Облучатель для 21 см", "ein " * 15, "Ø±µ°"])
+def test_long_and_foreign_names_fit_the_title_block(name: str) -> None:
+    assert clashes(_named(name.strip(), "M" * 40)) == ()
+
+
+def test_a_name_that_cannot_be_set_is_refused() -> None:
+    with pytest.raises(JobError, match=r"target\.name"):
+        _named("喇叭")
+
+
+def test_identification_follows_the_sizes() -> None:
+    feed = feed_of("wire-rolled")
+    other = replace(feed, sizes=replace(feed.sizes, tap_height_mm=feed.sizes.tap_height_mm + 0.1))
+    assert identification(feed) != identification(other)
+    assert len(identification(feed)) <= 16  # ISO 7200: 16 characters recommended (TO-18)
+
+
+def test_a_template_of_too_many_tiles_says_what_to_do_instead() -> None:
+    from fabgen.drawing.model import Line
+    from fabgen.drawing.pages.base import Context
+    from fabgen.drawing.pages.truescale import MOST_TILES, Template, _draft
+
+    context = Context(feed_of("wire-rolled"), (), (), (), (), (), PAPERS["A4"])
+    made = _draft(context, Template("large", "x", (Line(0, 0, 3000, 2000),)))
+    assert len(made.pages) == 1
+    assert MOST_TILES < 200
+    assert any("tiles" in i.text for i in made.pages[0].items if hasattr(i, "text"))

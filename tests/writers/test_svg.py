@@ -1,0 +1,46 @@
+"""SVG read back as XML: size, texts, same drawing as the model."""
+
+from __future__ import annotations
+
+import xml.etree.ElementTree as ET
+from pathlib import Path
+
+import pytest
+
+from fabgen.drawing.model import Arc, Line, Polyline, Text
+from fabgen.errors import OutputError
+from fabgen.writers.svg import svg_text, write_svg
+from tests.drawing.books import book_of
+
+NS = "{http://www.w3.org/2000/svg}"
+
+
+def test_a_sheet_as_svg(tmp_path: Path) -> None:
+    sheet = book_of("wire-tube-choke")[0]
+    path = tmp_path / "sheet.svg"
+    write_svg(sheet, path)
+    root = ET.parse(path).getroot()
+    assert root.get("width") == "210mm"
+    assert root.get("viewBox") == "0 0 210 297"
+    texts = [t.text for t in root.iter(f"{NS}text")]
+    assert texts == [t.text for t in sheet.texts]
+    assert svg_text(sheet) == path.read_text(encoding="utf-8")
+
+
+def test_items_are_cropped_to_their_bounds() -> None:
+    items = (
+        Line(10, 10, 60, 10),
+        Arc(35, 30, 10, 10),
+        Polyline(((10, 10), (60, 40)), "thin"),
+        Text(20, 20, "a < b & c"),
+    )
+    root = ET.fromstring(svg_text(items, margin_mm=3.0))
+    assert root.get("viewBox") == "0 0 56 36"
+    assert next(root.iter(f"{NS}text")).text == "a < b & c"
+    line = next(root.iter(f"{NS}path")).get("d")
+    assert line == "M3 33L53 33"
+
+
+def test_folder_that_is_not_there(tmp_path: Path) -> None:
+    with pytest.raises(OutputError, match="could not be written"):
+        write_svg((Line(0, 0, 1, 1),), tmp_path / "none" / "a.svg")
