@@ -121,48 +121,69 @@ def static_moments(first: int, last: int, test: Any, source: Any, corners: Any, 
 
 
 @compiled(fastmath=True)
-def _scatter(p: int, q: int, m: Any, t: int, ka: complex, kb: complex, corners: Any, image: Any, length: Any,
-             dof: Any, sign: Any, factor: float, rows: Any) -> None:
-    """Add the nine edge pairs of triangles p, q to the three rows of p.
+def _edge_pairs(p: int, start: int, count: int, m: Any, ka: float, kb: float, corners: Any, image: Any, length: Any,
+                image_length: Any, factor: float, work: Any, pairs: Any) -> None:
+    """Nine edge pairs of triangle p with each of the triangles start..: pairs (3, 3, 2, B): source edge, test edge,
+    real and imaginary part.
 
-    ``m`` (16, B): real and imaginary parts of the eight moments in column ``t``. Pairs p < q stand for (q, p) too:
-    the caller adds the transpose, so a triangle with itself counts half.
+    ``m`` (16, B): real and imaginary parts of the moments; ``image`` (3, 3, T): corner, axis. j ka multiplies the
+    vector part, -j kb the charges. Pairs p < q stand for (q, p) too: the caller adds the transpose, so a triangle
+    with itself counts half. ``work`` (4, 2, B) is scratch.
     """
-    half = 0.5 * factor if p == q else factor
-    m0 = complex(m[0, t], m[1, t])
-    ax, ay, az = complex(m[2, t], m[3, t]), complex(m[4, t], m[5, t]), complex(m[6, t], m[7, t])
-    bx, by, bz = complex(m[8, t], m[9, t]), complex(m[10, t], m[11, t]), complex(m[12, t], m[13, t])
-    dot = complex(m[14, t], m[15, t])
-    charge = kb * m0
+    for a in range(3):
+        ux, uy, uz = corners[p, a, 0], corners[p, a, 1], corners[p, a, 2]
+        for part in range(2):
+            for t in range(count):
+                work[a, part, t] = ux * m[8 + part, t] + uy * m[10 + part, t] + uz * m[12 + part, t]
     for b in range(3):
-        col = dof[q, b, 0]
-        if col < 0:
-            continue
-        vx, vy, vz = image[q, b, 0], image[q, b, 1], image[q, b, 2]
-        mb = dot - (vx * ax + vy * ay + vz * az)
-        scale = half * length[q, b]
+        for part in range(2):
+            for t in range(count):
+                q = start + t
+                work[3, part, t] = m[14 + part, t] - (
+                    image[b, 0, q] * m[2 + part, t] + image[b, 1, q] * m[4 + part, t] + image[b, 2, q] * m[6 + part, t]
+                )
         for a in range(3):
-            if dof[p, a, 0] < 0:
-                continue
             ux, uy, uz = corners[p, a, 0], corners[p, a, 1], corners[p, a, 2]
-            vector = mb - (ux * bx + uy * by + uz * bz) + (ux * vx + uy * vy + uz * vz) * m0
-            value = (scale * length[p, a]) * (ka * vector + charge)
-            rows[a, col] += value * sign[q, b, 0]
-            second = dof[q, b, 1]
-            if second >= 0:
-                rows[a, second] += value * sign[q, b, 1]
+            scale = factor * length[p, a]
+            for t in range(count):
+                q = start + t
+                s = scale * image_length[b, q]
+                charge = ka * (ux * image[b, 0, q] + uy * image[b, 1, q] + uz * image[b, 2, q]) - kb
+                pairs[b, a, 0, t] = -s * (ka * (work[3, 1, t] - work[a, 1, t]) + charge * m[1, t])
+                pairs[b, a, 1, t] = s * (ka * (work[3, 0, t] - work[a, 0, t]) + charge * m[0, t])
+    if start == p:
+        for b in range(3):
+            for a in range(3):
+                pairs[b, a, 0, 0] *= 0.5
+                pairs[b, a, 1, 0] *= 0.5
 
 
 @compiled(fastmath=True)
-def _flush(p: int, rows: Any, dof: Any, sign: Any, z: Any) -> None:
-    """Add the rows of triangle p to the matrix and clear them."""
+def _scatter(start: int, count: int, pairs: Any, dof: Any, sign: Any, rows: Any) -> None:
+    """Add the edge pairs to the columns of the three rows of one triangle, rows (3, N)."""
+    for t in range(count):
+        q = start + t
+        for b in range(3):
+            for s in range(2):
+                col = dof[q, b, s]
+                if col >= 0:
+                    f = sign[q, b, s]
+                    for a in range(3):
+                        rows[a, col] += complex(f * pairs[b, a, 0, t], f * pairs[b, a, 1, t])
+
+
+@compiled(fastmath=True)
+def _flush(p: int, rows: Any, dof: Any, sign: Any, place: Any, z: Any, extra: Any) -> None:
+    """Add the rows of triangle p to the matrix, or to the slice's own copy of a shared row, and clear them."""
     for a in range(3):
         for s in range(2):
             row = dof[p, a, s]
             if row >= 0:
                 f = sign[p, a, s]
+                own = place[row]
+                target = z[row] if own < 0 else extra[own]
                 for c in range(rows.shape[1]):
-                    z[row, c] += f * rows[a, c]
+                    target[c] += f * rows[a, c]
         for c in range(rows.shape[1]):
             rows[a, c] = 0.0
 
@@ -219,93 +240,88 @@ def _add_moments(x: float, y: float, z: float, w: float, weight: Any, points: An
                 m[14 + part, t] += v * (x * px + y * py + z * pz)
 
 
-@compiled(fastmath=True)
-def far_rows(first: int, last: int, k: float, eta: float, kept: int, points: Any, image_points: Any, weight: Any,
-             corners: Any, image: Any, length: Any, dof: Any, sign: Any, factor: float, near_start: Any,
-             near_source: Any, z: Any) -> None:
-    """Pairs (p, q >= p) that are not near, for test triangles first..last-1, by plain quadrature.
+@compiled(fastmath=False)
+def _near_moments(p: int, q: int, k: float, static: Any, points: Any, image_points: Any, weight: Any, m: Any,
+                  t: int) -> None:
+    """Moments of a near pair in column t of m: static ones plus the smooth remainder by quadrature."""
+    n = weight.shape[0]
+    for c in range(8):
+        m[2 * c, t] = static[c]
+        m[2 * c + 1, t] = 0.0
+    for i in range(n):
+        x = points[0, i, p]
+        y = points[1, i, p]
+        z = points[2, i, p]
+        for j in range(n):
+            px = image_points[0, j, q]
+            py = image_points[1, j, q]
+            pz = image_points[2, j, q]
+            kr = k * math.sqrt((px - x) ** 2 + (py - y) ** 2 + (pz - z) ** 2)
+            w = k * weight[i] * weight[j] * 0.07957747154594767
+            a = kr * kr
+            if a < 1.0:
+                # series of (cos kr - 1)/kr and sin kr/kr, exact to 1e-12 where kr < 1
+                cosine = -kr * (1 / 2 - a * (1 / 24 - a * (1 / 720 - a * (1 / 40320 - a * (
+                    1 / 3628800 - a * (1 / 479001600 - a / 87178291200))))))
+                sine = 1.0 - a * (1 / 6 - a * (1 / 120 - a * (1 / 5040 - a * (1 / 362880 - a * (
+                    1 / 39916800 - a / 6227020800)))))
+            else:
+                cosine = (math.cos(kr) - 1.0) / kr
+                sine = math.sin(kr) / kr
+            for part in range(2):
+                v = w * cosine if part == 0 else -w * sine
+                m[part, t] += v
+                m[2 + part, t] += v * x
+                m[4 + part, t] += v * y
+                m[6 + part, t] += v * z
+                m[8 + part, t] += v * px
+                m[10 + part, t] += v * py
+                m[12 + part, t] += v * pz
+                m[14 + part, t] += v * (x * px + y * py + z * pz)
 
-    ``points`` (3, n, T). Adds to z (N, N) the part whose transpose the caller adds; pairs with both triangles
+
+@compiled(fastmath=True)
+def fill_rows(first: int, last: int, k: float, eta: float, kept: int, points: Any, image_points: Any, weight: Any,
+              near_points: Any, near_image_points: Any, near_weight: Any, near_start: Any, near_source: Any,
+              static: Any, corners: Any, images: Any, factors: Any, length: Any, image_length: Any, dof: Any,
+              sign: Any, place: Any, z: Any, extra: Any) -> None:
+    """Pairs (p, q >= p) for test triangles first..last-1 and every image: near ones with their static moments, the
+    others by plain quadrature.
+
+    ``points`` (3, n, T), ``image_points`` (I, 3, n, T), ``images`` (I, 3, 3, T). Adds to z (N, N), and to extra for
+    the rows that ``place`` (N,) sends there, the part whose transpose the caller adds; pairs with both triangles
     below ``kept`` are left out.
     """
     n = weight.shape[0]
     triangles = points.shape[2]
     g = np.empty((2 * n, BLOCK))
     m = np.empty((16, BLOCK))
+    work = np.empty((4, 2, BLOCK))
+    pairs = np.empty((3, 3, 2, BLOCK))
     rows = np.zeros((3, z.shape[1]), dtype=np.complex128)
-    ka = 1j * k * eta / 4.0
-    kb = eta / (1j * k)
     for p in range(first, last):
-        pointer = near_start[p]
-        stop = near_start[p + 1]
-        for start in range(max(p, kept) if p < kept else p, triangles, BLOCK):
-            count = min(BLOCK, triangles - start)
-            m[:, :] = 0.0
-            for i in range(n):
-                x = points[0, i, p]
-                y = points[1, i, p]
-                zz = points[2, i, p]
-                for j in range(n):
-                    _kernel_values(x, y, zz, k, image_points, j, start, count, g)
-                _add_moments(x, y, zz, weight[i], weight, image_points, start, count, g, m)
-            for t in range(count):
-                q = start + t
-                while pointer < stop and near_source[pointer] < q:
+        for image in range(images.shape[0]):
+            pointer = near_start[image, p]
+            stop = near_start[image, p + 1]
+            for start in range(max(p, kept) if p < kept else p, triangles, BLOCK):
+                count = min(BLOCK, triangles - start)
+                m[:, :] = 0.0
+                for i in range(n):
+                    x = points[0, i, p]
+                    y = points[1, i, p]
+                    zz = points[2, i, p]
+                    for j in range(n):
+                        _kernel_values(x, y, zz, k, image_points[image], j, start, count, g)
+                    _add_moments(x, y, zz, weight[i], weight, image_points[image], start, count, g, m)
+                while pointer < stop and near_source[pointer] < start + count:
+                    q = near_source[pointer]
+                    _near_moments(p, q, k, static[pointer], near_points, near_image_points[image], near_weight, m,
+                                  q - start)
                     pointer += 1
-                if pointer < stop and near_source[pointer] == q:
-                    continue
-                _scatter(p, q, m, t, ka, kb, corners, image, length, dof, sign, factor, rows)
-        _flush(p, rows, dof, sign, z)
-
-
-@compiled(fastmath=False)
-def near_rows(first: int, last: int, k: float, eta: float, kept: int, test: Any, source: Any, static: Any,
-              points: Any, image_points: Any, weight: Any, corners: Any, image: Any, length: Any, dof: Any,
-              sign: Any, factor: float, z: Any) -> None:
-    """Near pairs first..last-1 (in order of p): static moments plus the smooth remainder by quadrature."""
-    n = weight.shape[0]
-    m = np.empty((16, 1))
-    rows = np.zeros((3, z.shape[1]), dtype=np.complex128)
-    ka = 1j * k * eta / 4.0
-    kb = eta / (1j * k)
-    before = -1
-    for pair in range(first, last):
-        p = test[pair]
-        q = source[pair]
-        if p < kept and q < kept:
-            continue
-        if p != before and before >= 0:
-            _flush(before, rows, dof, sign, z)
-        before = p
-        for c in range(8):
-            m[2 * c, 0] = static[pair, c]
-            m[2 * c + 1, 0] = 0.0
-        for i in range(n):
-            x = points[0, i, p]
-            y = points[1, i, p]
-            zz = points[2, i, p]
-            for j in range(n):
-                px = image_points[0, j, q]
-                py = image_points[1, j, q]
-                pz = image_points[2, j, q]
-                t = k * math.sqrt((px - x) ** 2 + (py - y) ** 2 + (pz - zz) ** 2)
-                w = k * weight[i] * weight[j] * 0.07957747154594767
-                for part in range(2):
-                    if part == 0:
-                        v = w * ((math.cos(t) - 1.0) / t if t > 1e-3 else -0.5 * t)
-                    else:
-                        v = w * (-math.sin(t) / t if t > 1e-3 else t * t / 6.0 - 1.0)
-                    m[part, 0] += v
-                    m[2 + part, 0] += v * x
-                    m[4 + part, 0] += v * y
-                    m[6 + part, 0] += v * zz
-                    m[8 + part, 0] += v * px
-                    m[10 + part, 0] += v * py
-                    m[12 + part, 0] += v * pz
-                    m[14 + part, 0] += v * (x * px + y * py + zz * pz)
-        _scatter(p, q, m, 0, ka, kb, corners, image, length, dof, sign, factor, rows)
-    if before >= 0:
-        _flush(before, rows, dof, sign, z)
+                _edge_pairs(p, start, count, m, k * eta / 4.0, eta / k, corners, images[image], length, image_length,
+                            factors[image], work, pairs)
+                _scatter(start, count, pairs, dof, sign, rows)
+        _flush(p, rows, dof, sign, place, z, extra)
 
 
 @compiled(fastmath=True)

@@ -32,6 +32,7 @@ from fabgen.fields.surfaces import feed_mesh
 from fabgen.fields.system import (
     Assembler,
     ComplexArray,
+    Factors,
     QuadratureSettings,
     check_memory,
     overlap,
@@ -90,7 +91,7 @@ class FieldSolution:
 @dataclass(frozen=True)
 class _KeptCan:
     matrix: ComplexArray
-    factors: tuple[ComplexArray, NDArray[np.int32]]
+    factors: Factors
     norm: float
 
 
@@ -165,14 +166,16 @@ class FeedSolver:
             (feed.can, frequency_hz, complex(surface.can_ohm)),
             lambda: self._factorised(feed.can, ready, frequency_hz, surface),
         )
-        system = _System(can, self._full(can.matrix, ready, frequency_hz, surface), ready.functions.inner)
+        matrix = self._full(can.matrix, ready, frequency_hz, surface)
+        system = _System(can, matrix, ready.functions.inner)
         currents = system.solve(drive)
-        found = [_solution(ready, frequency_hz, surface, currents, drive, system)]
+        found = [_solution(ready, frequency_hz, surface, currents, drive, system, matrix)]
         if step:
-            near = self._full(self._can_matrix(feed.can, ready, top, surface), ready, top, surface)
+            del matrix  # makes room for the next one
+            matrix = self._full(self._can_matrix(feed.can, ready, top, surface), ready, top, surface)
             for _ in range(REFINEMENTS):
-                currents = currents + system.solve(drive - near @ currents)
-            found.append(_solution(ready, top, surface, currents, drive, system))
+                currents = currents + system.solve(drive - matrix @ currents)
+            found.append(_solution(ready, top, surface, currents, drive, system, matrix))
         return found
 
     def _prepare(self, feed: FeedGeometry) -> _Prepared:
@@ -220,10 +223,9 @@ class FeedSolver:
 
 
 class _System:
-    """The full matrix, solved by block elimination with the kept factors of the can."""
+    """The factors of a full matrix by block elimination with the kept factors of the can; keeps no matrix."""
 
     def __init__(self, can: _KeptCan, full: ComplexArray, inner: int) -> None:
-        self.full = full
         self._can = can
         self._inner = inner
         if inner:
@@ -238,13 +240,9 @@ class _System:
         """Solution for one right-hand side (N,)."""
         n = self._inner
         a = symmetric_solve(self._can.factors, right[:n]) if right[:n].any() else np.zeros(n)
-        y = symmetric_solve(self._factors, right[n:] - self.full[n:, :n] @ a)
+        # B' A^-1 is the transpose of A^-1 B
+        y = symmetric_solve(self._factors, right[n:] - self._reduced.T @ right[:n])
         return np.concatenate([a - self._reduced @ y, y])
-
-    def residual(self, currents: ComplexArray, right: NDArray[Any]) -> float:
-        """Largest backward error of a row, |Z x - v| / (|Z| |x| + |v|)."""
-        scale = np.abs(self.full) @ np.abs(currents) + np.abs(right)
-        return float(np.abs(self.full @ currents - right).max() / scale.max())
 
     def condition(self) -> float:
         """Estimated one-norm condition of the two factorised blocks, the larger."""
@@ -253,9 +251,15 @@ class _System:
         return float(1 / max(min(outer, inner), 1e-300))
 
 
+def _residual(matrix: ComplexArray, currents: ComplexArray, right: NDArray[Any]) -> float:
+    """Largest backward error of a row, |Z x - v| / (|Z| |x| + |v|)."""
+    scale = np.abs(matrix) @ np.abs(currents) + np.abs(right)
+    return float(np.abs(matrix @ currents - right).max() / scale.max())
+
+
 def _solution(
     ready: _Prepared, frequency_hz: float, surface: SurfaceImpedance, currents: ComplexArray,
-    drive: NDArray[np.float64], system: _System, planes: tuple[int, ...] = SYMMETRY_PLANES,
+    drive: NDArray[np.float64], system: _System, matrix: ComplexArray, planes: tuple[int, ...] = SYMMETRY_PLANES,
 ) -> FieldSolution:
     total = complex(2 * drive @ currents)
     if not np.isfinite(currents).all() or total == 0:
@@ -265,7 +269,7 @@ def _solution(
     return FieldSolution(
         frequency_hz, impedance, current_elements(ready.mesh, ready.functions, planes, unit),
         0.5 * impedance.real, _ohmic_power(ready.mesh, ready.functions, surface, unit),
-        system.residual(currents, drive), system.condition(),
+        _residual(matrix, currents, drive), system.condition(),
         ready.mesh.longest_edge_m() * frequency_hz / SPEED_OF_LIGHT, len(ready.mesh.triangles), ready.functions.count,
         2 in planes,
     )
@@ -308,7 +312,7 @@ def solve_mesh(
     none = np.zeros((0, 0), dtype=np.complex128)
     can = _KeptCan(none, (none, np.zeros(0, dtype=np.int32)), 0.0)
     system = _System(can, matrix, 0)
-    return _solution(ready, frequency_hz, surface, system.solve(drive), drive, system, planes)
+    return _solution(ready, frequency_hz, surface, system.solve(drive), drive, system, matrix, planes)
 
 
 def port_drive(mesh: Mesh, functions: EdgeFunctions) -> NDArray[np.float64]:

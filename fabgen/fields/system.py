@@ -12,6 +12,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Any
 
 import numpy as np
@@ -26,7 +27,11 @@ from fabgen.fields.mesh import FloatArray, IntArray, Mesh
 from fabgen.fields.quadrature import triangle_rule
 
 ComplexArray = NDArray[np.complex128]
-SLICES = 2
+Factors = tuple[ComplexArray, NDArray[np.int32]]
+SLICES = 4
+"""Shares of the work, a fixed number so that results do not depend on the number of processors."""
+NEAR_COST = 7.0
+"""Work of a near pair against a far one, for shares of equal size."""
 
 
 @dataclass(frozen=True)
@@ -58,10 +63,9 @@ def reflections(planes: tuple[int, ...]) -> tuple[_Reflection, ...]:
 
 @dataclass(frozen=True)
 class NearTable:
-    """Near pairs of one reflection and their static moments, independent of frequency."""
+    """Near pairs and their static moments, independent of frequency; ``start`` (I, T + 1) for I reflections."""
 
     start: IntArray
-    test: IntArray
     source: IntArray
     static: FloatArray
 
@@ -90,7 +94,9 @@ class Assembler:
         self._size = np.max(edges, axis=0)
         self._reflections = reflections(planes)
         self._images = [np.ascontiguousarray(self._corners * r.mirror) for r in self._reflections]
-        self._near = [self._near_table(image) for image in self._images]
+        self._near = _stacked([self._near_table(image) for image in self._images])
+        self._marks = self._balanced_marks()
+        self._place = _shared_rows(functions.dof, self._marks, functions.count)
 
     def _near_table(self, image: FloatArray) -> NearTable:
         centre, image_centre = self._corners.mean(1), image.mean(1)
@@ -110,62 +116,76 @@ class Assembler:
             )
 
         _run_slices(work, np.linspace(0, count, SLICES + 1).astype(int))
-        return NearTable(start, test, source[:count], static)
+        return NearTable(start[None, :], source[:count], static)
 
     def matrix(self, frequency_hz: float) -> ComplexArray:
         """Galerkin matrix (N, N), complex symmetric, without surface impedance."""
         k = 2 * np.pi * frequency_hz / SPEED_OF_LIGHT
         n = self.functions.count
-        parts = [np.zeros((n, n), dtype=np.complex128) for _ in range(SLICES)]
-        for reflection, image, near in zip(self._reflections, self._images, self._near, strict=True):
-            self._add_far(k, reflection.factor, image, near, parts)
-            self._add_near(k, reflection.factor, image, near, parts)
-        total = parts[0]
-        for extra in parts[1:]:
-            total += extra
+        total = np.zeros((n, n), dtype=np.complex128)
+        extra = [np.zeros((int(place.max(initial=-1)) + 1, n), dtype=np.complex128) for place in self._place]
+        points, weight = self._points(self._corners[None], self.quadrature.far_points)
+        image_points, _ = self._points(np.stack(self._images), self.quadrature.far_points)
+        smooth_points, smooth_weight = self._points(self._corners[None], self.quadrature.smooth_points)
+        smooth_image_points, _ = self._points(np.stack(self._images), self.quadrature.smooth_points)
+        images = np.ascontiguousarray(np.stack(self._images).transpose(0, 2, 3, 1))
+        factors = np.array([r.factor for r in self._reflections])
+        f, near = self.functions, self._near
+        image_length = np.ascontiguousarray(f.length_m.T)
+
+        def work(first: int, last: int, part: int) -> None:
+            kernel.fill_rows(
+                first, last, k, FREE_SPACE_IMPEDANCE, self.kept, points[0], image_points, weight, smooth_points[0],
+                smooth_image_points, smooth_weight, near.start, near.source, near.static, self._corners, images,
+                factors, f.length_m, image_length, f.dof, f.sign, self._place[part], total, extra[part],
+            )
+
+        _run_slices(work, self._marks)
+        for place, rows in zip(self._place, extra, strict=True):
+            shared = np.flatnonzero(place >= 0)
+            total[shared] += rows[place[shared]]
         return mirrored_sum(total)
 
     def _points(self, corners: FloatArray, count: int) -> tuple[FloatArray, FloatArray]:
+        """Quadrature points (I, 3, n, T) of corners (I, T, 3, 3), and weights (n,)."""
         bary, weight = triangle_rule(count)
-        return np.ascontiguousarray(np.einsum("ic,tcx->xit", bary, corners)), weight
+        return np.ascontiguousarray(np.einsum("ic,mtcx->mxit", bary, corners)), weight
 
-    def _add_far(self, k: float, factor: float, image: FloatArray, near: NearTable, parts: list[Any]) -> None:
-        points, weight = self._points(self._corners, self.quadrature.far_points)
-        image_points, _ = self._points(image, self.quadrature.far_points)
-        f = self.functions
-
-        def work(first: int, last: int, part: int) -> None:
-            kernel.far_rows(
-                first, last, k, FREE_SPACE_IMPEDANCE, self.kept, points, image_points, weight, self._corners, image,
-                f.length_m, f.dof, f.sign, factor, near.start, near.source, parts[part],
-            )
-
-        _run_slices(work, self._balanced_rows())
-
-    def _balanced_rows(self) -> IntArray:
+    def _balanced_marks(self) -> IntArray:
         total = len(self._corners)
         rows = np.arange(total)
-        work = np.where(rows < self.kept, total - self.kept, total - rows)
+        far = np.where(rows < self.kept, total - self.kept, total - rows) * float(len(self._images))
+        work = far + NEAR_COST * np.diff(self._near.start, axis=1).sum(0)
         cumulative = np.concatenate([[0], np.cumsum(work)])
-        marks = np.linspace(0, cumulative[-1], SLICES + 1)
-        return np.searchsorted(cumulative, marks).astype(np.int64)
-
-    def _add_near(self, k: float, factor: float, image: FloatArray, near: NearTable, parts: list[Any]) -> None:
-        points, weight = self._points(self._corners, self.quadrature.smooth_points)
-        image_points, _ = self._points(image, self.quadrature.smooth_points)
-        f = self.functions
-
-        def work(first: int, last: int, part: int) -> None:
-            kernel.near_rows(
-                first, last, k, FREE_SPACE_IMPEDANCE, self.kept, near.test, near.source, near.static, points,
-                image_points, weight, self._corners, image, f.length_m, f.dof, f.sign, factor, parts[part],
-            )
-
-        _run_slices(work, np.linspace(0, len(near.test), SLICES + 1).astype(int))
+        return np.searchsorted(cumulative, np.linspace(0, cumulative[-1], SLICES + 1)).astype(np.int64)
 
     def overlap(self, per_triangle: NDArray[Any]) -> NDArray[Any]:
         """Matrix of sum over triangles of x_t <f_m, f_n>_t, for surface impedance or dissipated power."""
         return overlap(self.mesh, self.functions, per_triangle)
+
+
+def _stacked(tables: list[NearTable]) -> NearTable:
+    """Tables of single reflections one after the other."""
+    offsets = np.cumsum([0] + [len(t.source) for t in tables[:-1]])
+    start = np.concatenate([t.start + offset for t, offset in zip(tables, offsets, strict=True)])
+    return NearTable(
+        start, np.concatenate([t.source for t in tables]), np.concatenate([t.static for t in tables])
+    )
+
+
+def _shared_rows(dof: IntArray, marks: IntArray, count: int) -> list[IntArray]:
+    """For each slice (N,): where among its own copies it keeps a row that an earlier slice writes to, else -1."""
+    taken = np.zeros(count, dtype=bool)
+    places = []
+    for first, last in pairwise(marks.tolist()):
+        used = np.unique(dof[first:last])
+        used = used[used >= 0]
+        shared = used[taken[used]]
+        place = np.full(count, -1, dtype=np.int64)
+        place[shared] = np.arange(len(shared))
+        taken[used] = True
+        places.append(place)
+    return places
 
 
 def overlap(mesh: Mesh, f: EdgeFunctions, per_triangle: NDArray[Any]) -> NDArray[Any]:
@@ -200,16 +220,16 @@ def mirrored_sum(matrix: ComplexArray, block: int = 256) -> ComplexArray:
     return matrix
 
 
-def symmetric_factors(matrix: ComplexArray) -> tuple[ComplexArray, IntArray]:
+def symmetric_factors(matrix: ComplexArray) -> Factors:
     """LU factors of a complex symmetric matrix, made in its own memory, which is lost.
 
     Its transpose is the same matrix in the order of storage that LAPACK wants, so no copy is made.
     """
-    factors: tuple[ComplexArray, IntArray] = lu_factor(matrix.T, overwrite_a=True, check_finite=False)
+    factors: Factors = lu_factor(matrix.T, overwrite_a=True, check_finite=False)
     return factors
 
 
-def symmetric_solve(factors: tuple[ComplexArray, IntArray], right: NDArray[Any]) -> ComplexArray:
+def symmetric_solve(factors: Factors, right: NDArray[Any]) -> ComplexArray:
     """Solution for one or several right-hand sides (N,) or (N, m)."""
     return np.asarray(lu_solve(factors, right, check_finite=False))
 
