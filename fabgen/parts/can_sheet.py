@@ -19,6 +19,7 @@ from fabgen.parts.wall_solid import wall_solid
 from fabgen.parts.wall_strip import Wall, wall_flat, wall_volume_mm3
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
+from fabgen.theory.springback import sheet_tool_radius_mm
 
 
 def can_wall(feed: Feed) -> Wall:
@@ -73,7 +74,21 @@ def _wall_part(feed: Feed, wall: Wall, key: str, name: str) -> Part:
         solid=once(partial(wall_solid, wall)),
         notes=(
             f"{form} with the seen side out; the tail of the seam outside, seam at +y; step first, tabs last",
+            *_rolling(feed, wall),
             f"{joint}; holes fit {seam.screw} screws and rivets",
             rule_text(feed.job.limits),
         ),
     )
+
+
+def _rolling(feed: Feed, wall: Wall) -> tuple[str, ...]:
+    """What to roll to so that the wall springs back to its bore (theory.springback, pure bending)."""
+    ring = wall.path.stretches[0]
+    if not ring.rolled:
+        return ()
+    metal = tables.metal(feed.job.can.metal)
+    temper = tables.temper(metal, feed.job.can.temper)
+    t = wall.path.thickness_mm
+    inside = ring.radius_mm - t / 2
+    tool = sheet_tool_radius_mm(inside, t, temper.yield_mpa, metal.youngs_gpa)
+    return (f"roll to about {2 * tool:.0f} mm inside diameter under load; it springs back to {2 * inside:.1f} mm",)

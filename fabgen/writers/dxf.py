@@ -50,8 +50,14 @@ def write_dxf(
 
 
 def dxf_text(flat: FlatPattern, version: Version = "R2010", folds: bool = False, kerf_mm: float = 0.0) -> str:
-    """The file's text, the same for the same flat pattern."""
+    """The file's text, the same for the same flat pattern.
+
+    Raises GeometryError for a fold copy with a kerf: fold lines end on the nominal edge.
+    """
     import ezdxf
+
+    if folds and kerf_mm:
+        raise GeometryError("a fold copy shows nominal edges; write it without kerf, and the cut file with it")
 
     with _fixed_meta_data(), _quiet():
         document = ezdxf.new(version, units=4)

@@ -125,7 +125,8 @@ def test_foil_covers_bore_depth_and_laps_and_is_for_printed_cans_only() -> None:
                if a.y_mm == b.y_mm == -8.0)  # fmt: skip
     assert edge <= math.pi * (feed.sizes.can_bore_mm - 16.0) + 10.0
     disc = parts["foil-floor"].flat
-    assert disc is not None and isinstance(disc.outline, Circle)
+    assert disc is not None
+    assert isinstance(disc.outline, Circle)
     assert disc.outline.diameter_mm == feed.sizes.can_bore_mm
     assert foil_patterns(sample_feed("wire", "turned")) == ()
 
@@ -160,7 +161,7 @@ def test_the_picture_shows_every_part_on_its_sheet() -> None:
 def test_a_part_larger_than_the_sheet_is_refused_with_its_size() -> None:
     feed = sample_feed("wire", "rolled")
     limits = feed.job.limits.model_copy(update={"sheet_mm": (500.0, 500.0)})
-    with pytest.raises(GeometryError, match="larger limits.sheet_mm"):
+    with pytest.raises(GeometryError, match=r"larger limits\.sheet_mm"):
         nest(build_parts(feed), limits)
 
 
@@ -168,4 +169,5 @@ def test_no_aid_stands_in_the_assembly() -> None:
     for form, make in (("wire", "printed"), ("sheet", "rolled")):
         feed = sample_feed(form, make)
         aids = (*bend_strip(feed), *bending_jig(feed), *foil_patterns(feed))
-        assert aids and all(part.solid is None for part in aids)
+        assert aids
+        assert all(part.solid is None for part in aids)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 from functools import cache
 from pathlib import Path
@@ -103,7 +104,8 @@ def _off_axis(at: tuple[float, ...], along: tuple[float, ...], spot: tuple[float
 def test_holes_of_the_choke_ring_meet_the_cans_wall_and_the_chokes_tabs(name: str) -> None:
     feed = feed_of(name)
     wall, outer = can_wall(feed), choke_wall(feed)
-    assert outer is not None and feed.sizes.choke is not None
+    assert outer is not None
+    assert feed.sizes.choke is not None
     base = Frame((0.0, 0.0, feed.sizes.choke.floor_z_mm - feed.sizes.floor_mm / 2), (1, 0, 0), (0, 1, 0), (0, 0, 1))
     sheet = folded_ring(feed, wall, outer)
     at = frames(sheet, base)
@@ -185,7 +187,7 @@ def test_flats_are_equal_and_lie_at_half_the_bore(name: str) -> None:
     folds = [i for i, p in enumerate(wall.path.stretches) if p.radius_mm and p.sweep_deg == 360.0 / s.can_flats]
     assert len(folds) == s.can_flats
     middles = [starts[i] + wall.path.stretches[i].flat_mm / 2 for i in folds]
-    pitches = [b - a for a, b in zip(middles, middles[1:], strict=False)]
+    pitches = [b - a for a, b in itertools.pairwise(middles)]
     assert max(pitches) - min(pitches) < 1e-9
     for i in folds[:-1]:
         (x, y), heading = wall.path.stretches[i + 1].at(0.5)

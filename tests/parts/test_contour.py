@@ -14,7 +14,6 @@ from fabgen.parts import contour as c
 from fabgen.parts.kerf import compensated
 
 
-
 def _ring() -> c.Contour:
     """A ring with a gap: every arc is followed by the vertex where it ends."""
     end = [math.radians(a) for a in (330.0, 30.0)]

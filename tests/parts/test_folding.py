@@ -54,7 +54,8 @@ def random_sheet(seed: int) -> FoldedSheet:
         first = box_face(width, dice.uniform(5, 30))
         faces.append(Face(f"tab {number}", first, (), "plate", (0, index), bend()))
         if dice.random() < 0.6:
-            faces.append(Face(f"end {number}", box_face(width, dice.uniform(5, 20)), (), f"tab {number}", (0, 2), bend()))
+            last = box_face(width, dice.uniform(5, 20))
+            faces.append(Face(f"end {number}", last, (), f"tab {number}", (0, 2), bend()))
     return FoldedSheet(tuple(faces), t)
 
 

@@ -13,7 +13,7 @@ from fabgen.errors import FabgenError, GeometryError
 from fabgen.parts.contour import Circle, Contour, arc_between, area_mm2, pairs, sampled
 from fabgen.parts.folding import folded_volume_mm3, frames
 from fabgen.parts.kernel import Point3
-from fabgen.parts.loop_sheet import foot_holes, folded_loop, loop_sheet, tab_plan
+from fabgen.parts.loop_sheet import folded_loop, foot_holes, loop_sheet, tab_plan
 from fabgen.parts.loop_wire import axis_length_mm, axis_points, bend_to_deg, loop_wire, wire_path, wire_pieces
 from fabgen.sizing.records import Feed
 from fabgen.theory.springback import wire_released_mm
@@ -59,7 +59,8 @@ def test_no_inner_corner_is_sharper_than_the_process_radius(tabs: str, relief: f
     """Turns to the right (material inside the corner) only along arcs of the corner radius or more."""
     feed = sheet_feed(tabs, relief)
     flat = loop_sheet(feed).flat
-    assert flat is not None and isinstance(flat.outline, Contour)
+    assert flat is not None
+    assert isinstance(flat.outline, Contour)
     segments = list(pairs(flat.outline))
     for (a, b), (c, d) in zip(segments, segments[1:] + segments[:1], strict=True):
         if a.bulge < 0:
@@ -101,7 +102,8 @@ def test_the_relief_reaches_past_the_fold_by_r_plus_t_and_leaves_the_band() -> N
     """SB-45, design practice, from memory: width >= t, depth >= r + t."""
     feed = sheet_feed("inward", -1.0)
     flat = loop_sheet(feed).flat
-    assert flat is not None and isinstance(flat.outline, Contour)
+    assert flat is not None
+    assert isinstance(flat.outline, Contour)
     slots = [arc_between(a, b) for a, b in pairs(flat.outline) if a.bulge < -0.4]
     tip = max(arc.centre[0] + arc.radius_mm for arc in slots if arc.radius_mm < 2)
     fold = max(f.start[0] for f in flat.folds)
@@ -114,7 +116,8 @@ def test_narrow_bars_get_feet_wide_enough_for_their_screw() -> None:
     feed = sheet_feed(leg_width_mm=4.0)
     part = loop_sheet(feed)
     assert dict(part.sizes)["foot_width_mm"] == pytest.approx(2.4 + 2 * 1.5 * 1.5)
-    assert part.flat is not None and part.solid is not None
+    assert part.flat is not None
+    assert part.solid is not None
     polygon = shapely.Polygon(sampled(part.flat.outline, 0.001))
     assert polygon.is_valid
     for hole in part.flat.holes:

@@ -72,7 +72,8 @@ def test_file_holds_the_part_and_nothing_else(name: str, version: Version) -> No
     assert flat is not None
     document = ezdxf.read(io.StringIO(dxf_text(flat, version)))
     audit = document.audit()
-    assert not audit.errors and not audit.fixes
+    assert not audit.errors
+    assert not audit.fixes
     found = loops(document)
     assert len(found["OUTLINE"]) == 1
     assert len(found["HOLES"]) == len(flat.holes)
@@ -112,8 +113,16 @@ def test_kerf_is_off_by_default_and_moves_contours_into_the_waste() -> None:
     wide = loops(ezdxf.read(io.StringIO(dxf_text(part.flat, kerf_mm=0.2))))
     assert area_mm2(nominal["OUTLINE"][0]) == pytest.approx(area_mm2(part.flat.outline), rel=1e-9)
     grown = area_mm2(compensated(part.flat.outline, 0.1))
-    assert area_mm2(wide["OUTLINE"][0]) == pytest.approx(grown, rel=1e-9) and grown > area_mm2(part.flat.outline)
+    assert area_mm2(wide["OUTLINE"][0]) == pytest.approx(grown, rel=1e-9)
+    assert grown > area_mm2(part.flat.outline)
     assert wide["HOLES"][0].diameter_mm == pytest.approx(nominal["HOLES"][0].diameter_mm - 0.2)
+
+
+def test_a_fold_copy_with_kerf_is_refused() -> None:
+    flat = flat_parts()["sheet rolled: loop"].flat
+    assert flat is not None
+    with pytest.raises(GeometryError, match="without kerf"):
+        dxf_text(flat, folds=True, kerf_mm=0.2)
 
 
 def test_file_name_says_part_grade_thickness_quantity_and_revision() -> None:

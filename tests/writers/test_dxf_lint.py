@@ -63,7 +63,7 @@ def ellipse(doc: Any) -> None:
 
 def zero_length(doc: Any) -> None:
     points = list(outline(doc).get_points("xyb"))
-    outline(doc).set_points([points[0][:2] + (0.0,), *points], format="xyb")
+    outline(doc).set_points([(*points[0][:2], 0.0), *points], format="xyb")
 
 
 def text_on_cut_layer(doc: Any) -> None:
@@ -115,7 +115,8 @@ def two_parts(doc: Any) -> None:
 
 
 def big_arc(doc: Any) -> None:
-    doc.modelspace().add_lwpolyline([(20, 30, 1.0), (26, 30, 1.0)], format="xyb", close=True, dxfattribs={"layer": "HOLES"})
+    points = [(20, 30, 1.0), (26, 30, 1.0)]
+    doc.modelspace().add_lwpolyline(points, format="xyb", close=True, dxfattribs={"layer": "HOLES"})
 
 
 def lifted(doc: Any) -> None:
