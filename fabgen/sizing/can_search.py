@@ -34,7 +34,7 @@ LEAST_GAP_WAVELENGTHS = 0.1
 CUTOFF_MARGIN = 1.12
 RIM_WAVELENGTHS = 0.02
 """The rim stands at least this far above the loop. Common practice, no source."""
-LARGEST_WAVELENGTHS = 1.4
+LARGEST_WAVELENGTHS = 1.7
 PRINT_FLANGE_MM = 2 * 14.0
 SEAM_MM = 15.0
 

@@ -39,6 +39,7 @@ COARSE = 0.625
 """Density of the second mesh over the first: four tenths of the triangles. It serves the can search and the
 sensitivities, which ask for differences, and tells how much the discretisation may still move."""
 SLOPE_SPAN = 1e-3
+POOR_EFFICIENCY = 0.6
 METHOD = (
     "electric-field integral equation, edge-based functions on triangles, Galerkin; can eliminated once per "
     "frequency; rational interpolation over frequency"
@@ -136,7 +137,8 @@ def _size(job: Job, tell: Progress, make_solver: MakeSolver) -> Feed:
         job=job, sizes=sizes, predicted=predicted, capacitor=part, sensitivities=rows, yields=yields,
         modes=bore_modes(sizes.can_bore_mm, target), self_checks=checks,
         settings=_settings(matched, second, found.search.solves + final.solves + coarse.solves),
-        remarks=(*found.can.remarks, *matched.remarks, *_band_remark(job, predicted)), can_trials=found.can.trials,
+        remarks=(*found.can.remarks, *matched.remarks, *_band_remark(job, predicted), *_dish_remark(job, predicted)),
+        can_trials=found.can.trials,
     )  # fmt: skip
 
 
@@ -179,6 +181,18 @@ def _settings(matched: Matched, second: _SecondMesh, solves: int) -> Settings:
         return_loss_uncertainty_db=second.return_loss_db,
         largest_edge_wavelengths=solution.largest_edge_wavelengths,
         method=METHOD,
+    )
+
+
+def _dish_remark(job: Job, predicted: Predicted) -> tuple[str, ...]:
+    """Why a very shallow or very deep dish is not used well."""
+    efficiency = predicted.aperture_efficiency
+    if efficiency >= POOR_EFFICIENCY:
+        return ()
+    beam = "narrower" if job.dish.focal_ratio > 0.5 else "wider"
+    return (
+        f"The aperture efficiency is {efficiency:.2f}: a dish of focal ratio {job.dish.focal_ratio:g} asks for a {beam} "
+        "beam than this can gives. A free bore, or a dish between 0.35 and 0.6, is used better.",
     )
 
 
