@@ -191,8 +191,8 @@ def _dish_remark(job: Job, predicted: Predicted) -> tuple[str, ...]:
         return ()
     beam = "narrower" if job.dish.focal_ratio > 0.5 else "wider"
     return (
-        f"The aperture efficiency is {efficiency:.2f}: a dish of focal ratio {job.dish.focal_ratio:g} asks for a {beam} "
-        "beam than this can gives. A free bore, or a dish between 0.35 and 0.6, is used better.",
+        f"The aperture efficiency is {efficiency:.2f}: a dish of focal ratio {job.dish.focal_ratio:g} asks for a "
+        f"{beam} beam than this can gives. A free bore, or a dish between 0.35 and 0.6, is used better.",
     )
 
 
