@@ -19,6 +19,8 @@ from fabgen.progress import Display, open_display
 
 if TYPE_CHECKING:
     from fabgen.checks.records import Finding
+    from fabgen.parts.records import Part
+    from fabgen.sizing.records import Feed
 
 
 def _wants_colour(arguments: argparse.Namespace, stream: Any) -> bool:
@@ -131,7 +133,23 @@ def _job_findings(arguments: argparse.Namespace) -> tuple[str, Sequence[Finding]
 
         feed = sized_feed(job, display, _cache(arguments))
         display.step("planning the parts and checking them")
-        return job.target.name, build_content(feed)[1]
+        parts, findings = build_content(feed)
+        if arguments.solid:
+            findings = (*findings, *_drawn_findings(feed, parts, display))
+        return job.target.name, findings
+
+
+def _drawn_findings(feed: Feed, parts: Sequence[Part], display: Display) -> Sequence[Finding]:
+    """The sizing model against the drawn solids: containment, and a solve on the true surface of the loop."""
+    import tempfile
+
+    from fabgen.checks.solid import solid_findings
+    from fabgen.writers.step import write_step
+
+    with tempfile.TemporaryDirectory() as folder:
+        path = Path(folder) / "loop.step"
+        write_step(next(part for part in parts if part.key == "loop"), path)
+        return solid_findings(feed, parts, path, display.step)
 
 
 def pack(arguments: argparse.Namespace) -> int:

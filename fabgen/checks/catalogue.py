@@ -12,6 +12,8 @@ import sys
 from fabgen.checks.readback import PACK_CODES, SOURCE
 from fabgen.checks.registry import GROUPS, Check, all_checks, source_text
 from fabgen.checks.run import MODULES
+from fabgen.checks.solid import SOLID_CODES
+from fabgen.checks.solid import SOURCE as SOLID_SOURCE
 from fabgen.stock import tables
 
 HEAD = """# Codes of the checks
@@ -32,6 +34,7 @@ def catalogue_text() -> str:
         lines += [_row(entry) for entry in rows]
         if group == "CONS":
             lines += [f"| {code} | stop | {title} |  | {SOURCE} |" for code, (title, _) in sorted(PACK_CODES.items())]
+            lines += [f"| {c} | {level} | {title} |  | {SOLID_SOURCE} |" for c, (level, title) in SOLID_CODES.items()]
         lines.append("")
     lines += ["## Limits", "", "| key | value | meaning | source |", "|---|---|---|---|"]
     for row in tables.all_rows("limit"):

@@ -13,6 +13,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
+from fabgen.checks.records import Finding, Severity
 from fabgen.errors import NotCoveredError
 from fabgen.fields.geometry import CanGeometry, FeedGeometry
 from fabgen.fields.mesh import LOOP
@@ -29,11 +30,17 @@ from fabgen.sizing.records import Feed, Sizes
 STEP_OF_FREQUENCY = 0.01
 SOLID_DENSITY = 14.0
 SEAM_HALF_MM = 20.0
+POLYGON_MM = 0.02
+SOLID_CODES = {
+    "CONS-301": ("stop", "Simulated surfaces lie in the drawn metal, within half its thickness (`check --solid`)."),
+    "CONS-302": ("note", "The true surface of the drawn loop computes to the sizing model (`check --solid`)."),
+}
+SOURCE = "the drawn solids and the project's own field computation"
 
 
 @dataclass(frozen=True)
 class Containment:
-    """Largest distance of the simulated surfaces outside the drawn metal, and half its thickness, for one group."""
+    """Largest distance of the simulated surfaces outside the drawn metal, and what is allowed, for one group."""
 
     name: str
     points: int
@@ -42,7 +49,7 @@ class Containment:
 
     @property
     def passed(self) -> bool:
-        """Whether the surfaces lie within half the thickness."""
+        """Whether the surfaces lie in the metal."""
         return self.gap_mm <= self.limit_mm
 
 
@@ -72,7 +79,8 @@ def containment(feed: Feed, parts: Sequence[Part]) -> tuple[Containment, ...]:
     loop = mesh.corners_m[mesh.label == LOOP].mean(1) * 1e3
     floor = _disc_points(drawn)
     samples = [
-        ("loop and bars", loop, (sizes.wire_mm or sizes.sheet_mm or 0.0) / 2),
+        # on the axis or mid-plane: a point of it within half the thickness lies inside the metal
+        ("loop and bars", loop, POLYGON_MM + 0.02 * (sizes.wire_mm or sizes.sheet_mm or 0.0)),
         ("floor", floor[~_in_holes(floor, parts)], sizes.floor_mm / 2),
         ("wall", _off_the_seam(_wall_points(drawn.can, 0.0)), sizes.wall_mm / 2),
     ]
@@ -108,6 +116,42 @@ def _disc_points(feed: FeedGeometry) -> NDArray[np.float64]:
     return 1e3 * np.stack([(r * np.cos(phi)).ravel(), (r * np.sin(phi)).ravel(), np.zeros(r.size)], -1)
 
 
+def solid_findings(
+    feed: Feed, parts: Sequence[Part], loop_step: Path, progress: Callable[[str], None] = lambda _: None
+) -> tuple[Finding, ...]:
+    """Containment (stop where it fails) and the comparison with the solve on the drawn loop (note, caution above
+    one percent of detuning)."""
+    progress("measuring the simulated surfaces against the solids")
+    found = []
+    for group in containment(feed, parts):
+        if not group.passed:
+            message = f"{group.name}: the simulated surface lies {group.gap_mm:.2f} mm outside the drawn metal"
+            cure = "write the pack anew; if it stays, report the job file"
+            found.append(
+                _finding(
+                    "CONS-301", "stop", group.name, f"{group.gap_mm:.2f} mm", f"{group.limit_mm:.2f} mm", message, cure
+                )
+            )
+    compared = compare_solid(feed, loop_step, progress)
+    limit_mhz = 0.01 * feed.job.target.frequency_mhz
+    shift = compared.resonance_shift_mhz
+    message = (
+        f"{compared.solid_ohm.real:.1f} {compared.solid_ohm.imag:+.1f}j ohm on the drawn surface "
+        f"({compared.unknowns} unknowns), "
+        f"{compared.model_ohm.real:.1f} {compared.model_ohm.imag:+.1f}j ohm in the sizing model; return loss "
+        f"{compared.solid_return_loss_db:.1f} dB against {compared.model_return_loss_db:.1f} dB, "
+        f"{compared.trimmed_return_loss_db:.1f} dB with {compared.trimmed_capacitor_pf:.2f} pF"
+    )
+    cure = f"expect to trim the series capacitor towards {compared.trimmed_capacitor_pf:.2f} pF on the bench"
+    severity: Severity = "note" if abs(shift) <= limit_mhz else "caution"
+    found.append(_finding("CONS-302", severity, "loop", f"{shift:+.1f} MHz", f"{limit_mhz:.1f} MHz", message, cure))
+    return tuple(found)
+
+
+def _finding(code: str, severity: Severity, part: str, value: str, limit: str, message: str, cure: str) -> Finding:
+    return Finding(code, severity, part, "drawn equals simulated", value, limit, SOURCE, message, cure)
+
+
 def _metal_widths(geometry: FeedGeometry, sizes: Sizes) -> FeedGeometry:
     loop = geometry.loop
     if sizes.wire_mm is not None:
@@ -136,9 +180,7 @@ def _in_holes(points: NDArray[np.float64], parts: Sequence[Part]) -> NDArray[np.
     return inside
 
 
-def compare_solid(
-    feed: Feed, loop_step: Path, progress: Callable[[str], None] = lambda _: None
-) -> SolidComparison:
+def compare_solid(feed: Feed, loop_step: Path, progress: Callable[[str], None] = lambda _: None) -> SolidComparison:
     """Solve the feed on the true surface of the drawn loop (STEP in the feed's frame) near the target.
 
     Perfect conductors on both sides. Raises NotCoveredError for cans with flats or a choke.
@@ -175,7 +217,12 @@ def _compared(
     trimmed = complex(impedance[0, 1]).imag
     loss = [_return_loss_db(complex(z)) for z in total[0]]
     return SolidComparison(
-        complex(impedance[0, 0]), complex(impedance[0, 1]), loss[0], loss[1], float(zero[1] - zero[0]), unknowns,
+        complex(impedance[0, 0]),
+        complex(impedance[0, 1]),
+        loss[0],
+        loss[1],
+        float(zero[1] - zero[0]),
+        unknowns,
         1e6 / (2 * math.pi * float(frequencies[0]) * trimmed),
         _return_loss_db(complex(impedance[0, 1].real)),
     )

@@ -108,7 +108,7 @@ def adaptive_sweep(
     stop: float,
     measure: Callable[[FloatArray, ComplexArray], ComplexArray],
     target: float | None = None,
-    tolerance: float = 2e-3,
+    tolerance: float = 4e-3,
     most: int = 13,
     first: int = 7,
 ) -> SweepResult:
@@ -117,7 +117,7 @@ def adaptive_sweep(
     ``sample(f)`` makes one full solve and gives frequencies (p,) and quantities (p, q) at and near f, the first of
     which is the impedance; ``measure`` turns frequencies and quantities into what the tolerance is stated for
     (reflection). The error estimate is the largest change of ``measure`` on a fine grid when the newest sample is
-    added; two changes below ``tolerance`` in a row end the sweep, as does the number of solves ``most``.
+    added; a change below ``tolerance`` ends the sweep, as does the number of solves ``most``.
     """
     centres = list(np.linspace(start, stop, first))
     if target is not None:
@@ -131,7 +131,7 @@ def adaptive_sweep(
         current = measure(dense, fit(dense))
         change = np.abs(current - previous)
         quiet = quiet + 1 if change.max() < tolerance else 0
-        if quiet == 2 or len(centres) >= most:
+        if quiet == 1 or len(centres) >= most:
             break
         centres.append(_next_frequency(dense, change, centres))
         samples.append(sample(centres[-1]))
