@@ -76,7 +76,7 @@ def test_identities() -> None:
     assert bending.bend_allowance(0, 2, 0.4, 1) == 0
     with pytest.raises(JobError, match="k_factor"):
         bending.bend_allowance(90, 2, 1.4, 1)
-    with pytest.raises(JobError, match="angle_deg is 180.5: allowed 0 to 180"):
+    with pytest.raises(JobError, match=r"angle_deg is 180\.5: allowed 0 to 180"):
         bending.bend_allowance(180.5, 2, 0.4, 1)
     with pytest.raises(JobError, match="allowed 0 to 179"):
         bending.outside_setback(179.5, 2, 1)
