@@ -8,7 +8,7 @@ from __future__ import annotations
 from functools import partial
 
 from fabgen.parts.bend_rule import rule_text
-from fabgen.parts.choke_ring import choke_fixings, choke_ring
+from fabgen.parts.choke_ring import choke_fixings, choke_ring, has_ring
 from fabgen.parts.floor_sheet import floor_sheet
 from fabgen.parts.joint_screws import joint_screws
 from fabgen.parts.kernel import once
@@ -37,12 +37,17 @@ def choke_wall(feed: Feed) -> Wall | None:
 
 
 def sheet_can(feed: Feed) -> tuple[Part, ...]:
-    """Floor and wall, ring and wall of the choke, screws and nuts."""
-    wall = can_wall(feed)
-    parts = [floor_sheet(feed, wall), _wall_part(feed, wall, "wall", "wall of the can")]
-    outer = choke_wall(feed)
+    """Floor and wall, ring and wall of the choke, screws and nuts.
+
+    A choke as deep as the can needs no ring: its wall stands on the can's own, wider floor.
+    """
+    wall, outer = can_wall(feed), choke_wall(feed)
+    ring = outer is not None and has_ring(feed)
+    parts = [floor_sheet(feed, wall, None if ring else outer), _wall_part(feed, wall, "wall", "wall of the can")]
     if outer is not None:
-        parts += [choke_ring(feed, wall, outer), _wall_part(feed, outer, "choke-wall", "wall of the choke")]
+        if ring:
+            parts.append(choke_ring(feed, wall, outer))
+        parts.append(_wall_part(feed, outer, "choke-wall", "wall of the choke"))
     return (*parts, *joint_screws(feed, wall, outer))
 
 

@@ -61,12 +61,24 @@ def _down(feed: Feed) -> bool:
     return tip >= feed.sizes.wall_mm + screw.head_height_mm + 0.5
 
 
+def has_ring(feed: Feed) -> bool:
+    """Whether the choke has a floor of its own; one at z = 0 is the can's floor, made wider."""
+    return feed.sizes.choke is not None and feed.sizes.choke.floor_z_mm > 0
+
+
 def choke_fixings(feed: Feed) -> Fixings | None:
-    """The holes in the can's wall that hold the ring; None without a choke."""
+    """The holes in the can's wall that hold the ring; None without a ring."""
     choke, s = feed.sizes.choke, feed.sizes
-    if choke is None:
+    if choke is None or not has_ring(feed):
         return None
-    shape = tab_shape(feed, joint_screw(s.can_bore_mm), s.floor_mm)
+    screw = joint_screw(s.can_bore_mm)
+    least = s.floor_mm + s.wall_mm + screw.head_height_mm
+    if choke.floor_z_mm < least:
+        raise GeometryError(
+            f"can.choke.floor_z_mm = {choke.floor_z_mm:g} puts the choke's ring into the tabs and screws on the can's "
+            f"floor; give 0, so that both walls stand on one floor, or {math.ceil(10 * least) / 10:g} or more"
+        )
+    shape = tab_shape(feed, screw, s.floor_mm)
     along = shape.inside_radius_mm + s.floor_mm / 2 + shape.hole_from_bend_mm
     height = choke.floor_z_mm - s.floor_mm / 2 + (-along if _down(feed) else along)
     if not shape.hole_mm < height < s.can_depth_mm - 2 * shape.hole_mm:

@@ -50,12 +50,16 @@ BARE_RIM_MM = 2.0
 """Margin outside the tabs of a floor without flange. Common practice, no source."""
 
 
-def floor_sheet(feed: Feed, wall: Wall) -> Part:
-    """The floor for that wall. Raises NotCoveredError for a flange of another thickness than the floor."""
+def floor_sheet(feed: Feed, wall: Wall, outer: Wall | None = None) -> Part:
+    """The floor for that wall, and for the choke's wall ``outer`` where both stand on one sheet.
+
+    Raises NotCoveredError for a flange of another thickness than the floor.
+    """
     s = feed.sizes
-    width = tabs_width_mm(wall)
+    width = tabs_width_mm(outer or wall)
     plan = flange_plan(feed, width)
-    holes: tuple[Outline, ...] = (*(h.outline for h in floor_holes(feed)), *tab_holes(wall))
+    tabs = (*tab_holes(wall), *(tab_holes(outer) if outer else ()))
+    holes: tuple[Outline, ...] = (*(h.outline for h in floor_holes(feed)), *tabs)
     sizes = [("floor_mm", s.floor_mm), ("can_bore_mm", s.can_bore_mm), ("tab_hole_mm", wall.tab.hole_mm)]
     edge: Outline = Circle(0.0, 0.0, width + 2 * BARE_RIM_MM)
     if plan is not None:

@@ -23,7 +23,8 @@ def joint_screws(feed: Feed, wall: Wall, outer: Wall | None) -> tuple[Part, ...]
     seams = {wall.seam.screw: len(wall.seam.heights_mm)}
     if outer is not None:
         parts += _counted("choke", "choke's wall", outer.tab.screw, len(outer.tabs_mm), t + floor)
-        parts += _counted("ring", "choke ring", wall.tab.screw, len(wall.holes), t + floor)
+        if wall.holes:
+            parts += _counted("ring", "choke ring", wall.tab.screw, len(wall.holes), t + floor)
         seams[outer.seam.screw] = seams.get(outer.seam.screw, 0) + len(outer.seam.heights_mm)
     for number, (size, count) in enumerate(sorted(seams.items())):
         parts += _counted(f"seam{number or ''}", "seam", size, count, 2 * t)

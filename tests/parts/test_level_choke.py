@@ -1,0 +1,59 @@
+"""A choke whose floor is level with the can's: both walls of sheet stand on one floor."""
+
+from __future__ import annotations
+
+import dataclasses
+
+import pytest
+
+from fabgen.errors import GeometryError, NotCoveredError
+from fabgen.parts.build import build_parts
+from fabgen.parts.can_sheet import can_wall, choke_wall
+from fabgen.parts.wall_strip import tab_holes
+from fabgen.sizing.records import Feed
+from tests.samples import sample_feed
+
+
+def with_choke_floor(feed: Feed, floor_z_mm: float) -> Feed:
+    assert feed.sizes.choke is not None
+    choke = dataclasses.replace(feed.sizes.choke, floor_z_mm=floor_z_mm)
+    return dataclasses.replace(feed, sizes=dataclasses.replace(feed.sizes, choke=choke))
+
+
+@pytest.mark.parametrize("make", ["rolled", "folded"])
+def test_both_walls_stand_on_one_floor(make: str) -> None:
+    feed = with_choke_floor(sample_feed("wire", make, choke=True), 0.0)
+    parts = {p.key: p for p in build_parts(feed)}
+    assert "choke-ring" not in parts
+    assert "screw-ring" not in parts
+    floor = parts["floor"]
+    outer = choke_wall(feed)
+    assert outer is not None
+    wanted = {(round(h.x_mm, 6), round(h.y_mm, 6)) for wall in (can_wall(feed), outer) for h in tab_holes(wall)}
+    assert floor.flat is not None
+    found = {(round(h.x_mm, 6), round(h.y_mm, 6)) for h in floor.flat.holes if hasattr(h, "diameter_mm")}
+    assert wanted <= found
+    assert floor.solid is not None
+    assert feed.sizes.choke is not None
+    assert floor.solid().BoundingBox(1e-3).xlen > feed.sizes.choke.bore_mm
+    assert floor.solid().isValid()
+
+
+def test_a_ring_inside_the_tabs_is_refused_with_both_ways_out() -> None:
+    feed = with_choke_floor(sample_feed("wire", "rolled", choke=True), 2.0)
+    with pytest.raises(GeometryError, match=r"give 0, so that both walls stand on one floor, or \d"):
+        build_parts(feed)
+
+
+@pytest.mark.parametrize("make", ["rolled", "printed", "tube", "turned"])
+def test_a_choke_floor_below_the_cans_is_not_covered(make: str) -> None:
+    feed = with_choke_floor(sample_feed("wire", make, choke=True), -3.0)
+    with pytest.raises(NotCoveredError, match="give 0 or more"):
+        build_parts(feed)
+
+
+@pytest.mark.parametrize("make", ["printed", "turned"])
+def test_level_choke_is_one_piece_in_plastic_and_from_bar(make: str) -> None:
+    feed = with_choke_floor(sample_feed("sheet", make, frequency_mhz=2000.0, choke=True), 0.0)
+    keys = {p.key for p in build_parts(feed)}
+    assert not {"choke", "choke-1"} & keys
