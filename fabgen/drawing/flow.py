@@ -91,7 +91,7 @@ def flow(paper: Paper, blocks: Sequence[Block]) -> list[Page]:
     index, y = 0, spots[0].top
     fresh = True
     for n, block in enumerate(blocks):
-        empty = not block.items
+        empty = not block.items and not block.tables
         if empty and (fresh or y - block.height < spots[index].bottom):
             continue
         need = _need(blocks, n)

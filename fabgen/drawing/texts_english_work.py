@@ -82,6 +82,10 @@ WORK: dict[str, str] = {
     ),
     "step.wall.tools": "clamps, square, rule; soldering iron or torch, or rivets.",
     "step.wall.join": "continuous contact to the floor all round: current crosses this joint everywhere.",
+    "step.wall.bond.join": (
+        "screws or rivets in every tab, bright metal below them; conductive sealant in the corner: current crosses "
+        "this joint everywhere."
+    ),
     "step.wall.solder.join": "soft solder all round inside, without a gap: current crosses this joint everywhere.",
     "step.wall.measure": (
         "inside diameter {bore} mm in four directions; depth {depth} mm; under 0.01 ohm floor to rim."
@@ -109,6 +113,13 @@ WORK: dict[str, str] = {
     ),
     "step.loop.do": "Set the loop on the floor with the gap towards +x and fix both feet.",
     "step.loop.tools": "height blocks, square, calliper; iron or screwdriver.",
+    "step.loop.wire-bond.join": (
+        "this floor takes no soft solder: solder the feet to a plate of brass or copper screwed to the floor, or "
+        "thread the feet and set a nut on both sides of the floor."
+    ),
+    "step.loop.printed-wire.join": (
+        "solder both feet to the foil all round; on paint or plating a nut and a washer on both sides of the floor."
+    ),
     "step.loop.wire.join": "solder both feet to the floor inside and outside, fillets all round the wire.",
     "step.loop.sheet.join": (
         "screws with toothed washers on bright metal; sweat the feet with solder where the floor takes it."

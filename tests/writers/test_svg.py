@@ -8,9 +8,10 @@ from pathlib import Path
 import pytest
 
 from fabgen.drawing.model import Arc, Line, Polyline, Text
+from fabgen.drawing.pages.sheets import pictures
 from fabgen.errors import OutputError
 from fabgen.writers.svg import svg_text, write_svg
-from tests.drawing.books import book_of
+from tests.drawing.books import book_of, feed_of, parts_of
 
 NS = "{http://www.w3.org/2000/svg}"
 
@@ -44,3 +45,11 @@ def test_items_are_cropped_to_their_bounds() -> None:
 def test_folder_that_is_not_there(tmp_path: Path) -> None:
     with pytest.raises(OutputError, match="could not be written"):
         write_svg((Line(0, 0, 1, 1),), tmp_path / "none" / "a.svg")
+
+
+def test_main_views_for_other_pages() -> None:
+    made = pictures(feed_of("wire-tube-choke"), parts_of("wire-tube-choke"))
+    assert list(made) == ["isometric", "section", "aperture", "loop"]
+    for items in made.values():
+        root = ET.fromstring(svg_text(items))
+        assert len(list(root.iter(f"{NS}path"))) > 10

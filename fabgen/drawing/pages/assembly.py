@@ -76,10 +76,13 @@ def _text(context: Context, n: int, step: Step) -> Block:
 
 
 def _key(context: Context, kind: str, field: str) -> str:
-    """The most particular text: by loop form, by make of can, by whether metal is soldered, then the general one."""
+    """The most particular text: by make and form, form and joint, make, form, joint; then the general one."""
+    from fabgen.stock import tables
+
     job = context.feed.job
-    soldered = "solder" if all(p.material not in {"en-aw-5754", "en-aw-1050"} for p in context.parts) else "bond"
-    for variant in (job.can.make, job.loop.form, soldered):
+    make, form = job.can.make, job.loop.form
+    joint = "solder" if make == "printed" or tables.metal(job.can.metal).solderable else "bond"
+    for variant in (f"{make}-{form}", f"{form}-{joint}", make, form, joint):
         key = f"step.{kind}.{variant}.{field}"
         if has(key):
             return key

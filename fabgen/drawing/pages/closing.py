@@ -7,8 +7,8 @@ from __future__ import annotations
 
 import fabgen
 from fabgen.checks.records import Finding
-from fabgen.drawing.flow import Block, gap, heading, paragraph, table
-from fabgen.drawing.model import RED, number
+from fabgen.drawing.flow import Block, gap, heading, kept, paragraph, table
+from fabgen.drawing.model import BLACK, RED, Table, number
 from fabgen.drawing.pages.base import Context, Draft, draft
 from fabgen.drawing.texts import say, size_name
 
@@ -34,19 +34,38 @@ def findings_blocks(findings: tuple[Finding, ...]) -> list[Block]:
     stops = sum(f.severity == "stop" for f in findings)
     if stops:
         blocks += paragraph(say("findings.stops", count=stops), bold=True, colour=RED)
-    rows = [
-        (
-            say(f"severity.{f.severity}"),
-            f.code,
-            f"{f.part}: {f.feature}" if f.feature else f.part,
-            say("findings.value", value=f.value, limit=f.limit),
-            f"{f.message} {say('findings.cure')} {f.cure} ({f.source})",
-        )
-        for f in ordered
-    ]
-    red = [i for i, f in enumerate(ordered) if f.severity == "stop"]
     head = tuple(say(f"findings.{k}") for k in ("severity", "code", "where", "measured", "what"))
-    return [*blocks, *table("findings", head, rows, size=1.8, red=red, widths=(20, 24, 32, 34, 60))]
+    rows = tuple(
+        (f.severity, f.code, _where(f), say("findings.value", value=f.value, limit=f.limit), f.message) for f in ordered
+    )
+    blocks.append(Block(0.01, (), tables=(Table("findings", head, rows),), stay=True))
+    for finding in ordered:
+        blocks += _finding(finding)
+    return blocks
+
+
+def _where(finding: Finding) -> str:
+    return f"{finding.part}: {finding.feature}" if finding.feature else finding.part
+
+
+def _finding(finding: Finding) -> list[Block]:
+    """Severity, code and place as a heading; then what, value and limit, cure, source."""
+    stop = finding.severity == "stop"
+    colour = RED if stop else BLACK
+    title = f"{say(f'severity.{finding.severity}')}  {finding.code}  {_where(finding)}"
+    lines = kept(paragraph(title, bold=True, colour=colour))
+    values = say("findings.value", value=finding.value, limit=finding.limit)
+    lines += paragraph(f"{_sentence(finding.message)} {say('findings.values')} {values}.", colour=colour)
+    lines += paragraph(f"{say('findings.cure')} {_sentence(finding.cure)}")
+    lines += paragraph(f"{say('findings.source')} {finding.source}", 1.8)
+    return [*lines, gap(2)]
+
+
+def _sentence(text: str) -> str:
+    """The text with a capital and a full stop."""
+    text = text.strip()
+    text = text[:1].upper() + text[1:]
+    return text if text.endswith((".", "!", "?")) else text + "."
 
 
 def cautions_blocks(context: Context) -> list[Block]:

@@ -79,6 +79,20 @@ def arrangement(context: Context) -> tuple[list[Block], str]:
     return views, scale_text(scale)
 
 
+def pictures(context: Context) -> dict[str, tuple[Item, ...]]:
+    """The isometric picture, the section and the view into the aperture with their dimensions, loop and bars."""
+    section = cut(say("view.section_e"), context.bodies, SIDE)
+    front = outside(say("view.aperture"), [b for b in context.bodies if _reaches_inside(b)], APERTURE)
+    scale = scales_for((section,), WIDTH_MM - 30, 120.0)[0]
+    made = {
+        "isometric": free(_isometric(context), WIDTH_MM, 120.0).items,
+        "section": dimensioned(section, section_asks(context), scale, title=False).block.items,
+        "aperture": dimensioned(front, front_asks(front), scale, title=False).block.items,
+    }
+    loop = detail(context)
+    return {**made, "loop": loop[0].items} if loop else made
+
+
 def _reaches_inside(body: Body) -> bool:
     """False for what lies wholly under the floor's inner face: the floor hides it in a view into the aperture."""
     return body.part.process != ("buy",) or rough_bounds(body.shape)[1][2] > 0.05

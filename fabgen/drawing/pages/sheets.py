@@ -10,7 +10,7 @@ import hashlib
 from fabgen.checks.records import Finding
 from fabgen.drawing.fonts import require_printable
 from fabgen.drawing.hidden import ISOMETRIC, look
-from fabgen.drawing.model import Sheet
+from fabgen.drawing.model import Item, Sheet
 from fabgen.drawing.pages import assembly, bench, closing, general, part, stock, truescale, wire
 from fabgen.drawing.pages.base import Context, Draft
 from fabgen.drawing.pages.steps import step_views
@@ -44,6 +44,16 @@ def sheets(feed: Feed, parts: tuple[Part, ...], findings: tuple[Finding, ...]) -
     for d in drafts:
         out += _numbered(context, d, len(out) + 1, count)
     return tuple(out)
+
+
+def pictures(feed: Feed, parts: tuple[Part, ...]) -> dict[str, tuple[Item, ...]]:
+    """The main views as items in paper mm, for SVG: "isometric", "section", "aperture" and "loop"."""
+    things = bodies(parts)
+    if not things:
+        return {}
+    seen = look([b.shape for b in things], ISOMETRIC)
+    context = Context(feed, parts, (), things, seen, (), PAPERS[feed.job.limits.paper])
+    return general.pictures(context)
 
 
 def identification(feed: Feed) -> str:
