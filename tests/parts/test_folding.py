@@ -147,3 +147,15 @@ def test_faces_that_hang_on_nothing_or_on_a_wrong_edge_are_refused() -> None:
         FoldedSheet((plate, Face("tab", box_face(30.0, 5.0), (), "wall", (0, 0), bend)), 1.0)
     with pytest.raises(GeometryError, match="as wide as"):
         FoldedSheet((plate, Face("tab", box_face(10.0, 5.0), (), "plate", (0, 0), bend)), 1.0)
+
+
+def test_fold_lines_are_measured_to_the_first_edge_on_either_side() -> None:
+    """A tab that points into a ring is measured to its own tip, not to the ring's far side."""
+    bend = Bend(-90.0, 1.0, 0.33)
+    hole, plate = rectangle((20, 20), (40, 50)), rectangle((0, 0), (80, 80))
+    sheet = FoldedSheet(
+        (Face("plate", plate, (hole,)), Face("tab", box_face(20.0, 8.0), (), "plate", (1, 1), bend)), 1.0
+    )
+    pattern = flat_pattern(sheet)
+    zone = allowance_mm(bend, 1.0)
+    assert sorted(fold_edges_mm(pattern, pattern.folds[0])) == pytest.approx([8.0 + zone / 2, 30.0 + zone / 2])

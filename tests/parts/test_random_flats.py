@@ -68,11 +68,11 @@ def flats_of(feed: Feed) -> list[Part]:
 
 
 @pytest.mark.parametrize(
-    "block", [pytest.param(b, marks=() if b == 0 else pytest.mark.slow) for b in range(8)]
+    "block", [pytest.param(b, marks=() if b == 0 else pytest.mark.slow) for b in range(16)]
 )
 def test_random_parts_are_sound_or_refused(block: int) -> None:
     written = 0
-    for seed in range(25 * block, 25 * block + 25):
+    for seed in range(12 * block, 12 * block + 12):
         try:
             feed = random_feed(random.Random(seed))
         except (ValidationError, FabgenError):
@@ -81,4 +81,4 @@ def test_random_parts_are_sound_or_refused(block: int) -> None:
             assert part.flat is not None
             assert lint_dxf(dxf_text(part.flat, folds=True), part.flat) == (), f"seed {seed}, {part.key}"
             written += 1
-    assert written > 50
+    assert written > 20
