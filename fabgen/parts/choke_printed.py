@@ -50,8 +50,6 @@ def choke_printed(feed: Feed) -> tuple[Part, ...]:
     rules, can = print_rules(feed), body_of(feed)
     points = _profile(feed, can, choke, rules)
     at = choke_screw_points(feed, can)
-    envelope = _envelope(feed, points, at)
-    joint = Joint(envelope, plan_split(envelope, rules), rules, feed.sizes.wall_mm, feed.sizes.floor_mm, points[2][1])
     hole = tables.screw(CHOKE_SCREW).clearance_medium_mm + rules.hole_mm
     low, high = points[0][1], points[-1][1]
 
@@ -77,7 +75,7 @@ def choke_printed(feed: Feed) -> tuple[Part, ...]:
         finish=f"lined with {lining.name} on floor and wall, and the can's wall inside the ring",
         notes=("print floor down, without support", "lining of ring and can joined all round at the floor"),
         volume_mm3=revolved_volume_mm3(points) - len(at) * math.pi / 4 * hole**2 * (high - low),
-        joint=joint,
+        joint=_joint(feed, points, at),
         whole=whole,
     )
     length = screw_length_mm(feed.sizes.floor_mm + GRIP_MM)
@@ -95,6 +93,11 @@ def _profile(feed: Feed, can: Body, choke: ChokeSizes, rules: PrintRules) -> tup
     floor = choke.floor_z_mm - lining
     bottom, rim = floor - feed.sizes.floor_mm, choke.floor_z_mm + choke.depth_mm
     return ((inner, bottom), (outer, bottom), (outer, rim), (bore, rim), (bore, floor), (inner, floor))
+
+
+def _joint(feed: Feed, points: tuple[Point, ...], at: tuple[Point, ...]) -> Joint:
+    rules, envelope = print_rules(feed), _envelope(feed, points, at)
+    return Joint(envelope, plan_split(envelope, rules), rules, feed.sizes.wall_mm, feed.sizes.floor_mm, points[2][1])
 
 
 def _envelope(feed: Feed, points: tuple[Point, ...], at: tuple[Point, ...]) -> Envelope:

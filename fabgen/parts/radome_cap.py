@@ -19,7 +19,7 @@ records), sizing.records.
 from __future__ import annotations
 
 import math
-from functools import cache
+from dataclasses import dataclass
 
 from fabgen.parts import kernel
 from fabgen.parts.can_printed import BEAD_BELOW_RIM_MM, BEAD_MM, SKIRT_MM
@@ -48,6 +48,55 @@ def cover_mm(feed: Feed) -> float:
     return max(least, min(COVER_MM, math.floor(10 * share * feed.job.wavelength_mm) / 10))
 
 
+@dataclass(frozen=True)
+class Cap:
+    """The cap's lines: outside and inside of the skirt, heights, drain holes, whether a bead holds it."""
+
+    outer: Outline
+    inner: Outline
+    inner_radius_mm: float
+    skirt_mm: float
+    cover_mm: float
+    rim_mm: float
+    drains: tuple[Circle, ...]
+    bead: bool
+
+    def solid(self) -> kernel.Shape:
+        """The cap in the feed's frame."""
+        low, rim, cover = self.rim_mm - SKIRT_MM, self.rim_mm, self.cover_mm
+        cup = kernel.prism(self.outer, (), low, rim + cover - low)
+        tools = [kernel.prism(self.inner, (), low - 1.0, rim - low + 1.0)]
+        tools += [kernel.prism(hole, (), rim - 1.0, cover + 2.0) for hole in self.drains]
+        if self.bead:
+            tools.append(_groove(self.inner_radius_mm, rim - BEAD_BELOW_RIM_MM))
+        return kernel.cut(cup, *tools, what="radome cap")
+
+    def volume_mm3(self) -> float:
+        """Its volume in closed form."""
+        volume = area_mm2(self.outer) * (self.cover_mm + SKIRT_MM) - area_mm2(self.inner) * SKIRT_MM
+        volume -= sum(area_mm2(h) for h in self.drains) * self.cover_mm
+        if self.bead:
+            r, rise = self.inner_radius_mm, BEAD_SLOPE * BEAD_MM
+            volume -= revolved_volume_mm3(((r, -rise), (r + BEAD_MM, 0.0), (r, rise)))
+        return volume
+
+
+def cap_of(feed: Feed) -> Cap:
+    """The cap's lines for this can."""
+    rules = print_rules(feed)
+    inner, skirt = _inner_radius(feed, rules), rules.wall_over(rules.wall_min_mm + BEAD_MM)
+    return Cap(
+        outer=_section(feed, inner + skirt),
+        inner=_section(feed, inner),
+        inner_radius_mm=inner,
+        skirt_mm=skirt,
+        cover_mm=cover_mm(feed),
+        rim_mm=feed.sizes.can_depth_mm,
+        drains=_drains(feed),
+        bead=feed.job.can.make == "printed",
+    )
+
+
 def radome_cap(feed: Feed) -> tuple[Part, ...]:
     """The cap as parts; nothing when the job asks for none.
 
@@ -55,51 +104,39 @@ def radome_cap(feed: Feed) -> tuple[Part, ...]:
     """
     if not feed.job.can.radome:
         return ()
-    rules, cover = print_rules(feed), cover_mm(feed)
-    inner, skirt = _inner_radius(feed, rules), rules.wall_over(rules.wall_min_mm + BEAD_MM)
-    outer_line, inner_line = _section(feed, inner + skirt), _section(feed, inner)
-    rim, low = feed.sizes.can_depth_mm, feed.sizes.can_depth_mm - SKIRT_MM
-    corner = 1.0 / math.cos(math.pi / feed.sizes.can_flats) if feed.sizes.can_flats else 1.0
-    envelope = Envelope("radome cap", inner + skirt, (inner + skirt) * corner, low, rim + cover, (), instead=NO_CAP)
-    # No ears, hence an ear top under the bottom; the disc is too thin for a tongue.
-    joint = Joint(envelope, plan_split(envelope, rules), rules, skirt, cover, low)
-    drains = _drains(feed)
-    bead = feed.job.can.make == "printed"
-
-    @cache
-    def whole() -> kernel.Shape:
-        cup = kernel.prism(outer_line, (), low, rim + cover - low)
-        tools = [kernel.prism(inner_line, (), low - 1.0, rim - low + 1.0)]
-        tools += [kernel.prism(hole, (), rim - 1.0, cover + 2.0) for hole in drains]
-        if bead:
-            tools.append(_groove(inner, rim - BEAD_BELOW_RIM_MM))
-        return kernel.cut(cup, *tools, what="radome cap")
-
-    volume = area_mm2(outer_line) * (cover + SKIRT_MM) - area_mm2(inner_line) * SKIRT_MM
-    volume -= sum(area_mm2(h) for h in drains) * cover
-    if bead:
-        z, rise = rim - BEAD_BELOW_RIM_MM, BEAD_SLOPE * BEAD_MM
-        volume -= revolved_volume_mm3(((inner, z - rise), (inner + BEAD_MM, z), (inner, z + rise)))
-    fixing = "snaps over the bead" if bead else "bed the skirt in neutral-cure silicone"
+    cap = cap_of(feed)
     printed = Printed(
         key="radome",
         name="radome cap",
         plastic=feed.job.can.plastic,
         sizes=(
-            ("cover_mm", cover),
-            ("skirt_bore_mm", 2 * inner),
-            ("skirt_wall_mm", skirt),
+            ("cover_mm", cap.cover_mm),
+            ("skirt_bore_mm", 2 * cap.inner_radius_mm),
+            ("skirt_wall_mm", cap.skirt_mm),
             ("skirt_mm", SKIRT_MM),
         ),
         tolerance="skirt bore +0.2/0 mm",
         finish="as printed, not painted with anything that conducts",
-        notes=("print disc down, without support", fixing),
-        volume_mm3=volume,
-        joint=joint,
-        whole=whole,
+        notes=(
+            "print disc down, without support",
+            "snaps over the bead" if cap.bead else "bed the skirt in neutral-cure silicone",
+        ),
+        volume_mm3=cap.volume_mm3(),
+        joint=_joint(feed, cap),
+        whole=cap.solid,
         upside_down=True,
     )
     return (*printed_parts(printed), *_strips(printed, feed.sizes.can_bore_mm / 2 - 1.0))
+
+
+def _joint(feed: Feed, cap: Cap) -> Joint:
+    rules, flats = print_rules(feed), feed.sizes.can_flats
+    edge = cap.inner_radius_mm + cap.skirt_mm
+    corner = edge / math.cos(math.pi / flats) if flats else edge
+    low, top = cap.rim_mm - SKIRT_MM, cap.rim_mm + cap.cover_mm
+    envelope = Envelope("radome cap", edge, corner, low, top, (), instead=NO_CAP)
+    # No ears, hence an ear top at the bottom; the disc is too thin for a tongue.
+    return Joint(envelope, plan_split(envelope, rules), rules, cap.skirt_mm, cap.cover_mm, low)
 
 
 def _inner_radius(feed: Feed, rules: PrintRules) -> float:
