@@ -245,14 +245,3 @@ def test_random_jobs_are_matched_or_refused_with_advice(data: st.DataObject) -> 
     except FabgenError as error:
         pytest.fail(f"unexpected family: {error!r}")
     assert feed.predicted.return_loss_db >= 15
-
-
-def test_front_plot_is_the_same_each_time_and_names_its_axes() -> None:
-    from fabgen.sizing.front_plot import front_svg
-
-    job = job_with()
-    front = selectivity_front(job, make_solver=ToySolver)
-    first, second = front_svg(front), front_svg(front)
-    assert first == second
-    assert "aperture efficiency" in first
-    assert "sharp" in first
