@@ -17,7 +17,9 @@ from fabgen.cli import EXIT_STATUSES
 from fabgen.folder import RECORD_NAME, files_in, sha256_of
 from fabgen.job_page import MEANINGS, job_page
 from fabgen.job_reader import parse_job
+from fabgen.writers.record import record_data
 from tests.examples import EXAMPLES, PICTURES, differences, render
+from tests.samples import sample_feed
 
 ROOT = Path(__file__).parent.parent
 PAGES = sorted([*ROOT.glob("*.md"), *(ROOT / "docs").glob("*.md")])
@@ -80,6 +82,13 @@ def test_readme_names_every_exit_status() -> None:
 def test_the_page_of_keys_is_current_and_complete() -> None:
     assert (ROOT / "docs" / "job-file.md").read_text(encoding="utf-8") == job_page()
     assert all(f"`{name.split('.')[-1]}`" in job_page() for name in MEANINGS)
+
+
+def test_the_page_of_the_record_names_every_key() -> None:
+    text = (ROOT / "docs" / "record.md").read_text(encoding="utf-8")
+    record = record_data(sample_feed(choke=True))
+    for name in (*record, *record["sizes"], *record["sizes"]["choke"], *record["predicted"]):
+        assert f"`{name}`" in text, name
 
 
 def test_toml_in_the_guides_is_valid() -> None:
