@@ -5,6 +5,8 @@ Depends on: drawing.texts_english.
 
 from __future__ import annotations
 
+import re
+
 from fabgen.drawing.texts_english import ENGLISH
 from fabgen.errors import FabgenError
 
@@ -19,7 +21,7 @@ def say(key: str, **values: object) -> str:
 
 def size_name(key: str) -> str:
     """The words for a size's key; the key itself in plain words when the table has none."""
-    return ENGLISH.get(f"size.{key}") or key.rsplit("_mm", 1)[0].replace("_", " ")
+    return ENGLISH.get(f"size.{key}") or re.sub(r"_(mm|deg|mhz|ohm|pf|db)$", "", key).replace("_", " ")
 
 
 def has(key: str) -> bool:

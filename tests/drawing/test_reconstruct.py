@@ -9,6 +9,7 @@ import pytest
 import shapely
 
 from fabgen.drawing.model import Sheet, Table
+from fabgen.drawing.pages.base import quantity
 from fabgen.drawing.texts import say, size_name
 from fabgen.parts import contour as c
 from fabgen.parts.records import FlatPattern
@@ -97,6 +98,10 @@ def _count(runs: str) -> int:
     return total
 
 
+def _number(shown: str) -> float:
+    return float(re.match(r"-?[\d.]+", shown).group())  # type: ignore[union-attr]
+
+
 @pytest.mark.parametrize("kind", KINDS)
 def test_every_part_has_its_page_and_its_sizes(kind: str) -> None:
     book = book_of(kind)
@@ -109,7 +114,7 @@ def test_every_part_has_its_page_and_its_sizes(kind: str) -> None:
         rows = dict(tables[f"sizes:{part.key}"].rows)
         for key, value in part.sizes:
             shown = rows[size_name(key)]
-            assert float(shown.split()[0]) == pytest.approx(value, abs=0.0051), (part.key, key)
+            assert _number(shown) == pytest.approx(value, abs=0.0051), (part.key, key)
             assert shown in texts
 
 
@@ -120,7 +125,14 @@ def test_sizes_of_the_record_are_on_the_general_arrangement(kind: str) -> None:
     rows = {r[0]: r[1] for t in _tables(pages) if t.name == "sizes" for r in t.rows}
     for key, value in vars(feed.sizes).items():
         if isinstance(value, float):
-            assert float(rows[size_name(key)].split()[0]) == pytest.approx(value, abs=0.0051), key
+            assert _number(rows[size_name(key)]) == pytest.approx(value, abs=0.0051), key
+
+
+def test_tolerances_carry_the_unit_of_their_size() -> None:
+    assert quantity("series_capacitor_pf", 0.041) == "0.041 pF"
+    assert quantity("loop_height_mm", 0.3) == "0.3 mm"
+    assert quantity("bend_to_deg", 90.27) == "90.27°"
+    assert quantity("foil_mm", 0.035) == "0.035 mm"
 
 
 @pytest.mark.parametrize("kind", ["wire-rolled"])

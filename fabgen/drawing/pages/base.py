@@ -68,9 +68,10 @@ def toleranced(feed: Feed, size: str, value: float, prefix: str = "") -> str:
 
 
 def quantity(key: str, value: object) -> str:
-    """A record's value with the unit that its key ends in."""
+    """A record's value with the unit that its key ends in; small lengths, picofarads and bare numbers to 0.001."""
     units = {"_mm": "mm", "_mhz": "MHz", "_deg": "°", "_ohm": "Ω", "_db": "dB", "_dbi": "dBi", "_pf": "pF", "_k": "K"}
-    if isinstance(value, float | int) and not isinstance(value, bool):
-        unit = next((u for tail, u in units.items() if key.endswith(tail)), "")
-        return f"{number(float(value), 2 if unit not in {'pF', ''} else 3)} {unit}".strip()
-    return str(value)
+    if not isinstance(value, float | int) or isinstance(value, bool):
+        return str(value)
+    unit = next((u for tail, u in units.items() if key.endswith(tail)), "")
+    text = number(float(value), 3 if unit in {"pF", ""} or abs(value) < 0.1 else 2)
+    return f"{text}{unit}" if unit == "°" else f"{text} {unit}".strip()

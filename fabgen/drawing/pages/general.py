@@ -241,7 +241,7 @@ def _sizes(context: Context) -> list[Block]:
         value = getattr(feed.sizes, key)
         if value is None or (key == "can_flats" and value == 0):
             continue
-        tolerance = next((f"±{number(s.tolerance_mm)} mm" for s in feed.sensitivities if s.size == key), "")
+        tolerance = next((f"±{quantity(s.size, s.tolerance_mm)}" for s in feed.sensitivities if s.size == key), "")
         rows.append((size_name(key), quantity(key, value), tolerance or say("table.general")))
     if feed.sizes.choke is not None:
         for key in ("bore_mm", "depth_mm", "floor_z_mm"):

@@ -118,7 +118,7 @@ def material_text(part: Part) -> str:
     """Material, temper and thickness in one line."""
     words = [part.material_name, part.temper]
     if part.thickness_mm is not None:
-        words.append(f"t = {number(part.thickness_mm)}")
+        words.append(f"t = {number(part.thickness_mm, 2 if part.thickness_mm >= 0.1 else 3)}")
     return ", ".join(w for w in words if w)
 
 

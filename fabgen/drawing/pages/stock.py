@@ -90,7 +90,7 @@ def cut_size(part: Part) -> str:
         return say("stock.wire", diameter=number(part.wire.diameter_mm), length=number(part.wire.cut_length_mm, 1))
     if part.flat is not None:
         x0, y0, x1, y1 = bounds_mm(part.flat.outline)
-        return f"{number(x1 - x0, 1)} × {number(y1 - y0, 1)} × {number(part.flat.thickness_mm)}"
+        return f"{number(x1 - x0, 1)} × {number(y1 - y0, 1)} × {number(part.flat.thickness_mm, 3)}"
     shape = shape_of(part)
     if part.process == ("buy",) or shape is None:
         return say("stock.bought")
@@ -150,7 +150,7 @@ def _form(part: Part) -> str:
     if part.wire is not None:
         return say("stock.form_wire", diameter=number(part.wire.diameter_mm))
     if part.flat is not None:
-        return say("stock.form_sheet", thickness=number(part.flat.thickness_mm))
+        return say("stock.form_sheet", thickness=number(part.flat.thickness_mm, 3))
     if "print" in part.process:
         return say("stock.form_print")
     return say("stock.form_bar")
