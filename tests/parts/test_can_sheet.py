@@ -255,3 +255,25 @@ def test_a_flange_of_another_thickness_is_not_covered() -> None:
     feed = sample_feed("wire", "rolled", flange={"thickness_mm": 4.0})
     with pytest.raises(NotCoveredError, match="one sheet"):
         can_rolled(feed)
+
+
+@pytest.mark.parametrize("name", ["rolled", "rolled brass", "folded 6"])
+def test_every_joint_hole_has_its_screw_and_nut(name: str) -> None:
+    feed, parts = feed_of(name), parts_of(name)
+    wall, outer = can_wall(feed), choke_wall(feed)
+    assert outer is not None
+    wanted = {
+        "wall": len(wall.tabs_mm), "choke": len(outer.tabs_mm), "ring": len(wall.holes),
+        "seam": len(wall.seam.heights_mm) + len(outer.seam.heights_mm),
+    }  # fmt: skip
+    for key, count in wanted.items():
+        assert parts[f"screw-{key}"].quantity == parts[f"nut-{key}"].quantity == count
+        assert parts[f"screw-{key}"].solid is None
+
+
+def test_a_metal_that_solders_needs_fewer_tabs() -> None:
+    """Joints that are not soldered are fixed at most a tenth of a wavelength apart (common practice, no source)."""
+    bare, soldered = can_wall(feed_of("rolled")), can_wall(feed_of("rolled brass"))
+    gaps = [b - a for a, b in zip(bare.tabs_mm, bare.tabs_mm[1:], strict=False)]
+    assert max(gaps) <= 0.1 * feed_of("rolled").job.wavelength_mm + 1e-9
+    assert len(soldered.tabs_mm) * 2 < len(bare.tabs_mm)
