@@ -31,6 +31,9 @@ def nest_items(needs: Sequence[SheetNeed]) -> tuple[Item, ...]:
             f"{need.material_name}, {need.temper}, {need.thickness_mm:g} mm: {need.sheets} "
             f"of {need.sheet_mm[0]:g} x {need.sheet_mm[1]:g} mm, {100 * need.share:.1f} % covered"
         )
+        if need.too_large:
+            text += f"; too large for this sheet: {', '.join(need.too_large)}"
+            height = height if need.sheets else 0.0
         items.append(Text(0.0, top + TEXT_MM, text, TEXT_MM))
         for sheet in range(need.sheets):
             at = (sheet * (SHEET_WIDTH_MM + GAP_MM), top - height)

@@ -34,7 +34,7 @@ class Laid:
 @dataclass(frozen=True)
 class SheetNeed:
     """Sheets needed of one stock (material, temper, thickness), long side along x. ``share`` of them that the
-    parts cover."""
+    parts cover; ``too_large``: parts that no sheet of this size holds."""
 
     material: str
     material_name: str
@@ -44,13 +44,11 @@ class SheetNeed:
     sheets: int
     share: float
     laid: tuple[Laid, ...]
+    too_large: tuple[str, ...] = ()
 
 
 def nest(parts: Sequence[Part], limits: Limits) -> tuple[SheetNeed, ...]:
-    """Sheets of ``limits.sheet_mm`` needed for all flat parts cut from sheet, by stock; foil is cut by hand.
-
-    Raises GeometryError for a part larger than the sheet.
-    """
+    """Sheets of ``limits.sheet_mm`` needed for all flat parts cut from sheet, by stock; foil is cut by hand."""
     stocks: dict[tuple[str, str, str, float], list[Part]] = {}
     for part in parts:
         if part.flat is not None and "laser" in part.process:
@@ -63,16 +61,15 @@ def nest(parts: Sequence[Part], limits: Limits) -> tuple[SheetNeed, ...]:
 def _need(stock: tuple[str, str, str, float], group: list[Part], sheet_mm: tuple[float, float]) -> SheetNeed:
     import rectpack
 
-    copies = [part for part in sorted(group, key=lambda p: p.key) for _ in range(part.quantity)]
+    ordered = sorted(group, key=lambda p: p.key)
+    too_large = tuple(part.key for part in ordered if not _fits(*_box(part), sheet_mm))
+    copies = [part for part in ordered if part.key not in too_large for _ in range(part.quantity)]
+    if not copies:
+        return SheetNeed(*stock, sheet_mm, 0, 0.0, (), too_large)
     # The packer counts in whole hundredths of a millimetre so that its result does not hang on rounding.
     packer = rectpack.newPacker(rotation=True, sort_algo=rectpack.SORT_LSIDE)
     for index, part in enumerate(copies):
         width, height = _box(part)
-        if not _fits(width, height, sheet_mm):
-            raise GeometryError(
-                f"{part.name} is {width:.0f} x {height:.0f} mm flat and does not fit a sheet of "
-                f"{sheet_mm[0]:g} x {sheet_mm[1]:g} mm; give a larger limits.sheet_mm"
-            )
         packer.add_rect(_units(width + SPACING_MM), _units(height + SPACING_MM), index)
     packer.add_bin(_units(sheet_mm[0] - SPACING_MM), _units(sheet_mm[1] - SPACING_MM), count=float("inf"))
     packer.pack()
@@ -81,7 +78,7 @@ def _need(stock: tuple[str, str, str, float], group: list[Part], sheet_mm: tuple
     sheets = max(item.sheet for item in laid) + 1
     covered = sum(area_mm2(part.flat.outline) for part in copies if part.flat is not None)
     share = covered / (sheets * sheet_mm[0] * sheet_mm[1])
-    return SheetNeed(*stock, sheet_mm, sheets, share, laid)
+    return SheetNeed(*stock, sheet_mm, sheets, share, laid, too_large)
 
 
 def _units(length_mm: float) -> int:

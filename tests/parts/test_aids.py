@@ -22,6 +22,7 @@ from fabgen.parts.nesting import SPACING_MM, nest
 from fabgen.parts.records import Part
 from fabgen.stock import tables
 from fabgen.theory.bending import k_from_test_bend
+from fabgen.writers.nesting import nesting_files
 from fabgen.writers.svg import svg_text
 from tests.samples import sample_feed
 
@@ -158,11 +159,19 @@ def test_the_picture_shows_every_part_on_its_sheet() -> None:
     assert svg_text(nest_items(needs)) == text
 
 
-def test_a_part_larger_than_the_sheet_is_refused_with_its_size() -> None:
+def test_a_part_larger_than_the_sheet_is_named_in_table_and_picture() -> None:
     feed = sample_feed("wire", "rolled")
     limits = feed.job.limits.model_copy(update={"sheet_mm": (500.0, 500.0)})
-    with pytest.raises(GeometryError, match=r"larger limits\.sheet_mm"):
-        nest(build_parts(feed), limits)
+    thin, thick = nest(build_parts(feed), limits)
+    assert thin.too_large == ("wall",)
+    assert thick.too_large == ()
+    files = nesting_files(build_parts(feed), limits)
+    assert files["sheets.csv"].splitlines()[1].endswith(",wall")
+    assert "too large for this sheet: wall" in files["sheets.svg"]
+    assert nesting_files((), limits) == {}
+    small = feed.job.limits.model_copy(update={"sheet_mm": (100.0, 100.0)})
+    assert all(need.sheets == 0 and need.laid == () for need in nest(build_parts(feed), small))
+    assert "1 mm: 0 of" in nesting_files(build_parts(feed), small)["sheets.svg"]
 
 
 def test_no_aid_stands_in_the_assembly() -> None:
