@@ -10,12 +10,13 @@ sizing.trial.
 from __future__ import annotations
 
 import math
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 from fabgen.errors import JobError, NoSolutionError
 from fabgen.job import Choke, Job
 from fabgen.progress import Progress
-from fabgen.sizing.can_start import CHOKE, least_efficiency, start_can
+from fabgen.sizing.can_start import CHOKE, CanRatio, least_efficiency, start_can
 from fabgen.sizing.dish import half_angle_rad
 from fabgen.sizing.evaluate import in_dish
 from fabgen.sizing.layout import LoopStock
@@ -35,6 +36,8 @@ CUTOFF_MARGIN = 1.12
 RIM_WAVELENGTHS = 0.02
 """The rim stands at least this far above the loop. Common practice, no source."""
 LARGEST_WAVELENGTHS = 1.7
+BED_SHARE = 0.85
+"""A bed that takes this share of the wished bore limits it; a smaller one does not, the body then comes in pieces."""
 PRINT_FLANGE_MM = 2 * 14.0
 SEAM_MM = 15.0
 
@@ -57,29 +60,45 @@ class BoreRange:
     reason: str
 
 
+def _wanted(job: Job) -> CanRatio:
+    """The can that the starting table gives for the dish."""
+    angle = math.degrees(half_angle_rad(job.dish.focal_ratio))
+    return start_can(angle, job.wishes.goal, choke=bool(job.can.choke))
+
+
 def _cutoff_bore_mm(job: Job) -> float:
     return cutoff_bore_mm("TE11", job.target.frequency_mhz)
 
 
 def bore_range(job: Job) -> BoreRange:
-    """Bore from the TE11 cut-off with a margin, up to what the stock or the printer's bed can make."""
+    """Bore from the TE11 cut-off with a margin, up to what the stock, the printer's bed or a given choke allows."""
     low = CUTOFF_MARGIN * _cutoff_bore_mm(job)
-    wall = job.can.wall_mm or WALL_MM[job.can.make]
-    if job.can.make == "printed":
-        flange = 0.0 if job.can.flange.pattern == "none" else PRINT_FLANGE_MM
-        high = min(job.limits.bed_mm[:2]) - 2 * wall - flange
-        reason = f"the printer's bed of {job.limits.bed_mm[0]:g} x {job.limits.bed_mm[1]:g} mm"
-    elif job.can.make in ("rolled", "folded"):
-        high = (max(job.limits.sheet_mm) - SEAM_MM) / math.pi - wall
-        reason = f"sheet of {max(job.limits.sheet_mm):g} mm length for the wall"
-    else:
-        return BoreRange(low, LARGEST_WAVELENGTHS * job.wavelength_mm, f"{LARGEST_WAVELENGTHS:g} wavelengths")
+    high, reason = min(_upper_limits(job))
     if high < low:
         raise NoSolutionError(
             f"{reason} allows a bore of {high:.0f} mm, but below {low:.0f} mm the can is cut off at "
-            f"{job.target.frequency_mhz:g} MHz; use a larger bed or sheet, or another make of can"
+            f"{job.target.frequency_mhz:g} MHz; use a larger one, or another make of can"
         )
     return BoreRange(low, high, reason)
+
+
+def _upper_limits(job: Job) -> Iterator[tuple[float, str]]:
+    """Largest bores with what sets each."""
+    wall = job.can.wall_mm or WALL_MM[job.can.make]
+    yield LARGEST_WAVELENGTHS * job.wavelength_mm, f"{LARGEST_WAVELENGTHS:g} wavelengths"
+    if job.can.make == "printed":
+        flange = 0.0 if job.can.flange.pattern == "none" else PRINT_FLANGE_MM
+        bed = job.limits.bed_mm
+        room = min(bed[:2]) - 2 * wall - flange
+        if room >= BED_SHARE * _wanted(job).bore * job.wavelength_mm:
+            yield room, f"the printer's bed of {bed[0]:g} x {bed[1]:g} mm"
+    if job.can.make in ("rolled", "folded"):
+        sheet = max(job.limits.sheet_mm)
+        yield (sheet - SEAM_MM) / math.pi - wall, f"sheet of {sheet:g} mm length for the wall"
+    choke = job.can.choke
+    if isinstance(choke, Choke) and choke.bore_mm is not None:
+        room = choke.bore_mm - 2 * wall - LEAST_GAP_WAVELENGTHS * job.wavelength_mm
+        yield room, f"can.choke.bore_mm of {choke.bore_mm:g} mm"
 
 
 def find_can(
@@ -131,7 +150,7 @@ class _Search:
 
     def start(self) -> CanShape:
         job, wavelength, step = self.job, self.job.wavelength_mm, self.job.limits.resolution_mm
-        ratio = start_can(self.half_angle, job.wishes.goal, choke=bool(job.can.choke))
+        ratio = _wanted(job)
         wanted = ratio.bore * wavelength
         bore = job.fixed.can_bore_mm or self.clip(round_to(wanted, step))
         if job.fixed.can_bore_mm is None and wanted > self.range.high_mm:

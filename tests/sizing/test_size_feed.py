@@ -152,6 +152,21 @@ def test_other_stock_and_makes(form: str, make: str) -> None:
     assert feed.capacitor.form == ("sleeve" if form == "wire" else "plates")
 
 
+def test_choke_is_searched_around_what_the_job_gives() -> None:
+    given = sized(job_with(can={"choke": {"bore_mm": 290.25, "floor_z_mm": 3.5}})).sizes.choke
+    assert given is not None
+    assert (given.bore_mm, given.floor_z_mm) == (290.25, 3.5)
+    assert given.depth_mm > 0
+    free = sized(job_with(can={"choke": True}))
+    assert free.sizes.choke is not None
+    assert free.sizes.choke.bore_mm > free.sizes.can_bore_mm + 2 * free.sizes.wall_mm
+    assert free.sizes.choke.floor_z_mm + free.sizes.choke.depth_mm <= free.sizes.can_depth_mm + 1e-9
+    small = sized(job_with(can={"choke": {"bore_mm": 220.0}}))
+    assert small.sizes.can_bore_mm + 2 * small.sizes.wall_mm < 220.0
+    with pytest.raises(NoSolutionError, match=r"can\.choke\.bore_mm"):
+        sized(job_with(can={"choke": {"bore_mm": 140.0}}))
+
+
 def test_selectivity_moves_the_loop() -> None:
     sharp, broad = (sized(job_with(wishes={"selectivity": s})) for s in ("sharp", "broad"))
     assert sharp.sizes.loop_diameter_mm < broad.sizes.loop_diameter_mm
@@ -194,11 +209,16 @@ def test_nearest_job_that_works_is_named() -> None:
 
 
 def test_printer_bed_limits_the_bore() -> None:
-    feed = sized(job_with(make="printed", limits={"bed_mm": (200.0, 200.0, 200.0)}))
-    assert feed.sizes.can_bore_mm <= 200 - 2 * 2.4 - 28
+    feed = sized(job_with(make="printed", limits={"bed_mm": (230.0, 230.0, 200.0)}))
+    assert feed.sizes.can_bore_mm <= 230 - 2 * 2.4 - 28
     assert any("bed" in r for r in feed.remarks)
-    with pytest.raises(NoSolutionError, match="bed"):
-        sized(job_with(make="printed", frequency_mhz=408.0))
+    # A bed that is far too small is no limit: the body comes in pieces.
+    assert sized(job_with(make="printed", frequency_mhz=408.0)).sizes.can_bore_mm > 500
+
+
+def test_sheet_limits_the_bore() -> None:
+    with pytest.raises(NoSolutionError, match=r"sheet of 1000 mm length.*The nearest job that works"):
+        sized(job_with(make="rolled", frequency_mhz=408.0, limits={"sheet_mm": (500.0, 1000.0)}))
 
 
 class Unbalanced(ToySolver):
