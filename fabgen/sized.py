@@ -36,10 +36,13 @@ def sized_feed(job: Job, progress: Progress, cache: Cache) -> Feed:
             return stored
         cache.drop(key)
     place_compiled_code(cache.folder)
+    from fabgen.fields.kernel import is_compiled
     from fabgen.resources import require_memory
     from fabgen.sizing.size_feed import size_feed
 
     require_memory()
+    if not is_compiled():
+        progress.step("compiling the field computation, once after installation")
     feed = size_feed(job, progress)
     cache.put(key, feed_to_text(feed))
     return feed

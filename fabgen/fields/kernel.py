@@ -20,6 +20,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from pathlib import Path
 from typing import Any, TypeVar, cast
 
 import numpy as np
@@ -344,3 +345,9 @@ def near_pairs(centre: Any, image_centre: Any, size: Any, reach: float, kept: in
                 found += 1
     start[triangles] = found
     return found
+
+
+def is_compiled() -> bool:
+    """Whether an earlier run left compiled code behind; if not, the first call takes some seconds more."""
+    folder = Path(fill_rows.stats.cache_path)  # type: ignore[attr-defined]
+    return any(folder.glob("kernel.fill_rows-*.nbi"))
