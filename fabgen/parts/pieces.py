@@ -138,7 +138,8 @@ def _bells(joint: Joint) -> list[cadquery.Shape]:
     shapes = []
     for level in joint.split.levels_mm:
         # The cone starts lower, so that the bell keeps its wall at the foot of the gap.
-        low, top = level - gap, level + SPIGOT_MM
+        least = joint.rules.wall_min_mm * math.sqrt(2) - (out - wall - gap)
+        low, top = level - max(gap, least), level + SPIGOT_MM
         bell = kernel.revolved(
             (
                 (wall, low - (out - wall)), (out, low), (out, top),
@@ -215,7 +216,9 @@ def _tongues(joint: Joint, gap_mm: float) -> list[cadquery.Shape]:
         square = [(start - gap_mm, 0.0, z - h), (start - gap_mm, h, z), (start - gap_mm, 0.0, z + h),
                   (start - gap_mm, -h, z)]
         shapes.append(kernel.extruded(square, (end - start + 2 * gap_mm, 0, 0)))
-    radius, h = envelope.wall_radius_mm + EAR_TONGUE_MM, EAR_TONGUE_MM + spread
+    # The groove stays outside the wall.
+    radius = envelope.wall_radius_mm + EAR_TONGUE_MM + joint.rules.clearance_mm * math.sqrt(2)
+    h = EAR_TONGUE_MM + spread
     for low, high in ear_spans_mm(joint):
         square = [(radius - h, 0.0, low), (radius, h, low), (radius + h, 0.0, low), (radius, -h, low)]
         shapes.append(kernel.extruded(square, (0, 0, high - low + 1.0)))

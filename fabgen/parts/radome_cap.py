@@ -134,7 +134,9 @@ def _joint(feed: Feed, cap: Cap) -> Joint:
     edge = cap.inner_radius_mm + cap.skirt_mm
     corner = edge / math.cos(math.pi / flats) if flats else edge
     low, top = cap.rim_mm - SKIRT_MM, cap.rim_mm + cap.cover_mm
-    envelope = Envelope("radome cap", edge, corner, low, top, (), instead=NO_CAP)
+    margin = 2 * rules.wall_min_mm + STRIP_MM
+    clear = tuple(Circle(h.x_mm, h.y_mm, h.diameter_mm + margin) for h in cap.drains)
+    envelope = Envelope("radome cap", edge, corner, low, top, clear, instead=NO_CAP)
     # No ears, hence an ear top at the bottom; the disc is too thin for a tongue.
     return Joint(envelope, plan_split(envelope, rules), rules, cap.skirt_mm, cap.cover_mm, low)
 
