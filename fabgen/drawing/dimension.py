@@ -98,7 +98,11 @@ def place(
     body = bounds(tuple(items))
     done: list[Dimension] = []
     left_over: list[Ask] = []
-    linear = sorted((a for a in asks if a.kind in {"x", "y"}), key=lambda a: (a.side, round(a.value, 6), a.a, a.text))
+    # A distance of nothing (a choke ring level with the floor) is left to the tables.
+    linear = sorted(
+        (a for a in asks if a.kind in {"x", "y"} and a.value > 0.005),
+        key=lambda a: (a.side, round(a.value, 6), a.a, a.text),
+    )
     leaders = [a for a in asks if a.kind == "leader"]
     scene = _Scene(view, body, occupied, scale, height_mm, limits or body.grown(45))
     for ask in linear:

@@ -13,7 +13,7 @@ from fabgen.parts.records import Part
 from fabgen.sizing.records import Feed
 from tests.samples import sample_feed
 
-KINDS = ("wire-rolled", "sheet-folded", "sheet-printed", "wire-tube-choke")
+KINDS = ("wire-rolled", "sheet-folded-2304", "sheet-printed", "wire-tube-choke")
 FINDINGS = (
     Finding(
         "SHEET-101", "stop", "loop", "bend 1", "0.5 mm", "1.5 mm", "EN 1652", "The inside radius is too small.",
@@ -30,7 +30,8 @@ FINDINGS = (
 def feed_of(kind: str, paper: str = "A4") -> Feed:
     """A sample feed by the words of its kind."""
     words = kind.split("-")
-    feed = sample_feed(words[0], words[1], choke="choke" in words)
+    frequency = next((float(w) for w in words if w.isdigit()), 1420.406)
+    feed = sample_feed(words[0], words[1], frequency, choke="choke" in words)
     limits = feed.job.limits.model_copy(update={"paper": paper})
     return replace(feed, job=feed.job.model_copy(update={"limits": limits}))
 

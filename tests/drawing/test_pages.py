@@ -167,6 +167,18 @@ def test_a_name_that_cannot_be_set_is_refused() -> None:
         _named("喇叭")
 
 
+@pytest.mark.parametrize(("projection", "above"), [("first", "A–A"), ("third", "View into the aperture")])
+def test_order_of_views_follows_the_projection(projection: str, above: str) -> None:
+    # First angle sets the view from above under the front view, third angle over it (ISO 5456-2).
+    feed = feed_of("wire-tube-choke")
+    limits = feed.job.limits.model_copy(update={"projection": projection})
+    feed = replace(feed, job=feed.job.model_copy(update={"limits": limits}))
+    book = sheets(feed, parts_of("wire-tube-choke"), ())
+    views = {v.name: (s.number, -v.origin[1]) for s in book if s.kind == "general" for v in s.views}
+    order = sorted(("A–A", "View into the aperture"), key=lambda name: views[name])
+    assert order[0] == above
+
+
 def test_identification_follows_the_sizes() -> None:
     feed = feed_of("wire-rolled")
     other = replace(feed, sizes=replace(feed.sizes, tap_height_mm=feed.sizes.tap_height_mm + 0.1))

@@ -258,12 +258,12 @@ def _performance(context: Context) -> list[Block]:
         (
             say("perf.return_loss"),
             f"{number(p.return_loss_db, 1)} {db}",
-            f"±{number(u.return_loss_uncertainty_db, 1)} {db}",
+            f"±{number(u.return_loss_uncertainty_db, 2)} {db}",
         ),
         (
             say("perf.bandwidth", level=number(p.bandwidth_return_loss_db, 0)),
             f"{number(p.bandwidth_mhz, 1)} {mhz}",
-            say("perf.resonance", value=number(u.resonance_uncertainty_mhz, 1)),
+            say("perf.resonance", value=number(u.resonance_uncertainty_mhz, 2)),
         ),
         (
             say("perf.efficiency"),

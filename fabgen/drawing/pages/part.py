@@ -26,7 +26,7 @@ from fabgen.drawing.flow import (
     table,
 )
 from fabgen.drawing.hidden import ABOVE, GAP, ISOMETRIC, Curve, dressed
-from fabgen.drawing.model import SCALES, Box, Item, number, scale_text
+from fabgen.drawing.model import SCALES, Box, Item, Polyline, number, scale_text
 from fabgen.drawing.pages.base import Context, Draft, draft, quantity
 from fabgen.drawing.pages.general import loop_views
 from fabgen.drawing.picture import (
@@ -151,12 +151,29 @@ def _ends(flat: FlatPattern, drawn: Drawn, room: float) -> list[Block]:
     blocks = []
     for name, x0 in (("view.left_end", box.x0 - 1), ("view.right_end", box.x1 + 1 - reach)):
         window = Box(x0, box.y0 - 1, x0 + reach, box.y1 + 1)
-        part = Drawn(say(name), clipped((*drawn.items, *flat_view.centre_lines(flat, 1.0)), window))
+        edge = x0 + reach if name == "view.left_end" else x0
+        break_line = _break_line(edge, box.y0, box.y1, 3.0 / scale)
+        shown = clipped((*drawn.items, *flat_view.centre_lines(flat, 1.0)), window)
+        part = Drawn(say(name), (*shown, break_line))
         inside = [m for m in flat_view.labels(flat) if window.x0 <= m[1][0] <= window.x1]
         made = dimensioned(part, (), scale, labels=inside)
         x = (WIDTH_MM - made.box.width) / 2 - made.box.x0
         blocks += [replace(shifted(made, x, -made.box.y1), height=made.box.height), gap(2)]
     return blocks
+
+
+def _break_line(x: float, y0: float, y1: float, over: float) -> Item:
+    """A narrow line with one zigzag: the part goes on beyond it (ISO 128-2, line 01.1)."""
+    middle, half = (y0 + y1) / 2, over / 2
+    points = (
+        (x, y0 - over),
+        (x, middle - half),
+        (x + over, middle - half / 3),
+        (x - over, middle + half / 3),
+        (x, middle + half),
+        (x, y1 + over),
+    )
+    return Polyline(points, "thin")
 
 
 def solid_block(part: Part, room: float, projection: str) -> tuple[Block, str, tuple[Ask, ...]]:
