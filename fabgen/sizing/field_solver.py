@@ -32,11 +32,6 @@ class SolvedFeed:
         return self.fields.impedance_ohm
 
     @property
-    def input_power_w(self) -> float:
-        """For 1 A peak."""
-        return self.fields.input_power_w
-
-    @property
     def ohmic_power_w(self) -> float:
         """Lost in the surfaces, for 1 A peak."""
         return self.fields.ohmic_power_w

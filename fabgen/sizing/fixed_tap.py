@@ -13,7 +13,15 @@ from itertools import pairwise
 from fabgen.errors import GeometryError, NoSolutionError
 from fabgen.job import Job
 from fabgen.sizing.layout import LoopStock
-from fabgen.sizing.match import LINE_OHM, RESISTANCE_TOLERANCE, Match, MatchError, SolveSizes, tap_range_mm
+from fabgen.sizing.match import (
+    LINE_OHM,
+    RESISTANCE_TOLERANCE,
+    Match,
+    MatchError,
+    SolveSizes,
+    tap_in_range_mm,
+    tap_range_mm,
+)
 from fabgen.sizing.records import Sizes
 from fabgen.sizing.rounding import round_to
 from fabgen.sizing.trial import place_loop
@@ -78,8 +86,9 @@ def match_fixed_tap(job: Job, stock: LoopStock, sizes: Sizes, solve: SolveSizes)
 
 
 def _all_fixed(sizes: Sizes, solve: SolveSizes) -> Match:
-    low, high = tap_range_mm(sizes)
-    if not low <= sizes.tap_height_mm <= high:
+    possible = tap_in_range_mm(sizes)
+    if possible != sizes.tap_height_mm:
+        low, high = tap_range_mm(sizes)
         raise MatchError(
             f"fixed.tap_height_mm is {sizes.tap_height_mm:g} mm; on these bars {low:.1f} to {high:.1f} mm can be built"
         )

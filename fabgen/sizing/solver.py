@@ -30,9 +30,6 @@ class Solution(Protocol):
     def impedance_ohm(self) -> complex: ...
 
     @property
-    def input_power_w(self) -> float: ...
-
-    @property
     def ohmic_power_w(self) -> float: ...
 
     @property
