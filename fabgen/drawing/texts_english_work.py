@@ -41,7 +41,7 @@ WORK: dict[str, str] = {
     "true.drill": "Template: {part}",
     "true.foil": "Foil pattern: {part}",
     "true.wire": "Bent shape: {part}",
-    "true.capacitor": "True size: {part}",
+    "true.capacitor": "True size: coax and capacitor",
     "true.too_large": "This part would need {tiles} tiles; work from the part drawing or the cutting file instead.",
     "assembly.head": "Assembly in steps",
     "assembly.intro": (
@@ -82,6 +82,11 @@ WORK: dict[str, str] = {
     ),
     "step.wall.tools": "clamps, square, rule; soldering iron or torch, or rivets.",
     "step.wall.join": "continuous contact to the floor all round: current crosses this joint everywhere.",
+    "step.wall.tube.do": "Set the tube square and centred on the floor, inside the marks, and hold it down.",
+    "step.wall.tube.tools": "clamps or a heavy plate, square, rule.",
+    "step.wall.tube.join": (
+        "solder, weld, or silver-filled epoxy without a gap all round: current crosses this joint everywhere."
+    ),
     "step.wall.bond.join": (
         "screws or rivets in every tab, bright metal below them; conductive sealant in the corner: current crosses "
         "this joint everywhere."

@@ -75,3 +75,8 @@ def quantity(key: str, value: object) -> str:
     unit = next((u for tail, u in units.items() if key.endswith(tail)), "")
     text = number(float(value), 3 if unit in {"pF", ""} or abs(value) < 0.1 else 2)
     return f"{text}{unit}" if unit == "°" else f"{text} {unit}".strip()
+
+
+def tolerance_text(part: Part) -> str:
+    """The part's tolerance in words; a bare class is one of ISO 2768-1."""
+    return f"ISO 2768-{part.tolerance}" if part.tolerance in {"f", "m", "c", "v"} else part.tolerance

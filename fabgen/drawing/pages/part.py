@@ -27,7 +27,7 @@ from fabgen.drawing.flow import (
 )
 from fabgen.drawing.hidden import ABOVE, GAP, ISOMETRIC, Curve, dressed
 from fabgen.drawing.model import SCALES, Box, Item, Polyline, number, scale_text
-from fabgen.drawing.pages.base import Context, Draft, draft, quantity
+from fabgen.drawing.pages.base import Context, Draft, draft, quantity, tolerance_text
 from fabgen.drawing.pages.general import loop_views
 from fabgen.drawing.picture import (
     Body,
@@ -94,7 +94,7 @@ def _draft(context: Context, part: Part) -> Draft:
         group="parts",
         material=material_text(part),
         finish=part.finish,
-        tolerance=part.tolerance,
+        tolerance=tolerance_text(part),
     )
 
 
@@ -213,7 +213,7 @@ def making(part: Part) -> list[Block]:
     """Material, quantity, tolerance, finish: what the title block may be too small for."""
     rows = [
         (say("stock.material"), material_text(part)),
-        (say("title.tolerance"), part.tolerance),
+        (say("title.tolerance"), tolerance_text(part)),
         (say("title.finish"), part.finish),
         (say("part.quantity"), say("part.quantity_value", count=part.quantity, mass=number(1000 * part.mass_kg, 1))),
     ]

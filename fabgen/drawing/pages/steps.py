@@ -42,6 +42,9 @@ JOINS: tuple[tuple[str, str], ...] = (
 ORDER = ("tool", "body", "wall", "lining", "choke", "loop", "connector", "coax", "capacitor", "radome", "other")
 CLOSE_UPS = {"loop", "connector", "coax", "capacitor"}
 LEFT_OUT = {"wall", "choke", "lining"}  # the wall would only hide what the step is about
+# Coax and capacitor sit on the gap's side of the bars: eye at azimuth -20 degrees, 42 degrees high.
+GAP_EYE = Direction("gap", (0.698332, -0.254172, 0.669131), (0.342020, 0.939693, 0.0))
+SEEN_FROM_THE_GAP = {"coax", "capacitor"}
 SEEN_FROM_BELOW = {"connector"}
 FASTENERS = {"screw", "nut", "rivet", "insert", "washer"}
 
@@ -91,11 +94,17 @@ def step_views(parts: tuple[Part, ...], bodies: Sequence[Body]) -> tuple[StepVie
         keys = {p.key for p in step.parts}
         new = tuple(b for b in bodies if b.part.key in keys)
         old = tuple(b for b in there if step.kind not in CLOSE_UPS or _kind_of(b.part.key) not in LEFT_OUT)
-        direction = BELOW_EYE if step.kind in SEEN_FROM_BELOW else ABOVE_EYE
-        seen = look([b.shape for b in (*old, *new)], direction) if new else ()
+        seen = look([b.shape for b in (*old, *new)], _eye(step.kind)) if new else ()
         out.append(StepView(step, old, new, seen))
         there += new
     return tuple(out)
+
+
+def _eye(kind: str) -> Direction:
+    """From where a step is best seen."""
+    if kind in SEEN_FROM_BELOW:
+        return BELOW_EYE
+    return GAP_EYE if kind in SEEN_FROM_THE_GAP else ABOVE_EYE
 
 
 def made_parts(views: Sequence[StepView]) -> dict[str, tuple[Curve, ...]]:

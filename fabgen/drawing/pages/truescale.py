@@ -50,9 +50,23 @@ def templates(context: Context) -> tuple[Template, ...]:
             out.append(Template(say(kind, part=part.name), part.key, _flat(part)))
         elif part.wire is not None and part.solid is not None:
             out += _wire(part)
-        elif part.key.startswith("capacitor") and part.solid is not None:
-            out.append(Template(say("true.capacitor", part=part.name), part.key, _solid(part)))
+    small = [p for p in context.parts if p.key.startswith(("capacitor", "coax")) and p.solid is not None]
+    if small:
+        out.append(Template(say("true.capacitor"), small[0].key, _row(small)))
     return tuple(out)
+
+
+def _row(parts: list[Part]) -> tuple[Item, ...]:
+    """Small parts one under the other, their names beside them."""
+    items: list[Item] = []
+    y = 0.0
+    for part in parts:
+        drawn = _solid(part)
+        box = bounds(drawn)
+        items += moved(drawn, -box.x1 - 8, y - box.y1)
+        items.append(Text(0, y - box.height / 2 - 1.2, part.name, 2.5))
+        y -= box.height + 14
+    return tuple(items)
 
 
 def _wanted(part: Part) -> bool:

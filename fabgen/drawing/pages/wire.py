@@ -11,7 +11,7 @@ from fabgen.drawing.dimension import arrow
 from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, heading, paragraph, table
 from fabgen.drawing.fonts import text_width_mm
 from fabgen.drawing.model import Dimension, Item, Line, Polyline, Text, View, bounds, number
-from fabgen.drawing.pages.base import Context, Draft, draft
+from fabgen.drawing.pages.base import Context, Draft, draft, tolerance_text
 from fabgen.drawing.texts import say
 from fabgen.parts.records import Part, WireBend, WirePath
 
@@ -37,7 +37,7 @@ def _draft(context: Context, part: Part) -> Draft:
         ]
     return draft(
         context, "wire", say("page.wire", part=part.name), blocks, part_key=part.key, scale=say("title.not_to_scale"),
-        material=f"{part.material_name}, {part.temper}", finish=part.finish, tolerance=part.tolerance,
+        material=f"{part.material_name}, {part.temper}", finish=part.finish, tolerance=tolerance_text(part),
     )  # fmt: skip
 
 
