@@ -298,6 +298,8 @@ def _leader_at(scene: _Scene, ask: Ask, tip: Point, angle_deg: float, reach: flo
 
 
 Mark = tuple[str, Point]
+MANY_MARKS = 150
+CROWD_MM = 3.0  # on paper; of many labels those nearer than this to the one before are left out
 
 
 def marks(
@@ -314,11 +316,17 @@ def marks(
     for dimension in placed.dimensions if placed is not None else ():
         occupied.take(dimension.text_box.grown(0.2), dimension.lines)
     out: list[Text] = []
-    for label, point in wanted:
+    listed = list(wanted)
+    crowd = CROWD_MM if len(listed) > MANY_MARKS else 0.0
+    last: Point | None = None
+    for label, point in listed:
+        if last is not None and math.dist(last, point) * scale < crowd:
+            continue
         text = _mark(label, (point[0] * scale, point[1] * scale), occupied)
         if text is not None:
             occupied.take(text.box().grown(0.15), ())
             out.append(text)
+            last = point
     return tuple(out)
 
 
