@@ -52,7 +52,12 @@ def _width(points: Any, angle: float) -> float:
 
 
 def wall_thicknesses_mm(shape: Any, count: int = 400, seed: int = 1) -> np.ndarray:
-    """Distance straight in from points on the skin to the next skin, for random points spread by area."""
+    """Distance straight in from points on the skin to the next skin, for random points spread by area.
+
+    Only skins that face away by less than 60 degrees count: beside an edge of a curved face a ray grazes that face
+    after any small distance, which is no wall.
+    """
+    import cadquery as cq
     from OCP.gp import gp_Dir, gp_Lin, gp_Pnt
     from OCP.IntCurvesFace import IntCurvesFace_ShapeIntersector
 
@@ -71,5 +76,7 @@ def wall_thicknesses_mm(shape: Any, count: int = 400, seed: int = 1) -> np.ndarr
         line = gp_Lin(gp_Pnt(*map(float, start)), gp_Dir(*map(float, way)))
         ray.PerformNearest(line, 0.0, 1e4)
         if ray.NbPnt() > 0:
-            found.append(0.1 + ray.WParameter(1))
+            out = cq.Face(ray.Face(1)).normalAt(cq.Vector(ray.Pnt(1)))
+            if np.dot(out.toTuple(), way) > 0.5:
+                found.append(0.1 + ray.WParameter(1))
     return np.array(found)
