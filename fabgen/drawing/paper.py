@@ -112,15 +112,7 @@ def _marks(middle: float, low: float, high: float) -> list[float]:
 def title_block(box: Box, fields: TitleFields) -> tuple[Item, ...]:
     """The title block, 180 x 32, at the lower right corner of the frame."""
     x, y = box.x1 - TITLE_WIDTH_MM, box.y0
-    items: list[Item] = [
-        Line(x, y + 32, x + 180, y + 32, "outline"),
-        Line(x, y, x, y + 32, "outline"),
-        Line(x, y + 24, x + 180, y + 24, "thin"),
-        Line(x, y + 16, x + 180, y + 16, "thin"),
-        Line(x + 125, y + 8, x + 180, y + 8, "thin"),
-        Line(x + 45, y, x + 45, y + 16, "thin"),
-        Line(x + 125, y, x + 125, y + 16, "thin"),
-    ]
+    items = _rules(x, y)
     items += _row(
         x,
         y + 24,
@@ -156,6 +148,19 @@ def title_block(box: Box, fields: TitleFields) -> tuple[Item, ...]:
     items += _cell((x + 45, y), 80, 16, "title.title", fields.title, size=3.5, second=fields.supplement)
     items += _cell((x + 125, y + 8), 55, 8, "title.number", fields.identification)
     return (*items, *projection_symbol(x + 30, y + 26.6, fields.projection))
+
+
+def _rules(x: float, y: float) -> list[Item]:
+    """The block's own lines."""
+    return [
+        Line(x, y + 32, x + 180, y + 32, "outline"),
+        Line(x, y, x, y + 32, "outline"),
+        Line(x, y + 24, x + 180, y + 24, "thin"),
+        Line(x, y + 16, x + 180, y + 16, "thin"),
+        Line(x + 125, y + 8, x + 180, y + 8, "thin"),
+        Line(x + 45, y, x + 45, y + 16, "thin"),
+        Line(x + 125, y, x + 125, y + 16, "thin"),
+    ]
 
 
 def _row(x: float, y: float, cells: tuple[tuple[float, str, str], ...]) -> list[Item]:
