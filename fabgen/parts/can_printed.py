@@ -51,11 +51,12 @@ SKIRT_MM = 8.0
 
 
 def as_printed(outline: Outline, rules: PrintRules) -> Outline:
-    """A round hole with the printer's allowance, never under the smallest that prints open; other outlines are
-    drawn with their clearance already."""
+    """A round hole with the printer's allowance; other outlines are drawn with their clearance already.
+
+    A hole too small to print open stays as small and is drilled: it places a bar, and a wider one would not.
+    """
     if isinstance(outline, Circle):
-        diameter = max(outline.diameter_mm + rules.hole_mm, rules.hole_min_mm)
-        return Circle(outline.x_mm, outline.y_mm, diameter)
+        return Circle(outline.x_mm, outline.y_mm, outline.diameter_mm + rules.hole_mm)
     return outline
 
 

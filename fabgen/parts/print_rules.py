@@ -14,14 +14,13 @@ from fabgen.stock import tables
 
 @dataclass(frozen=True)
 class PrintRules:
-    """Millimetres. ``hole_mm`` is added to hole diameters, ``hole_min_mm`` is the smallest; ``clearance_mm`` lies
-    between faces that slide into each other; ``margin_mm`` stays free at the bed's edges; ``insert_wall_mm``
+    """Millimetres. ``hole_mm`` is added to hole diameters; ``clearance_mm`` lies between
+    faces that slide into each other; ``margin_mm`` stays free at the bed's edges; ``insert_wall_mm``
     stands around an insert."""
 
     line_mm: float
     wall_min_mm: float
     hole_mm: float
-    hole_min_mm: float
     clearance_mm: float
     margin_mm: float
     insert_wall_mm: float
@@ -46,7 +45,6 @@ def print_rules(feed: Feed) -> PrintRules:
         line_mm=feed.job.limits.line_width_mm,
         wall_min_mm=limit("print_wall_min_mm"),
         hole_mm=limit("print_hole_allowance_mm"),
-        hole_min_mm=limit("print_hole_min_mm"),
         clearance_mm=limit("sliding_clearance_mm"),
         margin_mm=limit("printer_clearance_mm"),
         insert_wall_mm=limit("insert_wall_min_mm"),
