@@ -132,6 +132,7 @@ def new_folder(target: Path) -> Iterator[Path]:
 
 def _put_in_place(temporary: Path, real: Path) -> None:
     """Renames; another run may write the same place meanwhile, so look again and retry."""
+    refusal: OutputError | None = None
     for _ in range(_TRIES):
         try:
             temporary.rename(real)
@@ -140,7 +141,14 @@ def _put_in_place(temporary: Path, real: Path) -> None:
                 raise
         else:
             return
-        resolve_target(real)
+        try:
+            resolve_target(real)
+        except OutputError as error:
+            # Another run may have exchanged the folder while it was read: what is wrong twice over is wrong.
+            if str(error) == str(refusal):
+                raise
+            refusal = error
+            continue
         if _exchange(temporary, real):
             return
     raise OutputError(f"another run keeps writing {real}; wait for it to end, or name another folder")
