@@ -109,7 +109,7 @@ def adaptive_sweep(
     measure: Callable[[FloatArray, ComplexArray], ComplexArray],
     target: float | None = None,
     tolerance: float = 4e-3,
-    most: int = 13,
+    most: int = 15,
     first: int = 7,
 ) -> SweepResult:
     """Solve where it is needed until the fit is good.

@@ -155,7 +155,7 @@ class FieldModel:
         return SurfaceImpedance(complex(can), complex(metal * share))
 
     def sweep(self, sizes: Sizes, start_mhz: float, stop_mhz: float, capacitor_pf: float) -> FieldSweep:
-        """Impedance and axial field over a band by at most 13 full solves."""
+        """Impedance and axial field over a band by at most 15 full solves."""
         geometry = feed_geometry(sizes, self.edges_per_wavelength)
         solver = self._solver(geometry)
         middle = 0.5 * (start_mhz + stop_mhz)
