@@ -22,7 +22,8 @@ from fabgen.fields.plan import plan_mesh
 from fabgen.fields.solid_mesh import SolidLoop, solid_mesh
 from fabgen.fields.surfaces import feed_mesh
 from fabgen.parts.containment import gaps_mm
-from fabgen.parts.contour import Circle
+from fabgen.parts.contour import bounds_mm
+from fabgen.parts.floor_holes import floor_holes
 from fabgen.parts.records import Part
 from fabgen.sizing.field_model import FieldModel, feed_geometry
 from fabgen.sizing.records import Feed, Sizes
@@ -81,7 +82,7 @@ def containment(feed: Feed, parts: Sequence[Part]) -> tuple[Containment, ...]:
     samples = [
         # on the axis or mid-plane: a point of it within half the thickness lies inside the metal
         ("loop and bars", loop, POLYGON_MM + 0.02 * (sizes.wire_mm or sizes.sheet_mm or 0.0)),
-        ("floor", floor[~_in_holes(floor, parts)], sizes.floor_mm / 2),
+        ("floor", floor[~_in_holes(floor, feed)], sizes.floor_mm / 2),
         ("wall", _off_the_seam(_wall_points(drawn.can, 0.0)), sizes.wall_mm / 2),
     ]
     choke = drawn.can.choke
@@ -164,19 +165,13 @@ def _metal_widths(geometry: FeedGeometry, sizes: Sizes) -> FeedGeometry:
     )
 
 
-def _in_holes(points: NDArray[np.float64], parts: Sequence[Part]) -> NDArray[np.bool_]:
+def _in_holes(points: NDArray[np.float64], feed: Feed) -> NDArray[np.bool_]:
     inside = np.zeros(len(points), dtype=bool)
-    for part in parts:
-        if not part.key.startswith("floor") or part.flat is None:
-            continue
-        for hole in part.flat.holes:
-            if isinstance(hole, Circle):
-                x, y, r = hole.x_mm, hole.y_mm, hole.diameter_mm / 2
-            else:
-                xs, ys = [v.x_mm for v in hole.vertices], [v.y_mm for v in hole.vertices]
-                x, y = sum(xs) / len(xs), sum(ys) / len(ys)
-                r = max(math.hypot(a - x, b - y) for a, b in zip(xs, ys, strict=True)) * 1.3
-            inside |= np.hypot(points[:, 0] - x, points[:, 1] - y) <= r
+    for hole in floor_holes(feed):
+        low_x, low_y, high_x, high_y = bounds_mm(hole.outline)
+        centre = (low_x + high_x) / 2, (low_y + high_y) / 2
+        reach = math.hypot(high_x - low_x, high_y - low_y) / 2
+        inside |= np.hypot(points[:, 0] - centre[0], points[:, 1] - centre[1]) <= reach
     return inside
 
 

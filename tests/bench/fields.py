@@ -6,8 +6,8 @@
 
 bempp-cl, a general-purpose boundary-element library, is no dependency of this project. To add its row:
 
-    python -m venv /tmp/bempp && /tmp/bempp/bin/pip install bempp-cl plotly meshio
-    python -m tests.bench.fields --rows bempp --bempp /tmp/bempp/bin/python
+    python -m venv .bempp-venv && .bempp-venv/bin/pip install bempp-cl plotly meshio
+    python -m tests.bench.fields --rows bempp --bempp .bempp-venv/bin/python
 
 Its assembly of this mesh takes a minute or more, and it is run several times. Ratios are of the least wall times of
 runs taken in turn; they hold on a busy machine better than seconds do. "cpu" is processor time of all threads:
