@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 from fabgen.checks.records import Finding
 from fabgen.job import Job
-from fabgen.sizing.records import Feed, Sizes
+from fabgen.sizing.records import BENCH_LIMIT_DB, Feed, Sizes
 from fabgen.units import INCH_MM
 
 if TYPE_CHECKING:
@@ -47,17 +47,38 @@ def size_report(feed: Feed) -> str:
          feed.predicted.gain),
     )  # fmt: skip
     lines += _section("What moves the resonance most", _sensitivity_rows(feed))
+    lines += _section("Cans compared (bore x depth)", _can_rows(feed))
     settings = feed.settings
     lines += _section(
         "How sure",
         (
             ("resonance", f"+-{settings.resonance_uncertainty_mhz:.2g} MHz", "from a second mesh"),
-            ("return loss", f"+-{settings.return_loss_uncertainty_db:.2g} dB", "from a second mesh"),
+            ("return loss", _least_loss(feed), "from a second mesh"),
             ("yield", f"{feed.yields.before_trimming:.0%}", f"{feed.yields.after_trimming:.0%} after trimming"),
         ),
     )
     lines += ["", *(f"Remark: {remark}" for remark in feed.remarks)] if feed.remarks else []
     return "\n".join(lines) + "\n"
+
+
+def loss_text(loss_db: float) -> str:
+    """A return loss as it can be measured: no bench tells losses above 40 dB apart."""
+    return f"above {BENCH_LIMIT_DB:g} dB" if loss_db > BENCH_LIMIT_DB else f"{loss_db:.1f} dB"
+
+
+def _least_loss(feed: Feed) -> str:
+    """The return loss less its uncertainty."""
+    least = feed.predicted.return_loss_db - feed.settings.return_loss_uncertainty_db
+    return loss_text(least) if least > BENCH_LIMIT_DB else f"at least {least:.1f} dB"
+
+
+def _can_rows(feed: Feed) -> list[tuple[str, ...]]:
+    """The cans that were computed, by bore and depth."""
+    return [
+        (f"{t.bore_mm:.1f} x {t.depth_mm:.1f} mm", f"efficiency {t.aperture_efficiency:.3f}",
+         f"G/T {t.g_over_t_db_per_k:.2f} dB/K")
+        for t in sorted(feed.can_trials, key=lambda t: (t.bore_mm, t.depth_mm))
+    ]  # fmt: skip
 
 
 def _section(title: str, rows: Iterable[Sequence[str]]) -> list[str]:
@@ -107,7 +128,7 @@ def _predicted_rows(feed: Feed) -> list[tuple[str, ...]]:
     p = feed.predicted
     return [
         ("impedance at the tap", f"{p.impedance_ohm.real:.1f} {p.impedance_ohm.imag:+.1f}j ohm"),
-        ("return loss", f"{p.return_loss_db:.1f} dB"),
+        ("return loss", loss_text(p.return_loss_db)),
         ("bandwidth", f"{p.bandwidth_mhz:.1f} MHz at {p.bandwidth_return_loss_db:g} dB"),
         ("aperture efficiency", f"{p.aperture_efficiency:.3f}"),
         ("spillover", f"{p.spillover:.3f}"),
@@ -126,7 +147,7 @@ def _sensitivity_rows(feed: Feed) -> list[tuple[str, ...]]:
     rows: list[tuple[str, ...]] = []
     for item in sorted(feed.sensitivities, key=lambda s: -abs(s.effect_mhz))[:3]:
         unit = "pF" if item.size.endswith("_pf") else "mm"
-        name = item.size.removesuffix("_mm").removesuffix("_pf").replace("_", " ")
+        name = item.size.removesuffix("_mm").removesuffix("_pf").replace("_", " ").replace(".", " ")
         rows.append(
             (
                 name,
@@ -150,7 +171,7 @@ def front_report(job: Job, front: Front) -> str:
             *(f"{value:+.1f} dB" for value in point.rejection_db),
             f"{point.aperture_efficiency:.3f}",
             f"{point.g_over_t_db_per_k:.2f} dB/K",
-            f"{point.return_loss_db:.1f} dB",
+            loss_text(point.return_loss_db),
         )
         for point in front.points
     ]

@@ -30,6 +30,7 @@ BORE_STEP = 0.028
 DEPTH_STEP = 0.048
 """Steps that a mesh follows by moving: what differs is then the can and not the mesh."""
 CHOKE_BORE_STEP, CHOKE_DEPTH_STEP = 0.045, 0.09
+SET_BACK_STEP_WAVELENGTHS = 0.025
 LEAST_GAP_WAVELENGTHS = 0.1
 """Least difference between the choke's bore and the can's outside. Common practice, no source."""
 CUTOFF_MARGIN = 1.12
@@ -117,6 +118,9 @@ def find_can(
             can = search.along(can, "choke.bore_mm", CHOKE_BORE_STEP * can.choke.bore_mm)
         if given.depth_mm is None and can.choke is not None:
             can = search.along(can, "choke.depth_mm", CHOKE_DEPTH_STEP * can.choke.depth_mm)
+        if given.floor_z_mm is None:
+            # With the depth kept, the floor's height is the set-back of the rim.
+            can = search.along(can, "choke.floor_z_mm", SET_BACK_STEP_WAVELENGTHS * job.wavelength_mm)
     return CanFound(can, tuple(search.trials), tuple(search.remarks))
 
 
@@ -195,13 +199,17 @@ class _Search:
         return self.with_choke(replace(can, depth_mm=max(rounded, round_to(self.least_depth, self.step))))
 
     def with_moved_choke(self, can: CanShape, name: str, value: float) -> CanShape:
-        """Another choke bore or depth, kept clear of the can's wall and with its rim where it was."""
+        """Another choke bore, clear of the can's wall; another depth, with the rim where it was; or another height of
+        the floor, the rim no higher than the can's."""
         if can.choke is None:
             return can
         wall = self.job.can.wall_mm or WALL_MM[self.job.can.make]
         if name == "bore_mm":
             least = can.bore_mm + 2 * wall + LEAST_GAP_WAVELENGTHS * self.job.wavelength_mm
             return replace(can, choke=replace(can.choke, bore_mm=max(value, round_to(least, self.step))))
+        if name == "floor_z_mm":
+            highest = max(can.choke.floor_z_mm, round_to(can.depth_mm - can.choke.depth_mm, self.step))
+            return replace(can, choke=replace(can.choke, floor_z_mm=min(max(value, 0.0), highest)))
         rim = can.choke.floor_z_mm + can.choke.depth_mm
         fixed = isinstance(self.job.can.choke, Choke) and self.job.can.choke.floor_z_mm is not None
         floor = can.choke.floor_z_mm if fixed else max(0.0, round_to(rim - value, self.step))

@@ -32,6 +32,7 @@ FOOT_MM = 13.0
 BEND_ROOM_MM = 1.5
 PLATE_WAVELENGTHS = 0.018
 LEAST_PLATE_MM = 1.0
+LEAST_RADIUS_SHARE = 0.5
 FIT_SHARE = 0.8
 """Outer edges of the bars over the ring's inner radius: beyond this the tabs leave no ring beside them."""
 LEAST_FOOT_SCREW = "M2"
@@ -86,11 +87,23 @@ def loop_stock(job: Job) -> LoopStock:
     _refuse_thick(width, wavelength, "loop.strip_width_mm")
     inside = job.loop.bend_radius_mm
     if inside is None:
-        inside = round_to(max(inside_bend_radius_mm(metal, job.loop.temper, sheet), step), step)
+        inside = _round_up(_inside_radius_mm(job, metal, sheet), step)
     pitch = job.fixed.leg_pitch_mm or round_to(width + gap, step)
     _refuse_touching(pitch, width)
     crossing = round_to(max(PLATE_WAVELENGTHS * wavelength, LEAST_PLATE_MM), step)
     return LoopStock(None, sheet, width, width, pitch, inside, max(crossing, step))
+
+
+def _inside_radius_mm(job: Job, metal: Metal, sheet_mm: float) -> float:
+    """What the temper's table asks for, but no less than any shop bends without a special tool (a limit that the job
+    may override), and never under half a thickness, where bend formulas end."""
+    usual = tables.limit("inside_radius_min_thicknesses", job.overrides).value
+    return max(inside_bend_radius_mm(metal, job.loop.temper, sheet_mm), max(usual, LEAST_RADIUS_SHARE) * sheet_mm)
+
+
+def _round_up(value: float, step: float) -> float:
+    """The multiple of ``step`` at or above ``value``: a least radius must not be rounded down."""
+    return round_to(math.ceil(value / step - 1e-9) * step, step)
 
 
 def _strip_width_mm(sheet_mm: float, wavelength: float, step: float) -> float:

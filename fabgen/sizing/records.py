@@ -12,6 +12,9 @@ from dataclasses import dataclass
 
 from fabgen.job import Job
 
+BENCH_LIMIT_DB = 40.0
+"""Return loss above which a bench cannot tell one from another. Common practice, no source."""
+
 
 @dataclass(frozen=True)
 class ChokeSizes:

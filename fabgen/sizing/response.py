@@ -107,10 +107,15 @@ def _widths(solution: Solution) -> tuple[float, float]:
     return half_power_width_deg(angle, e_plane), half_power_width_deg(angle, h_plane)
 
 
+def in_sweep(frequency_mhz: float, target_mhz: float) -> bool:
+    """Whether a frequency lies in the band that is swept, where the mesh resolves the wavelength."""
+    return START * target_mhz <= frequency_mhz <= STOP * target_mhz
+
+
 def gain_points(sweep: Sweep, sizes: Sizes, job: Job) -> tuple[GainPoint, ...]:
     """Gain and reflection at the neighbours that the job names, at fixed ratios of the target, and at the target."""
     target = job.target.frequency_mhz
-    wanted = {n.frequency_mhz for n in job.wishes.neighbours if START * target <= n.frequency_mhz <= STOP * target}
+    wanted = {n.frequency_mhz for n in job.wishes.neighbours if in_sweep(n.frequency_mhz, target)}
     ratios = {round(r * target, 3) for r in (0.35, 0.5, 0.65, 0.8, 0.9, 1.1, 1.25, 1.5, 1.75, 2.0)}
     frequency = np.array(sorted(wanted | ratios | {target}))
     impedance = sweep.impedance_ohm(frequency)

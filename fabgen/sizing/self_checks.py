@@ -1,6 +1,6 @@
 """Numerical self-checks of the final solve, with numbers; one that fails stops the sizing.
 
-Depends on: errors, sizing.records.
+Depends on: errors, sizing.field_model, sizing.records.
 """
 
 from __future__ import annotations
@@ -8,6 +8,7 @@ from __future__ import annotations
 import math
 
 from fabgen.errors import NumericalError
+from fabgen.sizing.field_model import SWEEP_ERROR
 from fabgen.sizing.records import SelfCheck
 from fabgen.sizing.solver import Solution
 
@@ -19,7 +20,7 @@ def self_checks(solution: Solution, sweep_error: float, reflection_change: float
         ("residual", solution.residual, 1e-6, "of the linear system, over the right-hand side"),
         ("condition", solution.condition, 1e9, "of the system that was factorised"),
         ("largest edge", solution.largest_edge_wavelengths, 0.2, "of the mesh, in wavelengths"),
-        ("sweep error", sweep_error, 0.05, "estimated change of reflection between the solved frequencies"),
+        ("sweep error", sweep_error, SWEEP_ERROR, "estimated change of reflection between the solved frequencies"),
         ("second mesh", reflection_change, 0.2, "change of reflection at the target on a coarser mesh"),
     )
     return tuple(

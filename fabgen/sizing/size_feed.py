@@ -25,10 +25,10 @@ from fabgen.sizing.modes import bore_modes
 from fabgen.sizing.predict import predict
 from fabgen.sizing.records import Feed, Predicted, Settings, Sizes
 from fabgen.sizing.relax import nearest_that_works
-from fabgen.sizing.response import START, STOP
+from fabgen.sizing.response import START, STOP, in_sweep
 from fabgen.sizing.self_checks import require_passed, self_checks
 from fabgen.sizing.solver import Solver, Sweep
-from fabgen.sizing.tolerances import bench_loss_db, fit_model, sensitivities
+from fabgen.sizing.tolerances import fit_model, sensitivities
 from fabgen.sizing.trial import Setting
 from fabgen.sizing.wishes import choose_loop
 from fabgen.sizing.yields import Bench, model_error, yield_of
@@ -137,7 +137,10 @@ def _size(job: Job, tell: Progress, make_solver: MakeSolver) -> Feed:
         job=job, sizes=sizes, predicted=predicted, capacitor=part, sensitivities=rows, yields=yields,
         modes=bore_modes(sizes.can_bore_mm, target), self_checks=checks,
         settings=_settings(matched, second, found.search.solves + final.solves + coarse.solves),
-        remarks=(*found.can.remarks, *matched.remarks, *_band_remark(job, predicted), *_dish_remark(job, predicted)),
+        remarks=(
+            *found.can.remarks, *matched.remarks, *_band_remark(job, predicted), *_dish_remark(job, predicted),
+            *_neighbour_remarks(job),
+        ),
         can_trials=found.can.trials,
     )  # fmt: skip
 
@@ -157,16 +160,20 @@ def _bench(job: Job, sizes: Sizes, sweep: Sweep, slope: float) -> Bench:
 
 
 def _second_mesh(job: Job, matched: Matched, coarse: Solver, slope: float) -> _SecondMesh:
-    """The same sizes on a coarser mesh: what the discretisation may still move."""
+    """The same sizes on a coarser mesh: what the discretisation may still move.
+
+    The reflection may lie anywhere in a circle round the computed one, as wide as the two meshes differ; its far side
+    is the least return loss. A deep minimum is therefore not told as if it were sure.
+    """
     target, sizes = job.target.frequency_mhz, matched.sizes
     other = coarse.solve(sizes, target)
     change = other.impedance_ohm - matched.solution.impedance_ohm
     first = matched.reflection(target)
-    second = reflection(other.impedance_ohm, sizes.series_capacitor_pf, target)
+    moved = abs(reflection(other.impedance_ohm, sizes.series_capacitor_pf, target) - first)
     return _SecondMesh(
         resonance_mhz=abs(change.imag / slope),
-        return_loss_db=abs(bench_loss_db(return_loss_db(first)) - bench_loss_db(return_loss_db(second))),
-        reflection_change=abs(second - first),
+        return_loss_db=return_loss_db(first) - return_loss_db(complex(abs(first) + moved)),
+        reflection_change=moved,
     )
 
 
@@ -193,6 +200,17 @@ def _dish_remark(job: Job, predicted: Predicted) -> tuple[str, ...]:
     return (
         f"The aperture efficiency is {efficiency:.2f}: a dish of focal ratio {job.dish.focal_ratio:g} asks for a "
         f"{beam} beam than this can gives. A free bore, or a dish between 0.35 and 0.6, is used better.",
+    )
+
+
+def _neighbour_remarks(job: Job) -> tuple[str, ...]:
+    """Neighbours of which nothing is said, and why."""
+    target = job.target.frequency_mhz
+    return tuple(
+        f"The neighbour at {n.frequency_mhz:g} MHz lies outside {START * target:.0f} to {STOP * target:.0f} MHz, which "
+        "is what is swept; its rejection was not computed."
+        for n in job.wishes.neighbours
+        if not in_sweep(n.frequency_mhz, target)
     )
 
 

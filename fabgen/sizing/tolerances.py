@@ -21,17 +21,17 @@ from fabgen.job import Job
 from fabgen.progress import Progress
 from fabgen.sizing.layout import leg_place
 from fabgen.sizing.match import reflection, return_loss_db
-from fabgen.sizing.records import CapacitorPart, Sensitivity, Sizes
+from fabgen.sizing.records import BENCH_LIMIT_DB, CapacitorPart, Sensitivity, Sizes
 from fabgen.sizing.solver import Complex, Real, Solution
 from fabgen.sizing.trial import Setting
 from fabgen.stock import tables
 
-PRINTED_MM = 0.3
-"""Fused-filament parts: +-0.2 mm tuned to +-0.5 mm (PR-03, design guides, secondary page)."""
+WIRE_SHARE = 0.01
+"""Diameter of drawn wire, plus-minus 1 % (ASTM B258, from memory)."""
 OVERLAP_MM = 0.2
 """Setting of the capacitor's overlap by hand before trimming. Common practice, no source."""
-BENCH_LIMIT_DB = 40.0
-CAN_SIZES = ("can_bore_mm", "can_depth_mm")
+CAN_SIZES = ("can_bore_mm", "can_depth_mm", "choke.bore_mm", "choke.depth_mm", "choke.floor_z_mm")
+CHOKE = "choke."
 CAPACITOR = "series_capacitor_pf"
 
 
@@ -69,27 +69,50 @@ def deviations(job: Job, sizes: Sizes) -> tuple[Deviation, ...]:
 def _names(sizes: Sizes) -> tuple[str, ...]:
     loop: tuple[str, ...] = ("loop_diameter_mm", "loop_height_mm", "leg_pitch_mm", "tap_height_mm")
     if sizes.wire_mm is None:
-        loop = (*loop, "leg_x_mm")
-    return (*loop, *CAN_SIZES)
+        loop = (*loop, "leg_x_mm", "strip_width_mm", "leg_bend_radius_mm")
+    else:
+        loop = (*loop, "wire_mm", "leg_bend_radius_mm")
+    return (*loop, *(name for name in CAN_SIZES if not name.startswith(CHOKE) or _choke_has(sizes, name)))
+
+
+def _choke_has(sizes: Sizes, name: str) -> bool:
+    """A choke whose floor is level with the can's is one plate with it, so that height cannot be off."""
+    return sizes.choke is not None and (name != "choke.floor_z_mm" or sizes.choke.floor_z_mm > 0)
+
+
+def size_of(sizes: Sizes, name: str) -> float:
+    """A size by its name; those of the choke are named ``choke.bore_mm`` and so on."""
+    value: float = getattr(sizes.choke, name.removeprefix(CHOKE)) if name.startswith(CHOKE) else getattr(sizes, name)
+    return value
 
 
 def _tolerance(job: Job, sizes: Sizes, name: str) -> float:
-    value: float = abs(getattr(sizes, name))
+    value = abs(size_of(sizes, name))
     if name in CAN_SIZES:
         if job.can.make == "printed":
-            return PRINTED_MM
+            return tables.limit("print_tolerance_mm", job.overrides).value
         return tables.general_tolerance_mm(value, "f" if job.can.make == "turned" else job.limits.tolerance_class)
-    if sizes.sheet_mm is not None and name in ("loop_diameter_mm", "leg_pitch_mm"):
+    if name == "wire_mm":
+        return WIRE_SHARE * value
+    if sizes.sheet_mm is not None and name in ("loop_diameter_mm", "leg_pitch_mm", "strip_width_mm"):
         return tables.laser_tolerance_mm(value, sizes.sheet_mm)
     return tables.general_tolerance_mm(value, job.limits.tolerance_class)
 
 
 def with_size(setting: Setting, sizes: Sizes, name: str, value: float) -> Sizes:
-    """The same feed with one size changed; the bars of a wire move with its loop, since they are one bent piece."""
+    """The same feed with one size changed; the bars of a wire move with its loop, since they are one bent piece, and
+    bars are as wide as wire or strip."""
+    if name.startswith(CHOKE) and sizes.choke is not None:
+        part: dict[str, Any] = {name.removeprefix(CHOKE): value}
+        return replace(sizes, choke=replace(sizes.choke, **part))
     update: dict[str, Any] = {name: value}
+    if name in ("wire_mm", "strip_width_mm"):
+        update["leg_width_mm"] = sizes.leg_width_mm + value - size_of(sizes, name)
     changed = replace(sizes, **update)
-    if name in ("loop_diameter_mm", "leg_pitch_mm") and sizes.wire_mm is not None:
-        stock = replace(setting.stock, leg_pitch_mm=changed.leg_pitch_mm)
+    if name in ("loop_diameter_mm", "leg_pitch_mm", "leg_bend_radius_mm") and sizes.wire_mm is not None:
+        stock = replace(
+            setting.stock, leg_pitch_mm=changed.leg_pitch_mm, leg_bend_radius_mm=changed.leg_bend_radius_mm
+        )
         legs = leg_place(stock, changed.loop_diameter_mm, changed.loop_height_mm)
         changed = replace(changed, leg_x_mm=legs.leg_x_mm)
     return changed
@@ -97,7 +120,7 @@ def with_size(setting: Setting, sizes: Sizes, name: str, value: float) -> Sizes:
 
 def deviated(setting: Setting, sizes: Sizes, deviation: Deviation, amount: float) -> Sizes:
     """The feed with one size off by ``amount`` steps."""
-    return with_size(setting, sizes, deviation.size, getattr(sizes, deviation.size) + amount * deviation.step_mm)
+    return with_size(setting, sizes, deviation.size, size_of(sizes, deviation.size) + amount * deviation.step_mm)
 
 
 def fit_model(
@@ -111,7 +134,7 @@ def fit_model(
     nominal = solve(sizes).impedance_ohm
     linear, square = np.zeros(len(rows), complex), np.zeros(len(rows), complex)
     for i, row in enumerate(rows):
-        progress.step(f"sensitivity of {row.size.removesuffix('_mm').replace('_', ' ')}")
+        progress.step(f"sensitivity of {row.size.removesuffix('_mm').replace('_', ' ').replace('.', ' ')}")
         progress.share(i, len(rows))
         up = solve(deviated(setting, sizes, row, 1.0)).impedance_ohm - nominal
         down = solve(deviated(setting, sizes, row, -1.0)).impedance_ohm - nominal

@@ -14,7 +14,7 @@ from fabgen.sizing.counting import CountingSolver
 from fabgen.sizing.loop_search import NAMED, Matched, match_at, match_nearby
 from fabgen.sizing.match import reflection, return_loss_db
 from fabgen.sizing.records import Sizes
-from fabgen.sizing.response import gain_at
+from fabgen.sizing.response import gain_at, in_sweep
 from fabgen.sizing.solver import Solution
 from fabgen.sizing.trial import Setting, front_place
 
@@ -42,7 +42,7 @@ def margins(solver: CountingSolver, job: Job, matched: Matched) -> tuple[Margin,
     target, pf = job.target.frequency_mhz, matched.sizes.series_capacitor_pf
     found = []
     for neighbour in job.wishes.neighbours:
-        if neighbour.rejection_db is None:
+        if neighbour.rejection_db is None or not in_sweep(neighbour.frequency_mhz, target):
             continue
         f, wished = neighbour.frequency_mhz, neighbour.rejection_db
         reached = -relative_gain_db(solver, matched, target, f)

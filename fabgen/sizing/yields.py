@@ -18,7 +18,7 @@ from fabgen.job import Job
 from fabgen.sizing.match import LINE_OHM, reflection, return_loss_db, tap_range_mm
 from fabgen.sizing.records import CapacitorPart, Sensitivity, Sizes, Yield
 from fabgen.sizing.solver import Complex, Real, Solution
-from fabgen.sizing.tolerances import CAN_SIZES, CAPACITOR, FittedModel, deviated, with_size
+from fabgen.sizing.tolerances import CAN_SIZES, CAPACITOR, FittedModel, deviated, size_of, with_size
 from fabgen.sizing.trial import Setting
 from fabgen.stock import tables
 
@@ -109,8 +109,8 @@ def model_error(
 ) -> float:
     """Largest |reflection of the model - reflection of a true solve| over ``CHECKS`` random feeds.
 
-    Loop sizes are random; the can is one of those already factorised (nominal, or one size off by one step), so
-    that a check costs no new can.
+    Loop sizes are random; the can and its choke are among those already factorised (nominal, or one size off by one
+    step), so that a check costs no new can.
     """
     rng = np.random.default_rng(SEED + 1)
     can = [i for i, d in enumerate(model.deviations) if d.size in CAN_SIZES]
@@ -122,7 +122,7 @@ def model_error(
         trial = sizes
         for i, row in enumerate(model.deviations):
             if i not in can:
-                value = getattr(sizes, row.size) + draw[i] * row.tolerance_mm
+                value = size_of(sizes, row.size) + draw[i] * row.tolerance_mm
                 trial = with_size(setting, trial, row.size, value)
         choice = check % (2 * len(can) + 1)
         if choice:
@@ -148,7 +148,7 @@ def thermal(job: Job, model: FittedModel, sizes: Sizes, bench: Bench, temperatur
     off = np.zeros((1, len(model.deviations)))
     for i, row in enumerate(model.deviations):
         expansion = can if row.size in CAN_SIZES else loop
-        off[0, i] = getattr(sizes, row.size) * expansion * rise / row.tolerance_mm
+        off[0, i] = size_of(sizes, row.size) * expansion * rise / row.tolerance_mm
     impedance = complex(model.impedance(off)[0])
     shift = -(impedance - model.impedance_ohm).imag / bench.slope_ohm_per_mhz
     return shift, return_loss_db(reflection(impedance, sizes.series_capacitor_pf, bench.target_mhz))

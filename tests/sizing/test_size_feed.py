@@ -92,7 +92,7 @@ def test_sensitivities_against_the_closed_form(feed: Feed) -> None:
     by_name = {s.size: s for s in feed.sensitivities}
     assert set(by_name) == {
         "loop_diameter_mm", "loop_height_mm", "leg_pitch_mm", "tap_height_mm", "can_bore_mm", "can_depth_mm",
-        "series_capacitor_pf",
+        "series_capacitor_pf", "wire_mm", "leg_bend_radius_mm",
     }  # fmt: skip
     # The toy's bore acts as 5 ohm per wavelength on the reactance only.
     slope = (
