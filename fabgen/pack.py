@@ -199,10 +199,13 @@ def _write_model(content: Content) -> None:
 
 
 def _write_order(content: Content) -> None:
+    from fabgen.writers.nesting import nesting_files
     from fabgen.writers.order import order_notes
 
     made = files_in(content.folder) + (["sheets.pdf"] if "sheets" in chosen_groups(content.options.only) else [])
     for name, text in order_notes(content.feed, content.parts, made).items():
+        content.write(f"order/{name}", text)
+    for name, text in nesting_files(content.parts, content.feed.job.limits).items():
         content.write(f"order/{name}", text)
 
 

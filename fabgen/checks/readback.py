@@ -161,7 +161,8 @@ def orders_agree(pack: Pack) -> Iterator[Fault]:
     parts = {part.key: part for part in pack.parts}
     revision = pack.feed.job.target.revision
     folder = pack.folder / "order"
-    for path in sorted(folder.glob("*.csv")) if folder.is_dir() else []:
+    notes = sorted(folder.glob("*.csv")) if folder.is_dir() else []
+    for path in (note for note in notes if note.name != "sheets.csv"):  # the sheet estimate: stock, not parts
         for row in rows_of(path):
             yield from _order_row(pack, path.name, row, parts.get(row["part"]), revision)
 

@@ -42,6 +42,7 @@ WORK: dict[str, str] = {
     "true.foil": "Foil pattern: {part}",
     "true.wire": "Bent shape: {part}",
     "true.capacitor": "True size: coax and capacitor",
+    "true.thick": "{part}, {thickness} mm thick",
     "true.too_large": "This part would need {tiles} tiles; work from the part drawing or the cutting file instead.",
     "assembly.head": "Assembly in steps",
     "assembly.intro": (

@@ -26,7 +26,8 @@ PROCESSES: Mapping[str, tuple[str, str]] = {
     "fold": ("folding", "Fold lines are the middle of the bend zone; angles, order, K and deductions stand in "
              "bend/bend_table.csv. Flat lengths are laid out with the K stated there: tell us if your tools need "
              "another, or bend the test strip first."),
-    "roll": ("rolling", "Roll to the bore stated, the face named inside; the blank is laid out on the neutral line."),
+    "roll": ("rolling", "Roll to the bore stated. The side named with each part is the face seen on its page: outside "
+             "lies away from the axis once rolled. Blanks are laid out on the neutral line."),
     "turn": ("turning", "STEP is the model; sizes without tolerance after the class stated."),
     "drill": ("drilling", "Hole positions stand on the part's page and on the true-scale template."),
     "wire": ("wire bending", "Marks, mandrels, angles and order stand in the wire schedule in bend/."),

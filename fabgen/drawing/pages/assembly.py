@@ -9,7 +9,8 @@ from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, beside, framed, gap, hea
 from fabgen.drawing.hidden import ISOMETRIC, Curve, dressed
 from fabgen.drawing.model import Item, bounds, number
 from fabgen.drawing.pages.base import Context, Draft, draft
-from fabgen.drawing.pages.steps import Step, StepView
+from fabgen.drawing.pages.lining import lined_floor, lined_wall
+from fabgen.drawing.pages.steps import ABOVE_EYE, Step, StepView
 from fabgen.drawing.pages.stock import item_leaders, items_of
 from fabgen.drawing.picture import Body, Drawn, close_up, free, outside, shape_of
 from fabgen.drawing.texts import has, say
@@ -31,7 +32,7 @@ def drafts(context: Context) -> list[Draft]:
 
 def _step_block(context: Context, n: int, view: StepView) -> Block:
     text = _text(context, n, view.step)
-    picture = picture_block(context, view) if view.new else _forms(view.step)
+    picture = picture_block(context, view) if view.seen else _forms(view.step)
     return framed(beside((picture, text), (1.0, PICTURE_MM + 4.0)))
 
 
@@ -55,10 +56,25 @@ def picture_block(context: Context, view: StepView) -> Block:
         items += dressed(s.visible, "new" if fresh else "old")
         if fresh:
             shown.append((str(numbers[new[i - len(old)].part.key]), s.visible))
+    if not new:
+        shown = _lined(context, view)
+        for _, lines in shown:
+            items += dressed(lines, "new")
     fresh_items = tuple(c for _, curves in shown for c in curves)
     around = bounds(fresh_items) if fresh_items else bounds(tuple(items))
     drawn = Drawn(f"step {view.step.kind}", tuple(items))
     return close_up(drawn, around, item_leaders(shown), PICTURE_MM, PICTURE_HEIGHT_MM)
+
+
+def _lined(context: Context, view: StepView) -> list[tuple[str, tuple[Curve, ...]]]:
+    """Item numbers of the foils and the lines that show what they cover."""
+    sizes, numbers = context.feed.sizes, items_of(context.parts)
+    drawn = {"foil-floor": lined_floor, "foil-wall": lined_wall}
+    return [
+        (str(numbers[p.key]), drawn[p.key](sizes.can_bore_mm, sizes.can_depth_mm, ABOVE_EYE))
+        for p in view.step.parts
+        if p.key in drawn
+    ]
 
 
 def _text(context: Context, n: int, step: Step) -> Block:

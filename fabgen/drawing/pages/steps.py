@@ -95,6 +95,8 @@ def step_views(parts: tuple[Part, ...], bodies: Sequence[Body]) -> tuple[StepVie
         new = tuple(b for b in bodies if b.part.key in keys)
         old = tuple(b for b in there if step.kind not in CLOSE_UPS or _kind_of(b.part.key) not in LEFT_OUT)
         seen = look([b.shape for b in (*old, *new)], _eye(step.kind)) if new else ()
+        if step.kind == "lining" and not new and out and out[-1].new:
+            old, seen = (*out[-1].old, *out[-1].new), out[-1].seen  # foil has no body: the can as it was just seen
         out.append(StepView(step, old, new, seen))
         there += new
     return tuple(out)

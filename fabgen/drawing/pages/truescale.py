@@ -12,9 +12,9 @@ from fabgen.drawing import flat as flat_view
 from fabgen.drawing.clip import clipped
 from fabgen.drawing.dimension import marks
 from fabgen.drawing.flow import Page, columns
-from fabgen.drawing.hidden import ABOVE, GAP, look
+from fabgen.drawing.hidden import ABOVE, FROM_GAP, GAP, look
 from fabgen.drawing.hidden import dressed as dress
-from fabgen.drawing.model import Arc, Box, Item, Line, Text, View, bounds, moved
+from fabgen.drawing.model import Arc, Box, Item, Line, Text, View, bounds, moved, number
 from fabgen.drawing.pages.base import Context, Draft
 from fabgen.drawing.paper import Paper
 from fabgen.drawing.texts import say
@@ -25,6 +25,7 @@ BAR_MM = 100.0
 STRIP_MM = 13.0  # along the left and lower edge, for the bars
 HEAD_MM = 13.0
 MOST_TILES = 12
+PLATE_SHARE = 0.32  # thinner than this share of its width, a part is a plate: its edge shows nothing
 
 
 @dataclass(frozen=True)
@@ -61,11 +62,14 @@ def _row(parts: list[Part]) -> tuple[Item, ...]:
     items: list[Item] = []
     y = 0.0
     for part in parts:
-        drawn = _solid(part)
+        drawn = _small(part)
         box = bounds(drawn)
         items += moved(drawn, -box.x1 - 8, y - box.y1)
-        items.append(Text(0, y - box.height / 2 - 1.2, part.name, 2.5))
-        y -= box.height + 14
+        name = part.name
+        if part.thickness_mm is not None:
+            name = say("true.thick", part=part.name, thickness=number(part.thickness_mm))
+        items.append(Text(0, y - box.height / 2 - 1.2, name, 2.5))
+        y -= box.height + 10
     return tuple(items)
 
 
@@ -97,15 +101,19 @@ def _wire(part: Part) -> list[Template]:
     return [Template(say("true.wire", part=part.name), part.key, (*above, *lines, *moved(side, 0, low)))]
 
 
-def _solid(part: Part) -> tuple[Item, ...]:
+def _small(part: Part) -> tuple[Item, ...]:
+    """A small part seen on its largest face; one that is no plate also from its end, to the left of that."""
     if part.solid is None:
         return ()
     shape = part.solid()
     box = shape.BoundingBox(1e-3)
-    above = dress(look([shape], ABOVE)[0].visible, "outline")
-    side = dress(look([shape], GAP)[0].visible, "outline")
-    lift = bounds(above).y0 - bounds(side).y1 - 10
-    return (*moved(above, -box.center.x, 0), *moved(side, -box.center.x, lift))
+    extents = sorted(((box.xlen, FROM_GAP), (box.ylen, GAP), (box.zlen, ABOVE)), key=lambda e: round(e[0], 3))
+    face = dress(look([shape], extents[0][1])[0].visible, "outline")
+    if extents[0][0] < PLATE_SHARE * extents[1][0]:
+        return face
+    end = dress(look([shape], extents[2][1])[0].visible, "outline")
+    at, beside = bounds(face), bounds(end)
+    return (*face, *moved(end, at.x0 - 8 - beside.x1, (at.y0 + at.y1 - beside.y0 - beside.y1) / 2))
 
 
 def window(paper: Paper) -> Box:
