@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 from fabgen.checks.records import Finding
 from fabgen.job import Job
-from fabgen.sizing.records import BENCH_LIMIT_DB, Feed, Sizes
+from fabgen.sizing.records import BENCH_LIMIT_DB, CanTrial, Feed, Sizes
 from fabgen.units import INCH_MM
 
 if TYPE_CHECKING:
@@ -76,9 +76,16 @@ def _can_rows(feed: Feed) -> list[tuple[str, ...]]:
     """The cans that were computed, by bore and depth."""
     return [
         (f"{t.bore_mm:.1f} x {t.depth_mm:.1f} mm", f"efficiency {t.aperture_efficiency:.3f}",
-         f"G/T {t.g_over_t_db_per_k:.2f} dB/K")
+         f"G/T {t.g_over_t_db_per_k:.2f} dB/K", _choke_of(t))
         for t in sorted(feed.can_trials, key=lambda t: (t.bore_mm, t.depth_mm))
     ]  # fmt: skip
+
+
+def _choke_of(trial: CanTrial) -> str:
+    if trial.choke is None:
+        return ""
+    back = trial.depth_mm - trial.choke.floor_z_mm - trial.choke.depth_mm
+    return f"choke {trial.choke.bore_mm:.1f} x {trial.choke.depth_mm:.1f} mm, set back {back:.1f} mm"
 
 
 def _section(title: str, rows: Iterable[Sequence[str]]) -> list[str]:

@@ -227,7 +227,8 @@ class _Search:
         self.known[can] = merit
         self.trials.append(
             CanTrial(
-                can.bore_mm, can.depth_mm, figures.dish.aperture_efficiency, figures.noise.g_over_t_db_per_k, merit
+                can.bore_mm, can.depth_mm, figures.dish.aperture_efficiency, figures.noise.g_over_t_db_per_k, merit,
+                can.choke,
             )
         )
         return merit

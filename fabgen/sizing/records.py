@@ -220,13 +220,14 @@ class Settings:
 
 @dataclass(frozen=True)
 class CanTrial:
-    """One can of the search with what it does in the dish; ``merit`` is what the goal raises."""
+    """One can of the search, with its choke, and what it does in the dish; ``merit`` is what the goal raises."""
 
     bore_mm: float
     depth_mm: float
     aperture_efficiency: float
     g_over_t_db_per_k: float
     merit: float
+    choke: ChokeSizes | None = None
 
 
 @dataclass(frozen=True)

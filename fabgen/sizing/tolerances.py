@@ -107,7 +107,8 @@ def with_size(setting: Setting, sizes: Sizes, name: str, value: float) -> Sizes:
         return replace(sizes, choke=replace(sizes.choke, **part))
     update: dict[str, Any] = {name: value}
     if name in ("wire_mm", "strip_width_mm"):
-        update["leg_width_mm"] = sizes.leg_width_mm + value - size_of(sizes, name)
+        change = value - size_of(sizes, name)
+        update["leg_width_mm"] = round(sizes.leg_width_mm + change, 9)
     changed = replace(sizes, **update)
     if name in ("loop_diameter_mm", "leg_pitch_mm", "leg_bend_radius_mm") and sizes.wire_mm is not None:
         stock = replace(

@@ -50,6 +50,18 @@ def test_narrow_bars_are_widened_for_their_foot_screw() -> None:
     assert loop_stock(changed(job, "loop", sheet_mm=0.5)).leg_width_mm >= 4.4
 
 
+@pytest.mark.parametrize(("temper", "thickness"), [("R300", 1.5), ("R350", 1.0), ("R350", 2.0)])
+def test_bends_have_the_radius_that_any_shop_makes(temper: str, thickness: float) -> None:
+    job = changed(sample_job("sheet"), "loop", temper=temper, sheet_mm=thickness)
+    assert loop_stock(job).leg_bend_radius_mm >= thickness
+    free = Job.model_validate({**job.model_dump(), "overrides": {"inside_radius_min_thicknesses": 0.1}})
+    assert loop_stock(free).leg_bend_radius_mm >= 0.5 * thickness
+
+
+def test_a_given_bend_radius_is_kept() -> None:
+    assert loop_stock(changed(sample_job("sheet"), "loop", bend_radius_mm=0.8)).leg_bend_radius_mm == 0.8
+
+
 def test_bars_that_nearly_touch_are_refused() -> None:
     with pytest.raises(JobError, match="would touch"):
         loop_stock(changed(sample_job(), "fixed", leg_pitch_mm=4.1))

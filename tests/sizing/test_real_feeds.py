@@ -10,7 +10,7 @@ import pytest
 from fabgen.errors import NoSolutionError
 from fabgen.job import Job
 from fabgen.job_reader import read_job
-from fabgen.sizing.dish import beam, edge_taper_db, plane_cut
+from fabgen.sizing.dish import beam, dish_figures, edge_taper_db, plane_cut, sample_pattern
 from fabgen.sizing.evaluate import in_dish
 from fabgen.sizing.field_solver import FieldSolver
 from fabgen.sizing.match import reflection, return_loss_db
@@ -110,7 +110,15 @@ def test_hydrogen_line_feed_against_common_practice() -> None:
     reference = gain_at(solution, pf, target)
     low, high = (found.final.solve(sizes, f) for f in (500.0, 2500.0))
     assert gain_at(low, pf, 500.0) <= reference - 30
-    assert -10 <= gain_at(high, pf, 2500.0) - reference <= 0
+    assert -6 <= gain_at(high, pf, 2500.0) - reference <= -1
+    # Wider as a whole: less directive, more power outside 60 degrees. Its main lobe is narrower (the can is 1.9
+    # wavelengths wide there); side lobes 11 dB down make up for it.
+    narrow, wide = (
+        dish_figures(sample_pattern(s.far_field, 1.0472), 299_792.458 / f)
+        for s, f in ((solution, target), (high, 2500.0))
+    )
+    assert wide.spillover > narrow.spillover
+    assert beam(high.far_field, wide.power).directivity_dbi < shape.directivity_dbi
 
 
 @pytest.mark.parametrize(

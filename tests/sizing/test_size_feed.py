@@ -161,6 +161,9 @@ def test_choke_is_searched_around_what_the_job_gives() -> None:
     assert free.sizes.choke is not None
     assert free.sizes.choke.bore_mm > free.sizes.can_bore_mm + 2 * free.sizes.wall_mm
     assert free.sizes.choke.floor_z_mm + free.sizes.choke.depth_mm <= free.sizes.can_depth_mm + 1e-9
+    shallow = sized(job_with(can={"choke": {"depth_mm": 15.0}}))
+    assert "choke.floor_z_mm" in {s.size for s in shallow.sensitivities}
+    assert len({t.choke.floor_z_mm for t in shallow.can_trials if t.choke is not None}) >= 3
     small = sized(job_with(can={"choke": {"bore_mm": 220.0}}))
     assert small.sizes.can_bore_mm + 2 * small.sizes.wall_mm < 220.0
     with pytest.raises(NoSolutionError, match=r"can\.choke\.bore_mm"):
@@ -176,6 +179,21 @@ def test_selectivity_moves_the_loop() -> None:
 def test_band_that_cannot_be_covered_is_said() -> None:
     feed = sized(job_with(wishes={"bandwidth_mhz": 600.0}))
     assert any("band" in r for r in feed.remarks)
+
+
+def test_neighbour_outside_the_sweep_is_said_and_not_computed() -> None:
+    neighbours = [{"frequency_mhz": 5800.0, "rejection_db": 20.0}, {"frequency_mhz": 200.0}]
+    feed = sized(job_with(wishes={"neighbours": neighbours}))
+    assert sum("its rejection was not computed" in r for r in feed.remarks) == 2
+    assert not {5800.0, 200.0} & {g.frequency_mhz for g in feed.predicted.gain}
+
+
+def test_uncertainty_of_the_return_loss_is_that_of_the_reflection(feed: Feed) -> None:
+    # The reflection may lie anywhere within the change between the meshes: the least loss is that of both added.
+    loss, unsure = feed.predicted.return_loss_db, feed.settings.return_loss_uncertainty_db
+    moved = next(c.value for c in feed.self_checks if c.name == "second mesh")
+    assert loss - unsure == pytest.approx(-20 * math.log10(10 ** (-loss / 20) + moved), abs=0.3)
+    assert unsure > 0.5
 
 
 def test_missed_rejection_is_said() -> None:
@@ -239,6 +257,24 @@ def test_front_has_eight_points_that_trade_rejection() -> None:
     assert len(front.points) >= 8
     assert all(p.return_loss_db > 20 for p in front.points)
     assert [p.share for p in front.points] == sorted(p.share for p in front.points)
+
+
+class HalfBuildable(ToySolver):
+    """Loops higher than 0.145 wavelengths cannot be matched."""
+
+    def solve(self, sizes: Any, frequency_mhz: float) -> ToySolution:
+        found = super().solve(sizes, frequency_mhz)
+        if sizes.loop_height_mm > 0.145 * 299_792.458 / self.target_mhz:
+            return dataclasses.replace(found, impedance_ohm=5 + 75j)
+        return found
+
+
+def test_front_is_filled_up_where_half_of_it_cannot_be_built() -> None:
+    front = selectivity_front(job_with(wishes={"selectivity": "sharp"}), make_solver=HalfBuildable)
+    assert len(front.points) >= 8
+    assert front.refused
+    shares = [p.share for p in front.points]
+    assert shares == sorted(set(shares))
 
 
 @settings(deadline=None, max_examples=12, suppress_health_check=[HealthCheck.too_slow], derandomize=True)

@@ -14,7 +14,15 @@ from fabgen.sizing.capacitor_part import capacitor_part
 from fabgen.sizing.layout import loop_stock
 from fabgen.sizing.records import Response
 from fabgen.sizing.response import band_of, realised_gain_dbi, sweep_frequencies
-from fabgen.sizing.tolerances import Deviation, FittedModel, deviations, fit_model, sensitivities
+from fabgen.sizing.tolerances import (
+    Deviation,
+    FittedModel,
+    deviations,
+    fit_model,
+    sensitivities,
+    size_of,
+    with_size,
+)
 from fabgen.sizing.trial import CanShape, Setting
 from fabgen.sizing.yields import Bench, model_error, thermal, trimmed_return_loss, worst_return_loss
 from fabgen.stock import tables
@@ -49,6 +57,23 @@ def test_tolerances_follow_the_process() -> None:
     # ISO 9013 class 1, over 1 mm, 35 to 125 mm: +-0.25 (TO-09); printer +-0.2 to +-0.5 (PR-03).
     assert (sheet["loop_diameter_mm"], sheet["can_bore_mm"]) == (0.25, 0.3)
     assert "leg_x_mm" in sheet
+
+
+def test_sizes_of_a_choke_and_of_the_conductor_are_reckoned_with() -> None:
+    job = sample_job("wire", "turned", choke=True)
+    sizes = sample_sizes(job)
+    names = {d.size for d in deviations(job, sizes)}
+    assert {"choke.bore_mm", "choke.depth_mm", "wire_mm", "leg_bend_radius_mm"} <= names
+    assert sizes.choke is not None
+    assert size_of(sizes, "choke.depth_mm") == sizes.choke.depth_mm
+    moved = with_size(setting(job), sizes, "choke.depth_mm", 50.0)
+    assert moved.choke is not None
+    assert replace(moved, choke=sizes.choke) == sizes
+    assert moved.choke.depth_mm == 50.0
+    thick = with_size(setting(job), sizes, "wire_mm", 4.2)
+    assert (thick.wire_mm, thick.leg_width_mm) == (4.2, 4.2)
+    level = replace(sizes, choke=replace(sizes.choke, floor_z_mm=0.0))
+    assert "choke.floor_z_mm" not in {d.size for d in deviations(job, level)}
 
 
 def test_fit_reproduces_its_own_solves_and_is_checked_against_others() -> None:
