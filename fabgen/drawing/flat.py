@@ -19,6 +19,11 @@ from fabgen.parts import contour as c
 from fabgen.parts.records import FlatPattern
 
 
+SPARED_ROWS = 24
+MOST_IN_SET = 40
+EXACT_MM = 1e-6
+
+
 @dataclass(frozen=True)
 class HoleRow:
     """A round hole as listed: number, centre and diameter."""
@@ -82,10 +87,71 @@ def _letters(index: int) -> str:
     return name
 
 
+@dataclass(frozen=True)
+class Repeat:
+    """A stretch of a contour that comes again: ``count`` corners from index ``first`` on, then ``times`` more sets,
+    each moved by the pitch against the one before."""
+
+    first: int
+    count: int
+    times: int
+    pitch_x_mm: float
+    pitch_y_mm: float
+
+    @property
+    def left_out(self) -> range:
+        """Indices of the corners that the first set and the pitch tell."""
+        return range(self.first + self.count, self.first + self.count * (self.times + 1))
+
+
+def repeat_of(contour: c.Contour) -> Repeat | None:
+    """The longest exact repetition in the contour, when it spares at least ``SPARED_ROWS`` rows of its table."""
+    v = contour.vertices
+    best: Repeat | None = None
+    for count in range(2, min(MOST_IN_SET, len(v) // 2) + 1):
+        at = 0
+        while at + count < len(v):
+            dx, dy = v[at + count].x_mm - v[at].x_mm, v[at + count].y_mm - v[at].y_mm
+            end = at
+            while end + count < len(v) and _moved_by(v[end], v[end + count], dx, dy):
+                end += 1
+            times = (end - at) // count
+            if times * count >= SPARED_ROWS and (best is None or times * count > len(best.left_out)):
+                best = Repeat(at, count, times, dx, dy)
+            at = max(end, at + 1)
+    return best
+
+
+def _moved_by(a: c.Vertex, b: c.Vertex, dx: float, dy: float) -> bool:
+    return max(abs(b.x_mm - a.x_mm - dx), abs(b.y_mm - a.y_mm - dy), abs(b.bulge - a.bulge)) < EXACT_MM
+
+
+def repeat_rows(letter: str, repeat: Repeat) -> tuple[tuple[str, ...], ...]:
+    """One row: the corners left out, those that they repeat, how often, and the pitch."""
+    left_out = repeat.left_out
+    return (
+        (
+            f"{letter}{left_out.start + 1}–{letter}{left_out.stop}",
+            f"{letter}{repeat.first + 1}–{letter}{repeat.first + repeat.count}",
+            f"{repeat.times} ×",
+            f"{repeat.pitch_x_mm + 0.0:.4f}",
+            f"{repeat.pitch_y_mm + 0.0:.4f}",
+        ),
+    )
+
+
+def _told(contour: c.Contour) -> range:
+    repeat = repeat_of(contour)
+    return repeat.left_out if repeat is not None else range(0)
+
+
 def corner_rows(letter: str, contour: c.Contour) -> tuple[tuple[str, str, str, str], ...]:
-    """Rows: corner, x, y, and the way to the next corner."""
+    """Rows: corner, x, y, and the way to the next corner; without those that a repetition tells."""
     rows = []
+    told = _told(contour)
     for i, (a, b) in enumerate(c.pairs(contour)):
+        if i in told:
+            continue
         if a.bulge == 0.0:
             way = say("flat.line")
         else:
@@ -145,7 +211,9 @@ def labels(flat: FlatPattern) -> tuple[Mark, ...]:
     wanted: list[Mark] = [(f"F{f.number}", _middle(f.start, f.end)) for f in flat.folds]
     wanted += [(h.label, _edge_point(h)) for h in round_holes(flat)]
     for letter, contour in contours(flat):
-        wanted += [(f"{letter}{i}", (v.x_mm, v.y_mm)) for i, v in enumerate(contour.vertices, start=1)]
+        told = _told(contour)
+        corners = [(i, v) for i, v in enumerate(contour.vertices) if i not in told]
+        wanted += [(f"{letter}{i + 1}", (v.x_mm, v.y_mm)) for i, v in corners]
     return tuple(wanted)
 
 

@@ -61,6 +61,11 @@ WORK: dict[str, str] = {
         "K that it gives into the job."
     ),
     "step.tool.tools": "printer, brake or vice with a bending bar, calliper.",
+    "step.tool.sheet.do": (
+        "Cut and bend the test strip first when the sheet or the brake is new, and put the K that it gives into the job."
+    ),
+    "step.tool.sheet.tools": "brake or vice with a bending bar, calliper.",
+    "step.tool.sheet.title": "{n}. Test bend",
     "step.tool.measure": "flange of the test strip after bending, as on its page.",
     "step.body.title": "{n}. Floor and flange",
     "step.body.do": "Deburr all edges. Mark the direction of the gap (+x) and the floor's inner face on the part.",

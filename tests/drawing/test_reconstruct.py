@@ -8,6 +8,7 @@ import re
 import pytest
 import shapely
 
+from fabgen.drawing import flat
 from fabgen.drawing.model import Sheet, Table
 from fabgen.drawing.pages.base import quantity
 from fabgen.drawing.texts import say, size_name
@@ -24,6 +25,27 @@ def _tables(pages: list[Sheet]) -> list[Table]:
 
 def _part_pages(kind: str, key: str) -> list[Sheet]:
     return [s for s in book_of(kind) if s.kind == "part" and s.part_key == key]
+
+
+def _unfolded(rows: tuple[tuple[str, ...], ...], repeat: Table | None) -> tuple[tuple[str, ...], ...]:
+    """All corners in order: those of the table, and those that the repeat table leaves to the first set."""
+    if repeat is None:
+        return rows
+    by_number = {int(re.sub(r"\D", "", r[0])): r for r in rows}
+    ((left_out, first_set, times, pitch_x, pitch_y),) = repeat.rows
+    low, high = (int(re.sub(r"\D", "", w)) for w in left_out.split("–"))
+    first, last = (int(re.sub(r"\D", "", w)) for w in first_set.split("–"))
+    count = last - first + 1
+    assert low == last + 1
+    assert high - low + 1 == int(times.split()[0]) * count
+    for number in range(low, high + 1):
+        turn, place = divmod(number - first, count)
+        like = by_number[first + place]
+        x, y = float(like[1]) + turn * float(pitch_x), float(like[2]) + turn * float(pitch_y)
+        assert number not in by_number
+        by_number[number] = (str(number), repr(x), repr(y), like[3])
+    assert sorted(by_number) == list(range(1, len(by_number) + 1))
+    return tuple(by_number[n] for n in sorted(by_number))
 
 
 def _rebuilt(rows: tuple[tuple[str, ...], ...]) -> c.Contour:
@@ -49,14 +71,16 @@ def _same(a: c.Outline, b: c.Outline) -> float:
     return float(first.hausdorff_distance(second))
 
 
-def _outlines_from(pages: list[Sheet], flat: FlatPattern) -> list[c.Outline]:
+def _outlines_from(pages: list[Sheet], pattern: FlatPattern) -> list[c.Outline]:
     out: list[c.Outline] = []
-    for table in _tables(pages):
+    tables = _tables(pages)
+    repeats = {t.name.removeprefix("repeat:"): t for t in tables if t.name.startswith("repeat:")}
+    for table in tables:
         if table.name.startswith("corners:"):
-            out.append(_rebuilt(table.rows))
+            out.append(_rebuilt(_unfolded(table.rows, repeats.get(table.name.removeprefix("corners:")))))
         elif table.name == "holes":
             out += [c.Circle(float(r[1]), float(r[2]), float(r[3].lstrip("⌀"))) for r in table.rows]
-    if isinstance(flat.outline, c.Circle):
+    if isinstance(pattern.outline, c.Circle):
         texts = [d for p in pages for d in p.dimensions if d.name == "outline"]
         assert len(texts) == 1
         diameter = float(texts[0].text.lstrip("⌀"))
@@ -67,9 +91,9 @@ def _outlines_from(pages: list[Sheet], flat: FlatPattern) -> list[c.Outline]:
 @pytest.mark.parametrize("kind", KINDS)
 def test_flat_parts_can_be_rebuilt_from_their_sheets(kind: str) -> None:
     flats = [(p.key, p.flat) for p in parts_of(kind) if p.flat is not None]
-    for key, flat in flats:
-        found = _outlines_from(_part_pages(kind, key), flat)
-        wanted = [flat.outline, *flat.holes]
+    for key, pattern in flats:
+        found = _outlines_from(_part_pages(kind, key), pattern)
+        wanted = [pattern.outline, *pattern.holes]
         assert len(found) == len(wanted), key
         for outline in wanted:
             # An arc nearly as wide as its radius amplifies the printed rounding: five times it is allowed.
@@ -96,6 +120,20 @@ def _count(runs: str) -> int:
         first, _, last = run.partition("–")
         total += int(last or first) - int(first) + 1
     return total
+
+
+def test_a_repeating_edge_is_told_once() -> None:
+    edge = [c.Vertex(0, 0)]
+    for i in range(20):
+        edge += [c.Vertex(10 * i + 2, 0), c.Vertex(10 * i + 4, 3, 0.2), c.Vertex(10 * i + 6, 0)]
+    contour = c.Contour((*edge, c.Vertex(200, 0), c.Vertex(200, 30), c.Vertex(0, 30)))
+    repeat = flat.repeat_of(contour)
+    assert repeat == flat.Repeat(1, 3, 19, 10.0, 0.0)
+    assert [r[0] for r in flat.corner_rows("A", contour)] == ["A1", "A2", "A3", "A4", "A62", "A63", "A64"]
+    uneven = [v if i != 30 else c.Vertex(v.x_mm + 0.01, v.y_mm, v.bulge) for i, v in enumerate(contour.vertices)]
+    spared = flat.repeat_of(c.Contour(tuple(uneven)))
+    assert spared is not None
+    assert 30 not in spared.left_out
 
 
 def _number(shown: str) -> float:

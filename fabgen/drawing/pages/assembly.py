@@ -107,6 +107,8 @@ def _key(context: Context, kind: str, field: str) -> str:
 
 def _values(context: Context) -> dict[str, str]:
     """Numbers that the step texts may name."""
+    from fabgen.stock import tables
+
     feed = context.feed
     s = feed.sizes
     tolerance = {t.size: number(t.tolerance_mm) for t in feed.sensitivities}
@@ -121,7 +123,7 @@ def _values(context: Context) -> dict[str, str]:
         "diameter": number(s.loop_diameter_mm),
         "overlap": number(feed.capacitor.overlap_mm),
         "capacitance": number(feed.capacitor.capacitance_pf, 3),
-        "lining": feed.job.can.lining,
+        "lining": tables.lining(feed.job.can.lining).name,
     }
 
 

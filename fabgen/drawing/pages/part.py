@@ -268,6 +268,11 @@ def flat_tables(flat: FlatPattern) -> list[Block]:
         rows = flat_view.corner_rows(letter, contour)
         blocks += [heading(say("flat.corners_head", letter=letter), 2.5)]
         blocks += side_by_side(f"corners:{letter}", head, rows)
+        repeat = flat_view.repeat_of(contour)
+        if repeat is not None:
+            head = tuple(say(f"flat.{k}") for k in ("left_out", "set", "times", "pitch_x", "pitch_y"))
+            blocks += [heading(say("flat.repeat_head", letter=letter), 2.5)]
+            blocks += table(f"repeat:{letter}", head, flat_view.repeat_rows(letter, repeat))
     return blocks
 
 
