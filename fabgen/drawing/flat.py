@@ -18,7 +18,6 @@ from fabgen.drawing.texts import say
 from fabgen.parts import contour as c
 from fabgen.parts.records import FlatPattern
 
-
 SPARED_ROWS = 24
 MOST_IN_SET = 40
 EXACT_MM = 1e-6

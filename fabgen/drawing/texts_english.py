@@ -63,6 +63,8 @@ ENGLISH: dict[str, str] = {
     "stock.form_wire": "wire ⌀{diameter}",
     "stock.form_sheet": "sheet {thickness}",
     "stock.form_print": "printing plastic",
+    "stock.form_cable": "semi-rigid cable",
+    "stock.form_tube": "tube",
     "stock.form_bar": "bar, tube or plate",
     "stock.parts_head": "Parts list",
     "stock.stock_head": "Stock to have",

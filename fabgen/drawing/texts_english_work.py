@@ -62,7 +62,8 @@ WORK: dict[str, str] = {
     ),
     "step.tool.tools": "printer, brake or vice with a bending bar, calliper.",
     "step.tool.sheet.do": (
-        "Cut and bend the test strip first when the sheet or the brake is new, and put the K that it gives into the job."
+        "Cut and bend the test strip first when the sheet or the brake is new, and put the K that it gives into the "
+        "job."
     ),
     "step.tool.sheet.tools": "brake or vice with a bending bar, calliper.",
     "step.tool.sheet.title": "{n}. Test bend",
@@ -112,6 +113,16 @@ WORK: dict[str, str] = {
     "step.choke.do": "Set the ring round the can at the height on the general arrangement.",
     "step.choke.tools": "height gauge or blocks, clamps.",
     "step.choke.join": "continuous contact of the ring's floor to the can all round.",
+    "step.choke.level.title": "{n}. Wall of the choke",
+    "step.choke.level.do": (
+        "Form the outer wall and close its seam like the can's, set it on the same floor over its row of holes, round "
+        "the can and centred on it."
+    ),
+    "step.choke.level.tools": "clamps, calliper; soldering iron or torch, or rivets.",
+    "step.choke.level.join": "as the can's wall: continuous contact to the floor all round.",
+    "step.choke.level.measure": (
+        "gap between both walls equal in four directions within 0.5 mm; under 0.01 ohm floor to rim."
+    ),
     "step.choke.measure": "height in four places within 0.5 mm; under 0.01 ohm ring to can.",
     "step.loop.title": "{n}. Loop and bars",
     "step.loop.wire.do": (

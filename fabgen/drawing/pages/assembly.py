@@ -98,11 +98,19 @@ def _key(context: Context, kind: str, field: str) -> str:
     job = context.feed.job
     make, form = job.can.make, job.loop.form
     joint = "solder" if make == "printed" or tables.metal(job.can.metal).solderable else "bond"
-    for variant in (f"{make}-{form}", f"{form}-{joint}", make, form, joint):
+    level = "level" if kind == "choke" and _on_the_floor(context) else ""
+    for variant in (level, f"{make}-{form}", f"{form}-{joint}", make, form, joint):
         key = f"step.{kind}.{variant}.{field}"
         if has(key):
             return key
     return f"step.{kind}.{field}"
+
+
+def _on_the_floor(context: Context) -> bool:
+    """True when the choke is a second wall on the can's own floor, not a ring with a floor of its own."""
+    keys = {part.key for part in context.parts}
+    choke = context.feed.sizes.choke
+    return choke is not None and choke.floor_z_mm == 0.0 and "choke-wall" in keys and "choke-floor" not in keys
 
 
 def _values(context: Context) -> dict[str, str]:

@@ -24,8 +24,10 @@ JOINS: tuple[tuple[str, str], ...] = (
     ("can-tube", "wall"),
     ("can-wall", "wall"),
     ("wall", "wall"),
+    ("seam1", "choke"),  # the seam of the second wall
     ("seam", "wall"),
     ("choke", "choke"),
+    ("ring", "choke"),
     ("lining", "lining"),
     ("foil", "lining"),
     ("loop", "loop"),

@@ -91,11 +91,21 @@ def cut_size(part: Part) -> str:
     if part.flat is not None:
         x0, y0, x1, y1 = bounds_mm(part.flat.outline)
         return f"{number(x1 - x0, 1)} × {number(y1 - y0, 1)} × {number(part.flat.thickness_mm, 3)}"
+    if _is_length(part):
+        sizes = dict(part.sizes)
+        length = sizes["cut_length_mm"] if "cut_length_mm" in sizes else sizes["length_mm"]
+        return say("stock.wire", diameter=number(sizes["outer_mm"]), length=number(length, 1))
     shape = shape_of(part)
     if part.process == ("buy",) or shape is None:
         return say("stock.bought")
     box = shape.BoundingBox(1e-3)
     return say("stock.box", x=number(box.xlen, 1), y=number(box.ylen, 1), z=number(box.zlen, 1))
+
+
+def _is_length(part: Part) -> bool:
+    """True for what is cut from bought cable or tube by the length."""
+    keys = {key for key, _ in part.sizes}
+    return part.process == ("buy", "wire") and "outer_mm" in keys and bool({"cut_length_mm", "length_mm"} & keys)
 
 
 def process_words(part: Part) -> str:
@@ -153,4 +163,6 @@ def _form(part: Part) -> str:
         return say("stock.form_sheet", thickness=number(part.flat.thickness_mm, 3))
     if "print" in part.process:
         return say("stock.form_print")
-    return say("stock.form_bar")
+    if part.key.startswith("coax"):
+        return say("stock.form_cable")
+    return say("stock.form_tube") if _is_length(part) else say("stock.form_bar")
