@@ -3,7 +3,7 @@
 The consistency checks of a feed run again on the feed and parts rebuilt from the files; the checks here compare
 files with files. ``check_pack`` is what a user runs on a pack that came by mail.
 
-Depends on: checks (registry, read_files, run, consistency), errors, parts.contour, stock.
+Depends on: checks (registry, read_files, run, consistency), errors, parts, stock.
 """
 
 from __future__ import annotations
@@ -14,6 +14,7 @@ from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
 
+from fabgen import __version__
 from fabgen.checks.read_files import (
     RECORD,
     Pack,
@@ -28,6 +29,8 @@ from fabgen.checks.read_files import (
 from fabgen.checks.records import Finding
 from fabgen.checks.registry import Context, Fault, all_checks, findings_of
 from fabgen.checks.run import MODULES, gathered
+from fabgen.errors import FabgenError
+from fabgen.parts.build import build_parts
 from fabgen.parts.contour import Outline, bounds_mm, length_mm
 from fabgen.parts.records import FlatPattern, Part
 from fabgen.stock import tables
@@ -280,6 +283,67 @@ def solids_agree(pack: Pack) -> Iterator[Fault]:
             nearest = min(drawn, key=lambda r: abs(r - radius), default=0.0)
             if abs(nearest - radius) > 0.01:
                 yield _differs(path.name, name, f"{nearest:.3f} mm", f"{radius:.3f} mm", f"no face has the {name}")
+
+
+@pack_check("CONS-209")
+def parts_made_anew(pack: Pack) -> Iterator[Fault]:
+    """Parts of the record and their drawings against the parts made anew from the record's job and sizes.
+
+    Left out for a pack of another version, whose rules may differ."""
+    if pack.record["fabgen_version"] != __version__:
+        return
+    try:
+        anew = {part.key: part for part in build_parts(pack.feed)}
+    except FabgenError as error:
+        yield _differs("record.json", "sizes", "no part", "buildable", f"the record's sizes make no parts: {error}")
+        return
+    listed = {part.key: part for part in pack.parts}
+    for key in sorted(set(anew) ^ set(listed)):
+        have, want = ("listed", "not made") if key in listed else ("missing", "made")
+        yield _differs(key, "part", have, want, f"{key} is {have} in the record and {want} of its sizes")
+    for key in sorted(set(anew) & set(listed)):
+        yield from _part_anew(listed[key], anew[key], pack.feed.job.limits.kerf_mm)
+
+
+def _part_anew(part: Part, anew: Part, kerf_mm: float) -> Iterator[Fault]:
+    for feature in ("process", "quantity", "material", "material_name", "temper", "tolerance", "finish", "notes"):
+        value, wanted = getattr(part, feature), getattr(anew, feature)
+        if value != wanted:
+            yield _differs(part.key, feature, str(value), str(wanted), f"{feature} of {part.key} was changed")
+    sizes, wanted_sizes = _numbers(part), _numbers(anew)
+    for name in sorted(set(sizes) | set(wanted_sizes)):
+        value, wanted = sizes.get(name, math.nan), wanted_sizes.get(name, math.nan)
+        if not abs(value - wanted) <= 1e-5:
+            message = f"{name} of {part.key} is {value:.3f} in the record, the sizes give {wanted:.3f}"
+            yield _differs(part.key, name, f"{value:.3f}", f"{wanted:.3f}", message)
+    if part.flat is not None and anew.flat is not None and not kerf_mm:
+        drawn, wanted_flat = (
+            _measures({"OUTLINE": [flat.outline], "HOLES": list(flat.holes)}) for flat in (part.flat, anew.flat)
+        )
+        if len(drawn) != len(wanted_flat) or any(abs(a - b) > 1e-3 for a, b in zip(drawn, wanted_flat, strict=True)):
+            message = f"the drawing of {part.key} is not that of the record's sizes"
+            yield _differs(part.key, "outlines", "other contours", "1 um", message)
+
+
+def _numbers(part: Part) -> dict[str, float]:
+    return {**dict(part.sizes), "thickness_mm": part.thickness_mm or 0.0}
+
+
+@pack_check("CONS-210")
+def record_and_job(pack: Pack) -> Iterator[Fault]:
+    """Frequency, wavelength, flats and fixed sizes of the record against its job."""
+    job, s = pack.feed.job, pack.feed.sizes
+    rows: list[tuple[str, float, float]] = [
+        ("frequency_mhz", pack.record["frequency_mhz"], job.target.frequency_mhz),
+        ("wavelength_mm", pack.record["wavelength_mm"], job.wavelength_mm),
+        ("can_flats", s.can_flats, job.can.flats if job.can.make == "folded" else 0),
+    ]
+    for name, wanted in job.fixed.model_dump().items():
+        if wanted is not None:
+            rows.append((name, getattr(s, name), wanted))
+    for name, value, wanted in rows:
+        if not math.isclose(value, wanted, rel_tol=1e-8, abs_tol=1e-6):
+            yield _differs("record.json", name, f"{value:g}", f"{wanted:g}", f"{name} of the record is not the job's")
 
 
 def _radii_mm(solid: Any) -> list[float]:
