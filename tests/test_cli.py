@@ -53,6 +53,7 @@ def findings(monkeypatch: pytest.MonkeyPatch) -> Callable[[list[Finding]], None]
 
     def put(found: list[Finding]) -> None:
         monkeypatch.setattr("fabgen.pack.build_content", lambda feed: ((), tuple(found)))
+        monkeypatch.setattr("fabgen.pack.require_agreement", lambda folder: None)
 
     put([])
     return put
