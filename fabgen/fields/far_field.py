@@ -1,8 +1,8 @@
-"""Far field of the currents: fields, powers, co- and cross-polar parts, directivity, widths, phase centre.
+"""Far field of the currents, as fields and radiated power.
 
     E(r) -> e^{-jkr}/r * F(theta, phi),   F = -j k eta/(4 pi) [N - r^ (r^ . N)],   N = int J e^{j k r^ . r'} dS'
 
-Co- and cross-polar after the third definition of Ludwig (IEEE Trans. AP-21 (1973) 116-119), reference along y.
+Co- and cross-polar parts, widths and phase centre are taken over the dish's angle in ``fabgen.sizing.dish``.
 
 Depends on: fields.functions, fields.geometry, fields.mesh, fields.quadrature, fields.system.
 """
@@ -73,31 +73,3 @@ def current_elements(
         positions.append((position * r.mirror).reshape(-1, 3))
         moments.append((moment * r.mirror * r.factor).reshape(-1, 3))
     return CurrentElements(np.concatenate(positions), np.concatenate(moments))
-
-
-def ludwig_third(e_theta: ComplexArray, e_phi: ComplexArray, phi_rad: ArrayLike) -> tuple[ComplexArray, ComplexArray]:
-    """Co-polar (reference along y) and cross-polar components."""
-    phi = np.asarray(phi_rad, float)
-    co = e_theta * np.sin(phi) + e_phi * np.cos(phi)
-    cross = e_theta * np.cos(phi) - e_phi * np.sin(phi)
-    return co, cross
-
-
-def half_power_width_deg(theta_deg: FloatArray, level_db: FloatArray) -> float:
-    """Full width between the half-power points of a cut given over -180..180 degrees, by linear interpolation.
-
-    The level is taken relative to its value nearest theta = 0. Returns nan where one side never falls 3 dB.
-    """
-    centre = int(np.argmin(np.abs(theta_deg)))
-    relative = level_db - level_db[centre] + 10 * np.log10(2.0)
-    width = 0.0
-    for direction in (1, -1):
-        i = centre
-        while 0 <= i + direction < len(relative) and relative[i + direction] > 0:
-            i += direction
-        j = i + direction
-        if not 0 <= j < len(relative):
-            return float("nan")
-        share = relative[i] / (relative[i] - relative[j])
-        width += abs(theta_deg[i] + share * (theta_deg[j] - theta_deg[i]) - theta_deg[centre])
-    return float(width)

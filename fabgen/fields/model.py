@@ -43,6 +43,7 @@ from fabgen.fields.system import (
 SYMMETRY_PLANES = (1,)
 KEPT_CANS = 24
 REFINEMENTS = 4
+REFINED_RESIDUAL = 1e-4
 
 
 @dataclass(frozen=True)
@@ -160,7 +161,7 @@ class FeedSolver:
     ) -> list[FieldSolution]:
         ready = self._feeds.recall(feed, lambda: self._prepare(feed))
         top = frequency_hz * (1 + step)
-        check_mesh(ready.mesh, SPEED_OF_LIGHT / top)
+        check_mesh(ready.mesh, SPEED_OF_LIGHT / max(frequency_hz, top))
         drive = port_drive(ready.mesh, ready.functions)
         can = self._cans.recall(
             (feed.can, frequency_hz, complex(surface.can_ohm)),
@@ -175,7 +176,13 @@ class FeedSolver:
             matrix = self._full(self._can_matrix(feed.can, ready, top, surface), ready, top, surface)
             for _ in range(REFINEMENTS):
                 currents = currents + system.solve(drive - matrix @ currents)
-            found.append(_solution(ready, top, surface, currents, drive, system, matrix))
+            second = _solution(ready, top, surface, currents, drive, system, matrix)
+            if second.residual > REFINED_RESIDUAL:
+                raise NumericalError(
+                    f"the solution {step:+.1%} beside {frequency_hz / 1e6:.1f} MHz is refined to {second.residual:.1e} "
+                    f"only; {REFINED_RESIDUAL:g} is needed: use a smaller step"
+                )
+            found.append(second)
         return found
 
     def _prepare(self, feed: FeedGeometry) -> _Prepared:

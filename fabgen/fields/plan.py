@@ -2,7 +2,7 @@
 
 Keeping the counts makes the impedance a smooth function of every size.
 
-Depends on: fields.geometry.
+Depends on: errors, fields.geometry.
 """
 
 from __future__ import annotations
@@ -10,7 +10,11 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
+from fabgen.errors import GeometryError
 from fabgen.fields.geometry import CanGeometry, FeedGeometry, LoopGeometry
+
+FLOOR_REACH = 0.97
+"""How near the floor's patch round the feet may come to the wall, of the can's radius."""
 
 DEFAULT_DENSITY = 16.0
 """Edges of the can per wavelength at the target; no edge exceeds lambda/5 up to 2.2 times the target."""
@@ -101,24 +105,29 @@ def _loop_counts(loop: LoopGeometry, edge: float, across: int, crossing: int) ->
     )
 
 
+def rim_row_m(free_m: float, edge_m: float) -> float:
+    """Height of the last row of a wall that rises ``free_m``: a third of an edge, at most half of the wall."""
+    return min(edge_m / 3, free_m / 2)
+
+
 def _can_counts(can: CanGeometry, edge: float) -> CanCounts:
     def cells(length: float) -> int:
-        return max(1, math.ceil(length / edge - 1e-6))
+        # five percent to spare, by which sizes may move on a plan
+        return max(1, math.ceil(1.05 * length / edge - 1e-6))
 
     side = 2 * can.radius_m * math.tan(math.pi / can.flats) if can.flats else 0.0
     # a choke's wall carries the same spokes farther out
     spread = can.choke.radius_m / can.radius_m if can.choke else 1.0
     rim = 2 * cells(side * spread / 2) if can.flats else max(8, cells(math.pi * can.radius_m * spread))
-    body = can.depth_m - edge / 3
     if can.choke is None:
-        return CanCounts(rim, cells(body), 0, 0, 0)
-    low, high = can.choke.floor_z_m, body - can.choke.floor_z_m
+        return CanCounts(rim, cells(can.depth_m - rim_row_m(can.depth_m, edge)), 0, 0, 0)
+    low, free = can.choke.floor_z_m, can.depth_m - can.choke.floor_z_m
     return CanCounts(
         rim,
         cells(low) if low > 0 else 0,
-        cells(high),
+        cells(free - rim_row_m(free, edge)),
         cells(can.choke.radius_m - can.radius_m),
-        cells(can.choke.depth_m - edge / 3),
+        cells(can.choke.depth_m - rim_row_m(can.choke.depth_m, edge)),
     )
 
 
@@ -134,6 +143,13 @@ def _frame(feed: FeedGeometry, wavelength: float, across: int, edge: float) -> P
     if math.hypot(centre + half, y1) > 0.92 * feed.can.radius_m:
         half = max(0.6 * loop.leg_band_m, 0.92 * feed.can.radius_m - centre) if centre < feed.can.radius_m else half
         y1 = min(y1, y)
+    corner = math.hypot(max(abs(centre - half), abs(centre + half)), y1)
+    if corner > FLOOR_REACH * feed.can.radius_m:
+        raise GeometryError(
+            f"the bars stand {x * 1e3:.1f} mm off the axis, {loop.leg_pitch_m * 1e3:.1f} mm apart: too near a wall at "
+            f"{feed.can.radius_m * 1e3:.1f} mm for the floor between to be computed; a bore of "
+            f"{2e3 * corner / FLOOR_REACH:.1f} mm would do"
+        )
     cells_x = 2 * max(2, math.ceil(half / edge))
     return PatchFrame(centre - half, centre + half, y1, cells_x, across + max(3, round(2 * y1 / edge)))
 

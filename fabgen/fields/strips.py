@@ -48,6 +48,18 @@ def equivalent_radius_m(width_m: float, cells: int) -> float:
     return math.exp(-1.0 / float(charge.sum()))
 
 
+def crowding(cells: int) -> float:
+    """Loss of a lone meshed strip over that of the same current spread evenly: W sum(q^2 / w) / (sum q)^2, above 1.
+
+    The current crowds at the edges as the charge does; a round wire's does not, so the strip's surface impedance
+    is divided by this.
+    """
+    x = _edges(1.0, 0.0, cells)
+    a0, a1 = x[:-1, None], x[1:, None]
+    charge = np.linalg.solve(-_mean_log(a0, a1, a0.T, a1.T), np.ones(cells))
+    return float((charge**2 / np.diff(x)).sum() / charge.sum() ** 2)
+
+
 def pair_impedance_ohm(width_m: float, pitch_m: float, cells: int) -> float:
     """Impedance of two coplanar strips of so many cells, centres a pitch apart, in air."""
     x = _edges(width_m, pitch_m / 2, cells)

@@ -11,13 +11,19 @@ from __future__ import annotations
 
 import math
 from functools import lru_cache
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
+from fabgen.errors import GeometryError
 from fabgen.fields.geometry import CanGeometry
 from fabgen.fields.mesh import CHOKE, FLOOR, PATCH, WALL, FloatArray, Mesh, grid, single
-from fabgen.fields.plan import MeshPlan, PatchFrame
+from fabgen.fields.plan import MeshPlan, PatchFrame, rim_row_m
+
+LONGEST = 1.35
+"""Longest edge of the floor, of the nominal edge: it may stretch by three percent and stays under lambda/5 at 2.2
+times the target."""
 
 
 def can_surface(can: CanGeometry, plan: MeshPlan) -> tuple[Mesh, ...]:
@@ -62,11 +68,11 @@ def _flat_rim(can: CanGeometry, cells: int) -> FloatArray:
 
 def wall_heights(can: CanGeometry, plan: MeshPlan) -> FloatArray:
     """Rows of the wall; the last is a third as high, for the current that crowds at the rim."""
-    body = can.depth_m - plan.edge_m / 3
+    z = can.choke.floor_z_m if can.choke is not None else 0.0
+    body = can.depth_m - rim_row_m(can.depth_m - z, plan.edge_m)
     if can.choke is None:
         stops = [(0.0, body, plan.can.wall)]
     else:
-        z = can.choke.floor_z_m
         stops = [(0.0, z, plan.can.wall), (z, body, plan.can.wall_above)]
     rows = [np.zeros(1)]
     rows += [low + (high - low) * np.arange(1, n + 1) / n for low, high, n in stops if n]
@@ -94,7 +100,7 @@ def _choke(can: CanGeometry, rim: FloatArray, plan: MeshPlan) -> list[Mesh]:
     nodes = np.zeros((cells + 1, len(rim), 3))
     nodes[..., :2] = rim * (1 - t) + outer * t
     nodes[..., 2] = choke.floor_z_m
-    body = choke.depth_m - plan.edge_m / 3
+    body = choke.depth_m - rim_row_m(choke.depth_m, plan.edge_m)
     heights = np.concatenate([np.linspace(0.0, body, plan.can.choke_wall + 1), np.array([choke.depth_m])])
     return [grid(nodes, CHOKE), grid(_extruded(outer, choke.floor_z_m + heights), CHOKE)]
 
@@ -133,7 +139,19 @@ def _floor(radius_m: float, flats: int, rim_cells: int, frame: PatchFrame, edge_
     numbers = [geometry.AppendPoint(float(x), float(y)) for x, y in boundary]
     for a, b in zip(numbers, numbers[1:] + numbers[:1], strict=True):
         geometry.Append(["line", a, b], leftdomain=1, rightdomain=0, maxh=10 * edge_m)
-    mesh = geometry.GenerateMesh(maxh=edge_m, quad_dominated=False)
+    for share in (1.0, 0.9, 0.8, 0.7, 0.6):
+        # the mesher takes the size asked for as a wish
+        floor = _netgen(geometry, share * edge_m, boundary, edge_m)
+        if floor.longest_edge_m() <= LONGEST * edge_m:
+            return floor
+    raise GeometryError("the floor between bars and wall cannot be meshed finely enough; use a larger bore")
+
+
+def _netgen(geometry: Any, size_m: float, boundary: FloatArray, edge_m: float) -> Mesh:
+    try:
+        mesh = geometry.GenerateMesh(maxh=size_m, quad_dominated=False)
+    except Exception as error:
+        raise GeometryError(f"the floor cannot be meshed ({error}); use a larger bore or a smaller loop") from error
     points = np.array([[*p.p] for p in mesh.Points()])
     triangles = np.array([[v.nr - 1 for v in e.vertices] for e in mesh.Elements2D()])
     points[:, 2] = 0.0

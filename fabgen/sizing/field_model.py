@@ -23,7 +23,7 @@ from fabgen.errors import GeometryError
 from fabgen.fields.geometry import CanGeometry, ChokeGeometry, FeedGeometry, LoopGeometry
 from fabgen.fields.model import FeedSolver, FieldSolution, SurfaceImpedance
 from fabgen.fields.plan import DEFAULT_DENSITY, cells_across, cells_across_crossing, plan_mesh
-from fabgen.fields.strips import lone_strip_width_m, paired_strip_width_m
+from fabgen.fields.strips import crowding, lone_strip_width_m, paired_strip_width_m
 from fabgen.fields.sweep import SweepResult, adaptive_sweep
 from fabgen.sizing.records import Sizes
 from fabgen.stock.records import Lining, Metal
@@ -142,12 +142,19 @@ class FieldModel:
         return _with_full_crossing(solution, sizes, geometry)
 
     def surface(self, sizes: Sizes, frequency_mhz: float) -> SurfaceImpedance:
-        """Surface impedance of can and loop. A loop's current flows on both faces or all round the wire, so the
-        strip that stands for it counts with its share of the true perimeter."""
+        """Surface impedance of can and loop.
+
+        A wire's current spreads evenly over its perimeter pi d, the strip's over a width of 2 d and denser at its
+        edges: 2 / (pi crowding) of the metal's impedance gives the wire's loss. A sheet's flows on both faces.
+        """
         if self.losses is None:
             return SurfaceImpedance()
         metal = metal_impedance_ohm(self.losses.loop_metal, frequency_mhz)
-        share = 2 / np.pi if sizes.wire_mm is not None else 0.5
+        share = 0.5
+        if sizes.wire_mm is not None:
+            cells = cells_across(self.edges_per_wavelength)
+            width = lone_strip_width_m(sizes.wire_mm / 2e3, cells)
+            share = width / (np.pi * sizes.wire_mm / 1e3) / crowding(cells)
         if self.losses.lining is not None:
             can = lining_impedance_ohm(
                 self.losses.lining, frequency_mhz, self.losses.lining_sheet_resistance_ohm
@@ -209,11 +216,18 @@ def _with_full_crossing(solution: FieldSolution, sizes: Sizes, geometry: FeedGeo
     return replace(solution, impedance_ohm=solution.impedance_ohm + 1j * reactance)
 
 
+def _on_the_floor(can: CanGeometry) -> bool:
+    """Whether a choke stands on the can's own floor; then the wall has no rows below it."""
+    return can.choke is not None and can.choke.floor_z_m == 0.0
+
+
 def _near(reference: FeedGeometry, wanted: FeedGeometry) -> bool:
     """Whether the meshes of the reference can be moved to the wanted sizes without losing their quality."""
     if replace(reference.can, radius_m=1, depth_m=1, choke=None) != replace(
         wanted.can, radius_m=1, depth_m=1, choke=None
     ):
+        return False
+    if _on_the_floor(reference.can) != _on_the_floor(wanted.can):
         return False
     if (reference.can.choke is None) != (wanted.can.choke is None) or reference.loop.form != wanted.loop.form:
         return False

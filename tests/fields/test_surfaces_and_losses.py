@@ -4,20 +4,24 @@ from __future__ import annotations
 
 import math
 import os
+from dataclasses import replace
 
 import numpy as np
 import pytest
 
 from fabgen.errors import GeometryError
 from fabgen.fields.functions import edge_functions
-from fabgen.fields.geometry import ChokeGeometry
-from fabgen.fields.mesh import CHOKE, single
-from fabgen.fields.model import FeedSolver
+from fabgen.fields.geometry import SPEED_OF_LIGHT, CanGeometry, ChokeGeometry, FeedGeometry
+from fabgen.fields.mesh import CHOKE, WALL, single
+from fabgen.fields.model import FeedSolver, FieldSolution, SurfaceImpedance, solve_mesh
 from fabgen.fields.plan import plan_mesh
 from fabgen.fields.quadrature import triangle_rule
+from fabgen.fields.strips import crowding, lone_strip_width_m
+from fabgen.fields.surface_can import wall_heights
 from fabgen.fields.surfaces import feed_mesh
 from fabgen.fields.system import overlap
-from tests.fields.test_feed_solver import TARGET_HZ, WAVE, a_feed
+from tests.fields.structures import ring_loop
+from tests.fields.test_feed_solver import TARGET_HZ, WAVE, a_feed, a_loop
 
 
 def _three_sheets() -> tuple[np.ndarray, np.ndarray]:
@@ -73,3 +77,56 @@ def test_solver_refuses_more_unknowns_than_memory(monkeypatch: pytest.MonkeyPatc
     monkeypatch.setattr(os, "sysconf", lambda _: 1)
     with pytest.raises(GeometryError, match="GiB"):
         FeedSolver(plan_mesh(feed, WAVE, 12)).solve(feed, TARGET_HZ)
+
+
+@pytest.mark.parametrize("form", ["wire", "sheet"])
+@pytest.mark.parametrize("flats", [0, 8])
+def test_no_edge_is_too_long_for_the_top_of_the_sweep(form: str, flats: int) -> None:
+    for share in (0.40, 0.44, 0.48, 0.52, 0.56, 0.60, 0.66, 0.8):
+        feed = FeedGeometry(CanGeometry(share * WAVE, 0.28 * WAVE, flats), a_loop(form))
+        plan = plan_mesh(feed, WAVE)
+        moved = replace(feed, can=replace(feed.can, radius_m=1.03 * feed.can.radius_m, depth_m=1.05 * feed.can.depth_m))
+        for geometry in (feed, moved):
+            assert feed_mesh(geometry, plan)[0].longest_edge_m() * 2.2 < 0.2 * WAVE
+
+
+def test_a_wall_lower_than_an_edge_still_rises() -> None:
+    for depth in (0.015, 0.3):
+        choke = ChokeGeometry(0.78 * WAVE, 0.295 * WAVE if depth > 0.1 else 0.0, 0.01 * WAVE)
+        feed = FeedGeometry(CanGeometry(0.52 * WAVE, depth * WAVE, 0, choke), a_loop())
+        plan = plan_mesh(feed, WAVE)
+        heights = wall_heights(feed.can, plan)
+        assert np.all(np.diff(heights) > 0)
+        mesh = feed_mesh(feed, plan)[0]
+        wall = mesh.areas_m2()[mesh.label == WALL].sum()
+        assert wall == pytest.approx(math.pi * 0.52 * WAVE * depth * WAVE, rel=0.01)
+
+
+def test_bars_too_near_the_wall_are_refused() -> None:
+    loop = replace(a_loop("wire"), radius_m=0.19 * WAVE, leg_pitch_m=0.16 * WAVE)
+    with pytest.raises(GeometryError, match=r"a bore of .* mm would do"):
+        plan_mesh(FeedGeometry(CanGeometry(0.22 * WAVE, 0.3 * WAVE), loop), WAVE)
+
+
+@pytest.mark.parametrize("cells", [3, 5, 9])
+def test_a_wire_loses_what_its_perimeter_says(cells: int) -> None:
+    # current of a lone wire: Rs / (2 pi a) per metre (Pozar; Ramo, Whinnery, Van Duzer; SK-02 from memory)
+    radius, wire = 1.0 / (2 * math.pi), 0.002
+    width = lone_strip_width_m(wire, cells)
+    share = width / (2 * math.pi * wire) / crowding(cells)
+    resistance = 0.01
+    mesh = ring_loop(radius, width / 4, 0.0, 40, cells)
+    solution = solve_mesh(mesh, SPEED_OF_LIGHT, SurfaceImpedance(0.0, resistance * share))
+    step = math.pi / 40
+    current = [_ring_current(solution, (i + 0.5) * step, step) for i in range(40)]
+    length = 2 * radius * step * sum(abs(i) ** 2 for i in current)
+    assert solution.ohmic_power_w == pytest.approx(0.5 * resistance / (2 * math.pi * wire) * length, rel=0.04)
+
+
+def _ring_current(solution: FieldSolution, phi: float, step: float) -> complex:
+    """Current along phi, from the elements of one cell of the half ring: moment over the cell's length."""
+    place, moment = solution.elements.position_m, solution.elements.moment_am
+    angle = np.arctan2(place[:, 1], place[:, 0])
+    cell = np.abs(angle - phi) < step / 2
+    along = -moment[cell, 0] * np.sin(angle[cell]) + moment[cell, 1] * np.cos(angle[cell])
+    return complex(along.sum() / (step * np.linalg.norm(place[cell][:, :2], axis=1).mean()))
