@@ -9,8 +9,10 @@ Depends on: drawing.model, drawing.dimension, drawing.texts, parts.contour, part
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from functools import cache
+from itertools import groupby
 
 from fabgen.drawing.dimension import DIAMETER, Ask, Mark, along_x, along_y, leader
 from fabgen.drawing.model import Arc, Item, Line, Point, number
@@ -88,37 +90,39 @@ def _letters(index: int) -> str:
 
 @dataclass(frozen=True)
 class Repeat:
-    """A stretch of a contour that comes again: ``count`` corners from index ``first`` on, then ``times`` more sets,
-    each moved by the pitch against the one before."""
+    """A stretch of a contour that comes again: ``count`` corners from index ``first`` on, then further sets, each
+    the one before moved by its pitch (x, y in mm)."""
 
     first: int
     count: int
-    times: int
-    pitch_x_mm: float
-    pitch_y_mm: float
+    pitches_mm: tuple[Point, ...]
 
     @property
     def left_out(self) -> range:
-        """Indices of the corners that the first set and the pitch tell."""
-        return range(self.first + self.count, self.first + self.count * (self.times + 1))
+        """Indices of the corners that the first set and the pitches tell."""
+        return range(self.first + self.count, self.first + self.count * (len(self.pitches_mm) + 1))
 
 
+@cache
 def repeat_of(contour: c.Contour) -> Repeat | None:
     """The longest exact repetition in the contour, when it spares at least ``SPARED_ROWS`` rows of its table."""
     v = contour.vertices
     best: Repeat | None = None
     for count in range(2, min(MOST_IN_SET, len(v) // 2) + 1):
-        at = 0
-        while at + count < len(v):
-            dx, dy = v[at + count].x_mm - v[at].x_mm, v[at + count].y_mm - v[at].y_mm
-            end = at
-            while end + count < len(v) and _moved_by(v[end], v[end + count], dx, dy):
-                end += 1
-            times = (end - at) // count
-            if times * count >= SPARED_ROWS and (best is None or times * count > len(best.left_out)):
-                best = Repeat(at, count, times, dx, dy)
-            at = max(end, at + 1)
+        for first in range(len(v) - 2 * count + 1):
+            found = Repeat(first, count, tuple(_pitches(v, first, count)))
+            if len(found.left_out) >= SPARED_ROWS and (best is None or len(found.left_out) > len(best.left_out)):
+                best = found
     return best
+
+
+def _pitches(v: Sequence[c.Vertex], first: int, count: int) -> Iterator[Point]:
+    """Pitches of the sets that follow the first without a corner between them."""
+    for at in range(first + count, len(v) - count + 1, count):
+        dx, dy = v[at].x_mm - v[at - count].x_mm, v[at].y_mm - v[at - count].y_mm
+        if not all(_moved_by(v[i - count], v[i], dx, dy) for i in range(at, at + count)):
+            return
+        yield dx, dy
 
 
 def _moved_by(a: c.Vertex, b: c.Vertex, dx: float, dy: float) -> bool:
@@ -126,17 +130,14 @@ def _moved_by(a: c.Vertex, b: c.Vertex, dx: float, dy: float) -> bool:
 
 
 def repeat_rows(letter: str, repeat: Repeat) -> tuple[tuple[str, ...], ...]:
-    """One row: the corners left out, those that they repeat, how often, and the pitch."""
-    left_out = repeat.left_out
-    return (
-        (
-            f"{letter}{left_out.start + 1}–{letter}{left_out.stop}",
-            f"{letter}{repeat.first + 1}–{letter}{repeat.first + repeat.count}",
-            f"{repeat.times} ×",
-            f"{repeat.pitch_x_mm + 0.0:.4f}",
-            f"{repeat.pitch_y_mm + 0.0:.4f}",
-        ),
-    )
+    """Rows: the corners left out, how many sets they are, and the pitch; sets of one pitch stand in one row."""
+    shown = [(f"{_plain(x, 4)}", f"{_plain(y, 4)}") for x, y in repeat.pitches_mm]
+    rows, at = [], repeat.left_out.start
+    for pitch, sets in ((key, len(list(group))) for key, group in groupby(shown)):
+        end = at + sets * repeat.count
+        rows.append((f"{letter}{at + 1}–{letter}{end}", f"{sets} ×", *pitch))
+        at = end
+    return tuple(rows)
 
 
 def _told(contour: c.Contour) -> range:
@@ -156,14 +157,19 @@ def corner_rows(letter: str, contour: c.Contour) -> tuple[tuple[str, str, str, s
         else:
             arc = c.arc_between(a, b)
             turn = "flat.arc_left" if a.bulge > 0 else "flat.arc_right"
-            way = say(turn, radius=f"{arc.radius_mm:.2f}")
+            way = say(turn, radius=f"{_rounded(arc.radius_mm):.2f}")
         rows.append((f"{letter}{i + 1}", f"{_plain(a.x_mm)}", f"{_plain(a.y_mm)}", way))
     return tuple(rows)
 
 
-def _plain(value: float) -> str:
-    text = f"{value:.2f}"
-    return "0.00" if text == "-0.00" else text
+def _plain(value: float, places: int = 2) -> str:
+    text = f"{value:.{places}f}"
+    return text.removeprefix("-") if float(text) == 0 else text
+
+
+def _rounded(radius_mm: float) -> float:
+    """To 0.01 mm, the same for radii that differ by rounding only."""
+    return round(radius_mm + EXACT_MM, 2)
 
 
 def hole_rows(flat: FlatPattern) -> tuple[tuple[str, str, str, str], ...]:
@@ -256,7 +262,7 @@ def _radius_asks(flat: FlatPattern) -> list[Ask]:
         for a, b in c.pairs(contour):
             if a.bulge:
                 arc = c.arc_between(a, b)
-                groups.setdefault(round(arc.radius_mm, 2), []).append(arc)
+                groups.setdefault(_rounded(arc.radius_mm), []).append(arc)
     out = []
     for radius, arcs in sorted(groups.items())[:6]:
         arc = arcs[0]

@@ -187,7 +187,7 @@ def test_identification_follows_the_sizes() -> None:
 
 
 def test_a_template_of_too_many_tiles_says_what_to_do_instead() -> None:
-    from fabgen.drawing.model import Line
+    from fabgen.drawing.model import Arc, Line
     from fabgen.drawing.pages.base import Context
     from fabgen.drawing.pages.truescale import MOST_TILES, Template, _draft
 
@@ -196,3 +196,9 @@ def test_a_template_of_too_many_tiles_says_what_to_do_instead() -> None:
     assert len(made.pages) == 1
     assert MOST_TILES < 200
     assert any("tiles" in i.text for i in made.pages[0].items if hasattr(i, "text"))
+    near = _draft(context, Template("large", "x", (Line(0, 0, 3000, 2000), Arc(400, 20, 4, 4)), (400.0, 0.0)))
+    (page,) = near.pages
+    (view,) = page.views
+    hole = next(i for i in page.items if isinstance(i, Arc))
+    assert (hole.cx - view.origin[0], hole.cy - view.origin[1]) == pytest.approx((400.0, 20.0))
+    assert any("x = 400" in i.text for i in page.items if hasattr(i, "text"))

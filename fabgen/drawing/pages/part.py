@@ -270,9 +270,11 @@ def flat_tables(flat: FlatPattern) -> list[Block]:
         blocks += side_by_side(f"corners:{letter}", head, rows)
         repeat = flat_view.repeat_of(contour)
         if repeat is not None:
-            head = tuple(say(f"flat.{k}") for k in ("left_out", "set", "times", "pitch_x", "pitch_y"))
-            blocks += [heading(say("flat.repeat_head", letter=letter), 2.5)]
-            blocks += table(f"repeat:{letter}", head, flat_view.repeat_rows(letter, repeat))
+            first, last = repeat.first + 1, repeat.first + repeat.count
+            head = tuple(say(f"flat.{k}") for k in ("left_out", "sets", "pitch_x", "pitch_y"))
+            title = say("flat.repeat_head", first=f"{letter}{first}", last=f"{letter}{last}")
+            blocks += [heading(title, 2.5)]
+            blocks += side_by_side(f"repeat:{letter}", head, flat_view.repeat_rows(letter, repeat))
     return blocks
 
 

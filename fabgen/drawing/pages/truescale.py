@@ -14,10 +14,11 @@ from fabgen.drawing.dimension import marks
 from fabgen.drawing.flow import Page, columns
 from fabgen.drawing.hidden import ABOVE, FROM_GAP, GAP, look
 from fabgen.drawing.hidden import dressed as dress
-from fabgen.drawing.model import Arc, Box, Item, Line, Text, View, bounds, moved, number
+from fabgen.drawing.model import Arc, Box, Item, Line, Point, Text, View, bounds, moved, number
 from fabgen.drawing.pages.base import Context, Draft
 from fabgen.drawing.paper import Paper
 from fabgen.drawing.texts import say
+from fabgen.parts.contour import Contour
 from fabgen.parts.records import Part
 
 OVERLAP_MM = 10.0
@@ -35,6 +36,7 @@ class Template:
     title: str
     part_key: str
     items: tuple[Item, ...]
+    middle: Point | None = None  # what is shown of a part that is too large: the surroundings of this point
 
 
 def drafts(context: Context) -> list[Draft]:
@@ -48,7 +50,7 @@ def templates(context: Context) -> tuple[Template, ...]:
     for part in context.parts:
         if part.flat is not None and _wanted(part):
             kind = "true.foil" if "foil" in part.process else "true.drill"
-            out.append(Template(say(kind, part=part.name), part.key, _flat(part)))
+            out.append(Template(say(kind, part=part.name), part.key, _flat(part), _hand_work(part)))
         elif part.wire is not None and part.solid is not None:
             out += _wire(part)
     small = [p for p in context.parts if p.key.startswith(("capacitor", "coax")) and p.solid is not None]
@@ -86,6 +88,15 @@ def _flat(part: Part) -> tuple[Item, ...]:
     items = flat_view.flat_items(part.flat)
     lines = flat_view.centre_lines(part.flat, 1.0)
     return (*items, *lines, *marks(flat_view.labels(part.flat), (*items, *lines), 1.0))
+
+
+def _hand_work(part: Part) -> Point | None:
+    """Middle of the hole that is not round, where connector and bars sit; None when there is none."""
+    found = [flat_view.outline_items(h) for h in part.flat.holes if isinstance(h, Contour)] if part.flat else []
+    if not found:
+        return None
+    box = bounds(found[0])
+    return (round((box.x0 + box.x1) / 2), 0.0)
 
 
 def _wire(part: Part) -> list[Template]:
@@ -128,6 +139,8 @@ def _draft(context: Context, t: Template) -> Draft:
     body = bounds(t.items)
     across, down = (_tiles(body.width, area.width), _tiles(body.height, area.height))
     fields = {"part_key": t.part_key, "scale": "1:1", "group": "true"}
+    if across * down > MOST_TILES and t.middle is not None:
+        return Draft("true", t.title, (_near(context.paper, t, t.middle, area, across * down),), **fields)
     if across * down > MOST_TILES:
         page = _frame_page(context.paper, say("true.too_large", tiles=across * down))
         return Draft("true", t.title, (page,), **fields)
@@ -140,6 +153,20 @@ def _draft(context: Context, t: Template) -> Draft:
         return Draft("true", t.title, (page,), **fields)
     pages = tuple(_tile(context.paper, t, area, (i, j), (across, down)) for j in range(down) for i in range(across))
     return Draft("true", t.title, pages, **fields)
+
+
+def _near(paper: Paper, t: Template, middle: Point, area: Box, tiles: int) -> Page:
+    """One page of a part that is too large: the surroundings of ``middle`` with both lines that place it."""
+    dx, dy = (area.x0 + area.x1) / 2 - middle[0], (area.y0 + area.y1) / 2 - middle[1]
+    page = _frame_page(paper, say("true.near", tiles=tiles))
+    window = Box(area.x0, area.y0, area.x1, area.y1 - 4)
+    page.items += clipped(moved(t.items, dx, dy), window)
+    x, y = middle[0] + dx, middle[1] + dy
+    page.items += [Line(window.x0, y, window.x1, y, "centre"), Line(x, window.y0, x, window.y1, "centre")]
+    page.items.append(Text(x, window.y1 + 1, f"x = {number(middle[0])}", 2.5, "middle"))
+    page.items.append(Text(window.x1 - 1, y + 1, f"y = {number(middle[1])}", 2.5, "end"))
+    page.views.append(View(t.title, 1.0, (dx, dy), window))
+    return page
 
 
 def _tiles(size: float, room: float) -> int:
