@@ -43,7 +43,7 @@ WORK: dict[str, str] = {
     "true.wire": "Bent shape: {part}",
     "true.capacitor": "True size: coax and capacitor",
     "true.thick": "{part}, {thickness} mm thick",
-    "true.near": "Holes at the bars only (whole: {tiles} tiles). The line y = 0 runs from the middle to the gap's notch.",
+    "true.near": "Holes at the bars only (whole: {tiles} tiles). Line y = 0 runs from the middle to the gap's notch.",
     "true.too_large": "This part would need {tiles} tiles; work from the part drawing or the cutting file instead.",
     "assembly.head": "Assembly in steps",
     "assembly.intro": (
