@@ -32,10 +32,14 @@ STEP_OF_FREQUENCY = 0.01
 SOLID_DENSITY = 14.0
 SEAM_HALF_MM = 20.0
 POLYGON_MM = 0.02
+DRAWN_AS = {"loop and bars": "loop", "floor": "floor can", "wall": "wall can", "choke wall": "choke can"}
+"""Beginnings of the keys of the parts that each group of surfaces is drawn as."""
 SOLID_CODES = {
     "CONS-301": ("stop", "Simulated surfaces lie in the drawn metal, within half its thickness (`check --solid`)."),
     "CONS-302": ("note", "The true surface of the drawn loop computes to the sizing model (`check --solid`)."),
 }
+NOT_COMPARED = "the comparison with the drawn solid covers round cans without choke"
+COMPARABLE = "give a job with a rolled, printed, tube or turned can and choke = false"
 SOURCE = "the drawn solids and the project's own field computation"
 
 
@@ -79,7 +83,7 @@ def containment(feed: Feed, parts: Sequence[Part]) -> tuple[Containment, ...]:
     mesh, _ = feed_mesh(drawn, plan_mesh(drawn, feed.job.wavelength_mm / 1e3, 20.0))
     loop = mesh.corners_m[mesh.label == LOOP].mean(1) * 1e3
     floor = _disc_points(drawn)
-    samples = [
+    samples: list[tuple[str, NDArray[np.float64], float]] = [
         # on the axis or mid-plane: a point of it within half the thickness lies inside the metal
         ("loop and bars", loop, POLYGON_MM + 0.02 * (sizes.wire_mm or sizes.sheet_mm or 0.0)),
         ("floor", floor[~_in_holes(floor, feed)], sizes.floor_mm / 2),
@@ -89,10 +93,15 @@ def containment(feed: Feed, parts: Sequence[Part]) -> tuple[Containment, ...]:
     if choke is not None:
         ring = CanGeometry(choke.radius_m, choke.depth_m)
         samples.append(("choke wall", _off_the_seam(_wall_points(ring, choke.floor_z_m)), sizes.wall_mm / 2))
-    metal = [p for p in parts if p.solid is not None]
     return tuple(
-        Containment(name, len(points), float(gaps_mm(points, metal).max()), limit) for name, points, limit in samples
+        Containment(name, len(points), float(gaps_mm(points, _drawn_as(name, parts)).max()), limit)
+        for name, points, limit in samples
     )
+
+
+def _drawn_as(group: str, parts: Sequence[Part]) -> list[Part]:
+    """The parts that a group of surfaces stands for: no screw or neighbour may hold a point in their place."""
+    return [p for p in parts if p.solid is not None and p.key.split("-")[0] in DRAWN_AS[group].split()]
 
 
 def _wall_points(can: CanGeometry, foot_m: float) -> NDArray[np.float64]:
@@ -121,7 +130,7 @@ def solid_findings(
     feed: Feed, parts: Sequence[Part], loop_step: Path, progress: Callable[[str], None] = lambda _: None
 ) -> tuple[Finding, ...]:
     """Containment (stop where it fails) and the comparison with the solve on the drawn loop (note, caution above
-    one percent of detuning)."""
+    one percent of detuning); a note says where that comparison is not covered."""
     progress("measuring the simulated surfaces against the solids")
     found = []
     for group in containment(feed, parts):
@@ -133,6 +142,9 @@ def solid_findings(
                     "CONS-301", "stop", group.name, f"{group.gap_mm:.2f} mm", f"{group.limit_mm:.2f} mm", message, cure
                 )
             )
+    if not _comparable(feed.sizes):
+        found.append(_finding("CONS-302", "note", "loop", "not computed", "", NOT_COMPARED, COMPARABLE))
+        return tuple(found)
     compared = compare_solid(feed, loop_step, progress)
     limit_mhz = 0.01 * feed.job.target.frequency_mhz
     shift = compared.resonance_shift_mhz
@@ -147,6 +159,10 @@ def solid_findings(
     severity: Severity = "note" if abs(shift) <= limit_mhz else "caution"
     found.append(_finding("CONS-302", severity, "loop", f"{shift:+.1f} MHz", f"{limit_mhz:.1f} MHz", message, cure))
     return tuple(found)
+
+
+def _comparable(sizes: Sizes) -> bool:
+    return sizes.choke is None and not sizes.can_flats
 
 
 def _finding(code: str, severity: Severity, part: str, value: str, limit: str, message: str, cure: str) -> Finding:
@@ -181,11 +197,8 @@ def compare_solid(feed: Feed, loop_step: Path, progress: Callable[[str], None] =
     Perfect conductors on both sides. Raises NotCoveredError for cans with flats or a choke.
     """
     sizes, target = feed.sizes, feed.job.target.frequency_mhz
-    if sizes.choke is not None or sizes.can_flats:
-        raise NotCoveredError(
-            "the comparison with the drawn solid covers round cans without choke; "
-            "give a job with a rolled, printed, tube or turned can and choke = false"
-        )
+    if not _comparable(sizes):
+        raise NotCoveredError(f"{NOT_COMPARED}; {COMPARABLE}")
     drawn = _solid_loop(feed, loop_step)
     progress("meshing the drawn loop")
     mesh = solid_mesh(drawn)

@@ -17,7 +17,7 @@ import math
 from typing import TYPE_CHECKING
 
 from fabgen.parts import kernel
-from fabgen.parts.contour import Circle, Contour, area_mm2, polygon, rectangle
+from fabgen.parts.contour import Circle, Contour, area_mm2, polygon
 from fabgen.parts.floor_plan import (
     coax_axis,
     connector_hole_points,
@@ -25,6 +25,7 @@ from fabgen.parts.floor_plan import (
     connector_screw_holes,
     floor_bottom_mm,
     on_spacer,
+    turned_about_coax,
 )
 from fabgen.parts.records import FlatPattern, Part
 from fabgen.sizing.records import Feed
@@ -128,13 +129,13 @@ def _bore(feed: Feed) -> Circle:
 
 def _flange_outline(feed: Feed) -> Contour:
     row = tables.connector(feed.job.cable.connector)
-    x, y = coax_axis(feed)
-    if row.hole_count == 4:
-        corner = row.flange_width_mm / math.sqrt(2)
-        return polygon(((x + corner, y), (x, y + corner), (x - corner, y), (x, y - corner)))
-    # A flange with two screws lies with its long side along y, as its holes do.
-    half_x, half_y = row.flange_height_mm / 2, row.flange_width_mm / 2
-    return rectangle((x - half_x, y - half_y), (x + half_x, y + half_y))
+    corner = row.flange_width_mm / math.sqrt(2)
+    corners = ((corner, 0.0), (0.0, corner), (-corner, 0.0), (0.0, -corner))
+    if row.hole_count != 4:
+        # A flange with two screws lies with its long side along y, as its holes do.
+        half_x, half_y = row.flange_height_mm / 2, row.flange_width_mm / 2
+        corners = ((half_x, -half_y), (half_x, half_y), (-half_x, half_y), (-half_x, -half_y))
+    return polygon(tuple(turned_about_coax(feed, at) for at in corners))
 
 
 def _spacer_outline(feed: Feed) -> Contour:

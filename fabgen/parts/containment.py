@@ -49,8 +49,14 @@ def gaps_mm(points_mm: ArrayLike, parts: Iterable[Part]) -> NDArray[np.float64]:
 
 
 def _box(solid: cadquery.Shape) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    box = solid.BoundingBox(1e-6)
-    return np.array([box.xmin, box.ymin, box.zmin]), np.array([box.xmax, box.ymax, box.zmax])
+    """A box that holds the solid; not the smallest one, which takes the kernel a hundred times as long."""
+    from OCP.Bnd import Bnd_Box
+    from OCP.BRepBndLib import BRepBndLib
+
+    box = Bnd_Box()
+    BRepBndLib.Add_s(solid.wrapped, box, False)
+    low, high = box.CornerMin(), box.CornerMax()
+    return np.array([low.X(), low.Y(), low.Z()]), np.array([high.X(), high.Y(), high.Z()])
 
 
 def _outside_box(

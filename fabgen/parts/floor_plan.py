@@ -89,10 +89,10 @@ def coax_axis(feed: Feed) -> Point:
         # Two plates and the film between the bar and the centre conductor, twice as for a radius.
         sleeve = coax.inner_mm + 2 * (2 * PLATE_MM + capacitor.film_mm)
     beside = max(coax.outer_mm, sleeve) / 2
-    connector = tables.connector(feed.job.cable.connector)
-    if sizes.conductor != "wire":
+    if sizes.conductor != "wire" and on_spacer(feed):
         # The screws stand level with the coax, beside the flat of the bar; solder fills the gap.
-        beside = max(beside, tables.screw(connector.screw).head_mm / 2 + HEAD_GAP_MM)
+        screw = tables.screw(tables.connector(feed.job.cable.connector).screw)
+        beside = max(beside, screw.head_mm / 2 + HEAD_GAP_MM)
     x = sizes.leg_x_mm + leg_depth_mm(feed) / 2 + beside
     y = sizes.leg_pitch_mm / 2
     if sizes.conductor != "wire":
@@ -139,19 +139,50 @@ def connector_reach_mm(feed: Feed) -> float:
     return connector.flange_height_mm / 2
 
 
+def connector_turn_deg(feed: Feed) -> float:
+    """Turn of the connector about the coax, clockwise seen from the aperture.
+
+    The head of the screw beside the bar of a sheet loop then clears the bar's flat, and the coax may touch it. A
+    connector on a spacer is not turned: its coax stands off instead.
+    """
+    sizes, connector = feed.sizes, tables.connector(feed.job.cable.connector)
+    if sizes.conductor == "wire" or on_spacer(feed):
+        return 0.0
+    x, y = coax_axis(feed)
+    radius, reach = tables.screw(connector.screw).head_mm / 2, _hole_radius_mm(feed)
+    beyond_bar = y + reach - radius - (sizes.leg_pitch_mm + sizes.leg_width_mm) / 2
+    aside = sizes.leg_x_mm + leg_depth_mm(feed) / 2 + radius + HEAD_GAP_MM - x
+    if connector.hole_count == 0 or beyond_bar > HEAD_GAP_MM or aside <= 0:
+        return 0.0
+    # In whole degrees, for the drawing.
+    return float(math.ceil(math.degrees(math.asin(min(aside / reach, 1.0)))))
+
+
+def _hole_radius_mm(feed: Feed) -> float:
+    """Distance of a hole of the connector's flange from the coax."""
+    connector = tables.connector(feed.job.cable.connector)
+    return connector.hole_pitch_mm / (2.0 if connector.hole_count == 2 else math.sqrt(2))
+
+
+def turned_about_coax(feed: Feed, offset: Point) -> Point:
+    """A point of the connector, given from its axis, in the feed's frame."""
+    x, y = coax_axis(feed)
+    a = math.radians(connector_turn_deg(feed))
+    u, v = offset
+    return x + u * math.cos(a) + v * math.sin(a), y - u * math.sin(a) + v * math.cos(a)
+
+
 def connector_hole_points(feed: Feed) -> tuple[Point, ...]:
     """Centres of all holes of the connector's flange about the coax.
 
     A square flange stands on its corner, holes on x and y, and a flange with two holes lies along y, so that
-    the foot of the bar beside the coax has a hole's width to itself.
+    the foot of the bar beside the coax has a hole's width to itself; beside a bar of strip it is turned a little.
     """
-    connector = tables.connector(feed.job.cable.connector)
-    x, y = coax_axis(feed)
-    half, corner = connector.hole_pitch_mm / 2, connector.hole_pitch_mm / math.sqrt(2)
-    four: tuple[Point, ...] = ((corner, 0.0), (0.0, corner), (-corner, 0.0), (0.0, -corner))
-    two: tuple[Point, ...] = ((0.0, half), (0.0, -half))
+    connector, r = tables.connector(feed.job.cable.connector), _hole_radius_mm(feed)
+    four: tuple[Point, ...] = ((r, 0.0), (0.0, r), (-r, 0.0), (0.0, -r))
+    two: tuple[Point, ...] = ((0.0, r), (0.0, -r))
     offsets = {4: four, 2: two}.get(connector.hole_count, ())
-    return tuple((x + u, y + v) for u, v in offsets)
+    return tuple(turned_about_coax(feed, offset) for offset in offsets)
 
 
 def connector_screw_holes(feed: Feed) -> tuple[FloorHole, ...]:

@@ -11,6 +11,7 @@ from dataclasses import dataclass
 
 from fabgen.errors import GeometryError
 from fabgen.parts.bend_rule import chosen_k
+from fabgen.parts.can_printed import SKIRT_MM
 from fabgen.parts.strip_path import Joggle, StripPath, joggle
 from fabgen.parts.wall_strip import EDGE_GAP_MM, SEAM_GAP_MM, Seam, TabShape, Wall, WallHole, check_wall
 from fabgen.sizing.records import Feed
@@ -128,6 +129,9 @@ def _seam(feed: Feed, path: StripPath, depth_mm: float, bends: _Bends, overlap: 
     ratio = last.radius_mm / first.radius_mm if last.radius_mm else 1.0
     outer = tail + (inner + EDGE_GAP_MM) * ratio
     bottom, top = low + 2 * hole, depth_mm - 2 * hole
+    if feed.job.can.radome:
+        # Nuts stand outside, below the cap's skirt.
+        top = max(bottom, min(top, depth_mm - SKIRT_MM - screw.nut_across_flats_mm / math.sqrt(3) - 0.5))
     pitch = tables.limit("seam_screw_pitch_max_wavelengths", feed.job.overrides).value * feed.job.wavelength_mm
     count = max(1, math.ceil((top - bottom) / pitch) + 1)
     while count > 1 and (top - bottom) / (count - 1) < 3 * hole:

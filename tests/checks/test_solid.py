@@ -7,7 +7,7 @@ from pathlib import Path
 
 import pytest
 
-from fabgen.checks.solid import compare_solid, containment
+from fabgen.checks.solid import compare_solid, containment, solid_findings
 from fabgen.errors import NotCoveredError
 from fabgen.parts.build import build_parts
 from fabgen.writers.step import write_step
@@ -42,3 +42,14 @@ def test_the_drawn_solid_computes_to_the_strip_model(form: str, tmp_path: Path) 
 def test_cans_with_flats_are_refused(tmp_path: Path) -> None:
     with pytest.raises(NotCoveredError, match="round cans without choke"):
         compare_solid(sample_feed("wire", "folded"), tmp_path / "loop.step")
+
+
+@pytest.mark.slow
+def test_a_can_that_is_not_compared_is_still_measured(tmp_path: Path) -> None:
+    feed = sample_feed("wire", "folded", choke=True)
+    assert all(group.passed for group in containment(feed, build_parts(feed)))
+    (note,) = solid_findings(feed, build_parts(feed), tmp_path / "loop.step")
+    assert (note.code, note.severity, note.value) == ("CONS-302", "note", "not computed")
+    off = replace(feed, sizes=replace(feed.sizes, can_bore_mm=feed.sizes.can_bore_mm + 3.0))
+    codes = [(f.code, f.part) for f in solid_findings(off, build_parts(feed), tmp_path / "loop.step")]
+    assert ("CONS-301", "wall") in codes

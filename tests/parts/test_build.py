@@ -141,9 +141,10 @@ def test_coax_touches_its_bar_and_core_slides_in_the_tube(form: str) -> None:
         assert a.intersect(b).Volume() < 1e-3
     assert stub.distance(liner) == pytest.approx(0.0, abs=1e-6)
     assert tube.distance(liner) == pytest.approx(0.0, abs=1e-6)
-    assert stub.distance(loop) < 0.75
+    # The sleeve on the other bar is 0.4 mm thicker than the coax and sets the distance of both: a gap for solder.
+    assert stub.distance(loop) < 0.25
     assert stub.intersect(loop).Volume() < 1e-3
-    assert tube.distance(loop) < 0.75
+    assert tube.distance(loop) < 0.25
     box, core = tube.BoundingBox(1e-6), stub.BoundingBox(1e-6)
     overlap = box.ymax - core.ymin
     assert overlap == pytest.approx(feed.capacitor.overlap_mm, abs=1e-3)

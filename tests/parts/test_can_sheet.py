@@ -12,12 +12,15 @@ import pytest
 import shapely
 
 from fabgen.errors import FabgenError, GeometryError, NotCoveredError
+from fabgen.parts import kernel
 from fabgen.parts.can_folded import can_folded
+from fabgen.parts.can_printed import SKIRT_MM
 from fabgen.parts.can_rolled import can_rolled
 from fabgen.parts.can_sheet import can_wall, choke_wall, sheet_can
 from fabgen.parts.choke_ring import folded_ring
 from fabgen.parts.contour import Circle, sampled
 from fabgen.parts.folding import Frame, frames
+from fabgen.parts.kernel import placed
 from fabgen.parts.records import Part
 from fabgen.parts.strip_path import outward
 from fabgen.parts.wall_strip import Wall, tab_holes, tab_tip_mm
@@ -263,12 +266,40 @@ def test_every_joint_hole_has_its_screw_and_nut(name: str) -> None:
     wall, outer = can_wall(feed), choke_wall(feed)
     assert outer is not None
     wanted = {
-        "wall": len(wall.tabs_mm), "choke": len(outer.tabs_mm), "ring": len(wall.holes),
-        "seam": len(wall.seam.heights_mm) + len(outer.seam.heights_mm),
+        "wall": len(wall.tabs_mm), "choke": len(outer.tabs_mm), "choke-ring": len(wall.holes),
+        "seam": len(wall.seam.heights_mm), "choke-seam": len(outer.seam.heights_mm),
     }  # fmt: skip
     for key, count in wanted.items():
         assert parts[f"screw-{key}"].quantity == parts[f"nut-{key}"].quantity == count
-        assert parts[f"screw-{key}"].solid is None
+        assert len(parts[f"screw-{key}"].places) == len(parts[f"nut-{key}"].places) == count
+
+
+@pytest.mark.parametrize("name", ["rolled brass", pytest.param("folded 6", marks=pytest.mark.slow)])
+def test_joint_screws_seat_on_the_sheet_and_cut_into_nothing(name: str) -> None:
+    parts = parts_of(name)
+    sheets = {key: solid_of(name, key) for key in ("floor", "wall", "choke-ring", "choke-wall")}
+    held = {
+        "wall": ("wall", "floor"), "choke": ("choke-wall", "choke-ring"), "choke-ring": ("wall", "choke-ring"),
+        "seam": ("wall", "wall"), "choke-seam": ("choke-wall", "choke-wall"),
+    }  # fmt: skip
+    for key, (under_head, under_nut) in held.items():
+        screw, nut = parts[f"screw-{key}"], parts[f"nut-{key}"]
+        bodies = placed(screw.solid(), screw.places[0]), placed(nut.solid(), nut.places[0])
+        box = bodies[0].fuse(bodies[1]).BoundingBox()
+        near = kernel.box((box.xmin, box.ymin, box.zmin), (box.xmax, box.ymax, box.zmax))
+        local = {sheet: sheets[sheet].intersect(near) for sheet in {under_head, under_nut}}
+        for body, sheet in zip(bodies, (under_head, under_nut), strict=True):
+            # A flat nut touches a rolled wall along a line, a flat head inside it at two points of its rim.
+            assert body.distance(local[sheet]) < 1e-3, (key, sheet)
+            assert all(body.intersect(other).Volume() < 1e-3 for other in local.values()), key
+        assert bodies[0].intersect(bodies[1]).Volume() < 1e-3, key
+
+
+def test_seam_nuts_stay_below_the_skirt_of_a_radome_cap() -> None:
+    feed = sample_feed("wire", "rolled", radome=True)
+    parts = {part.key: part for part in can_rolled(feed)}
+    top = max(placed(parts["nut-seam"].solid(), p).BoundingBox().zmax for p in parts["nut-seam"].places)
+    assert top < feed.sizes.can_depth_mm - SKIRT_MM
 
 
 def test_a_metal_that_solders_needs_fewer_tabs() -> None:

@@ -25,7 +25,7 @@ def test_both_walls_stand_on_one_floor(make: str) -> None:
     feed = with_choke_floor(sample_feed("wire", make, choke=True), 0.0)
     parts = {p.key: p for p in build_parts(feed)}
     assert "choke-ring" not in parts
-    assert "screw-ring" not in parts
+    assert "screw-choke-ring" not in parts
     floor = parts["floor"]
     outer = choke_wall(feed)
     assert outer is not None
