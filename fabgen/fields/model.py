@@ -41,7 +41,7 @@ from fabgen.fields.system import (
 )
 
 SYMMETRY_PLANES = (1,)
-KEPT_CANS = 24
+KEPT_CANS = 4
 REFINEMENTS = 4
 REFINED_RESIDUAL = 1e-4
 
