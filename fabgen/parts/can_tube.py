@@ -29,6 +29,7 @@ from fabgen.parts.making import metal_part
 from fabgen.parts.records import FlatPattern, Part, Place
 from fabgen.sizing.records import ChokeSizes, Feed
 from fabgen.stock import tables
+from fabgen.stock.joints import least_choke_floor_mm
 
 LIP_MM = 3.0
 """Rim of the floor outside the tube that takes the solder where there is no flange. Common practice."""
@@ -119,10 +120,11 @@ def _tube(
 
 def _choke_floor(feed: Feed, stock: tuple[str, str | None], choke: ChokeSizes) -> Part:
     sizes = feed.sizes
-    if choke.floor_z_mm < sizes.floor_mm:
+    least = least_choke_floor_mm("tube", sizes.can_bore_mm, sizes.wall_mm, sizes.floor_mm)
+    if choke.floor_z_mm < least:
         raise GeometryError(
             f"can.choke.floor_z_mm = {choke.floor_z_mm:g} puts the choke's floor, {sizes.floor_mm:g} mm thick, into "
-            f"the can's; give 0 for one floor, or {sizes.floor_mm:g} or more"
+            f"the can's; give 0 for one floor, or {least:g} or more"
         )
     outer = choke.bore_mm + 2 * sizes.wall_mm + 2 * LIP_MM
     hole = sizes.can_bore_mm + 2 * sizes.wall_mm

@@ -38,10 +38,11 @@ from fabgen.parts.kernel import once
 from fabgen.parts.making import metal_part
 from fabgen.parts.records import Part
 from fabgen.parts.strip_path import Stretch, offset_side, outward, part_of
-from fabgen.parts.wall_plan import SOLDERED_PITCH_FACTOR, Fixings, joint_screw, tab_shape
+from fabgen.parts.wall_plan import SOLDERED_PITCH_FACTOR, Fixings, tab_shape
 from fabgen.parts.wall_strip import SEAM_GAP_MM, TabShape, Wall, corner_round_mm, tab_holes, tabs_width_mm
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
+from fabgen.stock.joints import joint_screw, least_choke_floor_mm
 
 CLEARANCE_MM = 0.15
 """Between the ring and the can's wall, all round. Common practice, no source."""
@@ -72,11 +73,11 @@ def choke_fixings(feed: Feed) -> Fixings | None:
     if choke is None or not has_ring(feed):
         return None
     screw = joint_screw(s.can_bore_mm)
-    least = s.floor_mm + s.wall_mm + screw.head_height_mm
+    least = least_choke_floor_mm(feed.job.can.make, s.can_bore_mm, s.wall_mm, s.floor_mm)
     if choke.floor_z_mm < least:
         raise GeometryError(
             f"can.choke.floor_z_mm = {choke.floor_z_mm:g} puts the choke's ring into the tabs and screws on the can's "
-            f"floor; give 0, so that both walls stand on one floor, or {math.ceil(10 * least) / 10:g} or more"
+            f"floor; give 0, so that both walls stand on one floor, or {least:g} or more"
         )
     shape = tab_shape(feed, screw, s.floor_mm)
     along = shape.inside_radius_mm + s.floor_mm / 2 + shape.hole_from_bend_mm

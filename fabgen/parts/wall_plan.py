@@ -16,6 +16,7 @@ from fabgen.parts.strip_path import Joggle, StripPath, joggle
 from fabgen.parts.wall_strip import EDGE_GAP_MM, SEAM_GAP_MM, Seam, TabShape, Wall, WallHole, check_wall
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
+from fabgen.stock.joints import joint_screw
 from fabgen.stock.records import Screw
 from fabgen.theory.bending import min_inside_radius_mm
 
@@ -41,11 +42,6 @@ class Fixings:
     count: int
     room_mm: float
     end_mm: float
-
-
-def joint_screw(bore_mm: float) -> Screw:
-    """Screw of seam and tabs by the can's size; a blind rivet of the same hole does as well."""
-    return tables.screw("M3" if bore_mm >= 120 else "M2.5" if bore_mm >= 70 else "M2")
 
 
 def fold_radius_mm(feed: Feed, thickness_mm: float) -> float:

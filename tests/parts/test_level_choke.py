@@ -11,6 +11,7 @@ from fabgen.parts.build import build_parts
 from fabgen.parts.can_sheet import can_wall, choke_wall
 from fabgen.parts.wall_strip import tab_holes
 from fabgen.sizing.records import Feed
+from fabgen.stock.joints import least_choke_floor_mm, nearest_choke_floor_mm
 from tests.samples import sample_feed
 
 
@@ -57,3 +58,23 @@ def test_level_choke_is_one_piece_in_plastic_and_from_bar(make: str) -> None:
     feed = with_choke_floor(sample_feed("sheet", make, frequency_mhz=2000.0, choke=True), 0.0)
     keys = {p.key for p in build_parts(feed)}
     assert not {"choke", "choke-1"} & keys
+
+
+@pytest.mark.parametrize("make", ["rolled", "folded", "tube", "printed", "turned"])
+def test_the_least_height_of_a_chokes_floor_is_what_the_parts_take(make: str) -> None:
+    feed = sample_feed("wire", make, choke=True)
+    sizes, choke = feed.sizes, feed.sizes.choke
+    assert choke is not None
+    given = (make, sizes.can_bore_mm, sizes.wall_mm, sizes.floor_mm)
+    least = least_choke_floor_mm(*given)
+    # By hand for a can of more than 120 mm: floor + wall + head of an M3 screw, 3 mm (ISO 4762, from memory).
+    by_hand = {"tube": sizes.floor_mm, "rolled": sizes.floor_mm + sizes.wall_mm + 3.0}
+    by_hand["folded"] = by_hand["rolled"]
+    assert least == pytest.approx(by_hand.get(make, 0.0), abs=0.1)
+
+    assert build_parts(with_choke_floor(feed, least))
+    assert build_parts(with_choke_floor(feed, 0.0))
+    if least:
+        with pytest.raises(GeometryError, match=f"{least:g} or more"):
+            build_parts(with_choke_floor(feed, least - 0.1))
+        assert [nearest_choke_floor_mm(w, *given) for w in (0.3, least - 0.3, least + 2.0)] == [0.0, least, least + 2.0]
