@@ -26,7 +26,7 @@ RECORD_NAME = "record.json"
 _PREFIX = ".fabgen-"
 _AT_FDCWD = -100
 _RENAME_EXCHANGE = 2
-_TRIES = 20
+_TRIES = 100
 _READ_CHUNK = 1 << 20
 
 
@@ -49,7 +49,38 @@ def files_in(folder: Path) -> list[str]:
 
 
 def why_not_replaceable(folder: Path) -> str | None:
-    """None when the folder is empty or an untouched pack of ours; else the reason, in words."""
+    """None when the folder is gone, empty or an untouched pack of ours; else the reason, in words.
+
+    Another run may exchange the folder while it is read; what was read then belongs to neither and is read again.
+    """
+    for _ in range(_TRIES):
+        try:
+            # Held open, so that its number cannot pass to the folder that takes its place.
+            handle = os.open(folder, os.O_RDONLY)
+        except FileNotFoundError:
+            return None
+        try:
+            reason = _why_not_ours(folder)
+            if _still_there(handle, folder):
+                return reason
+        except FileNotFoundError:
+            if _still_there(handle, folder):
+                raise
+        finally:
+            os.close(handle)
+    return "another run keeps writing it"
+
+
+def _still_there(handle: int, folder: Path) -> bool:
+    """Whether the open folder still stands in its place."""
+    try:
+        return os.path.samestat(os.fstat(handle), folder.stat())
+    except FileNotFoundError:
+        return False
+
+
+def _why_not_ours(folder: Path) -> str | None:
+    """What makes the folder something else than an untouched pack; None for nothing."""
     present = files_in(folder)
     if not any(folder.iterdir()):
         return None
@@ -132,7 +163,6 @@ def new_folder(target: Path) -> Iterator[Path]:
 
 def _put_in_place(temporary: Path, real: Path) -> None:
     """Renames; another run may write the same place meanwhile, so look again and retry."""
-    refusal: OutputError | None = None
     for _ in range(_TRIES):
         try:
             temporary.rename(real)
@@ -141,14 +171,7 @@ def _put_in_place(temporary: Path, real: Path) -> None:
                 raise
         else:
             return
-        try:
-            resolve_target(real)
-        except OutputError as error:
-            # Another run may have exchanged the folder while it was read: what is wrong twice over is wrong.
-            if str(error) == str(refusal):
-                raise
-            refusal = error
-            continue
+        resolve_target(real)
         if _exchange(temporary, real):
             return
     raise OutputError(f"another run keeps writing {real}; wait for it to end, or name another folder")

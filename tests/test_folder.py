@@ -5,6 +5,7 @@ from __future__ import annotations
 import errno
 import json
 import os
+import shutil
 import subprocess
 import threading
 from pathlib import Path
@@ -167,6 +168,31 @@ def test_many_at_once_leave_one_whole_pack(tmp_path: Path) -> None:
     assert len(texts) == 1
     assert siblings(tmp_path / "pack") == ["pack"]
     assert not faults
+
+
+def test_a_pack_exchanged_while_it_is_read_is_read_again(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Each of the first reads meets another run's exchange, so that what is read belongs to two packs."""
+    make(tmp_path / "pack", "one")
+    exchanges = iter(["two", "three", "four"])
+
+    def exchange_then_hash(path: Path) -> str:
+        text = next(exchanges, None)
+        if text is not None:
+            shutil.rmtree(tmp_path / "pack")
+            (tmp_path / "pack").mkdir()
+            fill(tmp_path / "pack", text)
+        return sha256_of(path)
+
+    monkeypatch.setattr(folder_module, "sha256_of", exchange_then_hash)
+    assert folder_module.why_not_replaceable(tmp_path / "pack") is None
+    assert next(exchanges, None) is None
+
+
+def test_a_listed_file_that_leads_nowhere(tmp_path: Path) -> None:
+    make(tmp_path / "pack", "one")
+    (tmp_path / "pack" / "parts.csv").unlink()
+    (tmp_path / "pack" / "parts.csv").symlink_to(tmp_path / "none")
+    assert "choose another folder" in refusal(tmp_path / "pack")
 
 
 @pytest.mark.parametrize(
