@@ -316,6 +316,9 @@ def _part_anew(part: Part, anew: Part, kerf_mm: float) -> Iterator[Fault]:
         if not abs(value - wanted) <= 1e-5:
             message = f"{name} of {part.key} is {value:.3f} in the record, the sizes give {wanted:.3f}"
             yield _differs(part.key, name, f"{value:.3f}", f"{wanted:.3f}", message)
+    if abs(part.mass_kg - anew.mass_kg) > 1e-5 * anew.mass_kg + 1e-9:
+        message = f"the record's mass of {part.key} is not that of its sizes"
+        yield _differs(part.key, "mass", f"{part.mass_kg:.6f} kg", f"{anew.mass_kg:.6f} kg", message)
     if part.flat is not None and anew.flat is not None and not kerf_mm:
         drawn, wanted_flat = (
             _measures({"OUTLINE": [flat.outline], "HOLES": list(flat.holes)}) for flat in (part.flat, anew.flat)
@@ -331,13 +334,15 @@ def _numbers(part: Part) -> dict[str, float]:
 
 @pack_check("CONS-210")
 def record_and_job(pack: Pack) -> Iterator[Fault]:
-    """Frequency, wavelength, flats and fixed sizes of the record against its job."""
+    """Frequency, wavelength, flats, bars and fixed sizes of the record against its job."""
     job, s = pack.feed.job, pack.feed.sizes
     rows: list[tuple[str, float, float]] = [
         ("frequency_mhz", pack.record["frequency_mhz"], job.target.frequency_mhz),
         ("wavelength_mm", pack.record["wavelength_mm"], job.wavelength_mm),
         ("can_flats", s.can_flats, job.can.flats if job.can.make == "folded" else 0),
     ]
+    if s.wire_mm is not None:
+        rows.append(("leg_width_mm", s.leg_width_mm, s.wire_mm))
     for name, wanted in job.fixed.model_dump().items():
         if wanted is not None:
             rows.append((name, getattr(s, name), wanted))

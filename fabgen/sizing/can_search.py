@@ -218,7 +218,8 @@ class _Search:
     def merit(self, can: CanShape) -> float:
         if can in self.known:
             return self.known[can]
-        self.progress.step(f"searching the can: bore {can.bore_mm:.1f} mm, depth {can.depth_mm:.1f} mm")
+        ring = "" if can.choke is None else f", choke {can.choke.bore_mm:.1f} mm, {can.choke.depth_mm:.1f} mm deep"
+        self.progress.step(f"searching the can: bore {can.bore_mm:.1f} mm, depth {can.depth_mm:.1f} mm{ring}")
         # The pattern hardly depends on the tap, so any tap that the bars take will do here.
         sizes = first_sizes(Setting(self.job, self.stock, can), self.place)
         solution = self.solve(replace(sizes, tap_height_mm=tap_in_range_mm(sizes)))
