@@ -95,7 +95,9 @@ def _note_cylinder(
     diameter = round(2 * cylinder.Radius(), 3)
     if abs(abs(axis[2]) - 1) < 1e-6:
         ends = sorted((base[2] + first * axis[2], base[2] + last * axis[2]))
-        key = (round(base[0], 2) + 0.0, round(base[1], 2) + 0.0, diameter, float(hole))
+        new = (round(base[0], 2) + 0.0, round(base[1], 2) + 0.0, diameter, float(hole))
+        # Quarters of one hole may round to different hundredths.
+        key = next((k for k in pieces if k[2:] == new[2:] and math.dist(k[:2], new[:2]) < 0.016), new)
         pieces.setdefault(key, []).append((ends[0], ends[1], angle))
     elif hole and angle > 170:
         sign = 1.0 if tuple(round(a, 6) for a in axis) > (0.0, 0.0, 0.0) else -1.0
@@ -127,6 +129,44 @@ def holes(m: Measured) -> tuple[Round, ...]:
     """Full round holes parallel to z, off the axis or small."""
     axial = set(about_axis(m))
     return tuple(r for r in m.rounds if r.hole and r.angle_deg > 350 and r not in axial)
+
+
+def slots(m: Measured) -> tuple[tuple[Round, Round], ...]:
+    """Slots parallel to z: two half-round ends of one diameter and depth each, the nearest ones paired."""
+    ends = [r for r in m.rounds if r.hole and 170 < r.angle_deg < 190 and r not in set(about_axis(m))]
+    found: list[tuple[Round, Round]] = []
+    while ends:
+        a = ends.pop(0)
+        others = [b for b in ends if (b.diameter_mm, b.z0_mm, b.z1_mm) == (a.diameter_mm, a.z0_mm, a.z1_mm)]
+        if others:
+            b = min(others, key=lambda e: math.hypot(e.x_mm - a.x_mm, e.y_mm - a.y_mm))
+            ends.remove(b)
+            found.append((a, b))
+    return tuple(found)
+
+
+def slot_rows(m: Measured) -> tuple[tuple[str, ...], ...]:
+    """Rows: number, middles of both round ends, width, from z, to z."""
+    return tuple(
+        (f"S{i}", *(f"{v:.2f}" for v in (a.x_mm, a.y_mm, b.x_mm, b.y_mm, a.diameter_mm, a.z0_mm, a.z1_mm)))
+        for i, (a, b) in enumerate(slots(m), start=1)
+    )
+
+
+def corner_asks(m: Measured) -> list[Ask]:
+    """A leader for each radius of quarter-round outer corners parallel to z, with their number."""
+    groups: dict[float, list[Round]] = {}
+    for r in m.rounds:
+        if not r.hole and 80 < r.angle_deg < 100 and r not in set(about_axis(m)):
+            groups.setdefault(r.diameter_mm / 2, []).append(r)
+    asks = []
+    for radius, found in sorted(groups.items()):
+        r = max(found, key=lambda f: (f.x_mm - f.y_mm, f.x_mm))
+        angle = math.degrees(math.atan2(r.y_mm, r.x_mm))
+        at = (r.x_mm + radius * math.cos(math.radians(angle)), r.y_mm + radius * math.sin(math.radians(angle)))
+        text = (f"{len(found)} × " if len(found) > 1 else "") + f"R{number(radius)}"
+        asks.append(leader("radius", radius, text, at, angle))
+    return asks
 
 
 def hole_rows(m: Measured) -> tuple[tuple[str, ...], ...]:
@@ -182,15 +222,14 @@ def plan_asks(m: Measured) -> list[Ask]:
             turn = math.degrees(t) + (0 if not r.hole else 180)
             asks.append(leader("radius", r.diameter_mm / 2, f"R{number(r.diameter_mm / 2)}", at, turn))
     rows = [HoleRow("", h.x_mm, h.y_mm, h.diameter_mm) for h in holes(m)]
-    return [*asks, *hole_asks(rows)]
+    return [*asks, *corner_asks(m), *hole_asks(rows)]
 
 
 def labels(m: Measured) -> tuple[Mark, ...]:
-    """Numbers of the holes, at their edges."""
-    return tuple(
-        (str(i), (h.x_mm + h.diameter_mm * 0.36, h.y_mm + h.diameter_mm * 0.36))
-        for i, h in enumerate(holes(m), start=1)
-    )
+    """Numbers of the holes and slots, at their edges."""
+    named = [(str(i), h) for i, h in enumerate(holes(m), start=1)]
+    named += [(f"S{i}", a) for i, (a, _) in enumerate(slots(m), start=1)]
+    return tuple((name, (h.x_mm + h.diameter_mm * 0.36, h.y_mm + h.diameter_mm * 0.36)) for name, h in named)
 
 
 def centre_lines(m: Measured, scale: float) -> tuple[Item, ...]:

@@ -8,9 +8,9 @@ import re
 import pytest
 import shapely
 
-from fabgen.drawing import flat
-from fabgen.drawing.model import Sheet, Table
-from fabgen.drawing.pages.base import quantity
+from fabgen.drawing import flat, solid
+from fabgen.drawing.model import Sheet, Table, number
+from fabgen.drawing.pages.base import quantity, tolerance_of
 from fabgen.drawing.texts import say, size_name
 from fabgen.parts import contour as c
 from fabgen.parts.records import FlatPattern
@@ -41,11 +41,11 @@ def _unfolded(pages: list[Sheet], table: Table) -> tuple[tuple[str, ...], ...]:
         low, high = (_number_of(w) for w in left_out.split("–"))
         assert low == after + 1
         assert high - low + 1 == int(sets.split()[0]) * count
-        for number in range(low, high + 1):
-            like = by_number[number - count]
-            assert number not in by_number
+        for corner in range(low, high + 1):
+            like = by_number[corner - count]
+            assert corner not in by_number
             x, y = float(like[1]) + float(pitch_x), float(like[2]) + float(pitch_y)
-            by_number[number] = (f"{letter}{number}", repr(x), repr(y), like[3])
+            by_number[corner] = (f"{letter}{corner}", repr(x), repr(y), like[3])
         after = high
     assert sorted(by_number) == list(range(1, len(by_number) + 1))
     return tuple(by_number[n] for n in sorted(by_number))
@@ -138,6 +138,24 @@ def test_a_repeating_edge_is_told_once() -> None:
     assert [r[0] for r in flat.corner_rows("A", contour)] == ["A1", "A2", "A3", "A4", "A62", "A63", "A64"]
     wider = [c.Vertex(v.x_mm + (5 if i > 31 else 0), v.y_mm, v.bulge) for i, v in enumerate(contour.vertices)]
     assert len(flat.repeat_rows("A", flat.repeat_of(c.Contour(tuple(wider))))) == 3  # type: ignore[arg-type]
+
+
+def test_slots_and_corner_radii_of_solids_are_listed() -> None:
+    import cadquery
+
+    plate = cadquery.Workplane().box(60, 40, 4).edges("|Z").fillet(5)
+    plate = plate.faces(">Z").workplane().center(7, 2.975).slot2D(10, 3).cutThruAll()
+    m = solid.measured(plate.val())
+    assert solid.slot_rows(m) == (("S1", "3.50", "2.98", "10.50", "2.98", "3.00", "-2.00", "2.00"),)
+    assert [a.text for a in solid.corner_asks(m)] == ["4 × R5"]
+
+
+def test_toleranced_sizes_carry_their_tolerance_on_the_part_page() -> None:
+    feed, book = feed_of("wire-rolled"), book_of("wire-rolled")
+    rows = {r[0]: r[1] for s in book for t in s.tables if t.name == "sizes:loop" for r in t.rows}
+    tolerance = tolerance_of(feed, "loop_diameter_mm")
+    assert tolerance is not None
+    assert rows[size_name("loop_diameter_mm")].endswith(f"mm ±{number(tolerance)}")
 
 
 def _number(shown: str) -> float:

@@ -27,7 +27,7 @@ from fabgen.drawing.flow import (
 )
 from fabgen.drawing.hidden import ABOVE, GAP, ISOMETRIC, Curve, dressed
 from fabgen.drawing.model import SCALES, Box, Item, Polyline, number, scale_text
-from fabgen.drawing.pages.base import Context, Draft, draft, quantity, tolerance_text
+from fabgen.drawing.pages.base import Context, Draft, draft, quantity, tolerance_of, tolerance_text
 from fabgen.drawing.pages.general import loop_views
 from fabgen.drawing.picture import (
     Body,
@@ -47,6 +47,7 @@ from fabgen.drawing.picture import (
 from fabgen.drawing.section import opened
 from fabgen.drawing.texts import say, size_name
 from fabgen.parts.records import FlatPattern, Part
+from fabgen.sizing.records import Feed
 
 WIDTH_MM = COLUMN_WIDTH_MM
 BOUGHT = ("buy",)
@@ -61,7 +62,7 @@ def drafts(context: Context) -> list[Draft]:
 
 def _draft(context: Context, part: Part) -> Draft:
     room = column_height(context.paper)
-    words = [*sizes_blocks(part), *making(part), *notes(part), *_tables(part)]
+    words = [*sizes_blocks(part, feed=context.feed), *making(part), *notes(part), *_tables(part)]
     height = sum(b.height for b in words) + 6
     strip = part.flat is not None and _slender(Drawn("", flat_view.flat_items(part.flat)))
     # On one sheet when the words leave half of it to the views, else the views first and the words as they come.
@@ -231,15 +232,26 @@ def notes(part: Part) -> list[Block]:
     return blocks
 
 
-def sizes_blocks(part: Part, width: float = WIDTH_MM) -> list[Block]:
-    """The sizes that make a part, two columns of names and values."""
-    rows = [(size_name(key), quantity(key, value)) for key, value in part.sizes]
+def sizes_blocks(part: Part, width: float = WIDTH_MM, feed: Feed | None = None) -> list[Block]:
+    """The sizes that make a part, two columns of names and values, with the tolerance of those that have their own.
+
+    Printed parts state theirs in words, after lining."""
+    own = feed is not None and "print" not in part.process
+    rows = [
+        (size_name(key), quantity(key, value) + (_own_tolerance(feed, key) if feed is not None and own else ""))
+        for key, value in part.sizes
+    ]
     if not rows:
         return []
     head = (say("part.sizes"), say("table.value"))
     if width < WIDTH_MM:
         return table(f"sizes:{part.key}", head, rows, width=width)
     return side_by_side(f"sizes:{part.key}", head, rows)
+
+
+def _own_tolerance(feed: Feed, key: str) -> str:
+    tolerance = tolerance_of(feed, key)
+    return f" ±{number(tolerance)}" if tolerance else ""
 
 
 def left_over_blocks(asks: tuple[Ask, ...]) -> list[Block]:
@@ -286,6 +298,10 @@ def solid_tables(shape: Any) -> list[Block]:
     if rows:
         head = (say("flat.hole"), "x", "y", say("flat.diameter"), say("solid.from"), say("solid.to"))
         blocks += [heading(say("solid.holes_head"), 2.5), *side_by_side("holes", head, rows)]
+    slots = solid_view.slot_rows(m)
+    if slots:
+        ends = (say("solid.slot"), "x1", "y1", "x2", "y2", say("solid.width"), say("solid.from"), say("solid.to"))
+        blocks += [heading(say("solid.slots_head"), 2.5), *table("slots", ends, slots)]
     crosses = solid_view.cross_rows(m)
     if crosses:
         head = (say("flat.hole"), "x", "y", "z", say("solid.axis"), say("flat.diameter"))
