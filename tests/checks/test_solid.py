@@ -45,11 +45,25 @@ def test_cans_with_flats_are_refused(tmp_path: Path) -> None:
 
 
 @pytest.mark.slow
+def test_each_surface_is_measured_against_its_own_part() -> None:
+    feed = sample_feed("wire", "turned", choke=True)
+    parts = build_parts(feed)
+    groups = {g.name: g for g in containment(feed, parts)}
+    assert all(g.passed for g in groups.values())
+    assert set(groups) == {"loop and bars", "floor", "wall", "choke wall"}
+    assert feed.sizes.choke is not None
+    # 3 mm on the bore are 1.5 mm on the radius: into the metal or, for a smaller bore, out of it.
+    small = replace(feed.sizes.choke, bore_mm=feed.sizes.choke.bore_mm - 3.0)
+    off = {g.name: g for g in containment(replace(feed, sizes=replace(feed.sizes, choke=small)), parts)}
+    assert off["choke wall"].gap_mm == pytest.approx(1.5, abs=1e-6)
+    assert off["wall"].gap_mm == groups["wall"].gap_mm
+
+
+@pytest.mark.slow
 def test_a_can_that_is_not_compared_is_still_measured(tmp_path: Path) -> None:
-    feed = sample_feed("wire", "folded", choke=True)
-    assert all(group.passed for group in containment(feed, build_parts(feed)))
+    feed = sample_feed("wire", "folded")
     (note,) = solid_findings(feed, build_parts(feed), tmp_path / "loop.step")
     assert (note.code, note.severity, note.value) == ("CONS-302", "note", "not computed")
-    off = replace(feed, sizes=replace(feed.sizes, can_bore_mm=feed.sizes.can_bore_mm + 3.0))
+    off = replace(feed, sizes=replace(feed.sizes, can_bore_mm=feed.sizes.can_bore_mm - 3.0))
     codes = [(f.code, f.part) for f in solid_findings(off, build_parts(feed), tmp_path / "loop.step")]
     assert ("CONS-301", "wall") in codes
