@@ -76,10 +76,10 @@ def test_a_failure_leaves_the_older_pack(tmp_path: Path, error: BaseException | 
 
 
 def refusal(target: Path) -> str:
-    before = [(path, path.stat().st_mtime_ns) for path in sorted(target.parent.rglob("*"))]
+    before = [(path, path.lstat().st_mtime_ns) for path in sorted(target.parent.rglob("*"))]
     with pytest.raises(OutputError) as caught, new_folder(target) as temporary:
         fill(temporary, "new")
-    assert [(path, path.stat().st_mtime_ns) for path in sorted(target.parent.rglob("*"))] == before
+    assert [(path, path.lstat().st_mtime_ns) for path in sorted(target.parent.rglob("*"))] == before
     return str(caught.value)
 
 
