@@ -69,7 +69,7 @@ class RingLoad:
     stress_mpa: float
 
 
-def ring_load(  # noqa: PLR0917
+def ring_load(
     radius_mm: float, post_mm: float, ring: Section, post: Section, youngs_gpa: float, newton_per_mm: float
 ) -> RingLoad:
     """Sag of the far side and the largest stress, under a weight per length of the ring across its plane.
