@@ -28,6 +28,7 @@ from fabgen.theory.dish import half_angle_deg
 THETA_POINTS = 28
 PHI_POINTS = 10
 CUT_STEP_DEG = 1.0
+Cut = tuple[Real, Real, Real]
 
 
 @dataclass(frozen=True)
@@ -184,7 +185,7 @@ def cut_angles(step_deg: float = CUT_STEP_DEG) -> Real:
     return np.linspace(-180.0, 180.0, count)
 
 
-def plane_cut(pattern: Pattern, phi_deg: float, step_deg: float = CUT_STEP_DEG) -> tuple[Real, Real, Real]:
+def plane_cut(pattern: Pattern, phi_deg: float, step_deg: float = CUT_STEP_DEG) -> Cut:
     """A cut through the axis in the plane of ``phi_deg``: (angle in degrees, |co|^2, |cross|^2)."""
     angle = cut_angles(step_deg)
     phi = np.where(angle < 0, math.radians(phi_deg) + math.pi, math.radians(phi_deg))
@@ -213,11 +214,10 @@ def half_power_width_deg(angle_deg: Real, power: Real) -> float:
     return float(width)
 
 
-def beam(pattern: Pattern, power: float) -> Beam:
+def beam(pattern: Pattern, power: float, cuts: tuple[Cut, Cut] | None = None) -> Beam:
     """Widths in both planes, axial directivity 4 pi U / P, and front-to-back ratio. ``power``: the integral of
-    |E|^2 over the sphere, as ``dish_figures`` returns it."""
-    angle, e_plane, _ = plane_cut(pattern, 90.0)
-    _, h_plane, _ = plane_cut(pattern, 0.0)
+    |E|^2 over the sphere, as ``dish_figures`` returns it. ``cuts``: E- and H-plane where they are known already."""
+    (angle, e_plane, _), (_, h_plane, _) = cuts or (plane_cut(pattern, 90.0), plane_cut(pattern, 0.0))
     middle = len(angle) // 2
     phi = np.zeros(1)
     back_theta, back_phi = pattern(np.full(1, math.pi), phi)

@@ -10,7 +10,7 @@ import math
 import numpy as np
 
 from fabgen.job import Job
-from fabgen.sizing.dish import beam, edge_taper_db, half_angle_rad, plane_cut
+from fabgen.sizing.dish import Cut, beam, edge_taper_db, half_angle_rad, plane_cut
 from fabgen.sizing.evaluate import in_dish
 from fabgen.sizing.match import reflection, return_loss_db
 from fabgen.sizing.records import PatternCut, Predicted, Sizes
@@ -25,7 +25,8 @@ def predict(job: Job, sizes: Sizes, solution: Solution, sweep: Sweep) -> Predict
     """Everything the record promises about the feed."""
     target, half_angle = job.target.frequency_mhz, half_angle_rad(job.dish.focal_ratio)
     figures = in_dish(job, solution)
-    shape = beam(solution.far_field, figures.dish.power)
+    cuts = {phi: plane_cut(solution.far_field, phi) for phi in CUTS_DEG}
+    shape = beam(solution.far_field, figures.dish.power, (cuts[90.0], cuts[0.0]))
     response = build_response(sweep, sizes, job)
     wanted = job.wishes.return_loss_db
     return Predicted(
@@ -51,13 +52,13 @@ def predict(job: Job, sizes: Sizes, solution: Solution, sweep: Sweep) -> Predict
         system_noise_k=figures.noise.system_noise_k,
         g_over_t_db_per_k=figures.noise.g_over_t_db_per_k,
         gain=gain_points(sweep, sizes, job),
-        patterns=tuple(_cut(solution, phi, figures.dish.power) for phi in CUTS_DEG),
+        patterns=tuple(_cut(phi, cut, figures.dish.power) for phi, cut in cuts.items()),
         response=response,
     )
 
 
-def _cut(solution: Solution, phi_deg: float, power: float) -> PatternCut:
-    angle, co, cross = plane_cut(solution.far_field, phi_deg)
+def _cut(phi_deg: float, cut: Cut, power: float) -> PatternCut:
+    angle, co, cross = cut
 
     def directivity(values: Real) -> tuple[float, ...]:
         level = 10 * np.log10(np.maximum(4 * math.pi * values / power, 1e-10))
