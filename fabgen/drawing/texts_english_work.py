@@ -62,12 +62,16 @@ WORK: dict[str, str] = {
         "K that it gives into the job."
     ),
     "step.tool.tools": "printer, brake or vice with a bending bar, calliper.",
-    "step.tool.sheet.do": (
+    "step.tool.strip.do": (
         "Cut and bend the test strip first when the sheet or the brake is new, and put the K that it gives into the "
         "job."
     ),
-    "step.tool.sheet.tools": "brake or vice with a bending bar, calliper.",
-    "step.tool.sheet.title": "{n}. Test bend",
+    "step.tool.strip.tools": "brake or vice with a bending bar, calliper.",
+    "step.tool.strip.title": "{n}. Test bend",
+    "step.tool.form.title": "{n}. Bending forms",
+    "step.tool.form.do": "Print the bending forms and take off strings; bend a piece of spare wire over each first.",
+    "step.tool.form.tools": "printer, vice, protractor, calliper.",
+    "step.tool.form.measure": "angle and radius of the spare bends after letting go, as on the wire schedule.",
     "step.tool.measure": "flange of the test strip after bending, as on its page.",
     "step.body.title": "{n}. Floor and flange",
     "step.body.do": "Deburr all edges. Mark the direction of the gap (+x) and the floor's inner face on the part.",

@@ -19,6 +19,7 @@ from fabgen.drawing.paper import PAPERS
 from fabgen.drawing.texts import say
 from fabgen.drawing.texts_english import ENGLISH
 from fabgen.errors import FabgenError, JobError
+from fabgen.parts.build import build_parts
 from fabgen.parts.floor_plan import floor_bottom_mm
 from tests.drawing.books import FINDINGS, KINDS, book_of, feed_of, parts_of
 
@@ -202,3 +203,46 @@ def test_a_template_of_too_many_tiles_says_what_to_do_instead() -> None:
     hole = next(i for i in page.items if isinstance(i, Arc))
     assert (hole.cx - view.origin[0], hole.cy - view.origin[1]) == pytest.approx((400.0, 20.0))
     assert any("x = 400" in i.text for i in page.items if hasattr(i, "text"))
+
+
+def test_plates_of_the_capacitor_are_seen_on_their_face() -> None:
+    from fabgen.drawing.model import bounds
+    from fabgen.drawing.pages.truescale import _small
+
+    feed = feed_of("sheet-printed")
+    capacitor = replace(feed.capacitor, form="plates", plate_width_mm=8.0, film_mm=0.5, overlap_mm=5.0)
+    made = build_parts(replace(feed, capacitor=capacitor))
+    plates = [p for p in made if p.key.startswith("capacitor-") and p.thickness_mm is not None]
+    assert len(plates) == 3
+    for part in plates:
+        sizes, box = dict(part.sizes), bounds(_small(part))
+        assert (box.width, box.height) == pytest.approx((sizes["length_mm"], sizes["width_mm"]), abs=0.01)
+
+
+def test_the_lining_is_drawn_where_the_eye_sees_it() -> None:
+    from fabgen.drawing.pages.lining import lined_floor, lined_wall
+    from fabgen.drawing.pages.steps import ABOVE_EYE
+
+    n = ABOVE_EYE.towards_eye
+    bore, depth = 100.0, 30.0
+    wall, floor = lined_wall(bore, depth, ABOVE_EYE), lined_floor(bore, depth, ABOVE_EYE)
+    # The far half of the wall shows; its lines are as long as upright edges of that depth look.
+    assert 20 <= len(wall) <= 30
+    full = depth * math.hypot(n[0], n[1])
+    assert max(abs(line.y1 - line.y0) for line in wall) == pytest.approx(full, abs=1e-6)
+    # The rim's picture bounds everything: an ellipse raised by the depth.
+    for line in (*wall, *floor):
+        for x, y in ((line.x0, line.y0), (line.x1, line.y1)):
+            assert (x / (bore / 2)) ** 2 + ((y - full) / (bore / 2 * n[2])) ** 2 < 1.0 + 1e-3
+    # A can as deep as wide hides the near part of its floor.
+    assert len(lined_floor(bore, 100.0, ABOVE_EYE)) < len(floor)
+
+
+def test_the_step_of_the_lining_shows_the_can_and_both_foils() -> None:
+    from fabgen.drawing.model import Line
+
+    pages = [s for s in book_of("sheet-printed") if s.kind == "assembly"]
+    assert any(isinstance(i, Line) and i.role == "old" for s in pages for i in s.items)
+    title = next((s, t) for s in pages for t in s.texts if t.text.endswith("Lining"))
+    level = [i for i in title[0].items if isinstance(i, Line) and i.role == "new" and abs(i.y0 - title[1].y) < 70]
+    assert len(level) > 20

@@ -98,12 +98,21 @@ def _key(context: Context, kind: str, field: str) -> str:
     job = context.feed.job
     make, form = job.can.make, job.loop.form
     joint = "solder" if make == "printed" or tables.metal(job.can.metal).solderable else "bond"
-    level = "level" if kind == "choke" and _on_the_floor(context) else ""
-    for variant in (level, f"{make}-{form}", f"{form}-{joint}", make, form, joint):
+    for variant in (_special(context, kind), f"{make}-{form}", f"{form}-{joint}", make, form, joint):
         key = f"step.{kind}.{variant}.{field}"
         if has(key):
             return key
     return f"step.{kind}.{field}"
+
+
+def _special(context: Context, kind: str) -> str:
+    """The variant of a step that its parts decide; empty for the general one."""
+    keys = [part.key for part in context.parts]
+    if kind == "tool" and not any(k.startswith("jig") for k in keys):
+        return "strip"
+    if kind == "tool" and not any(k.startswith("bend-strip") for k in keys):
+        return "form"
+    return "level" if kind == "choke" and _on_the_floor(context) else ""
 
 
 def _on_the_floor(context: Context) -> bool:
