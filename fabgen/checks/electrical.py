@@ -17,6 +17,9 @@ from fabgen.stock import tables
 from fabgen.stock.records import Band
 from fabgen.theory import dish, exposure, waveguide
 
+LEAST_WISH_DB = 10.0
+"""The least return loss that a job may wish for."""
+
 
 @check("ELEC-201", "caution", "bore_mode_margin", source="Marcuvitz, Waveguide Handbook")
 def bore_above_cutoff(context: Context) -> Iterator[Fault]:
@@ -282,8 +285,8 @@ def static_charge(context: Context) -> Iterator[Fault]:
         feature="centre conductor",
         value=f"{context.sizes.series_capacitor_pf:.2f} pF in series",
         limit="path to ground",
-        message="loop and bars stand on the floor at ground for direct current, but the series capacitor leaves the "
-        "cable's centre conductor floating",
+        message="loop and bars stand on the floor at ground for direct current, but the series capacitor of "
+        f"{context.sizes.series_capacitor_pf:.2f} pF leaves the cable's centre conductor floating",
         cure="use a receiver whose input is grounded for direct current, or bridge the connector with 100 kilohm",
     )
 
@@ -360,4 +363,22 @@ def sure_enough(context: Context) -> Iterator[Fault]:
         limit=f"+-{band / 2:.1f} MHz",
         message=f"the computed resonance is sure to {unsure:.1f} MHz, but the matched band is only {band:.1f} MHz wide",
         cure=f"plan to trim tap and capacitor by up to {unsure:.1f} MHz after the first measurement",
+    )
+
+
+@check("ELEC-605", "caution", source="difference between two meshes of the field computation")
+def sure_of_the_match(context: Context) -> Iterator[Fault]:
+    """Return loss less its uncertainty against the wish."""
+    loss, wished = context.feed.predicted.return_loss_db, context.job.wishes.return_loss_db
+    least = loss - context.feed.settings.return_loss_uncertainty_db
+    if loss < wished or least >= wished:
+        return
+    yield Fault(
+        part="feed",
+        feature="match",
+        value=f"at least {least:.1f} dB",
+        limit=f"{wished:g} dB",
+        message=f"the computed return loss of {loss:.1f} dB is sure to {least:.1f} dB only; {wished:g} dB are wished",
+        cure=f"plan to trim tap and capacitor on the bench until {wished:g} dB are measured"
+        + (f", or wish for {down(least, 1.0):g} dB" if least >= LEAST_WISH_DB else ""),
     )

@@ -150,7 +150,7 @@ def lining_not_measured(context: Context) -> Iterator[Fault]:
         feature="lining",
         value=f"{lining.sheet_resistance_ohm:g} ohm per square, not measured",
         limit="own measurement",
-        message=f"the sheet resistance of {lining.name} differs by a factor of ten between makers and coats",
+        message=f"the sheet resistance of {lining.name} differs by a factor of 10 between makers and coats",
         cure="measure a painted square of 50 mm with 4 points and give can.lining_sheet_resistance_ohm",
         source=f"{lining.source.text}; {lining.source.known_from}",
     )

@@ -283,6 +283,12 @@ PAIRS: dict[str, Pair] = {
         "caution",
         "30.0 MHz",
     ),
+    "ELEC-605": Pair(
+        lambda: (replace(base(), settings=replace(base().settings, return_loss_uncertainty_db=15.0)), ()),
+        good(),
+        "caution",
+        "17.0 dB only",
+    ),
     "SHEET-101": Pair(
         lambda: alone(base(), sheet_part(bracket(folds=(fold(radius=0.8),)))),
         lambda: alone(base(), sheet_part(bracket())),
