@@ -17,7 +17,8 @@ import trimesh
 
 from fabgen.errors import GeometryError
 from fabgen.parts.build import build_parts
-from fabgen.parts.records import Part
+from fabgen.parts.records import Part, Place
+from fabgen.parts.screws import side_screws
 from fabgen.writers.mesh import mesh_of
 from fabgen.writers.step import write_step, write_step_assembly
 from fabgen.writers.step_text import canonical_step
@@ -151,6 +152,23 @@ def test_step_of_the_assembly_keeps_names_colours_and_places(tmp_path: Path) -> 
         assert any(leaf[2] == pytest.approx(part.colour, abs=1e-3) for leaf in near), part.key
     names = set(re.findall(r"PRODUCT\('([^']*)'", path.read_text(encoding="ascii")))
     assert names == {part.name for part in PARTS if part.solid} | {"sample feed"}
+
+
+def test_turned_copies_of_the_assembly_point_where_their_places_say(tmp_path: Path) -> None:
+    places = tuple(
+        Place(50 * math.cos(math.radians(a)), 50 * math.sin(math.radians(a)), 7.0, a - 90.0) for a in (0.0, 90.0, 215.0)
+    )
+    screw = side_screws("screw-x", "level screw", "M3", places, seat_y_mm=-1.0, length_mm=8.0)
+    write_step_assembly((screw,), tmp_path / "a.step")
+    leaves = read_step(tmp_path / "a.step")
+    assert len(leaves) == 3
+    for angle in (0.0, 90.0, 215.0):
+        x, y = math.cos(math.radians(angle)), math.sin(math.radians(angle))
+        solid = max((leaf[0] for leaf in leaves), key=lambda s: s.Center().x * x + s.Center().y * y)
+        away = [v.X * x + v.Y * y for v in solid.Vertices()]
+        # Head 3 mm high (ISO 4762, from memory) inside its seat at 49 mm, the shank's end 8 mm outside it.
+        assert (min(away), max(away)) == pytest.approx((46.0, 57.0), abs=1e-6)
+        assert solid.Center().z == pytest.approx(7.0, abs=1e-6)
 
 
 def test_canonical_order_does_not_depend_on_the_given_order() -> None:
