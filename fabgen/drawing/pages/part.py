@@ -79,7 +79,7 @@ def _draft(context: Context, part: Part) -> Draft:
         block, scale = loop_views(context, [Body(part, part.solid())], views * share - 3)
         blocks += [block, gap(3)]
     elif shape_of(part) is not None:
-        block, scale, left_over = solid_block(part, views * share - 3, context.feed.job.limits.projection)
+        block, scale, left_over = solid_block(part, views * share - 3, context.feed)
         blocks += [block, gap(3)]
     if pictured:
         left = room if strip else views - sum(b.height for b in blocks) - 3
@@ -177,7 +177,7 @@ def _break_line(x: float, y0: float, y1: float, over: float) -> Item:
     return Polyline(points, "thin")
 
 
-def solid_block(part: Part, room: float, projection: str) -> tuple[Block, str, tuple[Ask, ...]]:
+def solid_block(part: Part, room: float, feed: Feed) -> tuple[Block, str, tuple[Ask, ...]]:
     """Front view (cut open where it is hollow) and view from above, one scale, on one axis."""
     shape = shape_of(part)
     m = solid_view.measured(shape)
@@ -189,18 +189,27 @@ def solid_block(part: Part, room: float, projection: str) -> tuple[Block, str, t
         front = outside(say("view.front"), bodies, GAP, with_hidden=True)
     plan = outside(say("view.above"), bodies, ABOVE, with_hidden=not hollow)
     labels = solid_view.labels(m)
+    front_asks = _toleranced(part, feed, solid_view.front_asks(m))
 
     def extras(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
         plane = cutting_plane("B")(scale, items) if hollow else ()
         return (*solid_view.centre_lines(m, scale), *plane)
 
     for scale in scales_for((front, plan), WIDTH_MM, room):
-        a = dimensioned(front, solid_view.front_asks(m), scale)
+        a = dimensioned(front, front_asks, scale)
         b = dimensioned(plan, solid_view.plan_asks(m), scale, extras, labels=labels, width=WIDTH_MM - 14)
         if max(a.box.width, b.box.width) <= WIDTH_MM and a.box.height + b.box.height + 8 <= room:
             break
-    upper, lower = (a, b) if projection == "first" else (b, a)
+    upper, lower = (a, b) if feed.job.limits.projection == "first" else (b, a)
     return stacked(upper, lower, WIDTH_MM), scale_text(scale), (*a.left_over, *b.left_over)
+
+
+def _toleranced(part: Part, feed: Feed, asks: list[Ask]) -> list[Ask]:
+    """The bore's dimension with its own tolerance, on parts that have the bore as a size and are not lined."""
+    if "print" in part.process or "can_bore_mm" not in dict(part.sizes):
+        return asks
+    bore, text = feed.sizes.can_bore_mm, _own_tolerance(feed, "can_bore_mm")
+    return [replace(a, text=a.text + text) if a.name == "diameter" and abs(a.value - bore) < 1e-3 else a for a in asks]
 
 
 def picture(part: Part, room: float, width: float = WIDTH_MM, shown: tuple[Curve, ...] | None = None) -> Block:
