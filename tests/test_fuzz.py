@@ -63,6 +63,7 @@ def answer(text: str) -> None:
 
 
 @pytest.mark.slow
+@pytest.mark.thorough
 def test_twenty_thousand_mutated_jobs() -> None:
     chance = random.Random(1420)
     sources = [item.text for item in templates()]

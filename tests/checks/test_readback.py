@@ -304,6 +304,7 @@ def test_written_packs_pass_when_read_back(feed: Feed) -> None:
 
 
 @pytest.mark.slow
+@pytest.mark.thorough
 @settings(max_examples=300, deadline=None, suppress_health_check=[HealthCheck.too_slow])
 @given(feeds())
 def test_three_hundred_written_packs_pass_when_read_back(feed: Feed) -> None:

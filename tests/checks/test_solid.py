@@ -26,6 +26,7 @@ def test_simulated_surfaces_lie_in_the_drawn_metal(form: str, make: str) -> None
 
 
 @pytest.mark.slow
+@pytest.mark.thorough
 @pytest.mark.parametrize("form", ["wire", "sheet"])
 def test_the_drawn_solid_computes_to_the_strip_model(form: str, tmp_path: Path) -> None:
     # the reference is our own solver on the closed surface of the drawn loop, in place of strips

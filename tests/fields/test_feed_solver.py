@@ -130,6 +130,7 @@ def test_quadrature_is_fine_enough() -> None:
 
 
 @pytest.mark.slow
+@pytest.mark.thorough
 @FORMS
 def test_half_edge_length_changes_little(form: str) -> None:
     feed = a_feed(form)

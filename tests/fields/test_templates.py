@@ -23,6 +23,7 @@ def _sizes(name: str) -> tuple[Sizes, float]:
 
 
 @pytest.mark.slow
+@pytest.mark.thorough
 @pytest.mark.parametrize("name", NAMES)
 def test_half_the_edge_length_moves_little(name: str) -> None:
     # limits of the project: reflection at the target by 0.03, resonance by 0.4 percent

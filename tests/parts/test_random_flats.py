@@ -68,7 +68,8 @@ def flats_of(feed: Feed) -> list[Part]:
 
 
 @pytest.mark.parametrize(
-    "block", [pytest.param(b, marks=() if b == 0 else pytest.mark.slow) for b in range(16)]
+    "block",
+    [pytest.param(b, marks=() if b == 0 else (pytest.mark.slow, pytest.mark.thorough)) for b in range(16)],
 )
 def test_random_parts_are_sound_or_refused(block: int) -> None:
     written = 0

@@ -21,6 +21,8 @@ from tests.samples import sample_job
 TEMPLATES = sorted((Path(__file__).parents[2] / "templates").glob("*.toml"))
 FINE = ("hydrogen-wire",)
 """Templates whose half-edge mesh runs in the suite: it costs eight times a template's own match."""
+QUICK = ("hydrogen-wire",)
+"""Templates matched in every run; the packs of the other tests size the hydrogen-line feed of brass."""
 
 pytestmark = pytest.mark.slow
 
@@ -30,7 +32,9 @@ def template(name: str) -> MatchedFeed:
     return find_matched(read_job(next(p for p in TEMPLATES if p.stem == name)))
 
 
-@pytest.mark.parametrize("name", [p.stem for p in TEMPLATES])
+@pytest.mark.parametrize(
+    "name", [pytest.param(p.stem, marks=() if p.stem in QUICK else pytest.mark.thorough) for p in TEMPLATES]
+)
 def test_template_is_matched(name: str) -> None:
     found = template(name)
     job = found.setting.job
@@ -40,6 +44,7 @@ def test_template_is_matched(name: str) -> None:
         assert in_dish(job, found.matched.solution).dish.aperture_efficiency >= least
 
 
+@pytest.mark.thorough
 @pytest.mark.parametrize("name", FINE)
 def test_template_on_a_mesh_of_half_the_edge(name: str) -> None:
     found = template(name)
@@ -49,6 +54,7 @@ def test_template_on_a_mesh_of_half_the_edge(name: str) -> None:
     assert return_loss_db(reflection(fine.impedance_ohm, sizes.series_capacitor_pf, target)) >= 16
 
 
+@pytest.mark.thorough
 @pytest.mark.parametrize(
     ("frequency_mhz", "loop", "refusal"),
     [
@@ -121,6 +127,7 @@ def test_hydrogen_line_feed_against_common_practice() -> None:
     assert beam(high.far_field, wide.power).directivity_dbi < shape.directivity_dbi
 
 
+@pytest.mark.thorough
 @pytest.mark.parametrize(
     ("focal_ratio", "choke", "least"),
     [(0.35, False, 0.68), (0.35, True, 0.72), (0.40, False, 0.72), (0.50, False, 0.72)],
