@@ -171,7 +171,8 @@ def _second_mesh(job: Job, matched: Matched, coarse: Solver, slope: float) -> _S
     first = matched.reflection(target)
     moved = abs(reflection(other.impedance_ohm, sizes.series_capacitor_pf, target) - first)
     return _SecondMesh(
-        resonance_mhz=abs(change.imag / slope),
+        # Either part of the change may turn up in the other on the next mesh.
+        resonance_mhz=abs(change / slope),
         return_loss_db=return_loss_db(first) - return_loss_db(complex(abs(first) + moved)),
         reflection_change=moved,
     )
