@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import ast
+import re
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -190,3 +191,10 @@ def test_every_data_file_is_in_the_wheel() -> None:
         if path.is_file() and path.suffix not in {".py", ".md"} and "__pycache__" not in path.parts:
             package = ".".join(path.parent.relative_to(ROOT).parts)
             assert any(path.match(pattern) for pattern in data.get(package, [])), f"{path.name} is not in the wheel"
+
+
+def test_the_page_for_developers_shows_these_layers() -> None:
+    text = (ROOT / "DEVELOPERS.md").read_text(encoding="utf-8")
+    cells = re.findall(r"^\| (`.*?`) \|", text, re.MULTILINE)
+    shown = [{f"fabgen.{name}" for name in re.findall(r"`([^`]+)`", cell)} for cell in cells]
+    assert shown == [set(row) - {"fabgen", "fabgen.__main__"} for row in LAYERS]
