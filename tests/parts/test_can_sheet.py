@@ -134,13 +134,14 @@ def test_every_solid_is_sound_and_has_the_flat_patterns_volume(name: str) -> Non
     from fabgen.stock import tables
 
     for part in parts_of(name).values():
-        if part.solid is None:
+        if part.solid is None or part.process == ("buy",):
             continue
         solid = solid_of(name, part.key)
         volume = part.mass_kg / tables.metal(part.material).density_kg_per_m3 * 1e9
         assert solid.isValid()
         assert len(solid.Solids()) == 1
-        assert solid.Volume() == pytest.approx(volume, rel=6e-4 if "wall" in part.key else 1e-9)
+        wall = 6e-4 if not feed_of(name).sizes.can_flats else 3e-6
+        assert solid.Volume() == pytest.approx(volume, rel=wall if "wall" in part.key else 1e-6)
 
 
 @pytest.mark.parametrize("name", [pytest.param("rolled", marks=pytest.mark.slow), "rolled brass"])
