@@ -91,7 +91,7 @@ def containment(feed: Feed, parts: Sequence[Part]) -> tuple[Containment, ...]:
     ]
     choke = drawn.can.choke
     if choke is not None:
-        ring = CanGeometry(choke.radius_m, choke.depth_m)
+        ring = CanGeometry(choke.radius_m, choke.depth_m, drawn.can.flats)
         samples.append(("choke wall", _off_the_seam(_wall_points(ring, choke.floor_z_m)), sizes.wall_mm / 2))
     return tuple(
         Containment(name, len(points), float(gaps_mm(points, _drawn_as(name, parts)).max()), limit)

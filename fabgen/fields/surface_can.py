@@ -90,11 +90,8 @@ def _choke(can: CanGeometry, rim: FloatArray, plan: MeshPlan) -> list[Mesh]:
     choke = can.choke
     if choke is None:
         return []
+    # with flats the ring is a prism too
     outer = rim * (choke.radius_m / can.radius_m)
-    if can.flats:
-        angle = np.arctan2(rim[:, 1], rim[:, 0])
-        outer = choke.radius_m * np.stack([np.cos(angle), np.sin(angle)], -1)
-        outer[[0, -1], 1] = 0.0
     cells = plan.can.choke_floor
     t = (np.arange(cells + 1) / cells)[:, None, None]
     nodes = np.zeros((cells + 1, len(rim), 3))
