@@ -15,6 +15,7 @@ from __future__ import annotations
 from collections import OrderedDict
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import cached_property
 from typing import Any, TypeVar
 
 import numpy as np
@@ -35,6 +36,7 @@ from fabgen.fields.system import (
     Factors,
     QuadratureSettings,
     check_memory,
+    dissipated,
     overlap,
     symmetric_factors,
     symmetric_solve,
@@ -251,6 +253,7 @@ class _System:
         y = symmetric_solve(self._factors, right[n:] - self._reduced.T @ right[:n])
         return np.concatenate([a - self._reduced @ y, y])
 
+    @cached_property
     def condition(self) -> float:
         """Estimated one-norm condition of the two factorised blocks, the larger."""
         outer, _ = lapack.zgecon(self._factors[0], self._schur_norm)
@@ -276,7 +279,7 @@ def _solution(
     return FieldSolution(
         frequency_hz, impedance, current_elements(ready.mesh, ready.functions, planes, unit),
         0.5 * impedance.real, _ohmic_power(ready.mesh, ready.functions, surface, unit),
-        _residual(matrix, currents, drive), system.condition(),
+        _residual(matrix, currents, drive), system.condition,
         ready.mesh.longest_edge_m() * frequency_hz / SPEED_OF_LIGHT, len(ready.mesh.triangles), ready.functions.count,
         2 in planes,
     )
@@ -288,9 +291,8 @@ def _ohmic_power(
     resistance = surface.per_triangle(mesh).real
     if not resistance.any():
         return 0.0
-    gram = overlap(mesh, functions, resistance)
-    # half of Re(I* R I), twice for the two halves of the symmetric feed
-    return float((currents.conj() @ gram @ currents).real)
+    # half of R |J|^2, twice for the two halves of the symmetric feed
+    return dissipated(mesh, functions, resistance, currents)
 
 
 def solve_mesh(

@@ -188,15 +188,20 @@ def _shared_rows(dof: IntArray, marks: IntArray, count: int) -> list[IntArray]:
     return places
 
 
-def overlap(mesh: Mesh, f: EdgeFunctions, per_triangle: NDArray[Any]) -> NDArray[Any]:
-    """Matrix (N, N) of sum over triangles of x_t <f_m, f_n>_t, in closed form; ``per_triangle`` (T,)."""
+def _local_overlap(mesh: Mesh, f: EdgeFunctions, per_triangle: NDArray[Any]) -> NDArray[Any]:
+    """x_t <f_a, f_b>_t for the three edges of each triangle without sign, in closed form (T, 3, 3)."""
     c = mesh.corners_m
     centre = c.mean(1)
     square = (np.einsum("tcx,tcx->t", c, c) + 9 * np.einsum("tx,tx->t", centre, centre)) / 12
     rest = np.einsum("tcx,tx->tc", c, centre)
     local = square[:, None, None] - rest[:, :, None] - rest[:, None, :] + np.einsum("tax,tbx->tab", c, c)
     local = local * (f.length_m[:, :, None] * f.length_m[:, None, :])
-    local = local * (np.asarray(per_triangle) / (4 * mesh.areas_m2()))[:, None, None]
+    return np.asarray(local * (np.asarray(per_triangle) / (4 * mesh.areas_m2()))[:, None, None])
+
+
+def overlap(mesh: Mesh, f: EdgeFunctions, per_triangle: NDArray[Any]) -> NDArray[Any]:
+    """Matrix (N, N) of sum over triangles of x_t <f_m, f_n>_t; ``per_triangle`` (T,)."""
+    local = _local_overlap(mesh, f, per_triangle)
     out = np.zeros((f.count, f.count), dtype=local.dtype)
     for s in range(2):
         for t in range(2):
@@ -206,6 +211,13 @@ def overlap(mesh: Mesh, f: EdgeFunctions, per_triangle: NDArray[Any]) -> NDArray
             mask = (rows >= 0) & (cols >= 0)
             np.add.at(out, (rows[mask], cols[mask]), value[mask])
     return out
+
+
+def dissipated(mesh: Mesh, f: EdgeFunctions, per_triangle: FloatArray, currents: ComplexArray) -> float:
+    """Sum over triangles of R_t times the integral of |J|^2; currents (N,), ``per_triangle`` (T,) in ohm per square."""
+    edge = (np.append(currents, 0.0)[f.dof] * f.sign).sum(-1)
+    local = _local_overlap(mesh, f, per_triangle)
+    return float(np.einsum("ta,tab,tb->", edge.conj(), local, edge).real)
 
 
 def mirrored_sum(matrix: ComplexArray, block: int = 256) -> ComplexArray:

@@ -3,7 +3,7 @@
 A table of cans that were best for a row of half angles starts the search; a parabola through three bores, then
 through three depths, computed with the job's own loop, finds the best one nearby.
 
-Depends on: errors, job, sizing.can_start, sizing.evaluate, sizing.rounding, sizing.solver,
+Depends on: errors, job, stock, theory, sizing.can_start, sizing.evaluate, sizing.rounding, sizing.solver,
 sizing.trial.
 """
 
@@ -23,7 +23,8 @@ from fabgen.sizing.layout import LoopStock
 from fabgen.sizing.match import SolveSizes, tap_in_range_mm
 from fabgen.sizing.records import CanTrial, ChokeSizes
 from fabgen.sizing.rounding import round_to
-from fabgen.sizing.trial import WALL_MM, CanShape, FrontPlace, Setting, first_sizes
+from fabgen.sizing.trial import FLOOR_MM, WALL_MM, CanShape, FrontPlace, Setting, first_sizes
+from fabgen.stock.joints import nearest_choke_floor_mm
 from fabgen.theory.waveguide import cutoff_bore_mm
 
 BORE_STEP = 0.028
@@ -209,10 +210,13 @@ class _Search:
             return replace(can, choke=replace(can.choke, bore_mm=max(value, round_to(least, self.step))))
         if name == "floor_z_mm":
             highest = max(can.choke.floor_z_mm, round_to(can.depth_mm - can.choke.depth_mm, self.step))
-            return replace(can, choke=replace(can.choke, floor_z_mm=min(max(value, 0.0), highest)))
+            floor = buildable_choke_floor_mm(self.job, can, min(max(value, 0.0), highest), highest)
+            return replace(can, choke=replace(can.choke, floor_z_mm=floor))
         rim = can.choke.floor_z_mm + can.choke.depth_mm
         fixed = isinstance(self.job.can.choke, Choke) and self.job.can.choke.floor_z_mm is not None
         floor = can.choke.floor_z_mm if fixed else max(0.0, round_to(rim - value, self.step))
+        if not fixed:
+            floor = buildable_choke_floor_mm(self.job, can, floor, can.depth_mm - value)
         return replace(can, choke=replace(can.choke, depth_mm=value, floor_z_mm=floor))
 
     def merit(self, can: CanShape) -> float:
@@ -259,6 +263,15 @@ def parabola_top(points: list[tuple[float, float]]) -> float:
     return min(max(top, low - margin), high + margin)
 
 
+def buildable_choke_floor_mm(job: Job, can: CanShape, wanted_mm: float, highest_mm: float) -> float:
+    """The height of the choke's floor nearest to the one wanted that its make allows, 0 where that is too high."""
+    make = job.can.make
+    floor = nearest_choke_floor_mm(
+        wanted_mm, make, can.bore_mm, job.can.wall_mm or WALL_MM[make], job.can.floor_mm or FLOOR_MM[make]
+    )
+    return floor if floor <= max(highest_mm, wanted_mm) else 0.0
+
+
 def choke_for(job: Job, given: Choke, can: CanShape) -> ChokeSizes:
     """The choke's sizes: what the job gives, the rest from the starting table."""
     step, wavelength = job.limits.resolution_mm, job.wavelength_mm
@@ -268,7 +281,7 @@ def choke_for(job: Job, given: Choke, can: CanShape) -> ChokeSizes:
     depth = given.depth_mm or round_to(min(CHOKE.depth * wavelength, room), step)
     floor = given.floor_z_mm
     if floor is None:
-        floor = max(0.0, round_to(room - depth, step))
+        floor = buildable_choke_floor_mm(job, can, max(0.0, round_to(room - depth, step)), room)
     if bore <= can.bore_mm + 2 * wall:
         raise JobError(
             f"can.choke.bore_mm is {bore:g} mm; it must clear the can's outside of {can.bore_mm + 2 * wall:g} mm"
