@@ -2,7 +2,8 @@
 
 The kernel numbers entities in the order of memory addresses and counts occurrences through the life of the
 process. Each entity is identified instead by a hash of its text with its references replaced by their own
-hashes; roots are sorted by that hash and everything is renumbered from them.
+hashes; roots are sorted by that hash and everything is renumbered from them. Where two edges meet the kernel keeps
+the corner of either, and they differ by rounding: numbers below 1e-11 are written as zero.
 
 Depends on: errors.
 """
@@ -12,7 +13,7 @@ from __future__ import annotations
 import hashlib
 import re
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from fabgen.errors import OutputError
 
@@ -21,6 +22,7 @@ _TOKEN = re.compile(r"('(?:[^']|'')*')|#(\d+)")
 _OCCURRENCE = re.compile(r"NEXT_ASSEMBLY_USAGE_OCCURRENCE\('[^']*'")
 _BREAK = re.compile(r"\s*\n\s*")
 _NUMBER = re.compile(r"#(\d+)")
+_NOISE = re.compile(r"-?\d\.\d*E-(?:1[2-9]|[2-9]\d|\d{3})(?=[,)])|-0\.(?=[,)])")
 
 
 @dataclass(frozen=True)
@@ -61,6 +63,8 @@ def _entity(body: str) -> _Entity:
         body = _BREAK.sub("", body)
     if body.startswith("NEXT_"):
         body = _OCCURRENCE.sub("NEXT_ASSEMBLY_USAGE_OCCURRENCE(''", body)
+    if "E-" in body or "-0." in body:
+        body = _NOISE.sub("0.", body)
     if "'" in body.replace("''", ""):
         return _entity_with_text(body)
     pieces = _NUMBER.split(body)
@@ -105,9 +109,13 @@ def _post_order(roots: Iterable[int], entities: Mapping[int, _Entity]) -> list[i
     return order
 
 
-def _hashes(entities: Mapping[int, _Entity]) -> dict[int, str]:
+def _hashes(entities: dict[int, _Entity]) -> dict[int, str]:
+    """Each entity's hash; puts the faces of shells, a set without order (ISO 10303-42), in the order of theirs."""
     hashes: dict[int, str] = {}
     for node in _post_order(entities, entities):
+        if entities[node].texts[0].startswith("CLOSED_SHELL("):
+            faces = sorted(entities[node].references, key=lambda n: hashes[n])
+            entities[node] = replace(entities[node], references=tuple(faces))
         text = entities[node].written(hashes)
         hashes[node] = hashlib.blake2b(text.encode(), digest_size=16).hexdigest()
     return hashes

@@ -180,6 +180,15 @@ def test_canonical_order_does_not_depend_on_the_given_order() -> None:
     assert canonical_step(canonical_step(one)) == canonical_step(one)
 
 
+def test_rounding_and_the_order_of_faces_change_no_byte() -> None:
+    head = "ISO-10303-21;\nHEADER;\nENDSEC;\nDATA;\n"
+    tail = "ENDSEC;\nEND-ISO-10303-21;\n"
+    one = f"{head}#1=POINT('',(6.123E-17,-0.,1.E-07));\n#2=POINT('',(2.,3.,0.));\n#3=CLOSED_SHELL('',(#1,#2));\n{tail}"
+    two = f"{head}#1=POINT('',(2.,3.,0.));\n#2=POINT('',(-1.1E-16,0.,1.E-07));\n#3=CLOSED_SHELL('',(#1,#2));\n{tail}"
+    assert canonical_step(one) == canonical_step(two)
+    assert "(0.,0.,1.E-07)" in canonical_step(one)
+
+
 def test_stl_is_a_closed_mesh_within_the_chord_error(tmp_path: Path) -> None:
     path = tmp_path / "can.stl"
     write_stl(CAN, path)
