@@ -18,6 +18,7 @@ from typing import TypeAlias
 
 from fabgen import __version__
 from fabgen.errors import FabgenError
+from fabgen.resources import one_linear_algebra_thread
 
 EXIT_STATUSES = """exit status:
   0  done                         5  the output cannot be written
@@ -169,6 +170,7 @@ def main(argv: Sequence[str] | None = None) -> int:
     for stream in (sys.stdout, sys.stderr):
         with contextlib.suppress(AttributeError, ValueError):
             stream.reconfigure(errors="backslashreplace")  # type: ignore[union-attr]
+    one_linear_algebra_thread()
     parser = build_parser()
     debug = False
     try:

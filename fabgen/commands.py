@@ -169,9 +169,11 @@ def pack(arguments: argparse.Namespace) -> int:
 
         feed = sized_feed(job, display, _cache(arguments))
         report = write_pack(feed, arguments.output, options, display)
+    from fabgen.report import loss_text
+
     counts = {word: sum(f.severity == word for f in report.findings) for word in ("stop", "caution", "note")}
     _out(
-        f"{report.folder}: {len(report.files) + 1} files, return loss {feed.predicted.return_loss_db:.1f} dB at "
+        f"{report.folder}: {len(report.files) + 1} files, return loss {loss_text(feed.predicted.return_loss_db)} at "
         f"{job.target.frequency_mhz:g} MHz; {counts['caution']} cautions and {counts['note']} notes in findings.csv"
         + (f"; WRITTEN DESPITE {counts['stop']} STOP FINDINGS" if counts["stop"] else "")
     )

@@ -6,6 +6,7 @@ Depends on: errors.
 from __future__ import annotations
 
 import contextlib
+import os
 import signal
 import sys
 import threading
@@ -39,6 +40,16 @@ def memory_mib() -> dict[str, int]:
             if soft != resource.RLIM_INFINITY:
                 bounds["the limit set by ulimit"] = min(soft // MIB, bounds.get("the limit set by ulimit", soft // MIB))
     return bounds
+
+
+def one_linear_algebra_thread() -> None:
+    """One thread for the linear algebra library, unless the user set another number; before numpy is imported.
+
+    Its sums depend on how many threads share them, and a pack must be the same to the byte on any number of cores;
+    besides, its threads wait in busy loops beside ours and cost more than they bring at these sizes.
+    """
+    for name in ("OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "OMP_NUM_THREADS", "VECLIB_MAXIMUM_THREADS"):
+        os.environ.setdefault(name, "1")
 
 
 def require_memory(needed_mib: int = NEEDED_MIB) -> None:
