@@ -198,3 +198,13 @@ def test_the_page_for_developers_shows_these_layers() -> None:
     cells = re.findall(r"^\| (`.*?`) \|", text, re.MULTILINE)
     shown = [{f"fabgen.{name}" for name in re.findall(r"`([^`]+)`", cell)} for cell in cells]
     assert shown == [set(row) - {"fabgen", "fabgen.__main__"} for row in LAYERS]
+
+
+def test_the_cad_kernel_is_loaded_before_netgen() -> None:
+    """Netgen brings an older copy of the kernel; loaded first, it serves both and changes solids and STEP files."""
+    for path in modules():
+        lines = [line.strip() for line in path.read_text(encoding="utf-8").splitlines()]
+        for number, line in enumerate(lines):
+            if re.match(r"(from|import) netgen", line):
+                before = lines[max(0, number - 2) : number]
+                assert any(text.startswith("import OCP") for text in before), f"{path.name}:{number + 1}"

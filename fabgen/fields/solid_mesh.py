@@ -46,6 +46,7 @@ def solid_mesh(drawn: SolidLoop) -> Mesh:
 
     Raises GeometryError where the solid cannot be cut or meshed.
     """
+    import OCP.gp  # noqa: F401 - first: loaded after netgen, the CAD kernel runs on netgen's older copy of itself
     from netgen.occ import Box, Glue, OCCGeometry, Pnt
 
     shape = OCCGeometry(str(drawn.step_file)).shape
@@ -75,6 +76,7 @@ def _bar_pieces(drawn: SolidLoop) -> list[tuple[float, float]]:
 
 def _sheet(drawn: SolidLoop, low: float, high: float) -> Any:
     """Rectangle in the plane of the bars; it splits the bar's surface where the crossing meets it."""
+    import OCP.gp  # noqa: F401 - first: loaded after netgen, the CAD kernel runs on netgen's older copy of itself
     from netgen.occ import Face, Pnt, Segment, Wire
 
     x, y = drawn.leg_x_mm, drawn.bar_reach_mm
@@ -83,6 +85,7 @@ def _sheet(drawn: SolidLoop, low: float, high: float) -> Any:
 
 
 def _can_faces(drawn: SolidLoop, quarter: Any, half: Any) -> tuple[Any, Any]:
+    import OCP.gp  # noqa: F401 - first: loaded after netgen, the CAD kernel runs on netgen's older copy of itself
     from netgen.occ import Cylinder, Pnt, Z
 
     radius = drawn.bore_mm / 2
@@ -110,6 +113,7 @@ def _name(face: Any, drawn: SolidLoop) -> str:
 
 
 def _meshed(shape: Any, drawn: SolidLoop) -> Mesh:
+    import OCP.gp  # noqa: F401 - first: loaded after netgen, the CAD kernel runs on netgen's older copy of itself
     from netgen.meshing import MeshingStep
     from netgen.occ import OCCGeometry
 

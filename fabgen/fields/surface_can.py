@@ -128,6 +128,7 @@ def _moved_floor(can: CanGeometry, plan: MeshPlan) -> Mesh:
 
 @lru_cache(maxsize=64)
 def _floor(radius_m: float, flats: int, rim_cells: int, frame: PatchFrame, edge_m: float) -> Mesh:
+    import OCP.gp  # noqa: F401 - first: loaded after netgen, the CAD kernel runs on netgen's older copy of itself
     from netgen.geom2d import SplineGeometry
 
     rim = rim_nodes(CanGeometry(radius_m, radius_m, flats), rim_cells)

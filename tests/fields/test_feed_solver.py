@@ -182,6 +182,7 @@ def _axial_field(position: np.ndarray, moment: np.ndarray, z: float) -> complex:
 
 
 @pytest.mark.slow
+@pytest.mark.thorough
 def test_sweep_against_direct_solves() -> None:
     feed = a_feed("wire")
     solver = FeedSolver(plan_mesh(feed, WAVE, 16))
