@@ -10,10 +10,6 @@ from pathlib import Path
 
 import pytest
 
-# as the command line sets it, before anything imports numpy
-for _name in ("OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "OMP_NUM_THREADS"):
-    os.environ.setdefault(_name, "1")
-
 ROOT = Path(__file__).parent.parent
 
 
