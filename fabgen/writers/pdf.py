@@ -5,6 +5,9 @@ Depends on: drawing.
 
 from __future__ import annotations
 
+import contextlib
+import os
+from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -34,14 +37,15 @@ def write_pdf(sheets: tuple[Sheet, ...], path: Path, metadata: Metadata) -> None
     _register_fonts()
     first = sheets[0]
     try:
-        canvas = Canvas(
-            str(path),
-            pagesize=(first.width_mm * POINTS_PER_MM, first.height_mm * POINTS_PER_MM),
-            invariant=1,
-            pageCompression=1,
-            initialFontName=FONT_NAMES[False],
-            lang="en",
-        )
+        with _fixed_date():
+            canvas = Canvas(
+                str(path),
+                pagesize=(first.width_mm * POINTS_PER_MM, first.height_mm * POINTS_PER_MM),
+                invariant=1,
+                pageCompression=1,
+                initialFontName=FONT_NAMES[False],
+                lang="en",
+            )
         _describe(canvas, metadata)
         for sheet in sheets:
             _page(canvas, sheet)
@@ -51,6 +55,17 @@ def write_pdf(sheets: tuple[Sheet, ...], path: Path, metadata: Metadata) -> None
             f"The sheets could not be written to {path.name}: {error.strerror or error}. "
             "Give a folder that can be written and has 3 MB free."
         ) from error
+
+
+@contextlib.contextmanager
+def _fixed_date() -> Iterator[None]:
+    """The library takes its fixed date from SOURCE_DATE_EPOCH where that is set; a pack is the same everywhere."""
+    kept = os.environ.pop("SOURCE_DATE_EPOCH", None)
+    try:
+        yield
+    finally:
+        if kept is not None:
+            os.environ["SOURCE_DATE_EPOCH"] = kept
 
 
 def _register_fonts() -> None:
