@@ -125,13 +125,11 @@ def adaptive_sweep(
     samples = [sample(float(f)) for f in centres]
     dense = np.linspace(start, stop, 801)
     previous = measure(dense, _fit(samples[:-1])(dense))
-    quiet = 0
     while True:
         fit = _fit(samples)
         current = measure(dense, fit(dense))
         change = np.abs(current - previous)
-        quiet = quiet + 1 if change.max() < tolerance else 0
-        if quiet == 1 or len(centres) >= most:
+        if change.max() < tolerance or len(centres) >= most:
             break
         centres.append(_next_frequency(dense, change, centres))
         samples.append(sample(centres[-1]))

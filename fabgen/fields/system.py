@@ -159,10 +159,6 @@ class Assembler:
         cumulative = np.concatenate([[0], np.cumsum(work)])
         return np.searchsorted(cumulative, np.linspace(0, cumulative[-1], SLICES + 1)).astype(np.int64)
 
-    def overlap(self, per_triangle: NDArray[Any]) -> NDArray[Any]:
-        """Matrix of sum over triangles of x_t <f_m, f_n>_t, for surface impedance or dissipated power."""
-        return overlap(self.mesh, self.functions, per_triangle)
-
 
 def _stacked(tables: list[NearTable]) -> NearTable:
     """Tables of single reflections one after the other."""
