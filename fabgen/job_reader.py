@@ -88,12 +88,17 @@ def job_from_data(raw: dict[str, Any], where: str = "job") -> Job:
     return job
 
 
+SHORT_TABLE = 20
+
+
 def unknown_names(job: Job) -> Iterator[str]:
     """Names in the job that no stock table has, each with the nearest that there is."""
     for key, name, kind in _stock_names(job):
         known = [row.key for row in tables.all_rows(kind)]
         if name not in known:
-            yield f"{key} = {name!r} is not in the stock tables{_nearest(name, known)}; see: fabgen stock {kind}"
+            # a long table is left to the command that lists it
+            allowed = f"; allowed: {', '.join(known)}" if len(known) <= SHORT_TABLE else ""
+            yield f"{key} = {name!r} is not in the stock tables{_nearest(name, known)}{allowed}; see: fabgen stock {kind}"
     for key, metal, temper in (
         ("loop.temper", job.loop.metal, job.loop.temper),
         ("can.temper", job.can.metal, job.can.temper),
