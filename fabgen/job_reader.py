@@ -98,7 +98,8 @@ def unknown_names(job: Job) -> Iterator[str]:
         if name not in known:
             # a long table is left to the command that lists it
             allowed = f"; allowed: {', '.join(known)}" if len(known) <= SHORT_TABLE else ""
-            yield f"{key} = {name!r} is not in the stock tables{_nearest(name, known)}{allowed}; see: fabgen stock {kind}"
+            near = _nearest(name, known)
+            yield f"{key} = {name!r} is not in the stock tables{near}{allowed}; see: fabgen stock {kind}"
     for key, metal, temper in (
         ("loop.temper", job.loop.metal, job.loop.temper),
         ("can.temper", job.can.metal, job.can.temper),
