@@ -12,14 +12,17 @@ from fabgen.sizing.records import (
     ChokeSizes,
     Feed,
     GainPoint,
+    JointCurrent,
     Mode,
     PatternCut,
     Predicted,
     Response,
+    SeamCurrent,
     SelfCheck,
     Sensitivity,
     Settings,
     Sizes,
+    WallCurrent,
     Yield,
 )
 
@@ -107,10 +110,22 @@ def sample_predicted(job: Job) -> Predicted:
         polarisation_efficiency=0.985, spillover=0.12, edge_taper_db=-11.5, half_power_beamwidth_e_deg=58.0,
         half_power_beamwidth_h_deg=60.0, directivity_dbi=9.3, front_to_back_db=19.0, phase_centre_mm=40.0,
         ohmic_loss_db=0.03, radiation_efficiency=0.993, spillover_noise_k=12.0, feed_noise_k=2.0,
-        system_noise_k=55.0, g_over_t_db_per_k=9.0,
+        system_noise_k=55.0, g_over_t_db_per_k=9.0, wall_current=sample_wall_current(job),
         gain=(GainPoint(900.0, -20.0, -29.0, -0.2), GainPoint(f0, 9.0, 0.0, -32.0)),
         patterns=(PatternCut(90.0, theta, cut, cross), PatternCut(0.0, theta, cut, cross)),
         response=Response(freqs, refl, gain),
+    )
+
+
+def sample_wall_current(job: Job) -> WallCurrent:
+    """Currents by the angle as in the dominant mode alone."""
+    angles = tuple(5.0 * i for i in range(37))
+    crossing = tuple(8.0 * abs(math.cos(math.radians(a))) for a in angles)
+    names = ("wall", "choke wall") if job.can.choke else ("wall",)
+    joints = ["wall on floor", *(["choke floor on wall", "choke wall on its floor"] if job.can.choke else [])]
+    return WallCurrent(
+        tuple(SeamCurrent(name, 8.0, angles, crossing) for name in names),
+        tuple(JointCurrent(name, 7.0, 6.0, 12.0) for name in joints),
     )
 
 

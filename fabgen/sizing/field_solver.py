@@ -1,6 +1,6 @@
 """The field computation as sizing's ``Solver``: losses from the job's stock, mesh density, solutions with a pattern.
 
-Depends on: job, fields, sizing.field_model, sizing.records, sizing.solver, stock.
+Depends on: job, fields, sizing.field_model, sizing.records, sizing.solver, sizing.wall_current, stock.
 """
 
 from __future__ import annotations
@@ -12,8 +12,9 @@ from fabgen.fields.model import FieldSolution
 from fabgen.fields.plan import DEFAULT_DENSITY
 from fabgen.job import Job
 from fabgen.sizing.field_model import FieldModel, FieldSweep, Losses
-from fabgen.sizing.records import Sizes
+from fabgen.sizing.records import Sizes, WallCurrent
 from fabgen.sizing.solver import Complex, Real, Solution
+from fabgen.sizing.wall_current import wall_current
 from fabgen.stock import tables
 
 PAIR_RATIO = 1.02
@@ -69,6 +70,10 @@ class SolvedFeed:
     def far_field(self, theta_rad: Real, phi_rad: Real) -> tuple[Complex, Complex]:
         """(E_theta, E_phi), volts."""
         return self.fields.elements.far_field(self.fields.frequency_hz, theta_rad, phi_rad)
+
+    def wall_current(self, sizes: Sizes) -> WallCurrent:
+        """At the can's seams and joints, for the sizes that were solved."""
+        return wall_current(self.fields, sizes)
 
 
 @dataclass(frozen=True)

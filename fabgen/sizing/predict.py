@@ -51,6 +51,7 @@ def predict(job: Job, sizes: Sizes, solution: Solution, sweep: Sweep) -> Predict
         feed_noise_k=figures.noise.feed_noise_k,
         system_noise_k=figures.noise.system_noise_k,
         g_over_t_db_per_k=figures.noise.g_over_t_db_per_k,
+        wall_current=solution.wall_current(sizes),
         gain=gain_points(sweep, sizes, job),
         patterns=tuple(_cut(phi, cut, figures.dish.power) for phi, cut in cuts.items()),
         response=response,

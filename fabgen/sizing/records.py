@@ -99,6 +99,38 @@ class Response:
 
 
 @dataclass(frozen=True)
+class SeamCurrent:
+    """Computed current of a wall at the target, peak amplitude for 1 W accepted: the largest density on the wall, and
+    what crosses an upright seam at each angle from +x (0 to 180 degrees; the other half mirrors it). Both without the
+    mesh row at the rim, where the edge of a thin sheet has no limit."""
+
+    name: str
+    peak_a_per_m: float
+    angle_deg: tuple[float, ...]
+    crossing_a_per_m: tuple[float, ...]
+
+
+@dataclass(frozen=True)
+class JointCurrent:
+    """Computed current at a level joint, peak amplitude for 1 W accepted: the largest density beside the joint, the
+    largest that crosses it, and the integral of the crossing density's square along the joint. A contact resistance
+    of r ohm metres loses r/2 of that integral, in watts for each watt accepted."""
+
+    name: str
+    peak_a_per_m: float
+    crossing_a_per_m: float
+    crossing_square_a2_per_m: float
+
+
+@dataclass(frozen=True)
+class WallCurrent:
+    """Computed currents of the can's walls where sheets are joined."""
+
+    seams: tuple[SeamCurrent, ...]
+    joints: tuple[JointCurrent, ...]
+
+
+@dataclass(frozen=True)
 class Predicted:
     """What the field computation says of the rounded sizes. ``impedance_ohm`` at the tap, before the capacitor."""
 
@@ -123,6 +155,7 @@ class Predicted:
     feed_noise_k: float
     system_noise_k: float
     g_over_t_db_per_k: float
+    wall_current: WallCurrent
     gain: tuple[GainPoint, ...]
     patterns: tuple[PatternCut, ...]
     response: Response

@@ -11,7 +11,7 @@ from typing import Protocol
 import numpy as np
 from numpy.typing import NDArray
 
-from fabgen.sizing.records import Sizes
+from fabgen.sizing.records import Sizes, WallCurrent
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
@@ -51,6 +51,8 @@ class Solution(Protocol):
     def unknowns(self) -> int: ...
 
     def far_field(self, theta_rad: Real, phi_rad: Real, /) -> tuple[Complex, Complex]: ...
+
+    def wall_current(self, sizes: Sizes, /) -> WallCurrent: ...
 
 
 class Sweep(Protocol):

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from fabgen.job import Job
-from fabgen.sizing.records import Sizes
+from fabgen.sizing.records import JointCurrent, SeamCurrent, Sizes, WallCurrent
 from fabgen.sizing.solver import Complex, Real, Solution
 
 
@@ -48,6 +48,12 @@ class ToySolution:
         scale = math.sqrt(2 * 376.730313412 * 0.996 * self.input_power_w / power)
         field = scale * shape * np.exp(2j * np.pi * self.phase_centre_mm / self.wavelength_mm * np.cos(theta))
         return field * np.sin(phi), field * np.cos(phi)
+
+    def wall_current(self, sizes: Sizes) -> WallCurrent:
+        angles = tuple(15.0 * i for i in range(13))
+        crossing = tuple(abs(math.cos(math.radians(a))) for a in angles)
+        joint = JointCurrent("wall on floor", 1.0, 1.0, math.pi / 2 * sizes.can_bore_mm / 1e3)
+        return WallCurrent((SeamCurrent("wall", 1.0, angles, crossing),), (joint,))
 
 
 def toy_impedance(sizes: Sizes, frequency_mhz: float, target_mhz: float) -> complex:
