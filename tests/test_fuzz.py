@@ -51,7 +51,8 @@ def mutated(text: str, chance: random.Random) -> str:
 
 
 def answer(text: str) -> None:
-    began = time.perf_counter()
+    # processor time: a busy machine is no fault of the text
+    began = time.process_time()
     try:
         assert isinstance(parse_job(text, "job"), Job)
     except JobError as error:
@@ -59,7 +60,7 @@ def answer(text: str) -> None:
         assert message.startswith("job")
         assert len(message) < 6000
         assert "Traceback" not in message
-    assert time.perf_counter() - began < 1.0
+    assert time.process_time() - began < 1.0
 
 
 @pytest.mark.slow
