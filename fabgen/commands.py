@@ -8,6 +8,7 @@ from __future__ import annotations
 import argparse
 import json
 import os
+import shlex
 import sys
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import asdict
@@ -42,7 +43,7 @@ def _cache(arguments: argparse.Namespace) -> Any:
 
 def start(arguments: argparse.Namespace) -> int:
     """Writes a job file; asks only on a terminal and only when no template is named."""
-    from fabgen.start import DEFAULT_TEMPLATE, ask_job, template, templates, write_job_file
+    from fabgen.start import DEFAULT_TEMPLATE, refuse_existing, template, templates, write_job_file
 
     if arguments.keys:
         from fabgen.job_page import job_page
@@ -55,11 +56,24 @@ def start(arguments: argparse.Namespace) -> int:
         for item in templates():
             sys.stdout.write(f"{item.name:<{width}}  {item.purpose}\n")
         return 0
-    text = ask_job(input, _out) if asks else template(arguments.template or DEFAULT_TEMPLATE).text
     path = arguments.output or Path(f"{arguments.template or 'job'}.toml")
-    write_job_file(text, path)
-    _out(f"{path} is written. Look through it, then: fabgen pack {path} -o {path.stem}-pack")
+    refuse_existing(path)
+    write_job_file(_answers() if asks else template(arguments.template or DEFAULT_TEMPLATE).text, path)
+    name = shlex.quote(str(path))
+    _out(f"{path} is written. Look through it, then: fabgen pack {name} -o {shlex.quote(path.stem + '-pack')}")
     return 0
+
+
+def _answers() -> str:
+    from fabgen.start import ask_job
+
+    try:
+        return ask_job(input, _out)
+    except EOFError:
+        raise JobError(
+            "the answers ended before the questions; nothing was written. Answer all five, or name a template: "
+            "fabgen start --list"
+        ) from None
 
 
 def _out(line: str) -> None:
@@ -114,12 +128,17 @@ def check(arguments: argparse.Namespace) -> int:
 
 
 def _pack_findings(arguments: argparse.Namespace) -> tuple[str, Sequence[Finding]]:
-    from fabgen.checks.readback import check_pack
+    from fabgen.checks.read_files import read_pack
+    from fabgen.checks.readback import findings_of_pack
     from fabgen.resources import time_limit
+    from fabgen.writers.sheets_back import sheets_findings
 
     with time_limit(arguments.time_limit), _display(arguments) as display:
         display.step("reading the pack back")
-        return f"pack {arguments.job}", check_pack(arguments.job, solids=True)
+        pack = read_pack(arguments.job)
+        found = findings_of_pack(pack, solids=True)
+        display.step("drawing the sheets anew to compare them")
+        return f"pack {arguments.job}", (*found, *sheets_findings(pack))
 
 
 def _job_findings(arguments: argparse.Namespace) -> tuple[str, Sequence[Finding]]:

@@ -75,7 +75,7 @@ class UnitReader:
             if key.endswith("_mhz"):
                 number = parse_frequency_mhz(text)
             elif key.endswith("_mm"):
-                number = _length_mm(text, self._metals.get(path[0]) if key in _SHEET_KEYS else None)
+                number = stock_length_mm(text, self._metals.get(path[0]) if key in _SHEET_KEYS else None)
             elif key.endswith("_m"):
                 number = parse_length_mm(text) / 1000
             else:
@@ -93,8 +93,10 @@ def _metal(raw: dict[str, Any], section: str, model: type[Loop] | type[Can]) -> 
     return given if isinstance(given, str) else str(model.model_fields["metal"].default)
 
 
-def _length_mm(text: str, sheet_metal: str | None) -> float:
-    """A length, or a gauge of wire or sheet; the bare gauge of sheet depends on its metal."""
+def stock_length_mm(text: str, sheet_metal: str | None) -> float:
+    """Millimetres of a length, or of a gauge of wire or sheet; JobError says what is allowed.
+
+    ``sheet_metal``: the metal that a bare gauge ("16 gauge") is of; None where the text is no thickness of sheet."""
     match = _GAUGE.fullmatch(text.strip()[:_MAX_GAUGE_TEXT])
     if match is None:
         return parse_length_mm(text)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import io
 import json
 import os
@@ -338,8 +339,15 @@ def test_start_asks_nothing_without_a_terminal(monkeypatch: pytest.MonkeyPatch) 
     assert main(["start"]) == 0
 
 
+def questions(*answers: str) -> tuple[str, list[str]]:
+    """The job text for these answers, and what was said."""
+    said: list[str] = []
+    queue = iter(answers)
+    return ask_job(lambda question: next(queue), said.append), said
+
+
 def test_the_questions_take_units_and_explain() -> None:
-    answers = [
+    text, said = questions(
         "12 MHz",
         "1.296 GHz",
         "3",
@@ -348,25 +356,109 @@ def test_the_questions_take_units_and_explain() -> None:
         "sheet 1.5 mm",
         "cast",
         "tube",
-        "160 mm",
+        "100 mm",
+        "6 1/4 in",
         "smaa",
         "n-4",
-    ]
-    said: list[str] = []
-    queue = iter(answers)
-    job = parse_job(ask_job(lambda question: next(queue), said.append))
+    )
+    job = parse_job(text)
     assert job.target.frequency_mhz == 1296
-    assert job.dish.diameter_m == pytest.approx(3.048)
+    assert job.dish.diameter_m == 3.048
     assert (job.loop.form, job.loop.sheet_mm) == ("sheet", 1.5)
-    assert (job.can.make, job.fixed.can_bore_mm) == ("tube", 160)
+    assert (job.can.make, job.fixed.can_bore_mm) == ("tube", 158.75)
     assert job.cable.connector == "n-4"
-    assert sum("allowed" in line.lower() or "write" in line for line in said) >= 5
+    assert sum("allowed" in line.lower() or "write" in line for line in said) >= 6
+    # sizes in other units stand in the job as they were given
+    assert {w.key: w.text for w in job.as_written} == {
+        "target.frequency_mhz": "1.296 GHz",
+        "dish.diameter_m": "10 ft",
+        "fixed.can_bore_mm": "6 1/4 in",
+    }
+
+
+@pytest.mark.parametrize(
+    ("answer", "key", "millimetres"),
+    [
+        # handbook tables (from memory): 10 AWG 0.1019 in, 8 SWG 0.160 in, 16 B&S brass sheet 0.0508 in
+        ("wire 10 AWG", "wire_mm", 0.1019 * 25.4),
+        ("wire 8 SWG", "wire_mm", 0.160 * 25.4),
+        ('wire 0.162"', "wire_mm", 4.1148),
+        ("wire 5/32 in", "wire_mm", 3.96875),
+        ("sheet 16 gauge", "sheet_mm", 0.0508 * 25.4),
+        ("sheet 1/16 inch", "sheet_mm", 1.5875),
+        ("sheet 1.6", "sheet_mm", 1.6),
+    ],
+)
+def test_stock_in_any_unit_is_shown_both_ways(answer: str, key: str, millimetres: float) -> None:
+    text, said = questions("", "", answer, "", "")
+    job = parse_job(text)
+    assert getattr(job.loop, key) == pytest.approx(millimetres, abs=2e-3)
+    assert f"({millimetres / 25.4:.3f} in)" in said[2]
+
+
+@pytest.mark.parametrize("answer", ["wire 12 ga", "wire 99 AWG", "sheet 99 gauge", "wire 30 mm", "sheet nan", "wire"])
+def test_stock_without_meaning_is_asked_again(answer: str) -> None:
+    text, said = questions("", "", answer, "wire 3 mm", "", "")
+    assert parse_job(text).loop.wire_mm == 3
+    assert sum("allowed" in line or "rite" in line for line in said) == 1
 
 
 def test_the_questions_have_answers_of_their_own() -> None:
-    job = parse_job(ask_job(lambda question: "", lambda line: None))
+    text, said = questions("", "", "", "", "")
+    job = parse_job(text)
     assert job.target.frequency_mhz == 1420.406
     assert job.loop.wire_mm == 4.0
+    # 2.4 m of f/D 0.40: half angle 2 atan(1/1.6) = 64 degrees; 21 cm on 2.4 m: about 6 degrees wide
+    words = ("211.1 mm", "64 degrees off", "6.2 degrees wide", "4.00 mm (0.157 in)", "rolled seam", "4 screws")
+    assert [word for word, line in zip(words, [*said[:2], said[1], *said[2:]], strict=True) if word not in line] == []
+
+
+def on_terminal(folder: Path, keys: str, *words: str) -> tuple[int, str]:
+    """A run of ``fabgen start`` on a terminal of its own: exit status and what the screen showed."""
+    import pty
+
+    main_end, child_end = pty.openpty()
+    process = subprocess.Popen(
+        [sys.executable, "-m", "fabgen", "start", *words],
+        stdin=child_end, stdout=child_end, stderr=child_end, cwd=folder, close_fds=True,
+        env={**os.environ, "PYTHONPATH": str(ROOT)},
+    )  # fmt: skip
+    os.close(child_end)
+    os.write(main_end, keys.encode())
+    shown = b""
+    with contextlib.suppress(OSError):
+        while piece := os.read(main_end, 4096):
+            shown += piece
+    os.close(main_end)
+    return process.wait(timeout=60), shown.decode().replace("\r\n", "\n")
+
+
+def test_start_asks_five_questions_on_a_terminal(tmp_path: Path) -> None:
+    status, shown = on_terminal(tmp_path, "1.42 GHz\n8 ft, 0.42\nwire 8 AWG\nprinted\nn-4\n")
+    assert status == 0, shown
+    questions_shown = ["Frequency [", "Dish: ", "Loop stock [", "Can: ", "Connector ["]
+    assert [shown.count(question) for question in questions_shown] == [1] * 5
+    for consequence in ("211.1 mm", "2.438 m (8.00 ft)", "3.26 mm (0.128 in)", "STL and 3MF", "N panel jack"):
+        assert consequence in shown
+    assert "job.toml is written. Look through it, then: fabgen pack job.toml -o job-pack" in shown
+    job = parse_job((tmp_path / "job.toml").read_text(encoding="utf-8"))
+    assert (job.target.frequency_mhz, job.dish.diameter_m, job.dish.focal_ratio) == (1420.0, 2.4384, 0.42)
+    assert (job.can.make, job.cable.connector) == ("printed", "n-4")
+
+
+def test_start_on_a_terminal_that_closes(tmp_path: Path) -> None:
+    status, shown = on_terminal(tmp_path, "1.42 GHz\n\x04")
+    assert status == 2
+    assert "the answers ended before the questions; nothing was written" in shown
+    assert not list(tmp_path.iterdir())
+
+
+def test_start_on_a_terminal_does_not_ask_in_vain(tmp_path: Path) -> None:
+    (tmp_path / "job.toml").write_text("mine", encoding="utf-8")
+    status, shown = on_terminal(tmp_path, "")
+    assert status == 5
+    assert "Frequency" not in shown
+    assert "job.toml exists already and is not overwritten" in shown
 
 
 def test_a_key_is_set_or_added() -> None:
