@@ -32,7 +32,7 @@ from fabgen.parts.making import metal_part
 from fabgen.parts.records import Part, WireBend, WirePath
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
-from fabgen.theory.bending import wire_arc_mm
+from fabgen.theory.bending import wire_arc_mm, wire_neutral_shift_mm
 from fabgen.theory.springback import wire_mandrel_mm, wire_tool_radius_mm
 
 if TYPE_CHECKING:
@@ -117,8 +117,9 @@ def wire_pieces(feed: Feed) -> tuple[Piece, ...]:
 def wire_path(feed: Feed) -> WirePath:
     """Cut length, and for every bend the marks on the straight wire, mandrel, plane and order.
 
-    Length of a bend: theory.bending.wire_arc_mm (axis radius times angle from R/d = 2 up). The two bars are bent
-    first, in one plane and to the same side, then the loop is wound in the plane across.
+    The cut length is the arc length of the neutral line, which in bends under R/d = 2 lies inside the axis by the
+    bend's ``neutral_shift_mm``. The two bars are bent first, in one plane and to the same side, then the loop is
+    wound in the plane across.
     """
     s = feed.sizes
     pieces = wire_pieces(feed)
@@ -135,6 +136,7 @@ def wire_path(feed: Feed) -> WirePath:
                 WireBend(
                     number, at, at + piece.length_mm, piece.angle_deg, piece.radius_mm, mandrel,
                     (0.0, 90.0, -90.0)[number - 1], (1, 3, 2)[number - 1], piece.name,
+                    wire_neutral_shift_mm(piece.radius_mm, diameter),
                 )
             )
         at += piece.length_mm
@@ -176,8 +178,19 @@ def loop_wire(feed: Feed) -> Part:
         sizes=sizes,
         wire=path,
         solid=once(partial(_solid, wire_pieces(feed), path.diameter_mm)),
-        notes=(path.end_preparation,),
+        notes=(path.end_preparation, *_shorter(path, axis)),
         finish="clean and bright, no nicks at the bends",
+    )
+
+
+def _shorter(path: WirePath, axis_mm: float) -> tuple[str, ...]:
+    """Why the wire is cut shorter than its axis is drawn."""
+    shift = max(bend.neutral_shift_mm for bend in path.bends)
+    if shift < 0.005:
+        return ()
+    return (
+        f"cut {axis_mm - path.cut_length_mm:.2f} mm shorter than the drawn axis: in bends tighter than two diameters "
+        f"the neutral line lies {shift:.2f} mm inside it, and the wire stretches by that",
     )
 
 

@@ -31,7 +31,8 @@ class FlatPattern:
 @dataclass(frozen=True)
 class WireBend:
     """One bend of a wire, in order along the straight piece. ``plane_deg``: turn of the wire about its own axis
-    before this bend, relative to the bend before."""
+    before this bend, relative to the bend before. ``neutral_shift_mm``: how far inside the axis the neutral line
+    lies, whose arc the marks measure."""
 
     number: int
     start_mm: float
@@ -42,6 +43,7 @@ class WireBend:
     plane_deg: float
     order: int
     name: str
+    neutral_shift_mm: float = 0.0
 
 
 @dataclass(frozen=True)

@@ -125,16 +125,21 @@ def outer_fibre_strain(diameter_mm: float, axis_radius_mm: float) -> float:
     return diameter_mm / (2 * axis_radius_mm)
 
 
-def wire_arc_mm(angle_deg: float, axis_radius_mm: float, diameter_mm: float) -> float:
-    """Length that a bend takes of a straight wire, mm.
+def wire_neutral_shift_mm(axis_radius_mm: float, diameter_mm: float) -> float:
+    """How far the neutral line of a bent wire lies inside its axis, mm.
 
-    Axis radius times angle for R/d of 2 and more; below, the neutral line moves inwards to sqrt(Ri Ro), Hill's
-    fully plastic bound (R. Hill, The Mathematical Theory of Plasticity, 1950; from memory), blended linearly from
-    the axis at R/d = 2 to the bound at R/d = 1."""
+    Nothing for R/d of 2 and more; below, the neutral line moves inwards to sqrt(Ri Ro), Hill's fully plastic bound
+    (R. Hill, The Mathematical Theory of Plasticity, 1950; from memory), blended linearly from the axis at R/d = 2 to
+    the bound at R/d = 1."""
     require_positive(axis_radius_mm=axis_radius_mm, diameter_mm=diameter_mm)
     inside = axis_radius_mm - diameter_mm / 2
     if inside < 0:
         raise JobError(f"axis radius {axis_radius_mm:g} mm is under half the wire's {diameter_mm:g} mm")
     bound = math.sqrt(inside * (inside + diameter_mm))
     share = min(1.0, max(0.0, 2 - axis_radius_mm / diameter_mm))
-    return math.radians(angle_deg) * (axis_radius_mm + share * (bound - axis_radius_mm))
+    return share * (axis_radius_mm - bound)
+
+
+def wire_arc_mm(angle_deg: float, axis_radius_mm: float, diameter_mm: float) -> float:
+    """Length that a bend takes of a straight wire, mm: the arc of its neutral line (wire_neutral_shift_mm)."""
+    return math.radians(angle_deg) * (axis_radius_mm - wire_neutral_shift_mm(axis_radius_mm, diameter_mm))

@@ -93,7 +93,7 @@ def wire_schedule_csv(part: Part) -> str:
         raise GeometryError(f"{part.key} is not a wire; only wires have a schedule")
     header = (
         "order", "bend", "name", "mark_start_mm", "mark_end_mm", "angle_deg", "axis_radius_mm", "mandrel_mm",
-        "turn_before_deg", "wire_mm", "cut_length_mm", "end_preparation",
+        "turn_before_deg", "wire_mm", "cut_length_mm", "end_preparation", "neutral_inside_axis_mm",
     )  # fmt: skip
     wire = part.wire
     return csv_text(
@@ -103,6 +103,7 @@ def wire_schedule_csv(part: Part) -> str:
                 bend.order, bend.number, bend.name, _number(bend.start_mm), _number(bend.end_mm),
                 _number(bend.angle_deg), _number(bend.radius_mm), _number(bend.mandrel_mm), _number(bend.plane_deg),
                 _number(wire.diameter_mm), _number(wire.cut_length_mm), wire.end_preparation,
+                _number(bend.neutral_shift_mm),
             )
             for bend in sorted(wire.bends, key=lambda bend: bend.order)
         ),
