@@ -16,10 +16,11 @@ from collections.abc import Callable
 from fabgen.errors import NoSolutionError
 from fabgen.sizing.records import CapacitorPart
 from fabgen.sizing.rounding import round_to
+from fabgen.stock import tables
 from fabgen.stock.records import Coax
 
 EPSILON_0_PF_PER_MM = 8.8541878128e-3
-PTFE_PERMITTIVITY = 2.05
+DIELECTRIC = "ptfe"
 TRIM_DOWN, TRIM_UP = 0.6, 1.5
 SHORTEST_OVERLAP_MM = 0.3
 OVERLAP_STEP_MM = 0.1
@@ -44,7 +45,7 @@ def series_capacitor_pf(reactance_ohm: float, frequency_mhz: float) -> float:
     return 1e6 / (2 * math.pi * frequency_mhz * reactance_ohm)
 
 
-def sleeve_pf(overlap_mm: float, inner_mm: float, bore_mm: float, permittivity: float = PTFE_PERMITTIVITY) -> float:
+def sleeve_pf(overlap_mm: float, inner_mm: float, bore_mm: float, permittivity: float) -> float:
     """Coaxial capacitor C = 2 pi e0 er L / ln(D/d) + end correction of the wire's flat end, pF.
 
     The PTFE tube fills the room between wire and brass. Valid for L above D/2 and d/D 0.2 to 0.8; the field at the
@@ -58,9 +59,7 @@ def sleeve_pf(overlap_mm: float, inner_mm: float, bore_mm: float, permittivity: 
     return per_mm * overlap_mm + end
 
 
-def plates_pf(
-    overlap_mm: float, width_mm: float, film_mm: float, permittivity: float = PTFE_PERMITTIVITY
-) -> float:
+def plates_pf(overlap_mm: float, width_mm: float, film_mm: float, permittivity: float) -> float:
     """Parallel plates with the fields at all edges, pF:
 
         C = e0 er w l / t (1 + t/(pi w) (1 + ln(2 pi w / t))) (1 + t/(pi l) (1 + ln(2 pi l / t)))
@@ -104,36 +103,39 @@ def sleeve_tube_mm(coax: Coax) -> tuple[float, float]:
 
 def _sleeve(capacitance: float, coax: Coax, voltage: float) -> CapacitorPart:
     outer, bore = sleeve_tube_mm(coax)
+    permittivity = tables.dielectric(DIELECTRIC).relative_permittivity
 
     def value(overlap: float) -> float:
-        return sleeve_pf(overlap, coax.inner_mm, bore)
+        return sleeve_pf(overlap, coax.inner_mm, bore, permittivity)
 
     overlap, least, most = _overlaps(value, capacitance)
     return CapacitorPart(
         form="sleeve", capacitance_pf=capacitance, minimum_pf=value(least), maximum_pf=value(most),
         overlap_mm=overlap, overlap_max_mm=most, inner_mm=coax.inner_mm, outer_mm=bore,
         tube_wall_mm=round_to((outer - bore) / 2, 0.01), plate_width_mm=0.0, film_mm=0.0,
-        relative_permittivity=PTFE_PERMITTIVITY, pf_per_mm=value(1.0) - value(0.0), peak_voltage_v=voltage,
+        relative_permittivity=permittivity, pf_per_mm=value(1.0) - value(0.0), peak_voltage_v=voltage,
         formula="C = 2 pi e0 er L / ln(D/d) + end correction of the wire's flat end",
         source="Pozar, Microwave Engineering, table 2.1 (from memory); end correction by finite differences",
     )  # fmt: skip
 
 
 def _plates(capacitance: float, width: float, voltage: float) -> CapacitorPart:
+    permittivity = tables.dielectric(DIELECTRIC).relative_permittivity
+
     def misfit(film: float) -> float:
-        overlap = _overlap_of(lambda x: plates_pf(x, width, film), capacitance)
+        overlap = _overlap_of(lambda x: plates_pf(x, width, film, permittivity), capacitance)
         return abs(math.log(overlap / width))
 
     film = min(FILMS_MM, key=misfit)
 
     def value(overlap: float) -> float:
-        return plates_pf(overlap, width, film)
+        return plates_pf(overlap, width, film, permittivity)
 
     overlap, least, most = _overlaps(value, capacitance)
     return CapacitorPart(
         form="plates", capacitance_pf=capacitance, minimum_pf=value(least), maximum_pf=value(most),
         overlap_mm=overlap, overlap_max_mm=most, inner_mm=0.0, outer_mm=0.0, tube_wall_mm=0.0,
-        plate_width_mm=width, film_mm=film, relative_permittivity=PTFE_PERMITTIVITY,
+        plate_width_mm=width, film_mm=film, relative_permittivity=permittivity,
         pf_per_mm=(value(overlap + 0.1) - value(overlap)) / 0.1, peak_voltage_v=voltage,
         formula="C = e0 er w l / t with Palmer's edge terms for both pairs of edges",
         source="H. B. Palmer, Trans. AIEE 56 (1937) 363, from memory",

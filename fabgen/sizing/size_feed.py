@@ -28,10 +28,11 @@ from fabgen.sizing.relax import nearest_that_works
 from fabgen.sizing.response import START, STOP, in_sweep
 from fabgen.sizing.self_checks import require_passed, self_checks
 from fabgen.sizing.solver import Solver, Sweep
+from fabgen.sizing.thermal import Bench
 from fabgen.sizing.tolerances import fit_model, sensitivities
 from fabgen.sizing.trial import Setting
 from fabgen.sizing.wishes import choose_loop
-from fabgen.sizing.yields import Bench, model_error, yield_of
+from fabgen.sizing.yields import model_error, yield_of
 from fabgen.stock import tables
 
 MakeSolver = Callable[[Job, float], Solver]

@@ -3,42 +3,29 @@
 Each size is drawn evenly from its tolerance band, since a shop warrants the band and not its middle. Trimming is
 what the bench does: the tap is moved, then the capacitor's overlap set for no reactance at the target.
 
-Depends on: job, sizing.match, sizing.records, sizing.tolerances, sizing.trial, stock.
+Depends on: job, sizing.match, sizing.records, sizing.thermal, sizing.tolerances, sizing.trial.
 """
 
 from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from dataclasses import dataclass
 
 import numpy as np
 
 from fabgen.job import Job
-from fabgen.sizing.match import LINE_OHM, reflection, return_loss_db, tap_range_mm
+from fabgen.sizing.match import LINE_OHM, reflection, tap_range_mm
 from fabgen.sizing.records import CapacitorPart, Sensitivity, Sizes, Yield
 from fabgen.sizing.solver import Complex, Real, Solution
+from fabgen.sizing.thermal import COLD_DEG_C, HOT_DEG_C, Bench, drift
 from fabgen.sizing.tolerances import CAN_SIZES, CAPACITOR, FittedModel, deviated, size_of, with_size
 from fabgen.sizing.trial import Setting
-from fabgen.stock import tables
 
 SAMPLES = 2000
 CHECKS = 20
 SEED = 1420
 TRIM_WAVELENGTHS = 0.01
 TRIM_STEPS = 41
-ROOM_DEG_C, COLD_DEG_C, HOT_DEG_C = 20.0, -20.0, 50.0
-
-
-@dataclass(frozen=True)
-class Bench:
-    """What the yield is judged against: the frequencies with their nominal impedance, and the wished return loss."""
-
-    frequency_mhz: Real
-    impedance_ohm: Complex
-    target_mhz: float
-    return_loss_db: float
-    slope_ohm_per_mhz: float
 
 
 def yield_of(
@@ -59,7 +46,7 @@ def yield_of(
     capacitors = np.maximum(sizes.series_capacitor_pf + pf, 1e-3)
     before = worst_return_loss(shift, capacitors, bench) >= bench.return_loss_db
     after = trimmed_return_loss(model, shift, sizes, part=part, bench=bench) >= bench.return_loss_db
-    cold, hot = (thermal(job, model, sizes, bench, t) for t in (COLD_DEG_C, HOT_DEG_C))
+    cold, hot = (drift(job, model, sizes, part=part, bench=bench, temperature_deg_c=t) for t in (COLD_DEG_C, HOT_DEG_C))
     return Yield(
         samples=SAMPLES,
         model_check_samples=CHECKS,
@@ -134,21 +121,3 @@ def model_error(
         pf = sizes.series_capacitor_pf
         worst = max(worst, abs(reflection(fitted, pf, frequency) - reflection(true, pf, frequency)))
     return worst
-
-
-def thermal(job: Job, model: FittedModel, sizes: Sizes, bench: Bench, temperature_deg_c: float) -> tuple[float, float]:
-    """Shift of resonance (MHz) and return loss (dB) at a temperature, by expansion of loop and can.
-
-    The capacitor is taken as steady: PTFE moves its value by about the same parts per million as the metal.
-    """
-    rise = temperature_deg_c - ROOM_DEG_C
-    loop = tables.metal(job.loop.metal).expansion_per_k
-    printed = job.can.make == "printed"
-    can = tables.plastic(job.can.plastic).expansion_per_k if printed else tables.metal(job.can.metal).expansion_per_k
-    off = np.zeros((1, len(model.deviations)))
-    for i, row in enumerate(model.deviations):
-        expansion = can if row.size in CAN_SIZES else loop
-        off[0, i] = size_of(sizes, row.size) * expansion * rise / row.tolerance_mm
-    impedance = complex(model.impedance(off)[0])
-    shift = -(impedance - model.impedance_ohm).imag / bench.slope_ohm_per_mhz
-    return shift, return_loss_db(reflection(impedance, sizes.series_capacitor_pf, bench.target_mhz))

@@ -93,6 +93,19 @@ class Plastic:
 
 
 @dataclass(frozen=True)
+class Dielectric:
+    """What lies between the conductors of a capacitor. ``permittivity_per_k``: relative change of the permittivity
+    per kelvin, negative where it falls with warmth; this and the expansion are means from -20 to +50 degC."""
+
+    key: str
+    name: str
+    relative_permittivity: float
+    permittivity_per_k: float
+    expansion_per_k: float
+    source: Source
+
+
+@dataclass(frozen=True)
 class Connector:
     """A panel connector, from its dimension table: a flange, its holes and the bore in the panel."""
 

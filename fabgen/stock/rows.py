@@ -14,8 +14,9 @@ from fabgen.errors import JobError
 from fabgen.stock import records
 from fabgen.stock.records import Source, Temper
 
-# All other figures of a row must be above zero.
-MAY_BE_ZERO = frozenset({"mandrel_ratio", "adhesive_mm", "anodic_index_v", "swelling_percent", "value"})
+# All figures of a row that are in neither set must be above zero.
+MAY_BE_ZERO = frozenset({"mandrel_ratio", "adhesive_mm", "anodic_index_v", "swelling_percent"})
+MAY_BE_NEGATIVE = frozenset({"permittivity_per_k", "value"})
 _ROW_ID = re.compile(r"(?:, )?\b(?:SK|SB|WB|TO|CN|EM|FR|RX|PR|SA)-\d\d(?:\.\.(?:[A-Z]{2}-)?\d\d)?")
 
 
@@ -72,7 +73,7 @@ def _value(name: str, hint: Any, value: Any, place: str) -> Any:
     if isinstance(value, bool) or not isinstance(value, int | float) or not math.isfinite(value):
         raise JobError(f"{place}: '{name}' is {value!r}; it must be a finite number")
     zero_allowed = hint is None or name in MAY_BE_ZERO
-    if (value < 0 and name != "value") or (value == 0 and not zero_allowed):
+    if name not in MAY_BE_NEGATIVE and (value < 0 or (value == 0 and not zero_allowed)):
         raise JobError(f"{place}: '{name}' is {value!r}; it must be above zero{', or zero' * zero_allowed}")
     return value if hint is int else float(value)
 

@@ -23,6 +23,7 @@ from fabgen.stock.records import (
     Coax,
     Connector,
     Die,
+    Dielectric,
     Limit,
     Lining,
     Metal,
@@ -42,6 +43,7 @@ KINDS: Mapping[str, type] = {
     "sheet": Sheet,
     "lining": Lining,
     "plastic": Plastic,
+    "dielectric": Dielectric,
     "printer": Printer,
     "connector": Connector,
     "coax": Coax,
@@ -155,6 +157,12 @@ def lining(key: str) -> Lining:
 def plastic(key: str) -> Plastic:
     """The printing plastic of that key, like ``petg``."""
     row: Plastic = _look_up("plastic", "plastic", key)
+    return row
+
+
+def dielectric(key: str) -> Dielectric:
+    """The capacitor's dielectric of that key, like ``ptfe``."""
+    row: Dielectric = _look_up("dielectric", "dielectric", key)
     return row
 
 

@@ -14,7 +14,7 @@ from fabgen.theory.lines import coax_ohm
 
 def test_sleeve_grows_like_a_coaxial_line() -> None:
     # C' = sqrt(er) / (c Z0); Pozar, Microwave Engineering, table 2.1.
-    per_mm = sleeve_pf(11.0, 0.92, 1.6) - sleeve_pf(10.0, 0.92, 1.6)
+    per_mm = sleeve_pf(11.0, 0.92, 1.6, 2.05) - sleeve_pf(10.0, 0.92, 1.6, 2.05)
     line = math.sqrt(2.05) / (299.792458e9 * coax_ohm(1.6, 0.92, 2.05)) * 1e12
     assert per_mm == pytest.approx(line, rel=1e-4)
 
@@ -28,8 +28,8 @@ def test_end_correction_against_finite_differences() -> None:
 
 def test_wide_plates_are_the_plain_formula() -> None:
     plain = 8.8541878128e-3 * 2.05 * 200 * 200 / 0.1
-    assert plates_pf(200, 200, 0.1) == pytest.approx(plain, rel=0.005)
-    assert plates_pf(200, 200, 0.1) > plain
+    assert plates_pf(200, 200, 0.1, 2.05) == pytest.approx(plain, rel=0.005)
+    assert plates_pf(200, 200, 0.1, 2.05) > plain
 
 
 def test_narrow_plates_hold_more_than_the_plain_formula() -> None:
@@ -51,9 +51,9 @@ def test_part_gives_its_capacitance_and_trims_both_ways(form: str, coax: str, ca
         form, capacitance, 1420.0, coax=tables.coax(coax), plate_width_mm=3.8, transmit_w=0.0
     )
     value = (
-        sleeve_pf(part.overlap_mm, part.inner_mm, part.outer_mm)
+        sleeve_pf(part.overlap_mm, part.inner_mm, part.outer_mm, part.relative_permittivity)
         if form == "sleeve"
-        else plates_pf(part.overlap_mm, part.plate_width_mm, part.film_mm)
+        else plates_pf(part.overlap_mm, part.plate_width_mm, part.film_mm, part.relative_permittivity)
     )
     assert value == pytest.approx(capacitance, abs=0.06 * part.pf_per_mm)
     assert part.minimum_pf < 0.9 * capacitance

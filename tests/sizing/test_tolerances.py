@@ -14,6 +14,7 @@ from fabgen.sizing.capacitor_part import capacitor_part
 from fabgen.sizing.layout import loop_stock
 from fabgen.sizing.records import Response
 from fabgen.sizing.response import band_of, realised_gain_dbi, sweep_frequencies
+from fabgen.sizing.thermal import Bench
 from fabgen.sizing.tolerances import (
     Deviation,
     FittedModel,
@@ -24,7 +25,7 @@ from fabgen.sizing.tolerances import (
     with_size,
 )
 from fabgen.sizing.trial import CanShape, Setting
-from fabgen.sizing.yields import Bench, model_error, thermal, trimmed_return_loss, worst_return_loss
+from fabgen.sizing.yields import model_error, trimmed_return_loss, worst_return_loss
 from fabgen.stock import tables
 from tests.samples import sample_job, sample_sizes
 from tests.sizing.toy_solver import ToySolver
@@ -127,21 +128,6 @@ def test_trimming_ends_where_the_capacitor_ends() -> None:
     stiff = replace(PART, minimum_pf=0.999, maximum_pf=1.001)
     after = trimmed_return_loss(MODEL, np.array([0 + 40j]), SIZES, part=stiff, bench=BENCH)
     assert after[0] < 20
-
-
-def test_drift_follows_expansion_of_loop_and_can() -> None:
-    shift, loss = thermal(JOB, MODEL, SIZES, BENCH, -20.0)
-    copper = tables.metal(JOB.loop.metal).expansion_per_k
-    can = tables.metal(JOB.can.metal).expansion_per_k
-    ohm = -40 * (SIZES.tap_height_mm * copper / 0.2 * 1.0 + SIZES.can_bore_mm * can / 0.5 * 0.5)
-    assert shift == pytest.approx(-ohm / 2.0, rel=1e-9)
-    assert loss > 40
-
-
-def test_printed_can_drifts_with_its_plastic() -> None:
-    printed = thermal(sample_job("wire", "printed"), MODEL, SIZES, BENCH, 50.0)[0]
-    turned = thermal(JOB, MODEL, SIZES, BENCH, 50.0)[0]
-    assert abs(printed) > 1.5 * abs(turned)
 
 
 def test_band_edges_are_interpolated() -> None:
