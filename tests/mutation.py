@@ -1,6 +1,7 @@
 """Mutation testing: changes one thing in a package, runs the tests that reach it, lists what no test notices.
 
     python -m tests.mutation theory --sample 60 --seed 1
+    python -m tests.mutation theory --modules ring --lines 86 104
 
 The tree is copied first; the working tree is never touched. One run with coverage tells which tests reach which line;
 each mutant meets the fastest of these first, then the rest of the package's tests within ``--seconds`` of processor
@@ -136,12 +137,16 @@ class Recorder:
 
 
 def run_tests(words: Sequence[str], recorder: Recorder | None = None) -> int:
-    """pytest in this process, silent."""
+    """pytest in this process, silent unless the unchanged tests fail."""
     import pytest
 
     options = ["-x", "-q", "-p", "no:randomly", "-p", "no:cacheprovider", "-m", "not slow", "-W", "ignore"]
-    with contextlib.redirect_stdout(io.StringIO()), contextlib.redirect_stderr(io.StringIO()):
-        return int(pytest.main([*options, *words], plugins=[recorder] if recorder else []))
+    shown = io.StringIO()
+    with contextlib.redirect_stdout(shown), contextlib.redirect_stderr(shown):
+        status = int(pytest.main([*options, *words], plugins=[recorder] if recorder else []))
+    if recorder is not None and status:
+        print(shown.getvalue()[-4000:], flush=True)
+    return status
 
 
 def in_fork(work: Callable[[], int], seconds: int) -> int:
@@ -207,10 +212,11 @@ def copied_tree() -> Path:
     return place
 
 
-def chosen(package: str, names: Sequence[str], sample: int, seed: int) -> list[Mutant]:
+def chosen(package: str, names: Sequence[str], lines: Sequence[int], sample: int, seed: int) -> list[Mutant]:
     """A sample of the package's mutants, by module and line."""
     modules = sorted(Path("fabgen", package).glob("*.py"))
     every = [m for path in modules if not names or path.stem in names for m in mutants_of(path)]
+    every = [m for m in every if not lines or m.line in lines]
     picked = random.Random(seed).sample(every, min(sample, len(every)))
     print(f"{package}: {len(every)} mutants, {len(picked)} of them tried (seed {seed})", flush=True)
     return sorted(picked, key=lambda m: (m.module, m.index))
@@ -221,6 +227,7 @@ def main() -> None:
     parser = argparse.ArgumentParser(description=(__doc__ or "").partition("\n")[0])
     parser.add_argument("package", choices=("theory", "parts", "checks"))
     parser.add_argument("--modules", nargs="*", default=[], help="only these modules of the package")
+    parser.add_argument("--lines", nargs="*", type=int, default=[], help="only these lines, to try a survivor again")
     parser.add_argument("--tests", nargs="*", help="test files or folders (tests/PACKAGE)")
     parser.add_argument("--sample", type=int, default=60)
     parser.add_argument("--seed", type=int, default=1)
@@ -231,7 +238,7 @@ def main() -> None:
     try:
         for name in HEAVY:
             importlib.import_module(name)
-        picked = chosen(arguments.package, arguments.modules, arguments.sample, arguments.seed)
+        picked = chosen(arguments.package, arguments.modules, arguments.lines, arguments.sample, arguments.seed)
         reached, seconds = _in_own_process(arguments.package, tests)
         survivors = 0
         for mutant in picked:
