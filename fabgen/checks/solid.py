@@ -14,11 +14,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fabgen.checks.records import Finding, Severity
-from fabgen.errors import NotCoveredError
 from fabgen.fields.geometry import CanGeometry, FeedGeometry
 from fabgen.fields.mesh import LOOP
 from fabgen.fields.model import solve_mesh
 from fabgen.fields.plan import plan_mesh
+from fabgen.fields.solid_can import DrawnCan
 from fabgen.fields.solid_mesh import SolidLoop, solid_mesh
 from fabgen.fields.surfaces import feed_mesh
 from fabgen.parts.containment import gaps_mm
@@ -38,8 +38,6 @@ SOLID_CODES = {
     "CONS-301": ("stop", "Simulated surfaces lie in the drawn metal, within half its thickness (`check --solid`)."),
     "CONS-302": ("note", "The true surface of the drawn loop computes to the sizing model (`check --solid`)."),
 }
-NOT_COMPARED = "the comparison with the drawn solid covers round cans without choke"
-COMPARABLE = "give a job with a rolled, printed, tube or turned can and choke = false"
 SOURCE = "the drawn solids and the project's own field computation"
 
 
@@ -130,7 +128,7 @@ def solid_findings(
     feed: Feed, parts: Sequence[Part], loop_step: Path, progress: Callable[[str], None] = lambda _: None
 ) -> tuple[Finding, ...]:
     """Containment (stop where it fails) and the comparison with the solve on the drawn loop (note, caution above
-    one percent of detuning); a note says where that comparison is not covered."""
+    one percent of detuning)."""
     progress("measuring the simulated surfaces against the solids")
     found = []
     for group in containment(feed, parts):
@@ -142,9 +140,6 @@ def solid_findings(
                     "CONS-301", "stop", group.name, f"{group.gap_mm:.2f} mm", f"{group.limit_mm:.2f} mm", message, cure
                 )
             )
-    if not _comparable(feed.sizes):
-        found.append(_finding("CONS-302", "note", "loop", "not computed", "", NOT_COMPARED, COMPARABLE))
-        return tuple(found)
     compared = compare_solid(feed, loop_step, progress)
     limit_mhz = 0.01 * feed.job.target.frequency_mhz
     shift = compared.resonance_shift_mhz
@@ -159,10 +154,6 @@ def solid_findings(
     severity: Severity = "note" if abs(shift) <= limit_mhz else "caution"
     found.append(_finding("CONS-302", severity, "loop", f"{shift:+.1f} MHz", f"{limit_mhz:.1f} MHz", message, cure))
     return tuple(found)
-
-
-def _comparable(sizes: Sizes) -> bool:
-    return sizes.choke is None and not sizes.can_flats
 
 
 def _finding(code: str, severity: Severity, part: str, value: str, limit: str, message: str, cure: str) -> Finding:
@@ -194,12 +185,10 @@ def _in_holes(points: NDArray[np.float64], feed: Feed) -> NDArray[np.bool_]:
 def compare_solid(feed: Feed, loop_step: Path, progress: Callable[[str], None] = lambda _: None) -> SolidComparison:
     """Solve the feed on the true surface of the drawn loop (STEP in the feed's frame) near the target.
 
-    Perfect conductors on both sides. Raises NotCoveredError for cans with flats or a choke.
+    The can's conducting faces are meshed as finely, with its flats and its choke; perfect conductors in both models.
     """
     sizes, target = feed.sizes, feed.job.target.frequency_mhz
-    if not _comparable(sizes):
-        raise NotCoveredError(f"{NOT_COMPARED}; {COMPARABLE}")
-    drawn = _solid_loop(feed, loop_step)
+    drawn = drawn_loop(feed, loop_step)
     progress("meshing the drawn loop")
     mesh = solid_mesh(drawn)
     model = FieldModel(target)
@@ -240,15 +229,22 @@ def _return_loss_db(impedance: complex) -> float:
     return -20 * math.log10(max(abs((impedance - 50) / (impedance + 50)), 1e-9))
 
 
-def _solid_loop(feed: Feed, step_file: Path) -> SolidLoop:
+def _drawn_can(sizes: Sizes) -> DrawnCan:
+    bore, depth, choke = sizes.can_bore_mm, sizes.can_depth_mm, sizes.choke
+    if choke is None:
+        return DrawnCan(bore, depth, sizes.can_flats)
+    return DrawnCan(bore, depth, sizes.can_flats, choke.bore_mm, choke.floor_z_mm, choke.depth_mm)
+
+
+def drawn_loop(feed: Feed, step_file: Path) -> SolidLoop:
+    """What the mesh of the drawn loop needs to know of the feed."""
     sizes = feed.sizes
     width = sizes.wire_mm or sizes.strip_width_mm or 1.0
     wire = sizes.wire_mm is not None
     bend = sizes.leg_bend_radius_mm + (0.0 if wire else sizes.sheet_mm or 0.0)
     return SolidLoop(
         step_file=step_file,
-        bore_mm=sizes.can_bore_mm,
-        depth_mm=sizes.can_depth_mm,
+        can=_drawn_can(sizes),
         leg_x_mm=sizes.leg_x_mm,
         bar_reach_mm=sizes.leg_pitch_mm / 2 + sizes.leg_width_mm,
         bar_top_mm=sizes.loop_height_mm - bend - (0.0 if wire else (sizes.sheet_mm or 0.0) / 2),

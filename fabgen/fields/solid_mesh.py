@@ -1,10 +1,10 @@
-"""Surfaces of the drawn loop instead of thin strips: the half y >= 0 of its solid, on the can's floor and wall.
+"""Surfaces of the drawn loop instead of thin strips: the half y >= 0 of its solid, in the can's conducting faces.
 
 The loop's solid is read from STEP in the feed's frame, in millimetres, cut at the plane of symmetry and at the
-floor, and meshed by netgen together with floor, wall and the crossing, which stays a strip with the port at y = 0:
-it is what both models must share for their impedances to be compared.
+floor, and meshed by netgen together with the can (solid_can) and the crossing, which stays a strip with the port at
+y = 0: it is what both models must share for their impedances to be compared.
 
-Depends on: errors, fields.mesh.
+Depends on: errors, fields.mesh, fields.solid_can.
 """
 
 from __future__ import annotations
@@ -16,21 +16,19 @@ from typing import Any
 import numpy as np
 
 from fabgen.errors import GeometryError
-from fabgen.fields.mesh import CROSSING, FLOOR, LOOP, WALL, Mesh
-
-SMALL_MM = 1e-4
+from fabgen.fields.mesh import CHOKE, CROSSING, FLOOR, LOOP, WALL, Mesh
+from fabgen.fields.solid_can import SMALL_MM, DrawnCan, can_faces, can_name
 
 
 @dataclass(frozen=True)
 class SolidLoop:
-    """Where the drawn loop stands: its STEP file and the sizes that place crossing, floor and wall, millimetres.
+    """Where the drawn loop stands: its STEP file, its can, and the sizes that place the crossing, millimetres.
 
-    ``cell_mm``: edge length on the loop; ``edge_mm``: on floor and wall. ``bar_reach_mm``: y beyond the bar.
+    ``cell_mm``: edge length on the loop; ``edge_mm``: on the can. ``bar_reach_mm``: y beyond the bar.
     """
 
     step_file: Path
-    bore_mm: float
-    depth_mm: float
+    can: DrawnCan
     leg_x_mm: float
     bar_reach_mm: float
     bar_top_mm: float
@@ -50,15 +48,15 @@ def solid_mesh(drawn: SolidLoop) -> Mesh:
     from netgen.occ import Box, Glue, OCCGeometry, Pnt
 
     shape = OCCGeometry(str(drawn.step_file)).shape
-    reach = 2 * drawn.bore_mm + 10 * drawn.depth_mm
+    reach = 2 * drawn.can.bore_mm + 10 * drawn.can.depth_mm
     quarter = Box(Pnt(-reach, 0, 0), Pnt(reach, reach, reach))
     half = shape * quarter
     surface = [f for f in half.faces if f.bounding_box[1].y > SMALL_MM and f.bounding_box[1].z > SMALL_MM]
     if not surface:
         raise GeometryError(f"{drawn.step_file.name} has no surface above the floor; its loop cannot be compared")
-    floor, wall = _can_faces(drawn, quarter, half)
     tools = [_sheet(drawn, low, high) for low, high in _bar_pieces(drawn)]
-    faces = [f for f in Glue([*surface, *tools, floor, wall]).faces if _name(f, drawn)]
+    glued = Glue([*surface, *tools, *can_faces(drawn.can, quarter, half)])
+    faces = [f for f in glued.faces if _name(f, drawn)]
     for face in faces:
         face.name = _name(face, drawn)
         if face.name == "loop":
@@ -84,20 +82,6 @@ def _sheet(drawn: SolidLoop, low: float, high: float) -> Any:
     return Face(Wire([Segment(corners[i], corners[(i + 1) % 4]) for i in range(4)]))
 
 
-def _can_faces(drawn: SolidLoop, quarter: Any, half: Any) -> tuple[Any, Any]:
-    import OCP.gp  # noqa: F401 - first: loaded after netgen, the CAD kernel runs on netgen's older copy of itself
-    from netgen.occ import Cylinder, Pnt, Z
-
-    radius = drawn.bore_mm / 2
-    floor = Cylinder(Pnt(0, 0, 0), Z, radius, 1).faces.Min(Z) * quarter - half
-    side = [
-        f
-        for f in Cylinder(Pnt(0, 0, 0), Z, radius, drawn.depth_mm).faces
-        if f.bounding_box[1].z - f.bounding_box[0].z > drawn.depth_mm / 2
-    ]
-    return floor, side[0] * quarter
-
-
 def _name(face: Any, drawn: SolidLoop) -> str:
     """What a face of the glued surfaces is; empty for what only served to split."""
     low, high = face.bounding_box
@@ -105,11 +89,7 @@ def _name(face: Any, drawn: SolidLoop) -> str:
         half = drawn.crossing_mm / 2 + SMALL_MM
         at_tap = low.z > drawn.tap_height_mm - half and high.z < drawn.tap_height_mm + half
         return "crossing" if at_tap and low.y < SMALL_MM else ""
-    if high.z < SMALL_MM:
-        return "floor"
-    if low.z < SMALL_MM and high.z > drawn.depth_mm - SMALL_MM and high.y > 0.9 * drawn.bore_mm / 2:
-        return "wall"
-    return "loop"
+    return can_name(face, drawn.can) or "loop"
 
 
 def _meshed(shape: Any, drawn: SolidLoop) -> Mesh:
@@ -126,7 +106,7 @@ def _meshed(shape: Any, drawn: SolidLoop) -> Mesh:
     points[np.abs(points[:, 1]) < SMALL_MM, 1] = 0.0
     elements = mesh.Elements2D()
     triangles = np.array([[v.nr - 1 for v in e.vertices] for e in elements], dtype=np.int64)
-    label_of = {"floor": FLOOR, "wall": WALL, "loop": LOOP, "crossing": CROSSING}
+    label_of = {"floor": FLOOR, "wall": WALL, "choke": CHOKE, "loop": LOOP, "crossing": CROSSING}
     label = np.array([label_of[names[e.index - 1]] for e in elements], dtype=np.int64)
     # what lies in the plane of symmetry is a cut, not metal
     inside = ~(np.abs(points[triangles][:, :, 1]) < SMALL_MM).all(1)

@@ -16,7 +16,8 @@ from fabgen.parts.making import metal_part
 from fabgen.parts.records import Part
 from fabgen.parts.wall_plan import wall_plan
 from fabgen.parts.wall_solid import wall_solid
-from fabgen.parts.wall_strip import Wall, wall_flat, wall_volume_mm3
+from fabgen.parts.wall_strip import Wall, wall_flat
+from fabgen.parts.wall_volume import wall_volume_mm3
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
 from fabgen.theory.springback import sheet_tool_radius_mm
@@ -76,7 +77,7 @@ def _wall_part(feed: Feed, wall: Wall, key: str, name: str) -> Part:
         sizes=sizes,
         flat=wall_flat(wall, corner),
         thickness_mm=wall.path.thickness_mm,
-        solid=once(partial(wall_solid, wall)),
+        solid=once(partial(wall_solid, wall, corner)),
         notes=(
             f"{form} with the seen side out; the tail of the seam outside, seam at +y; step first, tabs last",
             *_rolling(feed, wall),

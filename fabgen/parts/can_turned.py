@@ -13,17 +13,17 @@ Section through the axis::
 A choke is a ring of its own on a hub with set screws; where its floor is too low for a hub, it is a groove turned
 in the same piece.
 
-Depends on: stock, parts.contour, parts.kernel, parts.making, parts.shell, parts.floor_plan,
+Depends on: stock, parts.contour, parts.curved_cuts, parts.kernel, parts.making, parts.shell, parts.floor_plan,
 parts.floor_holes, parts.records, sizing.records.
 """
 
 from __future__ import annotations
 
-import math
 from typing import TYPE_CHECKING
 
 from fabgen.parts import kernel
 from fabgen.parts.contour import Outline
+from fabgen.parts.curved_cuts import drilled_shell_mm3
 from fabgen.parts.floor_holes import floor_holes
 from fabgen.parts.floor_plan import flange_plan
 from fabgen.parts.making import metal_part
@@ -116,7 +116,7 @@ def _choke(feed: Feed, body: Body, choke: ChokeSizes) -> Part:
         (inner, low - hub), (hub_outer, low - hub), (hub_outer, low), (wall + sizes.wall_mm, low),
         (wall + sizes.wall_mm, rim), (wall, rim), (wall, choke.floor_z_mm), (inner, choke.floor_z_mm),
     )
-    drilled = HUB_SCREWS * math.pi / 4 * screw.tap_drill_mm**2 * (hub_outer - inner)
+    drilled = HUB_SCREWS * drilled_shell_mm3(inner, hub_outer, screw.tap_drill_mm)
     return metal_part(
         "choke",
         "turned choke ring",

@@ -124,9 +124,10 @@ def _leg_form(feed: Feed, path: WirePath, leg: WireBend, notes: tuple[str, ...])
     right = max(v.x_mm for v in outlines[0].vertices) + 15.0
     plate = rectangle((left, -near - WALL_MM - 12.0), (right, top))
     height = path.diameter_mm + 3.0
-    volume = area_mm2(plate) * PLATE_MM + sum(area_mm2(o) for o in outlines) * height
     y = -near - WALL_MM - 6.0
     holes = (Circle(left + 8.0, y, CLAMP_HOLE_MM), Circle(right - 8.0, y, CLAMP_HOLE_MM))
+    volume = (area_mm2(plate) - sum(area_mm2(h) for h in holes)) * PLATE_MM
+    volume += sum(area_mm2(o) for o in outlines) * height
     sizes = (("mandrel_mm", leg.mandrel_mm), ("stop_to_bend_mm", leg.start_mm), ("bend_to_deg", bend_to))
     text = f"end of the wire against the stop, bend along the block to {bend_to:.1f} degrees; both ends alike"
     solid = partial(_stepped, plate, holes, outlines, height)
@@ -141,11 +142,25 @@ def _loop_form(feed: Feed, path: WirePath, loop: WireBend) -> Part:
     height = d + 2.0
     at = min(12.0, loop.mandrel_mm / 4)
     holes = (Circle(at, 0.0, CLAMP_HOLE_MM), Circle(-at, 0.0, CLAMP_HOLE_MM)) if at > 4 else ()
-    volume = area_mm2(plate) * PLATE_MM + area_mm2(disc) * height
+    drilled = sum(area_mm2(h) for h in holes)
+    volume = (area_mm2(plate) - drilled) * PLATE_MM + (area_mm2(disc) - drilled) * height - 2 * _mark_mm3(plate, disc)
     sizes = (("mandrel_mm", loop.mandrel_mm), ("bend_to_deg", bend_to))
     text = f"bars up; wind from mark to mark ({bend_to:.1f} degrees under load), the gap to +x"
     solid = partial(_marked, plate, holes, disc, height, (360.0 - bend_to) / 2)
     return _plastic(feed, "jig-loop", "bending form for the loop", sizes, volume, (text,), solid)
+
+
+def _groove_mm(plate: Circle, disc: Circle) -> tuple[float, float]:
+    """Ends of a mark's groove: beside the disc, and beyond the plate."""
+    return disc.diameter_mm / 2 + 0.5, plate.diameter_mm / 2 + 1.0
+
+
+def _mark_mm3(plate: Circle, disc: Circle) -> float:
+    """Volume of one groove up to the plate's round edge: a rectangle and a segment of the circle."""
+    radius, half = plate.diameter_mm / 2, MARK_WIDTH_MM / 2
+    flat = math.sqrt(radius**2 - half**2)
+    segment = radius**2 * math.asin(half / radius) - half * flat
+    return (2 * half * (flat - _groove_mm(plate, disc)[0]) + segment) * MARK_DEPTH_MM
 
 
 def _stepped(
@@ -164,7 +179,7 @@ def _marked(
 
     base = kernel.prism(plate, (), 0.0, PLATE_MM)
     body = kernel.fused(base, kernel.prism(disc, (), PLATE_MM, height_mm), what="bending form")
-    inner, outer = disc.diameter_mm / 2 + 0.5, plate.diameter_mm / 2 + 1.0
+    inner, outer = _groove_mm(plate, disc)
     groove = kernel.box((inner, -MARK_WIDTH_MM / 2, PLATE_MM - MARK_DEPTH_MM), (outer, MARK_WIDTH_MM / 2, PLATE_MM))
     grooves = [kernel.turned(groove, angle) for angle in (half_gap_deg, -half_gap_deg)]
     drills = [

@@ -19,14 +19,14 @@ if TYPE_CHECKING:
     import cadquery
 
 
-def wall_solid(wall: Wall) -> cadquery.Shape:
-    """The finished wall in the feed's frame.
+def wall_solid(wall: Wall, corner_mm: float) -> cadquery.Shape:
+    """The finished wall in the feed's frame. ``corner_mm``: least inner corner radius of the flat strip.
 
     On a rolled wall the tabs' bends follow the circle; their sides are parallel as on the flat strip.
     """
     from fabgen.parts import kernel
 
-    body = _rolled(wall) if wall.path.stretches[0].rolled else _folded(wall)
+    body = _rolled(wall, corner_mm) if wall.path.stretches[0].rolled else _folded(wall, corner_mm)
     return kernel.moved(body, z_mm=wall.base_z_mm)
 
 
@@ -36,24 +36,25 @@ def _all_holes(wall: Wall) -> list[WallHole]:
     return [*(WallHole(s, z, seam.hole_mm) for s in rows for z in seam.heights_mm), *wall.holes]
 
 
-def _drill(wall: Wall, hole: WallHole) -> cadquery.Shape:
-    """A drill through one layer of the wall."""
+def _drill(wall: Wall, hole: WallHole, reach: float) -> cadquery.Shape:
+    """A drill from ``reach`` inside the mid-surface to as much outside it."""
     from fabgen.parts import kernel
 
     (x, y), heading = wall.path.at(hole.along_mm)
     ox, oy = outward(heading)
-    reach = wall.path.thickness_mm / 2 + SEAM_GAP_MM / 2
     ends = [(x + k * ox, y + k * oy, hole.height_mm) for k in (-reach, reach)]
     return kernel.rod(ends[0], ends[1], hole.diameter_mm)
 
 
-def _folded(wall: Wall) -> cadquery.Shape:
+def _folded(wall: Wall, corner_mm: float) -> cadquery.Shape:
     from fabgen.parts import kernel
 
-    last, seam = len(wall.path.stretches) - 1, wall.seam
+    last = len(wall.path.stretches) - 1
     body = kernel.prism(profile(wall.path, 0, last), (), 0.0, wall.depth_mm)
-    tail = kernel.prism(profile(wall.path, last), (), seam.tail_low_mm, wall.depth_mm - seam.tail_low_mm)
-    tools, tabs = [_drill(wall, hole) for hole in _all_holes(wall)], []
+    tail = _tail(wall, corner_mm)
+    # Through one layer of the lap only.
+    reach = wall.path.thickness_mm / 2 + SEAM_GAP_MM / 2
+    tools, tabs = [_drill(wall, hole, reach) for hole in _all_holes(wall)], []
     tab, under = _tab_body(wall), [_under_tab(wall), *_reliefs(wall)]
     for s in wall.tabs_mm:
         place, heading = wall.path.at(s)
@@ -62,7 +63,7 @@ def _folded(wall: Wall) -> cadquery.Shape:
     return kernel.fused(body.fuse(tail).cut(*tools), *tabs, what="wall")
 
 
-def _rolled(wall: Wall) -> cadquery.Shape:
+def _rolled(wall: Wall, corner_mm: float) -> cadquery.Shape:
     """Columns about each tab, and the step with the tail, sewn at their common upright faces."""
     import cadquery as cq
 
@@ -83,7 +84,7 @@ def _rolled(wall: Wall) -> cadquery.Shape:
         joints = [_upright_face(column, side * half) for side in ((1.0,) if i == 0 else (1.0, -1.0))]
         turn = 90.0 + half * (2 * i + 1)
         faces += [_turned(face, turn) for face in column.Faces() if not any(face.isSame(j) for j in joints)]
-    end = _end_piece(wall)
+    end = _end_piece(wall, corner_mm)
     join = _upright_face(end, 90.0 + 2 * half * count)
     faces += [face for face in end.Faces() if not face.isSame(join)]
     return kernel.one_solid(cq.Solid.makeSolid(cq.Shell.makeShell(faces)), "wall")
@@ -132,14 +133,37 @@ def _column(wall: Wall, half_deg: float, holes: tuple[tuple[float, float, float]
     return kernel.fused(body.cut(*tools), tab, what="wall")
 
 
-def _end_piece(wall: Wall) -> cadquery.Shape:
+def _tail(wall: Wall, corner_mm: float) -> cadquery.Shape:
+    """The tail above its lower edge, with the round inner corner where that edge meets the step."""
+    import cadquery as cq
+
+    from fabgen.parts import kernel
+
+    path, low, t = wall.path, wall.seam.tail_low_mm, wall.path.thickness_mm
+    last = len(path.stretches) - 1
+    tail = kernel.prism(profile(path, last), (), low, wall.depth_mm - low)
+    if corner_mm <= 0:
+        return tail
+    place, heading = path.stretches[last].at(0.0)
+    corner = Contour((Vertex(0.0, low), *split_arc((corner_mm, low - corner_mm), corner_mm, 180.0, -90.0),
+                      Vertex(corner_mm, low)))  # fmt: skip
+    plane = cq.Plane(origin=(0, 0, 0), xDir=(0, 1, 0), normal=(1, 0, 0))
+    tool = kernel.prism(corner, (), -2 * t, 4 * t).moved(cq.Location(plane))
+    below = kernel.prism(profile(path, last), (), low - corner_mm, corner_mm)
+    web = kernel.common(below, _put(tool, place, heading), what="corner of the tail")
+    return kernel.fused(tail, web, what="tail")
+
+
+def _end_piece(wall: Wall, corner_mm: float) -> cadquery.Shape:
     from fabgen.parts import kernel
 
     path, seam = wall.path, wall.seam
     last = len(path.stretches) - 1
     step = kernel.prism(profile(path, 1, last), (), 0.0, wall.depth_mm)
-    tail = kernel.prism(profile(path, last), (), seam.tail_low_mm, wall.depth_mm - seam.tail_low_mm)
-    drills = [_drill(wall, hole) for hole in _all_holes(wall) if hole.along_mm > seam.tail_at_mm]
+    tail = _tail(wall, corner_mm)
+    # Only the tail is drilled here, so the drill may reach well beyond its faces, which curve away from it.
+    reach = 2 * path.thickness_mm
+    drills = [_drill(wall, hole, reach) for hole in _all_holes(wall) if hole.along_mm > seam.tail_at_mm]
     return kernel.fused(step, kernel.cut(tail, *drills, what="tail"), what="tail of the seam")
 
 

@@ -23,7 +23,7 @@ import math
 from dataclasses import dataclass
 
 from fabgen.errors import GeometryError
-from fabgen.parts.contour import Circle, FoldLine, area_mm2, rounded
+from fabgen.parts.contour import Circle, FoldLine, rounded
 from fabgen.parts.records import FlatPattern
 from fabgen.parts.strip_path import StripPath, outward
 from fabgen.theory.bending import bend_allowance, bend_deduction
@@ -195,17 +195,6 @@ def _corner_mm(wall: Wall, along_mm: float) -> float:
     ox, oy = outward(heading)
     return math.hypot(math.hypot(x, y) * abs(x * ox + y * oy) / math.hypot(x, y) + wall.reach_mm,
                       abs(x * oy - y * ox) + wall.tab.width_mm / 2)
-
-
-def wall_volume_mm3(wall: Wall, corner_mm: float) -> float:
-    """Volume from the flat: area times t, and the neutral-fibre term of every fold over its length."""
-    flat = wall_flat(wall, corner_mm)
-    t = wall.path.thickness_mm
-    area = area_mm2(flat.outline) - math.fsum(area_mm2(h) for h in flat.holes)
-    extra = math.fsum(
-        math.radians(abs(f.angle_deg)) * math.dist(f.start, f.end) * t * t * (0.5 - f.k_factor) for f in flat.folds
-    )
-    return area * t + extra
 
 
 def corner_round_mm(tab: TabShape) -> float:

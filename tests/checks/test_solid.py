@@ -2,14 +2,21 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import replace
 from pathlib import Path
+from typing import Any
 
+import numpy as np
 import pytest
 
-from fabgen.checks.solid import compare_solid, containment, solid_findings
-from fabgen.errors import NotCoveredError
+from fabgen.checks.solid import compare_solid, containment, drawn_loop, solid_findings
+from fabgen.errors import GeometryError
+from fabgen.fields.mesh import CHOKE, CROSSING, FLOOR, LOOP, WALL
+from fabgen.fields.solid_can import DrawnCan, can_faces
+from fabgen.fields.solid_mesh import solid_mesh
 from fabgen.parts.build import build_parts
+from fabgen.parts.loop_wire import axis_length_mm, wire_pieces
 from fabgen.writers.step import write_step
 from tests.samples import sample_feed
 
@@ -27,10 +34,13 @@ def test_simulated_surfaces_lie_in_the_drawn_metal(form: str, make: str) -> None
 
 @pytest.mark.slow
 @pytest.mark.thorough
-@pytest.mark.parametrize("form", ["wire", "sheet"])
-def test_the_drawn_solid_computes_to_the_strip_model(form: str, tmp_path: Path) -> None:
+@pytest.mark.parametrize(
+    ("form", "make", "choke"),
+    [("wire", "rolled", False), ("sheet", "rolled", False), ("wire", "tube", True), ("wire", "folded", True)],
+)
+def test_the_drawn_solid_computes_to_the_strip_model(form: str, make: str, choke: bool, tmp_path: Path) -> None:
     # the reference is our own solver on the closed surface of the drawn loop, in place of strips
-    feed = sample_feed(form, "rolled")
+    feed = sample_feed(form, make, choke=choke)
     loop = next(p for p in build_parts(feed) if p.key.startswith("loop"))
     write_step(loop, tmp_path / "loop.step")
     found = compare_solid(feed, tmp_path / "loop.step")
@@ -38,11 +48,6 @@ def test_the_drawn_solid_computes_to_the_strip_model(form: str, tmp_path: Path) 
     assert abs(found.resonance_shift_mhz) < 0.01 * feed.job.target.frequency_mhz
     # R alone, as after trimming the capacitor: no worse than 25 dB apart from the model's
     assert abs((found.solid_ohm.real - found.model_ohm.real) / (found.solid_ohm.real + 50)) < 0.056
-
-
-def test_cans_with_flats_are_refused(tmp_path: Path) -> None:
-    with pytest.raises(NotCoveredError, match="round cans without choke"):
-        compare_solid(sample_feed("wire", "folded"), tmp_path / "loop.step")
 
 
 @pytest.mark.slow
@@ -61,10 +66,51 @@ def test_each_surface_is_measured_against_its_own_part() -> None:
 
 
 @pytest.mark.slow
-def test_a_can_that_is_not_compared_is_still_measured(tmp_path: Path) -> None:
-    feed = sample_feed("wire", "folded")
-    (note,) = solid_findings(feed, build_parts(feed), tmp_path / "loop.step")
-    assert (note.code, note.severity, note.value) == ("CONS-302", "note", "not computed")
+@pytest.mark.thorough
+def test_findings_tell_the_comparison_and_a_wall_off_its_place(tmp_path: Path) -> None:
+    feed = sample_feed("wire", "folded", choke=True)
+    parts = build_parts(feed)
+    write_step(next(p for p in parts if p.key == "loop"), tmp_path / "loop.step")
+    (note,) = solid_findings(feed, parts, tmp_path / "loop.step")
+    assert (note.code, note.severity) == ("CONS-302", "note")
+    assert "unknowns" in note.message
     off = replace(feed, sizes=replace(feed.sizes, can_bore_mm=feed.sizes.can_bore_mm - 3.0))
-    codes = [(f.code, f.part) for f in solid_findings(off, build_parts(feed), tmp_path / "loop.step")]
+    codes = [(f.code, f.part) for f in solid_findings(off, parts, tmp_path / "loop.step")]
     assert ("CONS-301", "wall") in codes
+
+
+@pytest.mark.parametrize(
+    ("make", "can"),
+    [
+        ("rolled", {}), ("tube", {"choke": True}), ("folded", {"choke": True, "flats": 6}), ("folded", {"flats": 12}),
+    ],
+)
+def test_meshed_faces_have_their_area(make: str, can: dict[str, Any], tmp_path: Path) -> None:
+    feed = sample_feed("wire", make, **can)
+    sizes = feed.sizes
+    write_step(next(p for p in build_parts(feed) if p.key == "loop"), tmp_path / "loop.step")
+    mesh = solid_mesh(drawn_loop(feed, tmp_path / "loop.step"))
+    area = {label: 1e6 * mesh.areas_m2()[mesh.label == label].sum() for label in (FLOOR, WALL, CHOKE, LOOP, CROSSING)}
+    n = sizes.can_flats
+    # Circumference and area over those of the circle of the same bore across flats.
+    ratio = n / math.pi * math.tan(math.pi / n) if n else 1.0
+    limit = 1e-6 if n else 6e-3
+    foot = math.pi / 4 * 4.0**2
+    radius = sizes.can_bore_mm / 2
+    assert area[FLOOR] + foot == pytest.approx(ratio * math.pi * radius**2 / 2, rel=limit, abs=2.0)
+    assert area[WALL] == pytest.approx(ratio * math.pi * radius * sizes.can_depth_mm, rel=limit)
+    if sizes.choke is not None:
+        outer = sizes.choke.bore_mm / 2
+        ring = math.pi / 2 * (outer**2 - radius**2) + math.pi * outer * sizes.choke.depth_mm
+        assert area[CHOKE] == pytest.approx(ratio * ring, rel=limit)
+    # Wire of 4 mm: pi d over half the length of its axis above the floor.
+    axis = sum(axis_length_mm(piece) for piece in wire_pieces(feed)) / 2 - sizes.floor_mm
+    assert area[LOOP] == pytest.approx(math.pi * 4.0 * axis, rel=0.03)
+    assert np.isfinite(mesh.vertices_m).all()
+    inside = mesh.vertices_m[np.unique(mesh.triangles[mesh.label == CROSSING])]
+    assert inside[:, 1].min() == 0.0
+
+
+def test_a_can_without_a_plane_of_symmetry_is_refused() -> None:
+    with pytest.raises(GeometryError, match="use 6, 8 or 12"):
+        can_faces(DrawnCan(200.0, 60.0, 7), None, None)

@@ -15,6 +15,7 @@ from fabgen.parts.floor_plan import flange_plan
 from fabgen.parts.records import Part
 from fabgen.stock import tables
 from tests.parts.feeds import with_cable
+from tests.parts.volume import volume_mm3
 from tests.samples import sample_feed
 
 
@@ -59,9 +60,7 @@ def test_masses_of_turned_and_tube_cans_follow_from_their_solids(pattern: str) -
     tube = sample_feed("sheet", "tube", choke=True, flange=flange)
     for part in (*can_turned(turned), *can_tube(tube)):
         assert part.solid is not None
-        # The set screws' holes in the choke's curved hub are taken as straight.
-        limit = 1e-4 if part.key == "choke" else 1e-6
-        assert part.mass_kg == pytest.approx(part.solid().Volume() * 1e-9 * density(part), rel=limit), part.key
+        assert part.mass_kg == pytest.approx(volume_mm3(part.solid()) * 1e-9 * density(part), rel=1e-6), part.key
 
 
 def test_bores_are_the_simulated_ones() -> None:

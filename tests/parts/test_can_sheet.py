@@ -25,6 +25,7 @@ from fabgen.parts.records import Part
 from fabgen.parts.strip_path import outward
 from fabgen.parts.wall_strip import Wall, tab_holes, tab_tip_mm
 from fabgen.sizing.records import Feed
+from tests.parts.volume import volume_mm3
 from tests.samples import sample_feed
 
 MAKES: dict[str, dict[str, Any]] = {
@@ -129,8 +130,8 @@ def test_holes_of_the_choke_ring_meet_the_cans_wall_and_the_chokes_tabs(name: st
 
 
 @pytest.mark.parametrize("name", SOLIDS)
-def test_every_solid_is_sound_and_has_the_flat_patterns_volume(name: str) -> None:
-    """Mass is computed from the flat; a rolled wall differs by the circle in its tabs and reliefs."""
+def test_every_solid_is_sound_and_has_its_closed_form_volume(name: str) -> None:
+    """Mass is computed in closed form: from the flat, or for a rolled wall from its round pieces."""
     from fabgen.stock import tables
 
     for part in parts_of(name).values():
@@ -140,8 +141,7 @@ def test_every_solid_is_sound_and_has_the_flat_patterns_volume(name: str) -> Non
         volume = part.mass_kg / tables.metal(part.material).density_kg_per_m3 * 1e9
         assert solid.isValid()
         assert len(solid.Solids()) == 1
-        wall = 6e-4 if not feed_of(name).sizes.can_flats else 3e-6
-        assert solid.Volume() == pytest.approx(volume, rel=wall if "wall" in part.key else 1e-6)
+        assert volume_mm3(solid) == pytest.approx(volume, rel=1e-6)
 
 
 @pytest.mark.parametrize("name", [pytest.param("rolled", marks=pytest.mark.slow), "rolled brass"])
