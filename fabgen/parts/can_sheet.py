@@ -82,6 +82,7 @@ def _wall_part(feed: Feed, wall: Wall, key: str, name: str) -> Part:
             f"{form} with the seen side out; the tail of the seam outside, seam at +y; step first, tabs last",
             *_rolling(feed, wall),
             f"{joint}; holes fit {seam.screw} screws and rivets",
+            *(("the holes close to the lower edge are drains: no screw, no solder in them",) if wall.drains else ()),
             rule_text(feed.job.limits),
         ),
     )

@@ -1,6 +1,6 @@
 """From sizes to the wall of a rolled or folded can: way of the strip, seam, tabs and their screws.
 
-Depends on: errors, stock, parts (strip_path, wall_strip, bend_rule), theory.bending, sizing.records.
+Depends on: errors, stock, parts (strip_path, wall_strip, wall_drains, bend_rule), theory.bending, sizing.records.
 """
 
 from __future__ import annotations
@@ -13,6 +13,7 @@ from fabgen.errors import GeometryError
 from fabgen.parts.bend_rule import chosen_k
 from fabgen.parts.can_printed import SKIRT_MM
 from fabgen.parts.strip_path import Joggle, StripPath, joggle
+from fabgen.parts.wall_drains import wall_drains
 from fabgen.parts.wall_strip import EDGE_GAP_MM, SEAM_GAP_MM, Seam, TabShape, Wall, WallHole, check_wall
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
@@ -71,7 +72,8 @@ def wall_plan(
     tab = tab_shape(feed, screw, t)
     tabs = _tab_places(feed, path, seam, tab)
     holes = _fixing_holes(path, tabs, seam, overlap, fixings, screw.clearance_medium_mm) if fixings else ()
-    wall = Wall(path, depth_mm, base_z_mm, tab, tabs, seam, holes)
+    drains = wall_drains(feed, path, tab, tabs, seam, holes)
+    wall = Wall(path, depth_mm, base_z_mm, tab, tabs, seam, holes, drains)
     check_wall(wall, name)
     return wall
 

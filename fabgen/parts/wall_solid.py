@@ -33,7 +33,7 @@ def wall_solid(wall: Wall, corner_mm: float) -> cadquery.Shape:
 def _all_holes(wall: Wall) -> list[WallHole]:
     seam = wall.seam
     rows = (seam.inner_row_mm, seam.outer_row_mm)
-    return [*(WallHole(s, z, seam.hole_mm) for s in rows for z in seam.heights_mm), *wall.holes]
+    return [*(WallHole(s, z, seam.hole_mm) for s in rows for z in seam.heights_mm), *wall.holes, *wall.drains]
 
 
 def _drill(wall: Wall, hole: WallHole, reach: float) -> cadquery.Shape:

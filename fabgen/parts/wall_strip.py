@@ -8,7 +8,7 @@ Flat, seen from outside the can; s runs counter-clockwise round the can from the
          | o                                          : : o   |
          |                                            : '-----'   tail_low
          '--. .-----. .------. .-----. .--------------'           y = 0 on the floor
-            | | tab | |      | | tab | |  reliefs beside the tabs
+            | | tab | |  (o) | | tab | |  reliefs beside the tabs, (o) a drain close to the floor
             '-'  o  '-'      '-'  o  '-'  tab holes meet the floor's
 
 The tail lies outside the beginning of the strip, lifted by a step of t + SEAM_GAP. Between the tabs the wall's
@@ -74,7 +74,8 @@ class WallHole:
 
 @dataclass(frozen=True)
 class Wall:
-    """All that makes a wall. ``base_z_mm``: height of its lower edge in the feed's frame."""
+    """All that makes a wall. ``base_z_mm``: height of its lower edge in the feed's frame; ``holes`` hold a choke,
+    ``drains`` stay open."""
 
     path: StripPath
     depth_mm: float
@@ -83,6 +84,7 @@ class Wall:
     tabs_mm: tuple[float, ...]
     seam: Seam
     holes: tuple[WallHole, ...] = ()
+    drains: tuple[WallHole, ...] = ()
 
     @property
     def bend_mid_mm(self) -> float:
@@ -134,7 +136,7 @@ def wall_flat(wall: Wall, corner_mm: float) -> FlatPattern:
     ]
     rows = (seam.inner_row_mm, seam.outer_row_mm)
     holes = [Circle(s, z, seam.hole_mm) for s in rows for z in seam.heights_mm]
-    holes += [Circle(h.along_mm, h.height_mm, h.diameter_mm) for h in wall.holes]
+    holes += [Circle(h.along_mm, h.height_mm, h.diameter_mm) for h in (*wall.holes, *wall.drains)]
     holes += [Circle(s, tip + tab.length_mm - tab.hole_from_bend_mm, tab.hole_mm) for s in wall.tabs_mm]
     return FlatPattern(rounded(edge), tuple(holes), _fold_lines(wall), wall.path.thickness_mm, "outside")
 

@@ -227,6 +227,64 @@ def test_floor_carries_marks_bolts_connector_and_drains() -> None:
     assert all(shapely.Point(h.x_mm, h.y_mm).distance(ring.exterior) > h.diameter_mm / 2 + 1.5 for h in circles)
 
 
+@pytest.mark.parametrize("name", [case for case in SOLIDS if case.values != ("rolled small",)])
+def test_the_walls_drains_are_open_and_lie_in_the_corner_on_all_four_sides(name: str) -> None:
+    """Whichever side is lowest for the polarisation, a hole of 3 mm is there; water under 1.5 mm or 1.5 t stays."""
+    import cadquery as cq
+
+    wall = can_wall(feed_of(name))
+    t = wall.path.thickness_mm
+    angles = []
+    for hole in wall.drains:
+        (x, y), heading = wall.path.at(hole.along_mm)
+        angles.append(math.degrees(math.atan2(y, x)))
+        assert hole.height_mm - hole.diameter_mm / 2 == pytest.approx(max(1.0, 1.5 * t))
+        ox, oy = outward(heading)
+        ends = [cq.Vector(x + k * ox, y + k * oy, hole.height_mm) for k in (-5.0, 5.0)]
+        free = cq.Edge.makeLine(*ends).distance(solid_of(name, "wall"))
+        assert free == pytest.approx(hole.diameter_mm / 2, abs=0.02)
+    near = 25.0
+    for side in (0.0, 90.0, 180.0, -90.0):
+        assert min(abs((a - side + 180.0) % 360.0 - 180.0) for a in angles) < near
+
+
+@pytest.mark.parametrize("name", MAKES)
+def test_drains_keep_clear_of_folds_edges_lap_and_choke_tabs(name: str) -> None:
+    """2 t + r to a fold, 1.5 t to an edge (SB-42, SB-44: design guides, read in a secondary page)."""
+    feed, wall = feed_of(name), can_wall(feed_of(name))
+    flat = parts_of(name)["wall"].flat
+    assert flat is not None
+    t, edge = wall.path.thickness_mm, shapely.Polygon(sampled(flat.outline, 0.001)).exterior
+    others = [h for h in flat.holes if isinstance(h, Circle) and h.diameter_mm != 3.0]
+    for hole in wall.drains:
+        spot = shapely.Point(hole.along_mm, hole.height_mm)
+        assert Circle(hole.along_mm, hole.height_mm, 3.0) in flat.holes
+        assert edge.distance(spot) - 1.5 > 1.5 * t - 0.01
+        for fold in flat.folds:
+            least = 1.5 + 2 * t + fold.inside_radius_mm
+            assert shapely.LineString([fold.start, fold.end]).distance(spot) > least - 1e-6
+        assert min(spot.distance(shapely.Point(h.x_mm, h.y_mm)) - h.diameter_mm / 2 for h in others) > 1.5 + t
+        assert wall.path.stretches[-1].flat_mm + 1.5 < hole.along_mm < wall.seam.step_at_mm - 1.5
+        # An opening of 3 mm is far below cut-off: under a fiftieth of a wavelength, or a tenth at the highest.
+        assert hole.diameter_mm < feed.job.wavelength_mm / 10
+
+
+def test_a_choke_open_upwards_drains_too_and_drains_may_be_left_out() -> None:
+    outer = choke_wall(feed_of("rolled brass"))
+    assert outer is not None
+    assert len(outer.drains) == 4
+    dry = sample_feed("wire", "rolled", drain_holes=False)
+    assert can_wall(dry).drains == ()
+    notes = {p.key: " ".join(p.notes) for p in sheet_can(dry)}
+    assert "drain" not in notes["wall"]
+    assert "drain" in " ".join(parts_of("rolled")["wall"].notes)
+
+
+def test_tabs_too_close_for_a_drain_leave_it_to_the_floor() -> None:
+    """In a can of 55 mm bore the reliefs beside the tabs are closer to each other than a hole with its edges."""
+    assert can_wall(feed_of("rolled small")).drains == ()
+
+
 def test_connectors_of_the_sma_table_have_their_screw_pitch_in_the_floor() -> None:
     """SMA 4-hole flange: 8.64 mm pitch (CN-05, MIL-STD-348 drawings, partly read)."""
     feed = sample_feed("sheet", "rolled")
