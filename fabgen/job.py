@@ -190,6 +190,16 @@ class Job(Section):
         return 299_792.458 / self.target.frequency_mhz
 
 
+def typical_wire_mm(wavelength_mm: float) -> float:
+    """Wire that matches well in nearly every can: 4 mm at 1420 MHz, in ratio to the wavelength, 1 mm at least."""
+    return max(1.0, round(0.019 * wavelength_mm, 1))
+
+
+def typical_sheet_mm(wavelength_mm: float) -> float:
+    """Sheet that matches well in nearly every can: 1.5 mm at 1420 MHz, in ratio to the wavelength, 0.3 mm at least."""
+    return max(0.3, round(0.007 * wavelength_mm, 1))
+
+
 def contradictions(job: Job) -> Iterator[str]:
     """What in the job cannot go together: each text says what was given, what is allowed and what to do."""
     yield from _loop_stock(job)
@@ -218,9 +228,17 @@ def _loop_against_wavelength(job: Job) -> Iterator[str]:
     at = f"at {job.target.frequency_mhz:g} MHz (a tenth of the wavelength is {tenth:.2f} mm)"
     wire, sheet, strip = job.loop.wire_mm, job.loop.sheet_mm, job.loop.strip_width_mm
     if wire is not None and wire > tenth:
-        yield f"loop.wire_mm = {wire:g} is thicker than allowed {at}; use wire of {tenth:.2f} mm or less"
+        good = typical_wire_mm(job.wavelength_mm)
+        yield (
+            f"loop.wire_mm = {wire:g} is thicker than allowed {at}; use wire of {tenth:.2f} mm or less, best about "
+            f"{good:g} mm"
+        )
     if sheet is not None and sheet > tenth / 2:
-        yield f"loop.sheet_mm = {sheet:g} is thicker than allowed {at}; use sheet of {tenth / 2:.2f} mm or less"
+        good = typical_sheet_mm(job.wavelength_mm)
+        yield (
+            f"loop.sheet_mm = {sheet:g} is thicker than allowed {at}; use sheet of {tenth / 2:.2f} mm or less, best "
+            f"about {good:g} mm"
+        )
     if strip is not None and strip > tenth:
         yield f"loop.strip_width_mm = {strip:g} is wider than allowed {at}; use {tenth:.2f} mm or less"
 

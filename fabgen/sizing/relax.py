@@ -9,11 +9,9 @@ from collections.abc import Callable, Iterator
 from typing import Any
 
 from fabgen.errors import FabgenError
-from fabgen.job import Job
+from fabgen.job import Job, typical_sheet_mm, typical_wire_mm
 from fabgen.progress import Progress
 
-TYPICAL_WIRE, TYPICAL_SHEET = 0.019, 0.007
-"""Wire and sheet over the wavelength that match well: 4 mm and 1.5 mm at 1420 MHz."""
 MOST_TRIALS = 6
 
 
@@ -50,14 +48,14 @@ def _relaxations(job: Job) -> Iterator[tuple[str, str, dict[str, Any]]]:
         yield "leave loop.bend_radius_mm out", "loop", {"bend_radius_mm": None}
     wavelength = job.wavelength_mm
     if job.loop.form == "wire":
-        wire = max(1.0, round(TYPICAL_WIRE * wavelength, 1))
+        wire = typical_wire_mm(wavelength)
         yield f"use wire of {wire:g} mm", "loop", {"wire_mm": wire, "bend_radius_mm": None}
     else:
-        sheet = max(0.3, round(TYPICAL_SHEET * wavelength, 1))
+        sheet = typical_sheet_mm(wavelength)
         plain = {"sheet_mm": sheet, "strip_width_mm": None, "bend_radius_mm": None}
         yield f"use sheet of {sheet:g} mm and leave the strip's width out", "loop", plain
     if job.loop.form == "sheet":
-        wire = max(1.0, round(TYPICAL_WIRE * wavelength, 1))
+        wire = typical_wire_mm(wavelength)
         change = {"form": "wire", "wire_mm": wire, "sheet_mm": None, "strip_width_mm": None, "metal": "cu-etp"}
         yield f"use a loop of {wire:g} mm wire", "loop", {**change, "temper": None, "bend_radius_mm": None}
     yield "fix no size at all", "fixed", dict.fromkeys(job.fixed.model_dump())
