@@ -3,7 +3,7 @@
 Coordinates are those of the cutting file, so a table here can be checked against it. Corners are numbered along
 the contour; an arc is given by its radius and its turn, which is enough because no arc is longer than 90 degrees.
 
-Depends on: drawing.model, drawing.dimension, drawing.texts, parts.contour, parts.records.
+Depends on: drawing.model, drawing.dimension, drawing.texts, parts (contour, bend_table, records).
 """
 
 from __future__ import annotations
@@ -18,11 +18,13 @@ from fabgen.drawing.dimension import DIAMETER, Ask, Mark, along_x, along_y, lead
 from fabgen.drawing.model import Arc, Item, Line, Point, number
 from fabgen.drawing.texts import say
 from fabgen.parts import contour as c
+from fabgen.parts.bend_table import fold_edges_mm
 from fabgen.parts.records import FlatPattern
 
 SPARED_ROWS = 24
 MOST_IN_SET = 40
 EXACT_MM = 1e-6
+ROUND_DEG = 330.0  # an edge with this much of one circle is that of a disc
 
 
 @dataclass(frozen=True)
@@ -179,7 +181,7 @@ def hole_rows(flat: FlatPattern) -> tuple[tuple[str, str, str, str], ...]:
 
 def fold_rows(flat: FlatPattern) -> tuple[tuple[str, ...], ...]:
     """Rows of the bend table, folds of one kind together: numbers, order, angle, direction, inside radius, K,
-    allowance, deduction."""
+    allowance, deduction, and how far the line's middle is from the edge on its left and on its right."""
     groups: dict[tuple[str, ...], list[int]] = {}
     for f in flat.folds:
         kind = (
@@ -190,6 +192,7 @@ def fold_rows(flat: FlatPattern) -> tuple[tuple[str, ...], ...]:
             number(f.k_factor, 3),
             number(f.allowance_mm, 2),
             number(f.deduction_mm, 2),
+            *(f"{edge:.2f}" for edge in fold_edges_mm(flat, f)),
         )
         groups.setdefault(kind, []).append(f.number)
     return tuple((_runs(numbers), *kind) for kind, numbers in groups.items())
@@ -238,11 +241,26 @@ def asks(flat: FlatPattern) -> list[Ask]:
     if isinstance(flat.outline, c.Circle):
         d = flat.outline.diameter_mm
         wanted.append(along_x("outline", x0, x1, (y0 + y1) / 2, "bottom", text=f"{DIAMETER}{number(d)}"))
+    elif (radius := round_radius_mm(flat.outline)) is not None:
+        text = f"{DIAMETER}{number(2 * radius)}"
+        wanted.append(along_x("diameter", -radius, radius, 0.0, "bottom", text=text))
+        wanted += [*_fold_asks(flat, x0, y0, x1, y1), *_radius_asks(flat, radius)]
     else:
         wanted += [along_x("width", x0, x1, y0, "bottom"), along_y("height", y0, y1, x0, "left")]
         wanted += _fold_asks(flat, x0, y0, x1, y1)
         wanted += _radius_asks(flat)
     return [*wanted, *hole_asks(round_holes(flat))]
+
+
+def round_radius_mm(outline: c.Contour) -> float | None:
+    """Radius of a disc about the origin whose edge has notches only: arcs of it make up most of the contour."""
+    turned: dict[float, float] = {}
+    for a, b in c.pairs(outline):
+        arc = c.arc_between(a, b) if a.bulge else None
+        if arc is not None and math.hypot(*arc.centre) < EXACT_MM * 1e3:
+            radius = _rounded(arc.radius_mm)
+            turned[radius] = turned.get(radius, 0.0) + arc.sweep_deg
+    return next((radius for radius, sweep in turned.items() if sweep > ROUND_DEG), None)
 
 
 def _fold_asks(flat: FlatPattern, x0: float, y0: float, x1: float, y1: float) -> list[Ask]:
@@ -256,7 +274,7 @@ def _fold_asks(flat: FlatPattern, x0: float, y0: float, x1: float, y1: float) ->
     return out
 
 
-def _radius_asks(flat: FlatPattern) -> list[Ask]:
+def _radius_asks(flat: FlatPattern, outer_mm: float | None = None) -> list[Ask]:
     groups: dict[float, list[c.Arc]] = {}
     for _, contour in contours(flat):
         for a, b in c.pairs(contour):
@@ -265,6 +283,8 @@ def _radius_asks(flat: FlatPattern) -> list[Ask]:
                 groups.setdefault(_rounded(arc.radius_mm), []).append(arc)
     out = []
     for radius, arcs in sorted(groups.items())[:6]:
+        if radius == outer_mm:
+            continue
         arc = arcs[0]
         angle = arc.start_deg + arc.sweep_deg / 2
         t = math.radians(angle)

@@ -29,6 +29,7 @@ from fabgen.drawing.model import (
 from fabgen.drawing.paper import TITLE_HEIGHT_MM, Paper
 
 LINE_PITCH = 1.72  # base line to base line over the capital height
+WHOLE_TABLE_MM = 48.0  # a table no higher than this is not broken
 INSET_MM = 5.0  # between the frame and what stands in it
 COLUMN_WIDTH_MM = 170.0
 
@@ -36,7 +37,7 @@ COLUMN_WIDTH_MM = 170.0
 @dataclass(frozen=True)
 class Block:
     """Something to set. ``repeat`` is set again when a break falls right before this block; ``stay`` keeps the
-    block together with the next one."""
+    block together with the next one; ``slack`` is what may be taken off the height where that saves a sheet."""
 
     height: float
     items: tuple[Item, ...]
@@ -45,6 +46,7 @@ class Block:
     tables: tuple[Table, ...] = ()
     repeat: Block | None = None
     stay: bool = False
+    slack: float = 0.0
 
 
 @dataclass
@@ -85,7 +87,17 @@ def column_height(paper: Paper) -> float:
 
 
 def flow(paper: Paper, blocks: Sequence[Block]) -> list[Page]:
-    """Set the blocks; a block higher than a column is set alone and the caller must have made it fit."""
+    """Set the blocks, closer together where that saves a sheet: no tail of a table takes one of its own.
+
+    A block higher than a column is set alone and the caller must have made it fit."""
+    pages = _flow(paper, blocks)
+    if len(pages) > 1:
+        close = _flow(paper, [replace(block, height=block.height - block.slack) for block in blocks])
+        return close if len(close) < len(pages) else pages
+    return pages
+
+
+def _flow(paper: Paper, blocks: Sequence[Block]) -> list[Page]:
     pages = [Page()]
     spots = columns(paper)
     index, y = 0, spots[0].top
@@ -128,13 +140,13 @@ def _set(page: Page, block: Block, x: float, y: float) -> None:
 
 def gap(height: float = 4.0) -> Block:
     """Empty space."""
-    return Block(height, ())
+    return Block(height, (), slack=0.6 * height)
 
 
 def heading(text: str, size: float = 3.5, width: float = COLUMN_WIDTH_MM) -> Block:
     """A heading that stays with what follows, made smaller or cut where it is too long for the column."""
     text, fitted = fit(tidy_text(text), width, size, bold=True)
-    return Block(size * 2.2, (Text(0, -size * 1.35, text, fitted, bold=True),), stay=True)
+    return Block(size * 2.2, (Text(0, -size * 1.35, text, fitted, bold=True),), stay=True, slack=0.4 * size)
 
 
 def paragraph(
@@ -212,11 +224,17 @@ def table(
     blocks = [replace(top, tables=(record,), stay=True)]
     for i, row in enumerate(rows):
         colour = RED if i in red else BLACK
-        stay = i == 0 and len(rows) > 1
-        blocks.append(
-            replace(_row_block(row, cols, size, bold=i in red, colour=colour, rule="fine"), repeat=top, stay=stay)
-        )
-    return [*blocks, gap(3)]
+        blocks.append(replace(_row_block(row, cols, size, bold=i in red, colour=colour, rule="fine"), repeat=top))
+    return [*_unbroken(blocks), gap(3)]
+
+
+def _unbroken(blocks: Sequence[Block]) -> list[Block]:
+    """The rows of a table under its head: a short table stays whole, of a long one neither the first nor the last
+    row is left alone."""
+    rows = len(blocks) - 1
+    whole = sum(b.height for b in blocks) <= WHOLE_TABLE_MM
+    held = {1, rows - 1} if not whole else set(range(1, rows))
+    return [replace(b, stay=b.stay or (i in held and i < rows)) for i, b in enumerate(blocks)]
 
 
 def side_by_side(
@@ -241,8 +259,9 @@ def side_by_side(
     for i in range(each):
         line = [_row_block(rows[i + k * each], cols, size, bold=False, colour=BLACK, rule="fine")
                 for k in range(count) if i + k * each < len(rows)]  # fmt: skip
-        blocks.append(replace(beside(line, lefts[: len(line)]), repeat=top, stay=i == 0))
-    return [*blocks, gap(3)]
+        row = beside(line, lefts[: len(line)])
+        blocks.append(replace(row, repeat=top, slack=line[0].slack))
+    return [*_unbroken(blocks), gap(3)]
 
 
 def _row_block(
@@ -260,7 +279,7 @@ def _row_block(
     items.append(Line(0, -height, x, -height, rule))
     if rule == "outline":
         items.insert(0, Polyline(((0, 0), (x, 0), (x, -height), (0, -height)), None, True, (0.93, 0.93, 0.93)))
-    return Block(height, tuple(items))
+    return Block(height, tuple(items), slack=0.2 * size)
 
 
 def beside(blocks: Sequence[Block], offsets: Sequence[float]) -> Block:

@@ -14,7 +14,7 @@ from fabgen.drawing.texts import say
 
 TITLE_WIDTH_MM = 180.0
 TITLE_HEIGHT_MM = 32.0
-REFER = {"title.tolerance", "title.material", "title.finish"}  # too long for the cell: said on the sheet
+REFER_MM = {"title.tolerance": 40.0, "title.material": 62.0, "title.finish": 38.0}  # too long: said on the sheet
 
 
 @dataclass(frozen=True)
@@ -119,9 +119,9 @@ def title_block(box: Box, fields: TitleFields) -> tuple[Item, ...]:
         (
             (20, "title.scale", fields.scale),
             (20, "title.projection", ""),
-            (40, "title.tolerance", fields.tolerance),
-            (62, "title.material", fields.material),
-            (38, "title.finish", fields.finish),
+            (REFER_MM["title.tolerance"], "title.tolerance", fields.tolerance),
+            (REFER_MM["title.material"], "title.material", fields.material),
+            (REFER_MM["title.finish"], "title.finish", fields.finish),
         ),
     )
     items += _row(
@@ -148,6 +148,11 @@ def title_block(box: Box, fields: TitleFields) -> tuple[Item, ...]:
     items += _cell((x + 45, y), 80, 16, "title.title", fields.title, size=3.5, second=fields.supplement)
     items += _cell((x + 125, y + 8), 55, 8, "title.number", fields.identification)
     return (*items, *projection_symbol(x + 30, y + 26.6, fields.projection))
+
+
+def fits_title(label_key: str, value: str) -> bool:
+    """True when the title block has room for the whole value of one of the fields in ``REFER_MM``."""
+    return not fit(tidy_text(value), REFER_MM[label_key] - 2, 2.5)[0].endswith("…")
 
 
 def _rules(x: float, y: float) -> list[Item]:
@@ -192,7 +197,7 @@ def _cell(
         items.append(Text(x + 1, y + 2.0, text, fitted))
     if value:
         text, fitted = fit(tidy_text(value), width - 2, size, bold=size > 3)
-        if text.endswith("…") and label_key in REFER:
+        if label_key in REFER_MM and not fits_title(label_key, value):
             text, fitted = say("title.see_sheet"), 2.5
         items.append(Text(x + 1, y + (6.5 if height > 10 else 1.4), text, fitted, bold=size > 3))
     return items

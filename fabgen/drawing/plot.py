@@ -195,7 +195,8 @@ def smith_chart(radius: float) -> tuple[Item, ...]:
         size = radius / (1 + r)
         items.append(Arc(radius * r / (1 + r), 0, size, size, role="thin" if r == 1.0 else "grid"))
         at = radius * (r - 1) / (r + 1)
-        items.append(Text(at + 0.5, 0.6, number(50 * r), TICK_TEXT_MM))
+        if r != 1.0:  # the middle belongs to the trace
+            items.append(Text(at + 0.5, 0.6, number(50 * r), TICK_TEXT_MM))
     for x in (0.2, 0.5, 1.0, 2.0, 5.0):
         items += _reactance(radius, x)
     return tuple(items)

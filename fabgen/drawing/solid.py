@@ -13,6 +13,7 @@ from typing import Any
 from fabgen.drawing.dimension import DIAMETER, Ask, Mark, along_x, along_y, leader
 from fabgen.drawing.flat import HoleRow, hole_asks
 from fabgen.drawing.model import Item, Line, number
+from fabgen.drawing.texts import say
 
 SAME_MM = 0.01
 MOST_LEVELS = 9
@@ -42,13 +43,15 @@ class Cross:
 
 @dataclass(frozen=True)
 class Measured:
-    """The sizes read from a solid: bounds, levels of flat faces across z, cylinders along z, and cross holes."""
+    """The sizes read from a solid: bounds, levels of flat faces across z, cylinders along z, cross holes, and the
+    x of the tip of a right-angled notch on +x."""
 
     low: tuple[float, float, float]
     high: tuple[float, float, float]
     levels: tuple[float, ...]
     rounds: tuple[Round, ...]
     crosses: tuple[Cross, ...]
+    notch_x_mm: float | None = None
 
 
 def measured(shape: Any) -> Measured:
@@ -59,12 +62,15 @@ def measured(shape: Any) -> Measured:
     levels: set[float] = set()
     pieces: dict[tuple[float, ...], list[tuple[float, float, float]]] = {}
     crosses: dict[tuple[float, ...], float] = {}
+    notch: set[float] = set()
     for face in shape.Faces():
         kind = face.geomType()
         if kind == "PLANE":
             plane = BRepAdaptor_Surface(face.wrapped).Plane()
             if abs(abs(plane.Axis().Direction().Z()) - 1) < 1e-9:
                 levels.add(round(plane.Location().Z(), 3))
+            elif _is_notch(face, plane):
+                notch.add(round(face.BoundingBox(1e-4).xmin, 2))
         elif kind == "CYLINDER":
             _note_cylinder(face, pieces, crosses)
     return Measured(
@@ -73,7 +79,24 @@ def measured(shape: Any) -> Measured:
         tuple(sorted(levels)),
         tuple(sorted(_rounds(pieces), key=lambda r: (r.diameter_mm, r.x_mm, r.y_mm, r.z0_mm))),
         tuple(Cross((k[0], k[1], k[2]), (k[3], k[4], k[5]), d) for k, d in sorted(crosses.items())),
+        max(notch, default=None),
     )
+
+
+def _is_notch(face: Any, plane: Any) -> bool:
+    """True for an upright face at 45 degrees to x that begins at y = 0 on the side of +x."""
+    way, box = plane.Axis().Direction(), face.BoundingBox(1e-4)
+    slanted = abs(way.Z()) < 1e-6 and abs(abs(way.X()) - math.sqrt(0.5)) < 1e-4
+    return bool(slanted and box.xmin > 0 and min(abs(box.ymin), abs(box.ymax)) < SAME_MM)
+
+
+def notch_asks(m: Measured) -> list[Ask]:
+    """The notch's angle and its depth from the edge, which is round or straight."""
+    if m.notch_x_mm is None:
+        return []
+    edge = max([m.high[0], *(r.diameter_mm / 2 for r in about_axis(m) if not r.hole)])
+    depth = edge - m.notch_x_mm
+    return [leader("notch", depth, say("solid.notch", depth=number(depth)), (m.notch_x_mm, 0.0), 20.0)]
 
 
 def _note_cylinder(
@@ -214,7 +237,10 @@ def front_asks(m: Measured) -> list[Ask]:
 
 def plan_asks(m: Measured) -> list[Ask]:
     """Dimensions for the view from above: overall sizes, radii of parts of a ring, hole groups."""
-    asks: list[Ask] = [along_y("depth", m.low[1], m.high[1], m.high[0], "right")]
+    width = m.high[1] - m.low[1]
+    asks: list[Ask] = []
+    if not any(r.angle_deg > 350 and abs(r.diameter_mm - width) < SAME_MM for r in about_axis(m)):
+        asks.append(along_y("depth", m.low[1], m.high[1], m.high[0], "right"))
     for r in about_axis(m):
         if r.angle_deg < 350:
             t = math.atan2((m.low[1] + m.high[1]) / 2, (m.low[0] + m.high[0]) / 2)
@@ -222,7 +248,7 @@ def plan_asks(m: Measured) -> list[Ask]:
             turn = math.degrees(t) + (0 if not r.hole else 180)
             asks.append(leader("radius", r.diameter_mm / 2, f"R{number(r.diameter_mm / 2)}", at, turn))
     rows = [HoleRow("", h.x_mm, h.y_mm, h.diameter_mm) for h in holes(m)]
-    return [*asks, *corner_asks(m), *hole_asks(rows)]
+    return [*asks, *notch_asks(m), *corner_asks(m), *hole_asks(rows)]
 
 
 def labels(m: Measured) -> tuple[Mark, ...]:

@@ -54,6 +54,8 @@ WORK: dict[str, str] = {
     "assembly.item": "({item}) {part}, {quantity} off",
     "assembly.do": "Do:",
     "assembly.tools": "Tools:",
+    "assembly.caution": "Caution:",
+    "assembly.coating": "{lining}, {thickness} mm dry",
     "assembly.join": "Joint:",
     "assembly.measure": "Measure before going on:",
     "step.tool.title": "{n}. Forms and test bend",
@@ -83,6 +85,16 @@ WORK: dict[str, str] = {
     "step.body.printed.measure": (
         "inside diameter in two directions and depth; both within the tolerance on the part's page."
     ),
+    "step.body.pieces.title": "{n}. Printed can",
+    "step.body.pieces.do": (
+        "Print the pieces, let them cool on the bed, take off strings, and open the holes to size by hand. Join them "
+        "on a flat plate with epoxy and the screws through the ears; smooth the joints inside."
+    ),
+    "step.body.pieces.tools": "printer, hand reamers, flat plate, epoxy, abrasive paper, calliper.",
+    "step.body.pieces.caution": "gloves for the epoxy; sand wet, with a mask.",
+    "step.body.pieces.measure": (
+        "inside diameter in four directions and depth; both within the tolerance on the part's page."
+    ),
     "step.body.turned.title": "{n}. Turned can",
     "step.body.turned.do": "Turn, drill and deburr. Mark the direction of the gap (+x) on the flange.",
     "step.body.turned.tools": "lathe, drill, inside micrometer or calliper.",
@@ -108,16 +120,58 @@ WORK: dict[str, str] = {
         "inside diameter {bore} mm in four directions; depth {depth} mm; under 0.01 ohm floor to rim."
     ),
     "step.lining.title": "{n}. Lining",
-    "step.lining.do": "Line floor and wall ({lining}); overlap floor and wall so that they touch all round.",
-    "step.lining.tools": "knife, roller, multimeter.",
-    "step.lining.join": (
+    "step.lining.foil.do": "Line floor and wall ({lining}); overlap floor and wall so that they touch all round.",
+    "step.lining.foil.tools": "knife, roller, multimeter.",
+    "step.lining.foil.caution": (
+        "foil edges cut like a knife; solder with moving air and short, hot plastic gives off fumes."
+    ),
+    "step.lining.foil.join": (
         "foil over foil by 10 mm or more, rubbed down; solder or conductive glue across each overlap."
     ),
-    "step.lining.measure": "under 0.1 ohm between any two points, above all from floor to rim.",
+    "step.lining.foil.measure": "under {limit} ohm between any two points, above all from floor to rim.",
+    "step.lining.paint.do": (
+        "Sand the inside matt, wet; wipe it with alcohol and let it dry. Mask the outside. Put {lining} on floor and "
+        "wall, over the rim and through the holes, in thin coats crosswise, to {thickness} mm dry; let each coat dry "
+        "as its maker says."
+    ),
+    "step.lining.paint.tools": (
+        "wet abrasive paper, alcohol, masking tape, brush or spray gun, breathing mask, gloves, multimeter."
+    ),
+    "step.lining.paint.caution": (
+        "fumes of solvent: open air or suction, no flame or spark, mask with a vapour filter. Metal dust: sand wet, "
+        "mask with a particle filter, keep waste out of the drain."
+    ),
+    "step.lining.paint.join": "an unbroken coat in the corner of floor and wall all round, and round every hole.",
+    "step.lining.paint.measure": (
+        "from the floor's middle to four points of the rim, probes flat on the paint: about {expected} ohm, none "
+        "above {limit} ohm; as much across the floor. Another coat where it is more."
+    ),
+    "step.lining.plating.do": (
+        "Degrease the print, brush conductive primer on floor and wall, over the rim and through the holes, let it "
+        "dry, and have it plated ({lining}) to {thickness} mm or more. Rinse, and dry without heat."
+    ),
+    "step.lining.plating.tools": "primer, brush, plating bath or a plating shop, goggles, gloves, scales, multimeter.",
+    "step.lining.plating.caution": (
+        "bath and its mist burn and poison: goggles, gloves, apron, suction. Primer fumes: open air, no flame. Dust: "
+        "sand wet, with a mask. Spent bath is dangerous waste."
+    ),
+    "step.lining.plating.join": (
+        "primer without a gap in the corner of floor and wall and in every hole: copper grows on nothing else."
+    ),
+    "step.lining.plating.measure": (
+        "from the floor's middle to four points of the rim under {limit} ohm; the can gains {gain} g or more."
+    ),
     "step.choke.title": "{n}. Choke ring",
     "step.choke.do": "Set the ring round the can at the height on the general arrangement.",
     "step.choke.tools": "height gauge or blocks, clamps.",
     "step.choke.join": "continuous contact of the ring's floor to the can all round.",
+    "step.choke.printed.do": (
+        "Line the ring's floor and wall and the can's wall inside the ring as in the step before. Set the ring on the "
+        "can and screw it down."
+    ),
+    "step.choke.printed.tools": "screwdriver or hexagon key, what the lining needs.",
+    "step.choke.printed.join": "the lining of ring and can joined all round at the ring's floor.",
+    "step.choke.printed.measure": "gap equal in four directions within 0.5 mm; under {limit} ohm ring to can.",
     "step.choke.level.title": "{n}. Wall of the choke",
     "step.choke.level.do": (
         "Form the outer wall and close its seam like the can's, set it on the same floor over its row of holes, round "
@@ -144,9 +198,18 @@ WORK: dict[str, str] = {
         "this floor takes no soft solder: solder the feet to a plate of brass or copper screwed to the floor, or "
         "thread the feet and set a nut on both sides of the floor."
     ),
-    "step.loop.printed-wire.join": (
-        "solder both feet to the foil all round; on paint or plating a nut and a washer on both sides of the floor."
+    "step.loop.foil-wire.join": "solder both feet to the foil all round, hot and short: the plastic below it softens.",
+    "step.loop.paint-wire.join": (
+        "thread the feet: a nut and a plain washer on both sides of the floor, paint over the washer's edge."
     ),
+    "step.loop.plating-wire.join": (
+        "thread the feet: a nut and a plain washer on both sides of the floor, bright copper below them."
+    ),
+    "step.loop.foil-sheet.join": (
+        "screws with plain washers, so that the foil does not tear; solder the feet's edges to it, hot and short."
+    ),
+    "step.loop.paint-sheet.join": "screws with plain washers; paint once more over the edges of the feet.",
+    "step.loop.plating-sheet.join": "screws with plain washers, bright copper below the feet.",
     "step.loop.wire.join": "solder both feet to the floor inside and outside, fillets all round the wire.",
     "step.loop.sheet.join": (
         "screws with toothed washers on bright metal; sweat the feet with solder where the floor takes it."
@@ -207,7 +270,8 @@ WORK: dict[str, str] = {
     "bench.loop_height_mm.more": "Lift the loop: bend the bars or put shims under the feet.",
     "bench.loop_height_mm.less": "Lower the loop: press it down evenly at the bars.",
     "bench.loop_diameter_mm.more": "Open the loop a little all round; check that it is still round and level.",
-    "bench.loop_diameter_mm.less": "Close the loop a little all round, or file the strip's outer edge.",
+    "bench.loop_diameter_mm.less": "Close the loop a little all round; check that it is still round and level.",
+    "bench.loop_diameter_mm.less.strip": "Close the loop a little all round, or file the strip's outer edge.",
     "bench.can_depth_mm.more": "Put a close-fitting ring on the rim (deeper can).",
     "bench.can_depth_mm.less": "File the rim down evenly (shallower can).",
     "bench.amount_mm": "{change} mm ({rate} MHz per mm)",
@@ -224,7 +288,7 @@ WORK: dict[str, str] = {
     "bench.no_dip_amount": "core to can over 10 megohm, bars to can under 0.01 ohm",
     "bench.shallow": "Dip in place, shallow, and wider than expected",
     "bench.shallow_do": "Look for loss: poor floor joint, bad lining, flux or paint on the bars.",
-    "bench.shallow_amount": "floor to rim under 0.01 ohm (metal) or 0.1 ohm (lining)",
+    "bench.shallow_amount": "floor to rim under {limit} ohm",
     "bench.hand": "Trace moves when the cable is touched",
     "bench.hand_do": "Tighten the connector; check that its flange lies on bright metal all round.",
     "bench.hand_amount": "until touching the cable changes nothing",
@@ -236,6 +300,7 @@ WORK: dict[str, str] = {
     ),
     "mount.head": "At the focus",
     "mount.how": "How to check",
+    "mount.picture": "Feed drawn three times as large as the dish",
     "mount.focal": "Focal length f",
     "mount.focal_how": "diameter times f/D",
     "mount.depth": "Depth of the dish at its middle",

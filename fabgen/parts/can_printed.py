@@ -148,7 +148,7 @@ def can_printed(feed: Feed) -> tuple[Part, ...]:
             ("wall_mm", sizes.wall_mm),
             ("floor_mm", sizes.floor_mm),
         ),
-        tolerance="bore and depth +-0.2 mm after lining",
+        tolerance=f"bore and depth +-{rules.tolerance_mm:g} mm after lining",
         finish=f"lined inside with {lining.name}, {lining_mm(feed):g} mm thick, from the floor to the rim",
         notes=("print floor down, without support",),
         volume_mm3=shell_volume_mm3(body, holes, flange_holes) - _insert_volume(len(at)),

@@ -71,7 +71,7 @@ def choke_printed(feed: Feed) -> tuple[Part, ...]:
             ("wall_mm", feed.sizes.wall_mm),
             ("floor_mm", feed.sizes.floor_mm),
         ),
-        tolerance="bore and depth +-0.2 mm after lining",
+        tolerance=f"bore and depth +-{rules.tolerance_mm:g} mm after lining",
         finish=f"lined with {lining.name} on floor and wall, and the can's wall inside the ring",
         notes=("print floor down, without support", "lining of ring and can joined all round at the floor"),
         volume_mm3=revolved_volume_mm3(points) - len(at) * math.pi / 4 * hole**2 * (high - low),

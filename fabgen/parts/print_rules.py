@@ -16,7 +16,7 @@ from fabgen.stock import tables
 class PrintRules:
     """Millimetres. ``hole_mm`` is added to hole diameters; ``clearance_mm`` lies between
     faces that slide into each other; ``margin_mm`` stays free at the bed's edges; ``insert_wall_mm``
-    stands around an insert."""
+    stands around an insert; ``tolerance_mm`` is what a print holds, the one that the sizing counts with."""
 
     line_mm: float
     wall_min_mm: float
@@ -25,6 +25,7 @@ class PrintRules:
     margin_mm: float
     insert_wall_mm: float
     bed_mm: tuple[float, float, float]
+    tolerance_mm: float
 
     def wall(self, lines: int) -> float:
         """A wall of whole lines, never under the minimum wall."""
@@ -49,4 +50,5 @@ def print_rules(feed: Feed) -> PrintRules:
         margin_mm=limit("printer_clearance_mm"),
         insert_wall_mm=limit("insert_wall_min_mm"),
         bed_mm=feed.job.limits.bed_mm,
+        tolerance_mm=limit("print_tolerance_mm"),
     )

@@ -16,7 +16,7 @@ from fabgen.parts.split import Envelope, bed_turn_deg, footprint, free_bed_mm, p
 
 
 def rules(bed: tuple[float, float, float]) -> PrintRules:
-    return PrintRules(0.4, 1.2, 0.2, 0.25, 2.0, 1.6, bed)
+    return PrintRules(0.4, 1.2, 0.2, 0.25, 2.0, 1.6, bed, 0.3)
 
 
 def envelope(radius: float, height: float, clear: tuple[Circle, ...] = ()) -> Envelope:

@@ -9,15 +9,18 @@ from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, beside, framed, gap, hea
 from fabgen.drawing.hidden import ISOMETRIC, Curve, dressed
 from fabgen.drawing.model import Item, bounds, number
 from fabgen.drawing.pages.base import Context, Draft, draft
-from fabgen.drawing.pages.lining import lined_floor, lined_wall
+from fabgen.drawing.pages.lining import limit_text, lined, one_digit, reading
 from fabgen.drawing.pages.steps import ABOVE_EYE, Step, StepView
 from fabgen.drawing.pages.stock import item_leaders, items_of
 from fabgen.drawing.picture import Body, Drawn, close_up, free, outside, shape_of
 from fabgen.drawing.texts import has, say
+from fabgen.stock import tables
 
 PICTURE_MM = 78.0
 PICTURE_HEIGHT_MM = 62.0
 TEXT_MM = 85.0
+WHOLE = {"loop", "lining"}  # steps that need the whole floor to show which way things point
+COATED = ("foil-floor", "foil-wall", "foil-choke-wall")  # the faces that paint or plating covers
 
 
 def drafts(context: Context) -> list[Draft]:
@@ -56,34 +59,33 @@ def picture_block(context: Context, view: StepView) -> Block:
         items += dressed(s.visible, "new" if fresh else "old")
         if fresh:
             shown.append((str(numbers[new[i - len(old)].part.key]), s.visible))
-    if not new:
-        shown = _lined(context, view)
-        for _, lines in shown:
-            items += dressed(lines, "new")
-    fresh_items = tuple(c for _, curves in shown for c in curves)
-    around = bounds(fresh_items) if fresh_items else bounds(tuple(items))
+    lining = _lined(context, view)
+    for label, lines in lining:
+        items += dressed(lines, "new" if not new else "hatch")
+        shown += [(label, lines)] if label else []
+    fresh_items = tuple(c for _, curves in (*shown, *lining) for c in curves)
     drawn = Drawn(f"step {view.step.kind}", tuple(items))
+    around = bounds(fresh_items) if fresh_items and view.step.kind not in WHOLE else drawn.box
     return close_up(drawn, around, item_leaders(shown), PICTURE_MM, PICTURE_HEIGHT_MM)
 
 
 def _lined(context: Context, view: StepView) -> list[tuple[str, tuple[Curve, ...]]]:
-    """Item numbers of the foils and the lines that show what they cover."""
+    """Item numbers of the foils, or none for paint and plating, and the lines that show what is covered."""
     sizes, numbers = context.feed.sizes, items_of(context.parts)
-    drawn = {"foil-floor": lined_floor, "foil-wall": lined_wall}
-    return [
-        (str(numbers[p.key]), drawn[p.key](sizes.can_bore_mm, sizes.can_depth_mm, ABOVE_EYE))
-        for p in view.step.parts
-        if p.key in drawn
-    ]
+    keys = [p.key for p in view.step.parts if p.key.startswith("foil")]
+    if view.step.kind == "lining" and not keys:
+        keys = list(COATED)
+    outer = sizes.can_bore_mm + 2 * sizes.wall_mm
+    return [(str(numbers.get(key, "")), lined(key, sizes, outer, ABOVE_EYE)) for key in keys]
 
 
 def _text(context: Context, n: int, step: Step) -> Block:
     numbers = items_of(context.parts)
     names = "; ".join(say("assembly.item", item=numbers[p.key], part=p.name, quantity=p.quantity) for p in step.parts)
     blocks = [Block(1.5, ()), heading(say(_key(context, step.kind, "title"), n=n), 3.5, TEXT_MM)]
-    blocks += paragraph(names, 2.5, TEXT_MM)
     values = _values(context)
-    for field in ("do", "tools", "join", "measure"):
+    blocks += paragraph(names or say("assembly.coating", **values), 2.5, TEXT_MM)
+    for field in ("do", "tools", "caution", "join", "measure"):
         key = _key(context, step.kind, field)
         if has(key):
             label = say(f"assembly.{field}")
@@ -93,8 +95,6 @@ def _text(context: Context, n: int, step: Step) -> Block:
 
 def _key(context: Context, kind: str, field: str) -> str:
     """The most particular text: by make and form, form and joint, make, form, joint; then the general one."""
-    from fabgen.stock import tables
-
     job = context.feed.job
     make, form = job.can.make, job.loop.form
     joint = "solder" if make == "printed" or tables.metal(job.can.metal).solderable else "bond"
@@ -107,11 +107,16 @@ def _key(context: Context, kind: str, field: str) -> str:
 
 def _special(context: Context, kind: str) -> str:
     """The variant of a step that its parts decide; empty for the general one."""
-    keys = [part.key for part in context.parts]
+    job, keys = context.feed.job, [part.key for part in context.parts]
     if kind == "tool" and not any(k.startswith("jig") for k in keys):
         return "strip"
     if kind == "tool" and not any(k.startswith("bend-strip") for k in keys):
         return "form"
+    if kind == "body" and "can-1" in keys:
+        return "pieces"
+    if job.can.make == "printed" and kind in {"lining", "loop", "choke"}:
+        lining = tables.lining(job.can.lining).kind
+        return {"lining": lining, "loop": f"{lining}-{job.loop.form}", "choke": "printed"}[kind]
     return "level" if kind == "choke" and _on_the_floor(context) else ""
 
 
@@ -124,10 +129,8 @@ def _on_the_floor(context: Context) -> bool:
 
 def _values(context: Context) -> dict[str, str]:
     """Numbers that the step texts may name."""
-    from fabgen.stock import tables
-
     feed = context.feed
-    s = feed.sizes
+    s, lining, read = feed.sizes, tables.lining(feed.job.can.lining), reading(feed)
     tolerance = {t.size: number(t.tolerance_mm) for t in feed.sensitivities}
     return {
         "bore": number(s.can_bore_mm),
@@ -140,7 +143,11 @@ def _values(context: Context) -> dict[str, str]:
         "diameter": number(s.loop_diameter_mm),
         "overlap": number(feed.capacitor.overlap_mm),
         "capacitance": number(feed.capacitor.capacitance_pf, 3),
-        "lining": tables.lining(feed.job.can.lining).name,
+        "lining": lining.name,
+        "thickness": number(lining.thickness_mm, 3),
+        "expected": one_digit(read.expected_ohm),
+        "limit": limit_text(feed),
+        "gain": number(read.gain_g, 1),
     }
 
 

@@ -14,6 +14,7 @@ from fabgen.drawing.model import number
 from fabgen.drawing.pages.steps import StepView, made_parts
 from fabgen.drawing.paper import Paper
 from fabgen.drawing.picture import Body
+from fabgen.drawing.texts import say
 from fabgen.parts.records import Part
 from fabgen.sizing.records import Feed
 
@@ -65,6 +66,13 @@ def toleranced(feed: Feed, size: str, value: float, prefix: str = "") -> str:
     tolerance = tolerance_of(feed, size)
     text = prefix + number(value)
     return f"{text} ±{number(tolerance)}" if tolerance else text
+
+
+def grams(mass_kg: float) -> str:
+    """Grams as written in a list; nothing weighs nothing."""
+    if 0 < mass_kg < 5e-5:
+        return say("words.under", value="0.1")
+    return number(1000 * mass_kg, 1 if mass_kg < 0.1 else 0)
 
 
 def quantity(key: str, value: object) -> str:

@@ -15,6 +15,7 @@ from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, gap, heading, kept, para
 from fabgen.drawing.model import Arc, Item, Line, Polyline, Text, number
 from fabgen.drawing.pages import performance
 from fabgen.drawing.pages.base import Context, Draft, draft
+from fabgen.drawing.pages.lining import limit_text
 from fabgen.drawing.picture import Drawn, dimensioned, shifted
 from fabgen.drawing.texts import has, say
 from fabgen.sizing.records import Feed, Sensitivity
@@ -63,7 +64,7 @@ def decision_blocks(feed: Feed) -> list[Block]:
 
 def advice(feed: Feed) -> tuple[Advice, ...]:
     """Rows for a dip that is off in frequency, off in reactance, off in resistance, or missing."""
-    return (*_off_frequency(feed), *_off_reactance(feed), *_off_resistance(feed), *_missing())
+    return (*_off_frequency(feed), *_off_reactance(feed), *_off_resistance(feed), *_missing(feed))
 
 
 def step_mhz(feed: Feed) -> float:
@@ -85,6 +86,8 @@ def _off_frequency(feed: Feed) -> list[Advice]:
             change = sign * shift / found.resonance_mhz_per_mm
             more = "more" if change > 0 else "less"
             action = f"bench.{size}.{more}"
+            if has(f"{action}.{feed.sizes.conductor}"):
+                action = f"{action}.{feed.sizes.conductor}"
             if has(action):
                 out.append(Advice(say(key, shift=number(shift, 2)), say(action), _amount(feed, found, abs(change))))
     return out
@@ -135,10 +138,10 @@ def _off_resistance(feed: Feed) -> list[Advice]:
     return out
 
 
-def _missing() -> list[Advice]:
+def _missing(feed: Feed) -> list[Advice]:
     return [
         Advice(say("bench.no_dip"), say("bench.no_dip_do"), say("bench.no_dip_amount")),
-        Advice(say("bench.shallow"), say("bench.shallow_do"), say("bench.shallow_amount")),
+        Advice(say("bench.shallow"), say("bench.shallow_do"), say("bench.shallow_amount", limit=limit_text(feed))),
         Advice(say("bench.hand"), say("bench.hand_do"), say("bench.hand_amount")),
     ]
 
@@ -229,4 +232,5 @@ def _dish_picture(feed: Feed, focal: float, to_focus: float) -> Block:
     made = dimensioned(Drawn("", tuple(items)), asks, scale, focus, title=False)
     x = (COLUMN_WIDTH_MM - made.box.width) / 2 - made.box.x0
     block = shifted(made, x, -made.box.y1)
-    return Block(made.box.height, block.items, block.dimensions, block.views)
+    note = Text(COLUMN_WIDTH_MM, -made.box.height, say("mount.picture"), 1.8, "end")
+    return Block(made.box.height, (*block.items, note), block.dimensions, block.views)

@@ -14,7 +14,7 @@ from fabgen.drawing.flow import column_height as height_of
 from fabgen.drawing.hidden import APERTURE, FROM_GAP, GAP_PLAN, SIDE, dressed
 from fabgen.drawing.model import RED, Arc, Item, Line, bounds, number, scale_text
 from fabgen.drawing.pages import performance
-from fabgen.drawing.pages.base import Context, Draft, draft, quantity, toleranced
+from fabgen.drawing.pages.base import Context, Draft, draft, quantity, tolerance_of, toleranced
 from fabgen.drawing.picture import (
     Body,
     Drawn,
@@ -29,6 +29,7 @@ from fabgen.drawing.picture import (
 )
 from fabgen.drawing.section import rough_bounds
 from fabgen.drawing.texts import say, size_name
+from fabgen.sizing.records import BENCH_LIMIT_DB, Feed
 
 WIDTH_MM = COLUMN_WIDTH_MM
 SIZE_KEYS = (
@@ -41,16 +42,11 @@ SIZE_KEYS = (
 def drafts(context: Context) -> list[Draft]:
     """The general arrangement with its tables."""
     views, scale = arrangement(context)
-    blocks = [
-        *views,
-        *detail(context),
-        *_purpose(context),
-        *_sizes(context),
-        *_performance(context),
-        *performance.pattern_blocks(context.feed),
-        *checks_result(context),
-    ]
-    return [draft(context, "general", say("page.general"), blocks, scale=scale)]
+    loop, purpose, sizes = detail(context), _purpose(context), _sizes(context)
+    after = [*_performance(context), *performance.pattern_blocks(context.feed), *checks_result(context)]
+    orders = ([*loop, *purpose, *sizes], [*purpose, *sizes, *loop])
+    made = [draft(context, "general", say("page.general"), [*views, *order, *after], scale=scale) for order in orders]
+    return [min(made, key=lambda d: len(d.pages))]
 
 
 def arrangement(context: Context) -> tuple[list[Block], str]:
@@ -120,11 +116,16 @@ def section_asks(context: Context) -> list[Ask]:
         c = s.choke
         rim = c.floor_z_mm + c.depth_mm
         asks += [
-            along_x("choke.bore_mm", -c.bore_mm / 2, c.bore_mm / 2, rim, "top", text=f"{DIAMETER}{number(c.bore_mm)}"),
-            along_y("choke.depth_mm", c.floor_z_mm, rim, -c.bore_mm / 2, "left", text=number(c.depth_mm)),
-            along_y("choke.floor_z_mm", 0, c.floor_z_mm, -c.bore_mm / 2, "left", text=number(c.floor_z_mm), x1=-bore),
-        ]
-    return asks
+            along_x("choke.bore_mm", -c.bore_mm / 2, c.bore_mm / 2, rim, "top",
+                    text=toleranced(feed, "choke.bore_mm", c.bore_mm, DIAMETER)),
+            along_y("choke.depth_mm", c.floor_z_mm, rim, -c.bore_mm / 2, "left",
+                    text=toleranced(feed, "choke.depth_mm", c.depth_mm)),
+            along_y("choke.floor_z_mm", 0, c.floor_z_mm, -c.bore_mm / 2, "left",
+                    text=toleranced(feed, "choke.floor_z_mm", c.floor_z_mm), x1=-bore),
+        ]  # fmt: skip
+    z = feed.predicted.phase_centre_mm
+    name = say("general.phase_centre", z=number(z, 1))
+    return [*asks, leader("phase_centre_mm", z, name, (0.0, z), 12.0)]
 
 
 def front_asks(drawn: Drawn) -> list[Ask]:
@@ -241,14 +242,21 @@ def _sizes(context: Context) -> list[Block]:
         value = getattr(feed.sizes, key)
         if value is None or (key == "can_flats" and value == 0):
             continue
-        tolerance = next((f"±{quantity(s.size, s.tolerance_mm)}" for s in feed.sensitivities if s.size == key), "")
-        rows.append((size_name(key), quantity(key, value), tolerance or say("table.general")))
+        rows.append((size_name(key), quantity(key, value), _tolerance(feed, key)))
     if feed.sizes.choke is not None:
         for key in ("bore_mm", "depth_mm", "floor_z_mm"):
             value = getattr(feed.sizes.choke, key)
-            rows.append((size_name(f"choke.{key}"), quantity(key, value), say("table.general")))
+            rows.append((size_name(f"choke.{key}"), quantity(key, value), _tolerance(feed, f"choke.{key}")))
     head = (say("table.size"), say("table.value"), say("table.tolerance"))
     return [heading(say("general.sizes_head")), *table("sizes", head, rows, widths=(84, 43, 43))]
+
+
+def _tolerance(feed: Feed, size: str) -> str:
+    """The size's own tolerance, a word where the general one holds, a dash for a number of pieces."""
+    if size == "can_flats":
+        return "–"
+    own = tolerance_of(feed, size)
+    return say("table.general") if own is None else f"±{quantity(size, own)}"
 
 
 def _performance(context: Context) -> list[Block]:
@@ -257,8 +265,8 @@ def _performance(context: Context) -> list[Block]:
     rows = [
         (
             say("perf.return_loss"),
-            f"{number(p.return_loss_db, 1)} {db}",
-            f"±{number(u.return_loss_uncertainty_db, 2)} {db}",
+            _return_loss(p.return_loss_db),
+            f"±{number(u.return_loss_uncertainty_db, 1)} {db}" if p.return_loss_db <= BENCH_LIMIT_DB else "",
         ),
         (
             say("perf.bandwidth", level=number(p.bandwidth_return_loss_db, 0)),
@@ -282,6 +290,13 @@ def _performance(context: Context) -> list[Block]:
     ]
     head = (say("perf.head"), say("table.value"), say("perf.remark"))
     return [heading(say("general.performance_head")), *table("performance", head, rows, widths=(75, 42, 53))]
+
+
+def _return_loss(value_db: float) -> str:
+    """A return loss; above what a bench can tell apart only that it is above."""
+    if value_db > BENCH_LIMIT_DB:
+        return say("perf.over", value=number(BENCH_LIMIT_DB, 0))
+    return f"{number(value_db, 1)} {say('unit.db')}"
 
 
 def checks_result(context: Context) -> list[Block]:

@@ -1,29 +1,111 @@
-"""What a lining covers, drawn into a picture of the can: floor and wall hatched where the eye sees them.
+"""What a lining covers, drawn into a picture of the can: faces hatched where the eye sees them; and what a meter
+should read on it.
 
-Depends on: drawing.hidden, drawing.model.
+Depends on: drawing.hidden, drawing.model, sizing.records, stock, theory.skin.
 """
 
 from __future__ import annotations
 
 import math
+from dataclasses import dataclass
 
 from fabgen.drawing.hidden import Direction
-from fabgen.drawing.model import Line, Point
+from fabgen.drawing.model import Line, Point, number
+from fabgen.sizing.records import Feed, Sizes
+from fabgen.stock import tables
+from fabgen.theory.skin import lining_conductivity_s_per_m
 
 STEP_DEG = 6.0
 FLOOR_LINES = 14
 PIECES = 48
+PROBE_MM = 1.0
+"""Radius of a meter's rounded probe on soft metal. Common practice, no source."""
+CONTACT_OHM = 0.1
+"""What two probes and their leads may add: no lining is asked to read less."""
+METAL_OHM = "0.01"
+"""From floor to rim of a can of bare metal with sound joints. Common practice, no source."""
+COPPER_G_PER_MM3 = 8.96e-3
+
+
+@dataclass(frozen=True)
+class Reading:
+    """What to measure on a lining: from the floor's middle to the rim, and what it weighs."""
+
+    expected_ohm: float
+    limit_ohm: float
+    area_mm2: float
+    gain_g: float
+
+
+def is_coated(feed: Feed) -> bool:
+    """True for a printed can that is painted or plated: its lining is no part."""
+    return feed.job.can.make == "printed" and tables.lining(feed.job.can.lining).kind != "foil"
+
+
+def spreading_ohm(sheet_ohm: float, distance_mm: float, probe_mm: float = PROBE_MM) -> float:
+    """Resistance between a probe inside a thin sheet and one on its edge.
+
+    R = R_s / (2 pi) ln(d/a) + R_s / pi ln(d/a): the current of a round contact spreads over the full circle, that
+    of one on the edge over half of it (potential of a line source; conduction in thin sheets, textbooks).
+    ``distance_mm`` is large against ``probe_mm``.
+    """
+    return 1.5 * sheet_ohm / math.pi * math.log(distance_mm / probe_mm)
+
+
+def reading(feed: Feed) -> Reading:
+    """Expected resistance, the limit at twice it, the lined area and the mass that plating adds."""
+    lining, sizes = tables.lining(feed.job.can.lining), feed.sizes
+    conductivity = lining_conductivity_s_per_m(lining, feed.job.can.lining_sheet_resistance_ohm)
+    sheet = 1.0 / (conductivity * lining.thickness_mm * 1e-3)
+    expected = spreading_ohm(sheet, sizes.can_bore_mm / 2 + sizes.can_depth_mm)
+    area = math.pi * sizes.can_bore_mm * (sizes.can_bore_mm / 4 + sizes.can_depth_mm)
+    return Reading(expected, max(CONTACT_OHM, 2 * expected), area, area * lining.thickness_mm * COPPER_G_PER_MM3)
+
+
+def limit_text(feed: Feed) -> str:
+    """The largest resistance from floor to rim that is still good, ohm: a hundredth on bare metal."""
+    if feed.job.can.make != "printed":
+        return METAL_OHM
+    return one_digit(reading(feed).limit_ohm)
+
+
+def one_digit(value: float) -> str:
+    """A positive value to its first digit, without an exponent."""
+    return number(float(f"{value:.1g}"), 6)
+
+
+def lined(key: str, sizes: Sizes, can_outer_mm: float, eye: Direction) -> tuple[Line, ...]:
+    """The lines of one lined face, by the key of the foil that covers it; nothing for another key."""
+    match key, sizes.choke:
+        case "foil-floor", _:
+            return lined_floor(sizes.can_bore_mm, sizes.can_depth_mm, eye)
+        case "foil-wall", _:
+            return lined_wall(sizes.can_bore_mm, sizes.can_depth_mm, eye)
+        case "foil-choke-wall", choke if choke is not None:
+            rim = choke.floor_z_mm + choke.depth_mm
+            return _uprights(choke.bore_mm / 2, choke.floor_z_mm, rim, eye, (can_outer_mm / 2, sizes.can_depth_mm))
+    return ()
 
 
 def lined_wall(bore_mm: float, depth_mm: float, eye: Direction) -> tuple[Line, ...]:
     """Upright lines on the bore as far as ``eye`` sees them over the rim, and the rim."""
-    r = bore_mm / 2
+    return _uprights(bore_mm / 2, 0.0, depth_mm, eye)
+
+
+def _uprights(
+    r: float, low: float, rim: float, eye: Direction, post: tuple[float, float] | None = None
+) -> tuple[Line, ...]:
+    """Upright lines on the inside of a wall from ``low`` to ``rim``; ``post``: radius and height of what stands in
+    the middle and hides some of them."""
     lines: list[Line] = []
     for i in range(round(360 / STEP_DEG)):
         x, y = _on_circle(r, STEP_DEG * i)
-        seen = [k / PIECES for k in range(PIECES + 1) if _clear(x, y, depth_mm * k / PIECES, r, depth_mm, eye)]
-        if x * eye.towards_eye[0] + y * eye.towards_eye[1] < 0 and seen and seen[0] < 1:
-            lines.append(_line(eye.flat((x, y, depth_mm * seen[0])), eye.flat((x, y, depth_mm))))
+        if x * eye.towards_eye[0] + y * eye.towards_eye[1] >= 0:
+            continue
+        heights = [low + (rim - low) * k / PIECES for k in range(PIECES + 1)]
+        seen = [z for z in heights if _clear(x, y, z, r, rim, eye) and not _behind(x, y, z, post, eye)]
+        if seen and seen[0] < rim:
+            lines.append(_line(eye.flat((x, y, seen[0])), eye.flat((x, y, rim))))
     return tuple(lines)
 
 
@@ -53,6 +135,17 @@ def _clear(x: float, y: float, z: float, r: float, depth: float, eye: Direction)
     n = eye.towards_eye
     rise = (depth - z) / n[2]
     return math.hypot(x + rise * n[0], y + rise * n[1]) <= r * (1 + 1e-9)
+
+
+def _behind(x: float, y: float, z: float, post: tuple[float, float] | None, eye: Direction) -> bool:
+    """True when a post in the middle stands between the point and the eye."""
+    if post is None or z >= post[1]:
+        return False
+    n = eye.towards_eye
+    reach = (post[1] - z) / n[2]
+    # The way's nearest point to the axis, held to the stretch below the post's top.
+    near = min(max(-(x * n[0] + y * n[1]) / (n[0] ** 2 + n[1] ** 2), 0.0), reach)
+    return math.hypot(x + near * n[0], y + near * n[1]) < post[0]
 
 
 def _line(a: Point, b: Point) -> Line:

@@ -6,13 +6,14 @@ Depends on: drawing, parts.records.
 
 from __future__ import annotations
 
-from dataclasses import replace
+from collections.abc import Callable
+from dataclasses import dataclass, replace
 from typing import Any
 
 from fabgen.drawing import flat as flat_view
 from fabgen.drawing import solid as solid_view
 from fabgen.drawing.clip import clipped
-from fabgen.drawing.dimension import Ask
+from fabgen.drawing.dimension import Ask, along_y
 from fabgen.drawing.flow import (
     COLUMN_WIDTH_MM,
     Block,
@@ -27,8 +28,9 @@ from fabgen.drawing.flow import (
 )
 from fabgen.drawing.hidden import ABOVE, GAP, ISOMETRIC, Curve, dressed
 from fabgen.drawing.model import SCALES, Box, Item, Polyline, number, scale_text
-from fabgen.drawing.pages.base import Context, Draft, draft, quantity, tolerance_of, tolerance_text
+from fabgen.drawing.pages.base import Context, Draft, draft, grams, quantity, tolerance_of, tolerance_text
 from fabgen.drawing.pages.general import loop_views
+from fabgen.drawing.paper import fits_title
 from fabgen.drawing.picture import (
     Body,
     Drawn,
@@ -51,6 +53,8 @@ from fabgen.sizing.records import Feed
 
 WIDTH_MM = COLUMN_WIDTH_MM
 BOUGHT = ("buy",)
+BOUGHT_PICTURE_MM = 28.0
+FOLD_HEAD = ("no", "order", "angle", "way", "radius", "k", "ba", "bd", "left", "right")
 
 
 def drafts(context: Context) -> list[Draft]:
@@ -61,35 +65,13 @@ def drafts(context: Context) -> list[Draft]:
 
 
 def _draft(context: Context, part: Part) -> Draft:
-    room = column_height(context.paper)
     words = [*sizes_blocks(part, feed=context.feed), *making(part), *notes(part), *_tables(part)]
-    height = sum(b.height for b in words) + 6
-    strip = part.flat is not None and _slender(Drawn("", flat_view.flat_items(part.flat)))
-    # On one sheet when the words leave half of it to the views, else the views first and the words as they come.
-    views = room - height if height < 0.5 * room and not strip else 0.84 * room
-    pictured = shape_of(part) is not None and part.wire is None and _tells_more(part)
-    share = 0.68 if pictured and not strip else 1.0
-    blocks: list[Block] = []
-    scale = ""
-    left_over: tuple[Ask, ...] = ()
-    if part.flat is not None:
-        block, scale, left_over = flat_block(part.flat, views * share - 3)
-        blocks += [block, gap(3)]
-    elif part.wire is not None and part.solid is not None:
-        block, scale = loop_views(context, [Body(part, part.solid())], views * share - 3)
-        blocks += [block, gap(3)]
-    elif shape_of(part) is not None:
-        block, scale, left_over = solid_block(part, views * share - 3, context.feed)
-        blocks += [block, gap(3)]
-    if pictured:
-        left = room if strip else views - sum(b.height for b in blocks) - 3
-        blocks += [picture(part, min(left, 70.0), shown=context.shown(part)), gap(3)]
-    blocks += [*left_over_blocks(left_over), *words]
+    views, scale, left_over = _views(context, part, sum(b.height for b in words) + 6)
     return draft(
         context,
         "part",
         part.name,
-        blocks,
+        [*views, *left_over_blocks(left_over), *words],
         part_key=part.key,
         scale=scale,
         group="parts",
@@ -97,6 +79,53 @@ def _draft(context: Context, part: Part) -> Draft:
         finish=part.finish,
         tolerance=tolerance_text(part),
     )
+
+
+Built = tuple[list[Block], str, tuple[Ask, ...]]
+
+
+def _views(context: Context, part: Part, words: float) -> Built:
+    """The part's views above ``words`` mm of tables: with them on one sheet when they leave half of it, else the
+    views as large as a sheet allows, and the picture where there is room."""
+    room, view_of = column_height(context.paper), _view_of(context, part)
+    pictured = shape_of(part) is not None and part.wire is None and _tells_more(part)
+    if part.flat is not None and _slender(Drawn("", flat_view.flat_items(part.flat))):
+        views, scale, left_over = view_of(0.84 * room - 3)
+        return [*views, *_pictured(context, part, pictured, room)], scale, left_over
+    if words < 0.5 * room:
+        left = room - words
+        views, scale, left_over = view_of(left * (0.68 if pictured else 1.0) - 3)
+        left -= sum(b.height for b in views) + 3
+        return [*views, *_pictured(context, part, pictured, left)], scale, left_over
+    if not pictured and 0.3 * room < room - words:
+        small = view_of(room - words - 3)
+        if sum(b.height for b in small[0]) <= room - words:
+            return small
+    views, scale, left_over = view_of((room if words + 60 <= room or not pictured else 0.68 * 0.84 * room) - 3)
+    left = room - sum(b.height for b in views) - 3
+    return [*views, *_pictured(context, part, pictured, left if left > 50 else room - words)], scale, left_over
+
+
+def _pictured(context: Context, part: Part, wanted: bool, room: float) -> list[Block]:
+    return [picture(part, min(room, 70.0), shown=context.shown(part)), gap(3)] if wanted else []
+
+
+def _view_of(context: Context, part: Part) -> Callable[[float], Built]:
+    """What sets the part's views into a height; hidden lines are computed once."""
+    if part.flat is not None:
+        flat = part.flat
+        return lambda room: _with_gap(flat_block(flat, room))
+    if part.wire is not None and part.solid is not None:
+        seen = [Body(part, part.solid())]
+        return lambda room: _with_gap((*loop_views(context, seen, room), ()))
+    if shape_of(part) is not None:
+        views = _solid_views(part)
+        return lambda room: _with_gap(solid_block(part, views, room, context.feed))
+    return lambda room: ([], "", ())
+
+
+def _with_gap(made: tuple[Block, str, tuple[Ask, ...]]) -> Built:
+    return [made[0], gap(3)], made[1], made[2]
 
 
 def _slender(drawn: Drawn) -> bool:
@@ -177,8 +206,17 @@ def _break_line(x: float, y0: float, y1: float, over: float) -> Item:
     return Polyline(points, "thin")
 
 
-def solid_block(part: Part, room: float, feed: Feed) -> tuple[Block, str, tuple[Ask, ...]]:
-    """Front view (cut open where it is hollow) and view from above, one scale, on one axis."""
+@dataclass(frozen=True)
+class SolidViews:
+    """A solid's sizes, its front view (cut open where it is hollow) and its view from above."""
+
+    measured: solid_view.Measured
+    front: Drawn
+    plan: Drawn
+    hollow: bool
+
+
+def _solid_views(part: Part) -> SolidViews:
     shape = shape_of(part)
     m = solid_view.measured(shape)
     bodies = [Body(part, shape)]
@@ -187,25 +225,41 @@ def solid_block(part: Part, room: float, feed: Feed) -> tuple[Block, str, tuple[
         front = cut(say("view.section_h"), bodies, GAP)
     else:
         front = outside(say("view.front"), bodies, GAP, with_hidden=True)
-    plan = outside(say("view.above"), bodies, ABOVE, with_hidden=not hollow)
-    labels = solid_view.labels(m)
-    front_asks = _toleranced(part, feed, solid_view.front_asks(m))
+    return SolidViews(m, front, outside(say("view.above"), bodies, ABOVE, with_hidden=not hollow), hollow)
+
+
+def solid_block(part: Part, views: SolidViews, room: float, feed: Feed) -> tuple[Block, str, tuple[Ask, ...]]:
+    """Front view and view from above, one scale, on one axis."""
+    m = views.measured
+    front_asks = _toleranced(part, feed, [*solid_view.front_asks(m), *_depth_asks(part, feed, m)])
 
     def extras(scale: float, items: tuple[Item, ...]) -> tuple[Item, ...]:
-        plane = cutting_plane("B")(scale, items) if hollow else ()
+        plane = cutting_plane("B")(scale, items) if views.hollow else ()
         return (*solid_view.centre_lines(m, scale), *plane)
 
-    for scale in scales_for((front, plan), WIDTH_MM, room):
-        a = dimensioned(front, front_asks, scale)
-        b = dimensioned(plan, solid_view.plan_asks(m), scale, extras, labels=labels, width=WIDTH_MM - 14)
+    for scale in scales_for((views.front, views.plan), WIDTH_MM, room):
+        a = dimensioned(views.front, front_asks, scale)
+        b = dimensioned(
+            views.plan, solid_view.plan_asks(m), scale, extras, labels=solid_view.labels(m), width=WIDTH_MM - 14
+        )
         if max(a.box.width, b.box.width) <= WIDTH_MM and a.box.height + b.box.height + 8 <= room:
             break
     upper, lower = (a, b) if feed.job.limits.projection == "first" else (b, a)
     return stacked(upper, lower, WIDTH_MM), scale_text(scale), (*a.left_over, *b.left_over)
 
 
+def _depth_asks(part: Part, feed: Feed, m: solid_view.Measured) -> list[Ask]:
+    """The depth of a bare can, from the floor's inner face to its rim."""
+    sizes, rim = dict(part.sizes), feed.sizes.can_depth_mm
+    if "print" in part.process or "can_depth_mm" not in sizes or "floor_mm" not in sizes or 0.0 not in m.levels:
+        return []
+    text = number(rim) + _own_tolerance(feed, "can_depth_mm")
+    return [along_y("can_depth_mm", 0.0, rim, feed.sizes.can_bore_mm / 2, "right", text=text)]
+
+
 def _toleranced(part: Part, feed: Feed, asks: list[Ask]) -> list[Ask]:
-    """The bore's dimension with its own tolerance, on parts that have the bore as a size and are not lined."""
+    """The bore's dimension with its own tolerance, on parts that have the bore as a size and are not lined: the
+    plastic's is larger by the lining."""
     if "print" in part.process or "can_bore_mm" not in dict(part.sizes):
         return asks
     bore, text = feed.sizes.can_bore_mm, _own_tolerance(feed, "can_bore_mm")
@@ -220,15 +274,17 @@ def picture(part: Part, room: float, width: float = WIDTH_MM, shown: tuple[Curve
 
 
 def making(part: Part) -> list[Block]:
-    """Material, quantity, tolerance, finish: what the title block may be too small for."""
-    rows = [
-        (say("stock.material"), material_text(part)),
-        (say("title.tolerance"), tolerance_text(part)),
-        (say("title.finish"), part.finish),
-        (say("part.quantity"), say("part.quantity_value", count=part.quantity, mass=number(1000 * part.mass_kg, 1))),
-    ]
+    """Quantity, and of material, tolerance and finish what the title block is too small for."""
+    fields = (
+        ("title.material", material_text(part)),
+        ("title.tolerance", tolerance_text(part)),
+        ("title.finish", part.finish),
+    )
+    rows = [(say(key), text) for key, text in fields if text and not fits_title(key, text)]
+    mass = grams(part.mass_kg)
+    rows.append((say("part.quantity"), say("part.quantity_value", count=part.quantity, mass=mass)))
     head = (say("part.making"), "")
-    return table(f"making:{part.key}", head, [r for r in rows if r[1]], widths=(40, WIDTH_MM - 40))
+    return table(f"making:{part.key}", head, rows, widths=(40, WIDTH_MM - 40))
 
 
 def notes(part: Part) -> list[Block]:
@@ -242,24 +298,21 @@ def notes(part: Part) -> list[Block]:
 
 
 def sizes_blocks(part: Part, width: float = WIDTH_MM, feed: Feed | None = None) -> list[Block]:
-    """The sizes that make a part, two columns of names and values, with the tolerance of those that have their own.
-
-    Printed parts state theirs in words, after lining."""
-    own = feed is not None and "print" not in part.process
+    """The sizes that make a part, two columns of names and values, with the tolerance of those that have their own."""
     rows = [
-        (size_name(key), quantity(key, value) + (_own_tolerance(feed, key) if feed is not None and own else ""))
+        (size_name(key), quantity(key, value) + (_own_tolerance(feed, key) if feed is not None else ""))
         for key, value in part.sizes
     ]
     if not rows:
         return []
     head = (say("part.sizes"), say("table.value"))
     if width < WIDTH_MM:
-        return table(f"sizes:{part.key}", head, rows, width=width)
+        return table(f"sizes:{part.key}", (say("table.size"), say("table.value")), rows, width=width)
     return side_by_side(f"sizes:{part.key}", head, rows)
 
 
 def _own_tolerance(feed: Feed, key: str) -> str:
-    tolerance = tolerance_of(feed, key)
+    tolerance = tolerance_of(feed, key) or tolerance_of(feed, key.replace("choke_", "choke.", 1))
     return f" ±{number(tolerance)}" if tolerance else ""
 
 
@@ -275,8 +328,9 @@ def flat_tables(flat: FlatPattern) -> list[Block]:
     """Bends, holes, corners."""
     blocks: list[Block] = []
     if flat.folds:
-        head = tuple(say(f"fold.{k}") for k in ("no", "order", "angle", "way", "radius", "k", "ba", "bd"))
+        head = tuple(say(f"fold.{k}") for k in FOLD_HEAD)
         blocks += [heading(say("fold.head"), 2.5), *table("bends", head, flat_view.fold_rows(flat))]
+        blocks += paragraph(say("fold.edges"), 1.8)
         ends = (say("fold.no"), "x1", "y1", "x2", "y2")
         blocks += [heading(say("fold.lines_head"), 2.5)]
         blocks += side_by_side("fold lines", ends, flat_view.fold_line_rows(flat))
@@ -319,16 +373,22 @@ def solid_tables(shape: Any) -> list[Block]:
 
 
 def _bought(context: Context, parts: list[Part]) -> Draft:
-    """Bought parts: a picture and the sizes to order by."""
+    """Bought parts, two beside each other: a picture and the sizes to order by."""
+    cells = [_bought_cell(part) for part in parts]
     blocks: list[Block] = []
-    for part in parts:
-        lines = [heading(say("part.bought", part=part.name, count=part.quantity), 2.5, 110.0)]
-        lines += paragraph(material_text(part), width=110.0)
-        lines += sizes_blocks(part, 110.0)
-        text = stack(lines)
-        if shape_of(part) is None:
-            blocks += [text, gap(3)]
-            continue
-        image = picture(part, max(22.0, text.height - 2), 50.0)
-        blocks += [beside((image, text), (0.0, 58.0)), gap(3)]
+    for i in range(0, len(cells), 2):
+        pair = cells[i : i + 2]
+        blocks += [beside(pair, (0.0, WIDTH_MM / 2 + 2)[: len(pair)]), gap(3)]
     return draft(context, "bought", say("page.bought"), blocks, scale=say("title.not_to_scale"), group="parts")
+
+
+def _bought_cell(part: Part) -> Block:
+    text_mm = WIDTH_MM / 2 - 2 - BOUGHT_PICTURE_MM
+    lines = [heading(say("part.bought", part=part.name, count=part.quantity), 2.5, text_mm)]
+    lines += paragraph(material_text(part), width=text_mm)
+    lines += sizes_blocks(part, text_mm)
+    text = stack(lines)
+    if shape_of(part) is None:
+        return beside((text,), (BOUGHT_PICTURE_MM,))
+    image = picture(part, max(22.0, text.height - 2), BOUGHT_PICTURE_MM - 2)
+    return beside((image, text), (0.0, BOUGHT_PICTURE_MM))

@@ -9,7 +9,7 @@ import math
 
 from fabgen.drawing import plot
 from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, beside, gap
-from fabgen.drawing.model import Arc, Item, Polyline, Text, number
+from fabgen.drawing.model import WHITE, Arc, Item, Line, Point, Polyline, Text, number
 from fabgen.drawing.plot import Axes
 from fabgen.drawing.texts import say, size_name
 from fabgen.sizing.records import Feed, PatternCut
@@ -87,14 +87,23 @@ def smith_plot(feed: Feed, radius: float = 33.0) -> Block:
     if len(near) > 1:
         points = tuple((radius * r.real, radius * r.imag) for r in near)
         items += [Polyline(points, "curve")]
-        items.append(Text(points[0][0], points[0][1] + 1.4, say("plot.low"), 1.8, "middle"))
-        items.append(Text(points[-1][0], points[-1][1] - 3.2, say("plot.high"), 1.8, "middle"))
+        items += [*_end_of_trace(points[0], say("plot.low")), *_end_of_trace(points[-1], say("plot.high"))]
     pairs = zip(response.frequency_mhz, response.reflection, strict=True)
     _, target = min(((abs(f - f0), r) for f, r in pairs), key=lambda p: p[0])
     items.append(Arc(radius * target.real, radius * target.imag, 1.3, 1.3, role="outline"))
     wish = 10 ** (-feed.job.wishes.return_loss_db / 20)
     items.append(Arc(0, 0, radius * wish, radius * wish, role="hidden"))
     return plot.as_block(items, say("plot.smith_title"))
+
+
+def _end_of_trace(end: Point, name: str) -> tuple[Item, ...]:
+    """A name on a leader that ends clear of the trace and the marks in the middle, to the left where it is empty."""
+    x, y = -16.0, math.copysign(max(abs(end[1]) + 5.0, 9.0), end[1])
+    return (
+        Line(*end, x, y, "fine"),
+        Polyline(((x - 9.0, y - 1.3), (x, y - 1.3), (x, y + 2.2), (x - 9.0, y + 2.2)), None, True, WHITE),
+        Text(x - 0.5, y - 0.4, name, 1.8, "end"),
+    )
 
 
 def edge_deg(feed: Feed) -> float:

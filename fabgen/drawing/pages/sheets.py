@@ -13,6 +13,7 @@ from fabgen.drawing.hidden import ISOMETRIC, look
 from fabgen.drawing.model import Item, Sheet
 from fabgen.drawing.pages import assembly, bench, closing, general, part, stock, truescale, wire
 from fabgen.drawing.pages.base import Context, Draft
+from fabgen.drawing.pages.lining import is_coated
 from fabgen.drawing.pages.steps import step_views
 from fabgen.drawing.paper import PAPERS, TitleFields, frame_items, title_block
 from fabgen.drawing.picture import bodies
@@ -28,7 +29,8 @@ def sheets(feed: Feed, parts: tuple[Part, ...], findings: tuple[Finding, ...]) -
     require_printable(target.owner, "target.owner")
     things = bodies(parts)
     seen = look([b.shape for b in things], ISOMETRIC) if things else ()
-    context = Context(feed, parts, findings, things, seen, step_views(parts, things), PAPERS[feed.job.limits.paper])
+    views = step_views(parts, things, is_coated(feed))
+    context = Context(feed, parts, findings, things, seen, views, PAPERS[feed.job.limits.paper])
     drafts = [
         *general.drafts(context),
         *stock.drafts(context),

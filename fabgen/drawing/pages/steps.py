@@ -28,7 +28,6 @@ JOINS: tuple[tuple[str, str], ...] = (
     ("seam", "wall"),
     ("choke", "choke"),
     ("ring", "choke"),
-    ("lining", "lining"),
     ("foil", "lining"),
     ("loop", "loop"),
     ("foot", "loop"),
@@ -59,11 +58,14 @@ class Step:
     parts: tuple[Part, ...]
 
 
-def steps(parts: tuple[Part, ...]) -> tuple[Step, ...]:
-    """The steps that bring in all parts, each part once."""
-    groups: dict[str, list[Part]] = {}
+def steps(parts: tuple[Part, ...], coated: bool = False) -> tuple[Step, ...]:
+    """The steps that bring in all parts, each part once; ``coated``: the lining is no part but paint or plating."""
+    groups: dict[str, list[Part]] = {"lining": []} if coated else {}
+    ring = any(_kind_of(part.key) == "choke" for part in parts)
     for part in parts:
-        groups.setdefault(_kind_of(part.key), []).append(part)
+        # The foil of a choke that is a ring of its own goes in with the ring.
+        kind = "choke" if ring and part.key.startswith("foil-choke") else _kind_of(part.key)
+        groups.setdefault(kind, []).append(part)
     return tuple(Step(kind, tuple(groups[kind])) for kind in ORDER if kind in groups)
 
 
@@ -88,17 +90,17 @@ class StepView:
     seen: tuple[Seen, ...]
 
 
-def step_views(parts: tuple[Part, ...], bodies: Sequence[Body]) -> tuple[StepView, ...]:
+def step_views(parts: tuple[Part, ...], bodies: Sequence[Body], coated: bool = False) -> tuple[StepView, ...]:
     """Every step with its hidden-line view; close-ups leave the wall out."""
     out: list[StepView] = []
     there: list[Body] = []
-    for step in steps(parts):
+    for step in steps(parts, coated):
         keys = {p.key for p in step.parts}
         new = tuple(b for b in bodies if b.part.key in keys)
         old = tuple(b for b in there if step.kind not in CLOSE_UPS or _kind_of(b.part.key) not in LEFT_OUT)
         seen = look([b.shape for b in (*old, *new)], _eye(step.kind)) if new else ()
         if step.kind == "lining" and not new and out and out[-1].new:
-            old, seen = (*out[-1].old, *out[-1].new), out[-1].seen  # foil has no body: the can as it was just seen
+            old, seen = (*out[-1].old, *out[-1].new), out[-1].seen  # a lining has no body: the can as just seen
         out.append(StepView(step, old, new, seen))
         there += new
     return tuple(out)

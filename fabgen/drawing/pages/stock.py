@@ -6,26 +6,31 @@ Depends on: drawing, parts.records.
 from __future__ import annotations
 
 from fabgen.drawing.dimension import Ask, leader
-from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, column_height, gap, heading, paragraph, table
+from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, column_height, flow, gap, heading, paragraph, table
 from fabgen.drawing.hidden import Curve, dressed
 from fabgen.drawing.model import Arc, Item, Line, Point, Polyline, number
-from fabgen.drawing.pages.base import Context, Draft, draft
+from fabgen.drawing.pages.base import Context, Draft, draft, grams
+from fabgen.drawing.pages.lining import is_coated, reading
 from fabgen.drawing.picture import Drawn, free_labelled, shape_of
 from fabgen.drawing.texts import say
 from fabgen.parts.contour import bounds_mm
 from fabgen.parts.records import Part
+from fabgen.stock import tables
+
+SHARES = (0.4, 0.33, 0.26)  # of the column's height for the picture
 
 
 def drafts(context: Context) -> list[Draft]:
-    """The parts and stock list."""
-    blocks: list[Block] = []
+    """The parts and stock list; the picture is as large as the fewest sheets allow."""
+    blocks = [*_parts_table(context), *_stock_table(context)]
     if context.bodies:
-        blocks += [
-            heading(say("view.assembled")),
-            numbered_picture(context, column_height(context.paper) * 0.4),
-            gap(3),
-        ]
-    blocks += [*_parts_table(context), *_stock_table(context)]
+        room = column_height(context.paper)
+
+        def sheets(share: float) -> int:
+            return len(flow(context.paper, [Block(share * room + 11, (Line(0, 0, 0, 0),)), *blocks]))
+
+        share = min(SHARES, key=sheets)
+        blocks = [heading(say("view.assembled")), numbered_picture(context, room * share), gap(3), *blocks]
     return [draft(context, "stock", say("page.stock"), blocks, scale=say("title.not_to_scale"))]
 
 
@@ -122,18 +127,14 @@ def _parts_table(context: Context) -> list[Block]:
             ", ".join(w for w in (part.material_name, part.temper) if w),
             cut_size(part),
             process_words(part),
-            _grams(part.mass_kg * part.quantity),
+            grams(part.mass_kg * part.quantity),
         )
         for i, part in enumerate(context.parts, start=1)
     ]
     total = sum(p.mass_kg * p.quantity for p in context.parts)
-    rows.append(("", say("stock.total"), "", "", "", "", _grams(total)))
+    rows.append(("", say("stock.total"), "", "", "", "", grams(total)))
     head = tuple(say(f"stock.{k}") for k in ("item", "part", "quantity", "material", "cut", "process", "mass"))
     return [heading(say("stock.parts_head")), *table("parts", head, rows, widths=(12, 37, 10, 36, 34, 24, 17))]
-
-
-def _grams(mass_kg: float) -> str:
-    return number(1000 * mass_kg, 1 if mass_kg < 0.1 else 0)
 
 
 def _stock_table(context: Context) -> list[Block]:
@@ -145,7 +146,9 @@ def _stock_table(context: Context) -> list[Block]:
     rows = []
     for (material, form), parts in sorted(groups.items()):
         need = "; ".join(f"{p.quantity} × {cut_size(p)}" for p in parts)
-        rows.append((material, form, need, _grams(sum(p.mass_kg * p.quantity for p in parts))))
+        rows.append((material, form, need, grams(sum(p.mass_kg * p.quantity for p in parts))))
+    if is_coated(context.feed):
+        rows.append(_coating(context))
     if not rows:
         return []
     head = (say("stock.material"), say("stock.form"), say("stock.need"), say("stock.mass"))
@@ -154,6 +157,13 @@ def _stock_table(context: Context) -> list[Block]:
         *table("stock", head, rows, widths=(46, 32, 74, 18)),
         *paragraph(say("stock.allowance")),
     ]
+
+
+def _coating(context: Context) -> tuple[str, str, str, str]:
+    """Paint or plating: no part, but stock to have."""
+    lining = tables.lining(context.feed.job.can.lining)
+    area = number(reading(context.feed).area_mm2 / 100, 0)
+    return (lining.name, say("stock.form_coating"), say("stock.area", area=area, thickness=lining.thickness_mm), "")
 
 
 def _form(part: Part) -> str:
