@@ -19,19 +19,25 @@ Loop form, seen from above::
              '------------'
 
 The bars are bent first, both to the same side, on the leg form; then the wire, bars up, is wound round the loop
-form. Mandrels allow for spring-back (theory.springback).
+form. Mandrels allow for spring-back (theory.springback). Forms larger than the bed come in pieces (jig_split).
 
-Depends on: errors, stock, parts (contour, kernel, loop_wire, records), sizing.records.
+Depends on: errors, stock, parts (contour, jig_split, kernel, loop_wire, records), sizing.records.
 """
 
 from __future__ import annotations
 
+import itertools
 import math
+import string
+from collections.abc import Callable
+from dataclasses import dataclass, replace
 from functools import partial
 from typing import TYPE_CHECKING
 
 from fabgen.errors import GeometryError
-from fabgen.parts.contour import Circle, Contour, Outline, area_mm2, rectangle, rounded
+from fabgen.parts import jig_split
+from fabgen.parts.contour import Circle, Contour, Outline, Vertex, area_mm2, bounds_mm, rectangle, rounded
+from fabgen.parts.jig_split import Knob
 from fabgen.parts.kernel import once
 from fabgen.parts.loop_wire import bend_to_deg, wire_path
 from fabgen.parts.records import Part, WireBend, WirePath
@@ -49,32 +55,54 @@ MARK_WIDTH_MM = 0.8
 MARK_DEPTH_MM = 0.6
 CLAMP_HOLE_MM = 5.5
 """For M5 screws into the bench. Common practice, no source."""
+PASSING_DEG = 345.0
+"""Beyond it the bars, bent already, meet before the wire is released. Common practice, no source."""
+LEG_KNOB_MM = 4.5
+"""Radius of the knobs of the leg form. Common practice, no source."""
 
 
 def bending_jig(feed: Feed) -> tuple[Part, ...]:
     """Leg form and loop form of a wire loop; no parts for a sheet loop.
 
-    A loop form larger than the printer's bed is left out and the leg form says so.
+    A form larger than the printer's bed comes in pieces. Where not even pieces fit, the other form says so; raises
+    GeometryError where neither does.
     """
     if feed.sizes.wire_mm is None:
         return ()
     path = wire_path(feed)
-    leg, loop = path.bends[0], path.bends[1]
-    bed = min(feed.job.limits.bed_mm[:2])
-    needed = loop.mandrel_mm + 6 * path.diameter_mm
-    form = _loop_form(feed, path, loop)
-    if needed <= bed:
-        return _leg_form(feed, path, leg, ()), form
-    note = (
-        f"the loop's form of {loop.mandrel_mm:.1f} mm does not fit a bed of {bed:g} mm: "
-        "turn or saw it from wood to that diameter"
+    made: list[Part] = []
+    missing: list[str] = []
+    for build, bend in ((_leg_form, path.bends[0]), (_loop_form, path.bends[1])):
+        try:
+            made += build(feed, path, bend)
+        except BedTooSmallError as error:
+            missing.append(str(error))
+    if not made:
+        raise GeometryError("; ".join(missing))
+    made[0] = replace(made[0], notes=(*made[0].notes, *missing))
+    return tuple(made)
+
+
+class BedTooSmallError(GeometryError):
+    """Not even a piece of a form fits the printer's bed."""
+
+
+def _bed_mm(feed: Feed) -> tuple[float, float]:
+    bed, margin = feed.job.limits.bed_mm, tables.limit("printer_clearance_mm", feed.job.overrides).value
+    return bed[0] - 2 * margin, bed[1] - 2 * margin
+
+
+def _too_small(feed: Feed, what: str, mandrel_mm: float, least_mm: float) -> BedTooSmallError:
+    bed, least = feed.job.limits.bed_mm, math.ceil(least_mm)
+    return BedTooSmallError(
+        f"a printer bed of {bed[0]:g} x {bed[1]:g} mm is too small even for pieces of the {what}; print it on a bed "
+        f"of {least} x {least} mm (limits.bed_mm), or turn it from wood to {mandrel_mm:.1f} mm"
     )
-    return (_leg_form(feed, path, leg, (note,)),)
 
 
 def _plastic(
     feed: Feed, key: str, name: str, sizes: tuple[tuple[str, float], ...], volume_mm3: float, notes: tuple[str, ...],
-    solid: partial[cadquery.Shape],
+    solid: partial[cadquery.Shape], quantity: int = 1,
 ) -> Part:
     plastic = tables.plastic(feed.job.can.plastic)
     return Part(
@@ -85,7 +113,7 @@ def _plastic(
         material_name=plastic.name,
         temper="",
         colour=plastic.colour,
-        quantity=1,
+        quantity=quantity,
         sizes=sizes,
         tolerance="+-0.2 mm",
         finish="as printed",
@@ -115,39 +143,156 @@ def leg_outlines(path: WirePath, leg: WireBend, bend_to: float) -> tuple[Contour
     return block, fence, stop
 
 
-def _leg_form(feed: Feed, path: WirePath, leg: WireBend, notes: tuple[str, ...]) -> Part:
-    bend_to = bend_to_deg(feed, leg)
+@dataclass(frozen=True)
+class _Form:
+    """A form before it is split: its plate, what stands on it, and its screw holes."""
+
+    plate: Contour
+    tops: tuple[Contour, ...]
+    holes: tuple[Circle, ...]
+    height_mm: float
+
+    def volume_mm3(self, low_mm: float = -math.inf, high_mm: float = math.inf) -> float:
+        """Volume between two upright cuts across x."""
+        plate = _between_mm2(self.plate, low_mm, high_mm)
+        drilled = sum(area_mm2(h) for h in self.holes if low_mm < h.x_mm < high_mm)
+        return (plate - drilled) * PLATE_MM + sum(_between_mm2(o, low_mm, high_mm) for o in self.tops) * self.height_mm
+
+
+def _between_mm2(outline: Contour, low_mm: float, high_mm: float) -> float:
+    """Area of a contour between two upright lines that cross no arc of it."""
+    ring = outline.vertices
+    for at, keep in ((low_mm, 1.0), (high_mm, -1.0)):
+        if not math.isfinite(at):
+            continue
+        kept: list[Vertex] = []
+        for a, b in zip(ring, (*ring[1:], *ring[:1]), strict=True):
+            inside = keep * (a.x_mm - at) >= 0
+            if inside:
+                kept.append(a)
+            if inside != (keep * (b.x_mm - at) >= 0):
+                share = (at - a.x_mm) / (b.x_mm - a.x_mm)
+                kept.append(Vertex(at, a.y_mm + share * (b.y_mm - a.y_mm)))
+        ring = tuple(kept)
+    return area_mm2(Contour(ring)) if len(ring) > 2 else 0.0
+
+
+def _leg_plan(path: WirePath, leg: WireBend, bend_to: float) -> _Form:
     outlines = leg_outlines(path, leg, bend_to)
     near = path.diameter_mm / 2 + CHANNEL_CLEARANCE_MM / 2
     top = max(v.y_mm for v in outlines[0].vertices)
     left = min(v.x_mm for v in outlines[2].vertices)
     right = max(v.x_mm for v in outlines[0].vertices) + 15.0
     plate = rectangle((left, -near - WALL_MM - 12.0), (right, top))
-    height = path.diameter_mm + 3.0
     y = -near - WALL_MM - 6.0
     holes = (Circle(left + 8.0, y, CLAMP_HOLE_MM), Circle(right - 8.0, y, CLAMP_HOLE_MM))
-    volume = (area_mm2(plate) - sum(area_mm2(h) for h in holes)) * PLATE_MM
-    volume += sum(area_mm2(o) for o in outlines) * height
+    return _Form(plate, outlines, holes, path.diameter_mm + 3.0)
+
+
+def _leg_form(feed: Feed, path: WirePath, leg: WireBend) -> tuple[Part, ...]:
+    bend_to = bend_to_deg(feed, leg)
+    form = _leg_plan(path, leg, bend_to)
     sizes = (("mandrel_mm", leg.mandrel_mm), ("stop_to_bend_mm", leg.start_mm), ("bend_to_deg", bend_to))
     text = f"end of the wire against the stop, bend along the block to {bend_to:.1f} degrees; both ends alike"
-    solid = partial(_stepped, plate, holes, outlines, height)
-    return _plastic(feed, "jig-leg", "bending form for the bars", sizes, volume, (text, *notes), solid)
+    key, name = "jig-leg", "bending form for the bars"
+    x0, y0, x1, y1 = bounds_mm(form.plate)
+    turn = jig_split.bed_turn_deg([(x0, y0), (x1, y0), (x1, y1), (x0, y1)], _bed_mm(feed))
+    if turn is not None:
+        solid = partial(_laid, form, turn)
+        return (_plastic(feed, key, name, sizes, form.volume_mm3(), (text,), solid),)
+    cuts = _leg_cuts(feed, form, leg.mandrel_mm)
+    knobs = tuple(_leg_knobs(form, x) for x in cuts)
+    # A clamp hole for every piece that has none yet.
+    more = tuple(Circle((a + b) / 2, form.holes[0].y_mm, CLAMP_HOLE_MM) for a, b in itertools.pairwise(cuts))
+    form = replace(form, holes=(*form.holes, *more))
+    whole = once(partial(_stepped, form.plate, form.holes, form.tops, form.height_mm))
+    ends = (-math.inf, *cuts, math.inf)
+    parts = []
+    for i, letter in enumerate(string.ascii_lowercase[: len(cuts) + 1]):
+        volume = form.volume_mm3(ends[i], ends[i + 1])
+        volume += sum(jig_split.knob_mm3(k) for k in knobs[i]) if i < len(cuts) else 0.0
+        volume -= sum(jig_split.knob_mm3(k, jig_split.FIT_MM) for k in knobs[i - 1]) if i else 0.0
+        words = (text, f"piece {letter} of {len(cuts) + 1} from the stop: press the knobs home, screw all to one board")
+        solid = partial(_leg_piece, whole, cuts, knobs, i)
+        parts.append(_plastic(feed, f"{key}-{letter}", f"{name}, piece {letter}", sizes, volume, words, solid))
+    return tuple(parts)
 
 
-def _loop_form(feed: Feed, path: WirePath, loop: WireBend) -> Part:
+def _leg_cuts(feed: Feed, form: _Form, mandrel_mm: float) -> tuple[float, ...]:
+    """Places of the cuts between stop and bend, so that every piece with its knobs fits the bed."""
+    bed = _bed_mm(feed)
+    x0, y0, x1, y1 = bounds_mm(form.plate)
+    most, stop = max(bed) - 2 * LEG_KNOB_MM, x0 + WALL_MM + 2 * LEG_KNOB_MM
+    # The last piece holds the bend; cuts are left of it and not through the stop.
+    last = -max(2 * LEG_KNOB_MM, abs(form.tops[1].vertices[1].x_mm) + 2 * LEG_KNOB_MM)
+    count = math.ceil((x1 - x0) / max(most, 1.0))
+    if y1 - y0 > min(bed) or x1 - last > most or count > 6:
+        raise _too_small(feed, "bars' bending form", mandrel_mm, max(y1 - y0, x1 - last + 2 * LEG_KNOB_MM) + 5.0)
+    cuts = [x1 - (x1 - x0) * i / count for i in range(count - 1, 0, -1)]
+    return tuple(min(last, max(stop, x)) for x in cuts)
+
+
+def _leg_knobs(form: _Form, x: float) -> tuple[Knob, ...]:
+    """One in the block, one in the plate's rim."""
+    block, beyond = bounds_mm(form.tops[0]), jig_split.NECK * LEG_KNOB_MM
+    middle = (block[1] + block[3]) / 2
+    return (
+        Knob((x + beyond, middle), LEG_KNOB_MM, PLATE_MM + form.height_mm),
+        Knob((x + beyond, form.holes[0].y_mm), LEG_KNOB_MM, PLATE_MM),
+    )
+
+
+def _leg_piece(
+    whole: Callable[[], cadquery.Shape], cuts: tuple[float, ...], knobs: tuple[tuple[Knob, ...], ...], number: int
+) -> cadquery.Shape:
+    return jig_split.strip_piece(whole(), cuts, knobs, number)
+
+
+def _laid(form: _Form, turn_deg: float) -> cadquery.Shape:
+    from fabgen.parts import kernel
+
+    body = _stepped(form.plate, form.holes, form.tops, form.height_mm)
+    return kernel.on_bed(kernel.turned(body, turn_deg)) if turn_deg else body
+
+
+def _loop_form(feed: Feed, path: WirePath, loop: WireBend) -> tuple[Part, ...]:
     bend_to = bend_to_deg(feed, loop)
     d = path.diameter_mm
     plate = Circle(0.0, 0.0, loop.mandrel_mm + 6 * d)
     disc = Circle(0.0, 0.0, loop.mandrel_mm)
-    height = d + 2.0
-    at = min(12.0, loop.mandrel_mm / 4)
-    holes = (Circle(at, 0.0, CLAMP_HOLE_MM), Circle(-at, 0.0, CLAMP_HOLE_MM)) if at > 4 else ()
-    drilled = sum(area_mm2(h) for h in holes)
-    volume = (area_mm2(plate) - drilled) * PLATE_MM + (area_mm2(disc) - drilled) * height - 2 * _mark_mm3(plate, disc)
+    height, half_gap = d + 2.0, (360.0 - bend_to) / 2
     sizes = (("mandrel_mm", loop.mandrel_mm), ("bend_to_deg", bend_to))
     text = f"bars up; wind from mark to mark ({bend_to:.1f} degrees under load), the gap to +x"
-    solid = partial(_marked, plate, holes, disc, height, (360.0 - bend_to) / 2)
-    return _plastic(feed, "jig-loop", "bending form for the loop", sizes, volume, (text,), solid)
+    if bend_to > PASSING_DEG:
+        text += "; the bars pass each other under load: let the wire climb by its diameter on the last turn"
+    key, name, bed = "jig-loop", "bending form for the loop", _bed_mm(feed)
+    marks = 2 * _mark_mm3(plate, disc)
+    if plate.diameter_mm <= min(bed):
+        at = min(12.0, loop.mandrel_mm / 4)
+        holes = (Circle(at, 0.0, CLAMP_HOLE_MM), Circle(-at, 0.0, CLAMP_HOLE_MM)) if at > 4 else ()
+        drilled = sum(area_mm2(h) for h in holes)
+        volume = (area_mm2(plate) - drilled) * PLATE_MM + (area_mm2(disc) - drilled) * height - marks
+        solid = partial(_marked, plate, holes, disc, height, half_gap)
+        return (_plastic(feed, key, name, sizes, volume, (text,), solid),)
+    plan = jig_split.loop_split(plate.diameter_mm, disc.diameter_mm, half_gap, bed)
+    if plan is None:
+        raise _too_small(feed, "loop's bending form", loop.mandrel_mm, 0.6 * plate.diameter_mm)
+    drills = plan.screws(CLAMP_HOLE_MM)
+    gone = 2 * area_mm2(drills[0]) + math.pi / 4 * plan.open_mm**2 / plan.sectors
+    volume = (area_mm2(plate) / plan.sectors - gone) * PLATE_MM + (area_mm2(disc) / plan.sectors - gone) * height
+    volume += jig_split.knob_balance_mm3(plan.knob(PLATE_MM + height))
+    middle = (Circle(0.0, 0.0, plan.open_mm),) if plan.open_mm else ()
+    whole = once(partial(_marked, plate, (*drills, *middle), disc, height, half_gap))
+    first, other = (partial(_loop_piece, whole, plan, i) for i in (0, 1))
+    words = (text, f"{plan.sectors} pieces: press the knobs home on a flat board and screw every piece to it")
+    return (
+        _plastic(feed, key, f"{name}, piece with the marks", sizes, volume - marks, words, first),
+        _plastic(feed, f"{key}-plain", f"{name}, plain piece", sizes, volume, words, other, plan.sectors - 1),
+    )
+
+
+def _loop_piece(whole: Callable[[], cadquery.Shape], plan: jig_split.LoopSplit, number: int) -> cadquery.Shape:
+    return jig_split.loop_piece(whole(), plan, number)
 
 
 def _groove_mm(plate: Circle, disc: Circle) -> tuple[float, float]:

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import dataclasses
 import math
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -11,6 +13,7 @@ import shapely
 
 from fabgen.drawing.nesting import nest_items
 from fabgen.errors import GeometryError
+from fabgen.job_reader import read_job
 from fabgen.parts.bend_rule import chosen_k, rule_text
 from fabgen.parts.bend_strip import STRIP_LENGTH_MM, bend_strip
 from fabgen.parts.build import build_parts
@@ -24,6 +27,7 @@ from fabgen.stock import tables
 from fabgen.theory.bending import k_from_test_bend
 from fabgen.writers.nesting import nesting_files
 from fabgen.writers.svg import svg_text
+from tests.parts.feeds import with_bed
 from tests.samples import sample_feed
 
 
@@ -105,11 +109,107 @@ def test_the_leg_forms_corner_has_the_mandrels_radius_and_leans_over_for_spring_
         leg_outlines(path, bend, 170.0)
 
 
-def test_jigs_that_do_not_fit_the_bed_are_replaced_by_a_note() -> None:
-    parts = bending_jig(sample_feed("wire", frequency_mhz=408.0))
-    assert [p.key for p in parts] == ["jig-leg"]
-    assert any("does not fit a bed" in note for note in parts[0].notes)
+def _on_bed(part: Part, bed_mm: tuple[float, float, float]) -> None:
+    box = printed(part).BoundingBox()
+    assert box.zmin == pytest.approx(0.0, abs=1e-6)
+    assert all(a <= b - 4.0 + 1e-6 for a, b in zip((box.xlen, box.ylen, box.zlen), bed_mm, strict=True))
+
+
+def _radii(solid: Any) -> set[float]:
+    return {round(_radius(f), 6) for f in solid.Faces() if f.geomType() == "CYLINDER"}
+
+
+def _cylinder(face: Any) -> Any:
+    from OCP.BRepAdaptor import BRepAdaptor_Surface
+
+    return BRepAdaptor_Surface(face.wrapped).Cylinder()
+
+
+def _radius(face: Any) -> float:
+    return float(_cylinder(face).Radius())
+
+
+@pytest.mark.parametrize(
+    ("frequency", "bed", "sectors"),
+    [(408.0, (220.0, 220.0, 250.0), 2), (300.0, (120.0, 120.0, 120.0), 8), (1420.4, (60.0, 60.0, 100.0), 4)],
+)
+def test_a_loop_form_larger_than_the_bed_comes_in_sectors_that_key_and_close(
+    frequency: float, bed: tuple[float, float, float], sectors: int
+) -> None:
+    """Every sector has the mandrel's radius, its share of the turn between two flat faces through the axis, a knob
+    that fits its neighbour's socket with 0.1 mm, and closes the circle within 0.1 mm in 100 mm."""
+    feed = with_bed(sample_feed("wire", frequency_mhz=frequency), bed)
+    path = wire_path(feed)
+    pieces = [p for p in bending_jig(feed) if p.key.startswith("jig-loop")]
+    assert [p.key for p in pieces] == ["jig-loop", "jig-loop-plain"]
+    assert [p.quantity for p in pieces] == [1, sectors - 1]
+    turn = 0.0
+    for part in pieces:
+        _on_bed(part, bed)
+        solid, radius = printed(part), path.bends[1].mandrel_mm / 2
+        assert len(solid.Solids()) == 1
+        assert min(abs(r - radius) for r in _radii(solid)) < 1e-5
+        assert {7.0, 7.1} <= _radii(solid)
+        faces = [f for f in solid.Faces() if f.geomType() == "CYLINDER" and abs(_radius(f) - radius) < 1e-5]
+        turn += part.quantity * sum(f.Area() for f in faces) / (path.diameter_mm + 2.0) / radius
+        text = " ".join(part.notes)
+        assert f"{sectors} pieces" in text
+    # The knob of one sector lies in the next one's socket, so that the rims add up to a whole turn.
+    assert turn * path.bends[1].mandrel_mm / 2 == pytest.approx(math.pi * path.bends[1].mandrel_mm, rel=1e-3)
+    grooves = [f for f in printed(pieces[0]).Faces() if f.Center().z == pytest.approx(PLATE_MM - 0.6, abs=1e-6)]
+    assert len(grooves) == 2
+    assert not [f for f in printed(pieces[1]).Faces() if f.Center().z == pytest.approx(PLATE_MM - 0.6, abs=1e-6)]
+
+
+def test_a_leg_form_longer_than_the_bed_comes_in_two_pieces_that_add_up() -> None:
+    """Stop to bend, measured over both pieces on sections of their solids, within 0.1 mm over 100 mm."""
+    feed = with_bed(sample_feed("wire", frequency_mhz=300.0), (120.0, 120.0, 120.0))
+    leg = wire_path(feed).bends[0]
+    pieces = [p for p in bending_jig(feed) if p.key.startswith("jig-leg")]
+    assert [p.key for p in pieces] == ["jig-leg-a", "jig-leg-b"]
+    for part in pieces:
+        _on_bed(part, (120.0, 120.0, 120.0))
+        assert "of 2" in " ".join(part.notes)
+    first, second = (section(printed(p), PLATE_MM + 1.0) for p in pieces)
+    low, high = first.bounds[0], first.bounds[2] - 1.6 * 4.5
+    stop = low + 8.0
+    # From the joint to the start of the corner's rounding in the second piece.
+    mandrel = next(f for f in printed(pieces[1]).Faces() if f.geomType() == "CYLINDER"
+                   and abs(_radius(f) - leg.mandrel_mm / 2) < 1e-5)  # fmt: skip
+    start = _cylinder(mandrel).Axis().Location().X() - second.bounds[0]
+    assert high - stop + start == pytest.approx(leg.start_mm + 0.2, abs=0.1 * leg.start_mm / 100)
+
+
+def test_a_bed_too_small_for_any_piece_is_named_with_the_bed_that_does() -> None:
+    parts = bending_jig(with_bed(sample_feed("wire"), (60.0, 60.0, 100.0)))
+    assert {p.key for p in parts} == {"jig-loop", "jig-loop-plain"}
+    assert "of 64 x 64 mm (limits.bed_mm)" in " ".join(parts[0].notes)
+    with pytest.raises(GeometryError, match="turn it from wood"):
+        bending_jig(with_bed(sample_feed("wire"), (25.0, 25.0, 100.0)))
     assert bending_jig(sample_feed("sheet")) == ()
+
+
+def test_a_wire_that_passes_itself_under_load_says_so() -> None:
+    thin = bending_jig(sample_feed("wire", frequency_mhz=300.0))
+    assert any("climb" in note for part in thin for note in part.notes)
+    assert not any("climb" in note for part in bending_jig(sample_feed("wire")) for note in part.notes)
+
+
+@pytest.mark.parametrize("name", ["c-band-5760", "hydrogen-wire", "hydroxyl-choke", "s-band-3400", "satellite-1690",
+                                  "uhf-408"])  # fmt: skip
+def test_every_template_of_wire_gets_both_forms_on_its_bed(name: str) -> None:
+    """Form sizes by the template's own wire, metal and bed; loop and bars by ratio to the wavelength."""
+    job = read_job(Path("templates") / f"{name}.toml")
+    feed = sample_feed("wire", frequency_mhz=job.target.frequency_mhz)
+    d = job.loop.wire_mm or 0.0
+    feed = dataclasses.replace(
+        feed, job=feed.job.model_copy(update={"loop": job.loop, "limits": job.limits}),
+        sizes=dataclasses.replace(feed.sizes, wire_mm=d, leg_bend_radius_mm=1.5 * d, leg_pitch_mm=3.5 * d),
+    )  # fmt: skip
+    keys = {p.key for p in bending_jig(feed)}
+    assert {"jig-leg", "jig-loop"} <= keys
+    for part in bending_jig(feed):
+        _on_bed(part, job.limits.bed_mm)
 
 
 def test_foil_covers_bore_depth_and_laps_and_is_for_printed_cans_only() -> None:
