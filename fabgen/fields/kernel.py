@@ -27,6 +27,15 @@ import numpy as np
 from numba import njit
 
 BLOCK = 128
+"""Triangles that are computed together. What belongs to them lies in one flat buffer, a row of BLOCK numbers for each
+quantity: with a single array and fixed offsets the compiler sees that no two rows overlap, and vectorises."""
+PAIRS = 16
+"""First row of the 18 edge pairs (source edge, test edge, real and imaginary part); the 16 moments come before."""
+CORNERS = 34
+"""First row of the source triangles: for each corner its place and the length of the edge across from it."""
+POINT = 46
+"""First row of one source point of each triangle."""
+ROWS = 49
 Function = TypeVar("Function", bound=Callable[..., Any])
 
 
@@ -122,55 +131,54 @@ def static_moments(first: int, last: int, test: Any, source: Any, corners: Any, 
 
 
 @compiled(fastmath=True)
-def _edge_pairs(p: int, start: int, count: int, m: Any, ka: float, kb: float, corners: Any, image: Any, length: Any,
-                image_length: Any, factor: float, work: Any, pairs: Any) -> None:
-    """Nine edge pairs of triangle p with each of the triangles start..: pairs (3, 3, 2, B): source edge, test edge,
-    real and imaginary part.
+def _edge_pairs(p: int, start: int, ka: float, kb: float, corners: Any, image: Any, length: Any, image_length: Any,
+                factor: float, buffer: Any) -> None:
+    """Nine edge pairs of triangle p with each of the triangles start..; the moments and the result lie in ``buffer``.
 
-    ``m`` (16, B): real and imaginary parts of the moments; ``image`` (3, 3, T): corner, axis. j ka multiplies the
-    vector part, -j kb the charges. Pairs p < q stand for (q, p) too: the caller adds the transpose, so a triangle
-    with itself counts half. ``work`` (4, 2, B) is scratch.
+    ``image`` (3, 3, T + BLOCK): corner, axis. j ka multiplies the vector part, -j kb the charges. Pairs p < q stand
+    for (q, p) too: the caller adds the transpose, so a triangle with itself counts half.
     """
+    for b in range(3):
+        for axis in range(3):
+            _copy(image[b, axis], start, buffer, CORNERS + 4 * b + axis)
+        _copy(image_length[b], start, buffer, CORNERS + 4 * b + 3)
     for a in range(3):
         ux, uy, uz = corners[p, a, 0], corners[p, a, 1], corners[p, a, 2]
-        for part in range(2):
-            for t in range(count):
-                work[a, part, t] = ux * m[8 + part, t] + uy * m[10 + part, t] + uz * m[12 + part, t]
-    for b in range(3):
-        for part in range(2):
-            for t in range(count):
-                q = start + t
-                work[3, part, t] = m[14 + part, t] - (
-                    image[b, 0, q] * m[2 + part, t] + image[b, 1, q] * m[4 + part, t] + image[b, 2, q] * m[6 + part, t]
-                )
-        for a in range(3):
-            ux, uy, uz = corners[p, a, 0], corners[p, a, 1], corners[p, a, 2]
-            scale = factor * length[p, a]
-            for t in range(count):
-                q = start + t
-                s = scale * image_length[b, q]
-                charge = ka * (ux * image[b, 0, q] + uy * image[b, 1, q] + uz * image[b, 2, q]) - kb
-                pairs[b, a, 0, t] = -s * (ka * (work[3, 1, t] - work[a, 1, t]) + charge * m[1, t])
-                pairs[b, a, 1, t] = s * (ka * (work[3, 0, t] - work[a, 0, t]) + charge * m[0, t])
-    if start == p:
+        scale = factor * length[p, a]
         for b in range(3):
-            for a in range(3):
-                pairs[b, a, 0, 0] *= 0.5
-                pairs[b, a, 1, 0] *= 0.5
+            out, at = (PAIRS + 6 * b + 2 * a) * BLOCK, (CORNERS + 4 * b) * BLOCK
+            for t in range(BLOCK):
+                vx, vy, vz = buffer[at + t], buffer[at + BLOCK + t], buffer[at + 2 * BLOCK + t]
+                m0_re, m0_im = buffer[t], buffer[BLOCK + t]
+                vector_re = buffer[14 * BLOCK + t] - (
+                    vx * buffer[2 * BLOCK + t] + vy * buffer[4 * BLOCK + t] + vz * buffer[6 * BLOCK + t]
+                ) - (ux * buffer[8 * BLOCK + t] + uy * buffer[10 * BLOCK + t] + uz * buffer[12 * BLOCK + t])
+                vector_im = buffer[15 * BLOCK + t] - (
+                    vx * buffer[3 * BLOCK + t] + vy * buffer[5 * BLOCK + t] + vz * buffer[7 * BLOCK + t]
+                ) - (ux * buffer[9 * BLOCK + t] + uy * buffer[11 * BLOCK + t] + uz * buffer[13 * BLOCK + t])
+                s = scale * buffer[at + 3 * BLOCK + t]
+                charge = ka * (ux * vx + uy * vy + uz * vz) - kb
+                buffer[out + t] = -s * (ka * vector_im + charge * m0_im)
+                buffer[out + BLOCK + t] = s * (ka * vector_re + charge * m0_re)
+    if start == p:
+        for row in range(PAIRS, PAIRS + 18):
+            buffer[row * BLOCK] *= 0.5
 
 
 @compiled(fastmath=True)
-def _scatter(start: int, count: int, pairs: Any, dof: Any, sign: Any, rows: Any) -> None:
+def _scatter(start: int, count: int, buffer: Any, dof: Any, sign: Any, rows: Any) -> None:
     """Add the edge pairs to the columns of the three rows of one triangle, rows (3, N)."""
     for t in range(count):
         q = start + t
         for b in range(3):
+            first = (PAIRS + 6 * b) * BLOCK + t
             for s in range(2):
                 col = dof[q, b, s]
                 if col >= 0:
                     f = sign[q, b, s]
                     for a in range(3):
-                        rows[a, col] += complex(f * pairs[b, a, 0, t], f * pairs[b, a, 1, t])
+                        at = first + 2 * a * BLOCK
+                        rows[a, col] += complex(f * buffer[at], f * buffer[at + BLOCK])
 
 
 @compiled(fastmath=True)
@@ -185,70 +193,102 @@ def _flush(p: int, rows: Any, dof: Any, sign: Any, place: Any, z: Any, extra: An
                 target = z[row] if own < 0 else extra[own]
                 for c in range(rows.shape[1]):
                     target[c] += f * rows[a, c]
+    for a in range(3):
         for c in range(rows.shape[1]):
             rows[a, c] = 0.0
 
 
 @compiled(fastmath=True)
-def _kernel_values(x: float, y: float, z: float, k: float, points: Any, j: int, first: int, count: int,
-                   g: Any) -> None:
-    """e^{-jkR}/(4 pi R) from (x, y, z) to point j of triangles first..: real and imaginary part in g[2 j], g[2 j + 1].
+def _green(dx: float, dy: float, dz: float, w: float, k: float) -> tuple[float, float]:
+    """w e^{-jkR}/(4 pi R), real and imaginary part.
 
     Sine and cosine by Taylor series at a quarter of the reduced angle and two doublings, exact to 1e-10; written
-    out because the compiler turns this loop, and no call to a library, into vector instructions.
+    out because the compiler turns this, and no call to a library, into vector instructions.
     """
-    two_pi = 2.0 * math.pi
-    inverse = 1.0 / two_pi
-    for t in range(count):
-        dx = points[0, j, first + t] - x
-        dy = points[1, j, first + t] - y
-        dz = points[2, j, first + t] - z
-        r = math.sqrt(dx * dx + dy * dy + dz * dz + 1e-300)
-        a = k * r
-        a -= two_pi * np.int32(a * inverse + 0.5)
-        a *= 0.25
-        a2 = a * a
-        sn = a * (1.0 + a2 * (-1 / 6 + a2 * (1 / 120 + a2 * (-1 / 5040 + a2 * (1 / 362880 - a2 / 39916800)))))
-        cs = 1.0 + a2 * (-0.5 + a2 * (1 / 24 + a2 * (-1 / 720 + a2 * (1 / 40320 - a2 / 3628800))))
-        s2 = 2.0 * sn * cs
-        c2 = 1.0 - 2.0 * sn * sn
-        over = 0.07957747154594767 / r
-        g[2 * j, t] = over * (1.0 - 2.0 * s2 * s2)
-        g[2 * j + 1, t] = -over * (2.0 * s2 * c2)
+    r = math.sqrt(dx * dx + dy * dy + dz * dz + 1e-300)
+    a = k * r
+    a -= 2.0 * math.pi * np.int32(a * (0.5 / math.pi) + 0.5)
+    a *= 0.25
+    a2 = a * a
+    sn = a * (1.0 + a2 * (-1 / 6 + a2 * (1 / 120 + a2 * (-1 / 5040 + a2 * (1 / 362880 - a2 / 39916800)))))
+    cs = 1.0 + a2 * (-0.5 + a2 * (1 / 24 + a2 * (-1 / 720 + a2 * (1 / 40320 - a2 / 3628800))))
+    s2 = 2.0 * sn * cs
+    c2 = 1.0 - 2.0 * sn * sn
+    over = w * 0.07957747154594767 / r
+    return over * (1.0 - 2.0 * s2 * s2), -over * (2.0 * s2 * c2)
 
 
 @compiled(fastmath=True)
-def _add_moments(x: float, y: float, z: float, w: float, weight: Any, points: Any, first: int, count: int, g: Any,
-                 m: Any) -> None:
-    """Add one test point's share to the moments m (16, B) of triangles first..; g holds the kernel values."""
+def _far_moments(p: int, start: int, k: float, points: Any, image_points: Any, weight: Any, buffer: Any) -> None:
+    """Moments of triangle p with each of the triangles start.., all by plain quadrature, into ``buffer``.
+
+    ``image_points`` (3, n, T + BLOCK).
+    """
     n = weight.shape[0]
-    for part in range(2):
-        for j in range(n):
-            wj = w * weight[j]
-            row = 2 * j + part
-            for t in range(count):
-                v = wj * g[row, t]
-                px = points[0, j, first + t]
-                py = points[1, j, first + t]
-                pz = points[2, j, first + t]
-                m[part, t] += v
-                m[2 + part, t] += v * x
-                m[4 + part, t] += v * y
-                m[6 + part, t] += v * z
-                m[8 + part, t] += v * px
-                m[10 + part, t] += v * py
-                m[12 + part, t] += v * pz
-                m[14 + part, t] += v * (x * px + y * py + z * pz)
+    for i in range(16 * BLOCK):
+        buffer[i] = 0.0
+    for j in range(n):
+        for axis in range(3):
+            _copy(image_points[axis, j], start, buffer, POINT + axis)
+        for first in range(0, n, 3):
+            _add_test_points(points[:, :, p], first, weight, weight[j], k, buffer)
+
+
+@compiled(fastmath=True)
+def _add_test_points(points: Any, first: int, weight: Any, source_weight: float, k: float, buffer: Any) -> None:
+    """Add three test points' share, for one source point of each triangle, to the moments in ``buffer``.
+
+    ``points`` (3, n). Three at a time leave most sums in registers; where fewer are left, the last ones weigh nothing.
+    """
+    last = weight.shape[0] - 1
+    i, j = min(first + 1, last), min(first + 2, last)
+    w0 = source_weight * weight[first]
+    w1 = source_weight * weight[i] if i > first else 0.0
+    w2 = source_weight * weight[j] if j > i else 0.0
+    x0, y0, z0 = points[0, first], points[1, first], points[2, first]
+    x1, y1, z1 = points[0, i], points[1, i], points[2, i]
+    x2, y2, z2 = points[0, j], points[1, j], points[2, j]
+    for t in range(BLOCK):
+        px, py, pz = buffer[POINT * BLOCK + t], buffer[(POINT + 1) * BLOCK + t], buffer[(POINT + 2) * BLOCK + t]
+        a_re, a_im = _green(px - x0, py - y0, pz - z0, w0, k)
+        b_re, b_im = _green(px - x1, py - y1, pz - z1, w1, k)
+        c_re, c_im = _green(px - x2, py - y2, pz - z2, w2, k)
+        re, im = a_re + b_re + c_re, a_im + b_im + c_im
+        x_re, x_im = a_re * x0 + b_re * x1 + c_re * x2, a_im * x0 + b_im * x1 + c_im * x2
+        y_re, y_im = a_re * y0 + b_re * y1 + c_re * y2, a_im * y0 + b_im * y1 + c_im * y2
+        z_re, z_im = a_re * z0 + b_re * z1 + c_re * z2, a_im * z0 + b_im * z1 + c_im * z2
+        buffer[t] += re
+        buffer[BLOCK + t] += im
+        buffer[2 * BLOCK + t] += x_re
+        buffer[3 * BLOCK + t] += x_im
+        buffer[4 * BLOCK + t] += y_re
+        buffer[5 * BLOCK + t] += y_im
+        buffer[6 * BLOCK + t] += z_re
+        buffer[7 * BLOCK + t] += z_im
+        buffer[8 * BLOCK + t] += re * px
+        buffer[9 * BLOCK + t] += im * px
+        buffer[10 * BLOCK + t] += re * py
+        buffer[11 * BLOCK + t] += im * py
+        buffer[12 * BLOCK + t] += re * pz
+        buffer[13 * BLOCK + t] += im * pz
+        buffer[14 * BLOCK + t] += x_re * px + y_re * py + z_re * pz
+        buffer[15 * BLOCK + t] += x_im * px + y_im * py + z_im * pz
+
+
+@compiled(fastmath=True)
+def _copy(values: Any, start: int, buffer: Any, row: int) -> None:
+    for t in range(BLOCK):
+        buffer[row * BLOCK + t] = values[start + t]
 
 
 @compiled(fastmath=False)
-def _near_moments(p: int, q: int, k: float, static: Any, points: Any, image_points: Any, weight: Any, m: Any,
+def _near_moments(p: int, q: int, k: float, static: Any, points: Any, image_points: Any, weight: Any, buffer: Any,
                   t: int) -> None:
-    """Moments of a near pair in column t of m: static ones plus the smooth remainder by quadrature."""
+    """Moments of a near pair in column t of ``buffer``: static ones plus the smooth remainder by quadrature."""
     n = weight.shape[0]
     for c in range(8):
-        m[2 * c, t] = static[c]
-        m[2 * c + 1, t] = 0.0
+        buffer[2 * c * BLOCK + t] = static[c]
+        buffer[(2 * c + 1) * BLOCK + t] = 0.0
     for i in range(n):
         x = points[0, i, p]
         y = points[1, i, p]
@@ -271,14 +311,14 @@ def _near_moments(p: int, q: int, k: float, static: Any, points: Any, image_poin
                 sine = math.sin(kr) / kr
             for part in range(2):
                 v = w * cosine if part == 0 else -w * sine
-                m[part, t] += v
-                m[2 + part, t] += v * x
-                m[4 + part, t] += v * y
-                m[6 + part, t] += v * z
-                m[8 + part, t] += v * px
-                m[10 + part, t] += v * py
-                m[12 + part, t] += v * pz
-                m[14 + part, t] += v * (x * px + y * py + z * pz)
+                buffer[part * BLOCK + t] += v
+                buffer[(2 + part) * BLOCK + t] += v * x
+                buffer[(4 + part) * BLOCK + t] += v * y
+                buffer[(6 + part) * BLOCK + t] += v * z
+                buffer[(8 + part) * BLOCK + t] += v * px
+                buffer[(10 + part) * BLOCK + t] += v * py
+                buffer[(12 + part) * BLOCK + t] += v * pz
+                buffer[(14 + part) * BLOCK + t] += v * (x * px + y * py + z * pz)
 
 
 @compiled(fastmath=True)
@@ -289,16 +329,12 @@ def fill_rows(first: int, last: int, k: float, eta: float, kept: int, points: An
     """Pairs (p, q >= p) for test triangles first..last-1 and every image: near ones with their static moments, the
     others by plain quadrature.
 
-    ``points`` (3, n, T), ``image_points`` (I, 3, n, T), ``images`` (I, 3, 3, T). Adds to z (N, N), and to extra for
-    the rows that ``place`` (N,) sends there, the part whose transpose the caller adds; pairs with both triangles
-    below ``kept`` are left out.
+    ``points`` (3, n, T), ``image_points`` (I, 3, n, T + BLOCK), ``images`` (I, 3, 3, T + BLOCK): whole blocks are
+    computed, the excess is dropped. Adds to z (N, N), and to extra for the rows that ``place`` (N,) sends there, the
+    part whose transpose the caller adds; pairs with both triangles below ``kept`` are left out.
     """
-    n = weight.shape[0]
     triangles = points.shape[2]
-    g = np.empty((2 * n, BLOCK))
-    m = np.empty((16, BLOCK))
-    work = np.empty((4, 2, BLOCK))
-    pairs = np.empty((3, 3, 2, BLOCK))
+    buffer = np.zeros(ROWS * BLOCK)
     rows = np.zeros((3, z.shape[1]), dtype=np.complex128)
     for p in range(first, last):
         for image in range(images.shape[0]):
@@ -306,23 +342,37 @@ def fill_rows(first: int, last: int, k: float, eta: float, kept: int, points: An
             stop = near_start[image, p + 1]
             for start in range(max(p, kept) if p < kept else p, triangles, BLOCK):
                 count = min(BLOCK, triangles - start)
-                m[:, :] = 0.0
-                for i in range(n):
-                    x = points[0, i, p]
-                    y = points[1, i, p]
-                    zz = points[2, i, p]
-                    for j in range(n):
-                        _kernel_values(x, y, zz, k, image_points[image], j, start, count, g)
-                    _add_moments(x, y, zz, weight[i], weight, image_points[image], start, count, g, m)
+                _far_moments(p, start, k, points, image_points[image], weight, buffer)
                 while pointer < stop and near_source[pointer] < start + count:
                     q = near_source[pointer]
-                    _near_moments(p, q, k, static[pointer], near_points, near_image_points[image], near_weight, m,
-                                  q - start)
+                    _near_moments(p, q, k, static[pointer], near_points, near_image_points[image], near_weight,
+                                  buffer, q - start)
                     pointer += 1
-                _edge_pairs(p, start, count, m, k * eta / 4.0, eta / k, corners, images[image], length, image_length,
-                            factors[image], work, pairs)
-                _scatter(start, count, pairs, dof, sign, rows)
+                _edge_pairs(p, start, k * eta / 4.0, eta / k, corners, images[image], length, image_length,
+                            factors[image], buffer)
+                _scatter(start, count, buffer, dof, sign, rows)
         _flush(p, rows, dof, sign, place, z, extra)
+
+
+@compiled(fastmath=True)
+def residual(matrix: Any, x: Any, v: Any, out: Any) -> float:
+    """Fill out (N,) with v - Z x in one pass over Z (N, N); the largest of it over the largest |Z| |x| + |v|."""
+    largest = 0.0
+    scale = 0.0
+    magnitude = np.abs(x)
+    for m in range(matrix.shape[0]):
+        re = v[m].real
+        im = v[m].imag
+        size = abs(v[m])
+        for n in range(matrix.shape[1]):
+            z_re, z_im = matrix[m, n].real, matrix[m, n].imag
+            re -= z_re * x[n].real - z_im * x[n].imag
+            im -= z_re * x[n].imag + z_im * x[n].real
+            size += math.sqrt(z_re * z_re + z_im * z_im) * magnitude[n]
+        out[m] = complex(re, im)
+        largest = max(largest, re * re + im * im)
+        scale = max(scale, size)
+    return math.sqrt(largest) / scale
 
 
 @compiled(fastmath=True)

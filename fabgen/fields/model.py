@@ -5,24 +5,26 @@ With the unknowns of the can inside (a), and those of border, patch, loop and ba
     [A  B] [x]   [0]          S = D - B^T A^-1 B,   S y = v,   x = -A^-1 B y
     [B' D] [y] = [v]
 
-A is factorised once for each can and frequency (block elimination).
+A is factorised once for each can and frequency (block elimination); with its factors L and D, B^T A^-1 B is
+(L^-1 B)^T D^-1 (L^-1 B), which needs half of A^-1 B only.
 
 Depends on: errors, fields.
 """
 
 from __future__ import annotations
 
+import math
 from collections import OrderedDict
 from collections.abc import Callable
 from dataclasses import dataclass
-from functools import cached_property
 from typing import Any, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.linalg import lapack, lu_factor
 
 from fabgen.errors import GeometryError, NumericalError
+from fabgen.fields import kernel
+from fabgen.fields.factors import SymmetricFactors, less_product
 from fabgen.fields.far_field import CurrentElements, current_elements
 from fabgen.fields.functions import EdgeFunctions, edge_functions
 from fabgen.fields.geometry import SPEED_OF_LIGHT, CanGeometry, FeedGeometry
@@ -33,13 +35,10 @@ from fabgen.fields.surfaces import feed_mesh
 from fabgen.fields.system import (
     Assembler,
     ComplexArray,
-    Factors,
     QuadratureSettings,
+    add_overlap,
     check_memory,
     dissipated,
-    overlap,
-    symmetric_factors,
-    symmetric_solve,
 )
 
 SYMMETRY_PLANES = (1,)
@@ -65,7 +64,8 @@ class SurfaceImpedance:
 class FieldSolution:
     """Solved feed. Powers are for a peak current of 1 A at the port.
 
-    ``impedance_ohm`` is seen across the gap in the middle of the crossing, before any capacitor.
+    ``impedance_ohm`` is seen across the gap in the middle of the crossing, before any capacitor. ``condition`` is not
+    estimated (nan) for the pairs of a sweep.
     """
 
     frequency_hz: float
@@ -94,8 +94,12 @@ class FieldSolution:
 @dataclass(frozen=True)
 class _KeptCan:
     matrix: ComplexArray
-    factors: Factors
+    factors: SymmetricFactors
     norm: float
+
+    def condition(self) -> float:
+        """Estimated one-norm condition of what was factorised."""
+        return self.norm * self.factors.inverse_norm()
 
 
 @dataclass(frozen=True)
@@ -172,13 +176,14 @@ class FeedSolver:
         matrix = self._full(can.matrix, ready, frequency_hz, surface)
         system = _System(can, matrix, ready.functions.inner)
         currents = system.solve(drive)
-        found = [_solution(ready, frequency_hz, surface, currents, drive, system, matrix)]
+        condition = math.nan if step else system.condition()
+        found = [_solution(ready, frequency_hz, surface, currents, drive, condition, matrix)]
         if step:
             del matrix  # makes room for the next one
             matrix = self._full(self._can_matrix(feed.can, ready, top, surface), ready, top, surface)
             for _ in range(REFINEMENTS):
-                currents = currents + system.solve(drive - matrix @ currents)
-            second = _solution(ready, top, surface, currents, drive, system, matrix)
+                currents = currents + system.solve(_residual(matrix, currents, drive)[0])
+            second = _solution(ready, top, surface, currents, drive, condition, matrix)
             if second.residual > REFINED_RESIDUAL:
                 raise NumericalError(
                     f"the solution {step:+.1%} beside {frequency_hz / 1e6:.1f} MHz is refined to {second.residual:.1e} "
@@ -207,7 +212,7 @@ class FeedSolver:
         assembler = self._can_assemblers.recall(can, lambda: self._can_assembler(ready))
         matrix = assembler.matrix(frequency_hz)
         if surface.can_ohm:
-            matrix += overlap(assembler.mesh, assembler.functions, surface.per_triangle(assembler.mesh))
+            add_overlap(matrix, assembler.mesh, assembler.functions, surface.per_triangle(assembler.mesh))
         return matrix
 
     def _factorised(
@@ -215,7 +220,7 @@ class FeedSolver:
     ) -> _KeptCan:
         matrix = self._can_matrix(can, ready, frequency_hz, surface)
         inner = matrix[: ready.functions.inner, : ready.functions.inner]
-        return _KeptCan(matrix, lu_factor(inner, check_finite=False), float(np.abs(inner).sum(0).max()))
+        return _KeptCan(matrix, SymmetricFactors(inner.copy()), _one_norm(inner))
 
     @staticmethod
     def _full(
@@ -225,51 +230,51 @@ class FeedSolver:
         if surface.loop_ohm or surface.can_ohm:
             values = surface.per_triangle(ready.mesh)
             values[: ready.kept] = 0.0
-            full += overlap(ready.mesh, ready.functions, values)
+            add_overlap(full, ready.mesh, ready.functions, values)
         known = ready.functions.inner + ready.functions.border
         full[:known, :known] += can_matrix
         return full
 
 
 class _System:
-    """The factors of a full matrix by block elimination with the kept factors of the can; keeps no matrix."""
+    """The factors of a full matrix by block elimination with the kept factors of the can; keeps no full matrix."""
 
     def __init__(self, can: _KeptCan, full: ComplexArray, inner: int) -> None:
         self._can = can
-        self._inner = inner
+        self._border = full[:inner, inner:].copy()
+        schur = full[inner:, inner:].copy()
         if inner:
-            self._reduced = symmetric_solve(can.factors, full[:inner, inner:])
-            schur = full[inner:, inner:] - full[inner:, :inner] @ self._reduced
-        else:
-            self._reduced, schur = full[:0], full.copy()
-        self._schur_norm = float(np.abs(schur).sum(0).max())
-        self._factors = symmetric_factors(schur)
+            less_product(schur, *can.factors.halfway(self._border))
+        self._schur_norm = _one_norm(schur)
+        self._factors = SymmetricFactors(schur)
 
     def solve(self, right: NDArray[Any]) -> ComplexArray:
         """Solution for one right-hand side (N,)."""
-        n = self._inner
-        a = symmetric_solve(self._can.factors, right[:n]) if right[:n].any() else np.zeros(n)
-        # B' A^-1 is the transpose of A^-1 B
-        y = symmetric_solve(self._factors, right[n:] - self._reduced.T @ right[:n])
-        return np.concatenate([a - self._reduced @ y, y])
+        n, border, can = len(self._border), self._border, self._can.factors
+        known = right[n:] - border.T @ can.solve(right[:n]) if right[:n].any() else right[n:]
+        y = self._factors.solve(known)
+        return np.concatenate([can.solve(right[:n] - border @ y), y]) if n else y
 
-    @cached_property
     def condition(self) -> float:
         """Estimated one-norm condition of the two factorised blocks, the larger."""
-        outer, _ = lapack.zgecon(self._factors[0], self._schur_norm)
-        inner = lapack.zgecon(self._can.factors[0], self._can.norm)[0] if self._inner else 1.0
-        return float(1 / max(min(outer, inner), 1e-300))
+        outer = self._schur_norm * self._factors.inverse_norm()
+        return max(outer, self._can.condition()) if len(self._border) else outer
 
 
-def _residual(matrix: ComplexArray, currents: ComplexArray, right: NDArray[Any]) -> float:
-    """Largest backward error of a row, |Z x - v| / (|Z| |x| + |v|)."""
-    scale = np.abs(matrix) @ np.abs(currents) + np.abs(right)
-    return float(np.abs(matrix @ currents - right).max() / scale.max())
+def _one_norm(symmetric: ComplexArray) -> float:
+    """Largest sum of a row, as good as one of a column."""
+    return float(max(np.abs(row).sum() for row in symmetric))
+
+
+def _residual(matrix: ComplexArray, currents: ComplexArray, right: NDArray[Any]) -> tuple[ComplexArray, float]:
+    """v - Z x (N,), and the largest backward error of a row, |Z x - v| / (|Z| |x| + |v|)."""
+    left = np.empty(len(currents), dtype=np.complex128)
+    return left, float(kernel.residual(matrix, currents, right.astype(np.complex128), left))
 
 
 def _solution(
     ready: _Prepared, frequency_hz: float, surface: SurfaceImpedance, currents: ComplexArray,
-    drive: NDArray[np.float64], system: _System, matrix: ComplexArray, planes: tuple[int, ...] = SYMMETRY_PLANES,
+    drive: NDArray[np.float64], condition: float, matrix: ComplexArray, planes: tuple[int, ...] = SYMMETRY_PLANES,
 ) -> FieldSolution:
     total = complex(2 * drive @ currents)
     if not np.isfinite(currents).all() or total == 0:
@@ -279,7 +284,7 @@ def _solution(
     return FieldSolution(
         frequency_hz, impedance, current_elements(ready.mesh, ready.functions, planes, unit),
         0.5 * impedance.real, _ohmic_power(ready.mesh, ready.functions, surface, unit),
-        _residual(matrix, currents, drive), system.condition,
+        _residual(matrix, currents, drive)[1], condition,
         ready.mesh.longest_edge_m() * frequency_hz / SPEED_OF_LIGHT, len(ready.mesh.triangles), ready.functions.count,
         2 in planes,
     )
@@ -315,13 +320,12 @@ def solve_mesh(
     assembler = Assembler(mesh, functions, planes, 0, quadrature)
     matrix = assembler.matrix(frequency_hz)
     if surface.can_ohm or surface.loop_ohm:
-        matrix += overlap(mesh, functions, surface.per_triangle(mesh))
+        add_overlap(matrix, mesh, functions, surface.per_triangle(mesh))
     drive = port_drive(mesh, functions)
     ready = _Prepared(mesh, 0, functions, assembler)
     none = np.zeros((0, 0), dtype=np.complex128)
-    can = _KeptCan(none, (none, np.zeros(0, dtype=np.int32)), 0.0)
-    system = _System(can, matrix, 0)
-    return _solution(ready, frequency_hz, surface, system.solve(drive), drive, system, matrix, planes)
+    system = _System(_KeptCan(none, SymmetricFactors(none), 0.0), matrix, 0)
+    return _solution(ready, frequency_hz, surface, system.solve(drive), drive, system.condition(), matrix, planes)
 
 
 def port_drive(mesh: Mesh, functions: EdgeFunctions) -> NDArray[np.float64]:

@@ -17,7 +17,6 @@ from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.linalg import lu_factor, lu_solve
 
 from fabgen.errors import GeometryError
 from fabgen.fields import kernel
@@ -27,7 +26,6 @@ from fabgen.fields.mesh import FloatArray, IntArray, Mesh
 from fabgen.fields.quadrature import triangle_rule
 
 ComplexArray = NDArray[np.complex128]
-Factors = tuple[ComplexArray, NDArray[np.int32]]
 SLICES = 4
 """Shares of the work, a fixed number so that results do not depend on the number of processors."""
 NEAR_COST = 7.0
@@ -125,13 +123,13 @@ class Assembler:
         total = np.zeros((n, n), dtype=np.complex128)
         extra = [np.zeros((int(place.max(initial=-1)) + 1, n), dtype=np.complex128) for place in self._place]
         points, weight = self._points(self._corners[None], self.quadrature.far_points)
-        image_points, _ = self._points(np.stack(self._images), self.quadrature.far_points)
+        image_points = _padded(self._points(np.stack(self._images), self.quadrature.far_points)[0])
         smooth_points, smooth_weight = self._points(self._corners[None], self.quadrature.smooth_points)
         smooth_image_points, _ = self._points(np.stack(self._images), self.quadrature.smooth_points)
-        images = np.ascontiguousarray(np.stack(self._images).transpose(0, 2, 3, 1))
+        images = _padded(np.stack(self._images).transpose(0, 2, 3, 1))
         factors = np.array([r.factor for r in self._reflections])
         f, near = self.functions, self._near
-        image_length = np.ascontiguousarray(f.length_m.T)
+        image_length = _padded(f.length_m.T)
 
         def work(first: int, last: int, part: int) -> None:
             kernel.fill_rows(
@@ -158,6 +156,11 @@ class Assembler:
         work = far + NEAR_COST * np.diff(self._near.start, axis=1).sum(0)
         cumulative = np.concatenate([[0], np.cumsum(work)])
         return np.searchsorted(cumulative, np.linspace(0, cumulative[-1], SLICES + 1)).astype(np.int64)
+
+
+def _padded(values: FloatArray) -> FloatArray:
+    """A block's worth of columns more, so that the compiled code may run over the end."""
+    return np.ascontiguousarray(np.pad(values, [(0, 0)] * (values.ndim - 1) + [(0, kernel.BLOCK)], mode="edge"))
 
 
 def _stacked(tables: list[NearTable]) -> NearTable:
@@ -195,18 +198,18 @@ def _local_overlap(mesh: Mesh, f: EdgeFunctions, per_triangle: NDArray[Any]) -> 
     return np.asarray(local * (np.asarray(per_triangle) / (4 * mesh.areas_m2()))[:, None, None])
 
 
-def overlap(mesh: Mesh, f: EdgeFunctions, per_triangle: NDArray[Any]) -> NDArray[Any]:
-    """Matrix (N, N) of sum over triangles of x_t <f_m, f_n>_t; ``per_triangle`` (T,)."""
-    local = _local_overlap(mesh, f, per_triangle)
-    out = np.zeros((f.count, f.count), dtype=local.dtype)
+def add_overlap(matrix: ComplexArray, mesh: Mesh, f: EdgeFunctions, per_triangle: NDArray[Any]) -> ComplexArray:
+    """Add sum over triangles of x_t <f_m, f_n>_t to ``matrix`` (N, N); ``per_triangle`` (T,)."""
+    used = np.flatnonzero(per_triangle)
+    local = _local_overlap(mesh, f, per_triangle)[used]
     for s in range(2):
         for t in range(2):
-            rows = np.broadcast_to(f.dof[:, :, None, s], local.shape)
-            cols = np.broadcast_to(f.dof[:, None, :, t], local.shape)
-            value = local * f.sign[:, :, None, s] * f.sign[:, None, :, t]
+            rows = np.broadcast_to(f.dof[used, :, None, s], local.shape)
+            cols = np.broadcast_to(f.dof[used, None, :, t], local.shape)
             mask = (rows >= 0) & (cols >= 0)
-            np.add.at(out, (rows[mask], cols[mask]), value[mask])
-    return out
+            value = local * f.sign[used, :, None, s] * f.sign[used, None, :, t]
+            np.add.at(matrix, (rows[mask], cols[mask]), value[mask])
+    return matrix
 
 
 def dissipated(mesh: Mesh, f: EdgeFunctions, per_triangle: FloatArray, currents: ComplexArray) -> float:
@@ -218,28 +221,19 @@ def dissipated(mesh: Mesh, f: EdgeFunctions, per_triangle: FloatArray, currents:
 
 def mirrored_sum(matrix: ComplexArray, block: int = 256) -> ComplexArray:
     """matrix + its transpose, in place and in blocks, so that no second matrix is needed."""
-    n = len(matrix)
-    for i in range(0, n, block):
-        for j in range(i, n, block):
-            upper = matrix[i : i + block, j : j + block]
-            total = upper + matrix[j : j + block, i : i + block].T
-            matrix[i : i + block, j : j + block] = total
-            matrix[j : j + block, i : i + block] = total.T
+    marks = range(0, len(matrix), block)
+
+    def work(pair: tuple[int, int]) -> None:
+        i, j = pair
+        upper = matrix[i : i + block, j : j + block]
+        lower = matrix[j : j + block, i : i + block]
+        upper += lower.T
+        lower[:] = upper.T
+
+    with ThreadPoolExecutor(SLICES) as pool:
+        list(pool.map(work, [(i, j) for i in marks for j in marks if j > i]))
+        list(pool.map(work, [(i, i) for i in marks]))
     return matrix
-
-
-def symmetric_factors(matrix: ComplexArray) -> Factors:
-    """LU factors of a complex symmetric matrix, made in its own memory, which is lost.
-
-    Its transpose is the same matrix in the order of storage that LAPACK wants, so no copy is made.
-    """
-    factors: Factors = lu_factor(matrix.T, overwrite_a=True, check_finite=False)
-    return factors
-
-
-def symmetric_solve(factors: Factors, right: NDArray[Any]) -> ComplexArray:
-    """Solution for one or several right-hand sides (N,) or (N, m)."""
-    return np.asarray(lu_solve(factors, right, check_finite=False))
 
 
 def _run_slices(work: Callable[[int, int, int], None], marks: Any) -> None:

@@ -9,10 +9,11 @@ from typing import Any
 import numpy as np
 import trimesh
 
+from fabgen.fields.factors import SymmetricFactors
 from fabgen.fields.functions import edge_functions
 from fabgen.fields.geometry import SPEED_OF_LIGHT, CanGeometry, FeedGeometry, LoopGeometry
 from fabgen.fields.mesh import Mesh, merged, single
-from fabgen.fields.system import Assembler, check_memory, symmetric_factors, symmetric_solve
+from fabgen.fields.system import Assembler, check_memory
 
 WAVELENGTH_M = 0.2110611
 TARGET_HZ = SPEED_OF_LIGHT / WAVELENGTH_M
@@ -47,7 +48,7 @@ def fill_and_solve(mesh: Mesh) -> Callable[[], Any]:
         functions = edge_functions(mesh)
         check_memory(functions.count)
         matrix = Assembler(mesh, functions).matrix(SPHERE_HZ)
-        return symmetric_solve(symmetric_factors(matrix), np.ones(functions.count, dtype=complex))
+        return SymmetricFactors(matrix).solve(np.ones(functions.count))
 
     return work
 

@@ -62,10 +62,26 @@ def test_potential_on_the_triangle_itself_is_finite_and_known() -> None:
 
 
 def test_kernel_values_against_numpy() -> None:
-    rng = np.random.default_rng(3)
-    points = rng.random((3, 1, 64)) * 4
-    out = np.zeros((2, kernel.BLOCK))
-    kernel._kernel_values(0.1, -0.2, 0.3, 37.0, points, 0, 0, 64, out)
-    r = np.linalg.norm(points[:, 0, :] - np.array([[0.1], [-0.2], [0.3]]), axis=0)
-    exact = np.exp(-1j * 37.0 * r) / (4 * np.pi * r)
-    np.testing.assert_allclose(out[0, :64] + 1j * out[1, :64], exact, rtol=0, atol=2e-10)
+    for offset in np.random.default_rng(3).random((64, 3)) * 4:
+        r = float(np.linalg.norm(offset))
+        exact = 0.7 * np.exp(-1j * 37.0 * r) / (4 * np.pi * r)
+        assert abs(complex(*kernel._green(*offset, 0.7, 37.0)) - exact) < 2e-10
+
+
+@pytest.mark.parametrize("count", [1, 3, 6, 12])
+def test_far_moments_against_the_plain_sum(count: int) -> None:
+    rng = np.random.default_rng(count)
+    bary, weight = triangle_rule(count)
+    test = np.ascontiguousarray((bary @ rng.random((3, 3))).T[:, :, None])
+    source = bary @ (rng.random((kernel.BLOCK, 3, 3)) + 2)
+    buffer = np.zeros(kernel.ROWS * kernel.BLOCK)
+    kernel._far_moments(0, 0, 5.0, test, np.ascontiguousarray(source.transpose(2, 1, 0)), weight, buffer)
+    found = buffer.reshape(kernel.ROWS, kernel.BLOCK)[:16:2] + 1j * buffer.reshape(kernel.ROWS, kernel.BLOCK)[1:16:2]
+    r = test[:, :, 0].T
+    distance = np.linalg.norm(r[None, :, None] - source[:, None], axis=-1)
+    g = np.exp(-5j * distance) / (4 * np.pi * distance) * weight[:, None] * weight
+    expected = [
+        g.sum((1, 2)), *np.einsum("tij,ix->xt", g, r), *np.einsum("tij,tjx->xt", g, source),
+        np.einsum("tij,ix,tjx->t", g, r, source),
+    ]  # fmt: skip
+    np.testing.assert_allclose(found, expected, rtol=0, atol=1e-9)
