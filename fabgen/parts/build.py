@@ -17,7 +17,7 @@ from fabgen.parts.can_printed import can_printed
 from fabgen.parts.can_rolled import can_rolled
 from fabgen.parts.can_tube import can_tube
 from fabgen.parts.can_turned import can_turned
-from fabgen.parts.capacitor import capacitor_parts, coax_stub
+from fabgen.parts.capacitor import capacitor_parts, coax_bond, coax_stub
 from fabgen.parts.choke_printed import choke_printed
 from fabgen.parts.connector import connector, spacer
 from fabgen.parts.fastening import connector_fasteners, foot_fasteners
@@ -56,7 +56,8 @@ def build_parts(feed: Feed) -> tuple[Part, ...]:
     """
     parts: list[Part | None] = [*_can(feed), *foil_patterns(feed), *_loop(feed), *foot_fasteners(feed)]
     parts += [spacer(feed), connector(feed), *connector_fasteners(feed)]
-    parts += [coax_stub(feed), *capacitor_parts(feed), *radome_cap(feed), *bend_strip(feed), *bending_jig(feed)]
+    parts += [coax_stub(feed), coax_bond(feed), *capacitor_parts(feed), *radome_cap(feed)]
+    parts += [*bend_strip(feed), *bending_jig(feed)]
     made = tuple(part for part in parts if part is not None)
     keys = [part.key for part in made]
     if len(set(keys)) < len(keys):

@@ -38,13 +38,19 @@ BEND_RATIO = 1.5
 """Axis radius of the centre conductor's bend over its diameter: an inside radius of one diameter, soft copper."""
 WIDEST_FILLET_MM = 0.3
 """A gap that solder fills by itself. Common practice, no source."""
+LEAST_SLANT_DEG = 0.5
+"""A slant that is worth telling."""
 PTFE_DENSITY = 2200.0
 FILM_COLOUR = (0.93, 0.93, 0.90)
 
 
 @dataclass(frozen=True)
 class Crossing:
-    """Where the crossing runs: the coax's axis, its bend, and the ends along y."""
+    """Where the crossing runs: the coax's axis, its bend, and the ends along y.
+
+    ``slant_deg``: turn of the run about the coax's axis, towards the bar at -y, which a sleeve thinner than the coax
+    lies against.
+    """
 
     x_mm: float
     coax_y_mm: float
@@ -54,6 +60,7 @@ class Crossing:
     open_end_y_mm: float
     core_end_y_mm: float
     far_end_y_mm: float
+    slant_deg: float = 0.0
 
 
 def crossing_of(feed: Feed) -> Crossing:
@@ -84,7 +91,34 @@ def crossing_of(feed: Feed) -> Crossing:
         open_end_y_mm=open_end,
         core_end_y_mm=open_end - capacitor.overlap_mm,
         far_end_y_mm=far,
+        slant_deg=_slant_deg(feed, far) if capacitor.form == "sleeve" else 0.0,
     )
+
+
+def _slant_deg(feed: Feed, far_end_y_mm: float) -> float:
+    """Turn of the run that brings the sleeve against its bar: with the bar's point at (dx, dy) from the coax,
+
+    dx cos(turn) - dy sin(turn) = reach, the sleeve's radius and, beside a round bar's axis, the bar's.
+    """
+    sizes, capacitor = feed.sizes, feed.capacitor
+    x, y = coax_axis(feed)
+    reach, bar = capacitor.outer_mm / 2 + capacitor.tube_wall_mm, -sizes.leg_pitch_mm / 2
+    if sizes.wire_mm is not None:
+        reach, across, along = reach + sizes.wire_mm / 2, x - sizes.leg_x_mm, y - bar
+    else:
+        # Against the far edge of a flat bar, or with the sleeve's end.
+        edge = max(bar - sizes.leg_width_mm / 2, far_end_y_mm)
+        across, along = x - sizes.leg_x_mm - leg_depth_mm(feed) / 2, y - edge
+    turn = math.acos(min(1.0, reach / math.hypot(across, along))) - math.atan2(along, across)
+    return max(0.0, math.degrees(turn))
+
+
+def _slanted(run: Crossing, shape: kernel.Shape) -> kernel.Shape:
+    """The shape turned about the coax's axis by the run's slant."""
+    if run.slant_deg == 0.0:
+        return shape
+    turned = kernel.turned(kernel.moved(shape, -run.x_mm, -run.coax_y_mm), -run.slant_deg)
+    return kernel.moved(turned, run.x_mm, run.coax_y_mm)
 
 
 def coax_stub(feed: Feed) -> Part:
@@ -93,10 +127,9 @@ def coax_stub(feed: Feed) -> Part:
     bottom = floor_bottom_mm(feed)
     jacket = run.jacket_top_mm - bottom
     core = math.pi / 2 * run.bend_mm + (run.coax_y_mm - run.bend_mm) - run.core_end_y_mm
-    gap = run.x_mm - feed.sizes.leg_x_mm - (leg_depth_mm(feed) + row.outer_mm) / 2
     bond = "solder the jacket along the bar at +y"
-    if gap > WIDEST_FILLET_MM:
-        bond += f", with a strip of copper in the gap of {gap:.1f} mm"
+    if bond_gap_mm(feed) > WIDEST_FILLET_MM:
+        bond += ", with the bond strip between them"
     volume = math.pi / 4 * (row.outer_mm**2 * jacket + row.inner_mm**2 * core)
     return Part(
         key="coax-stub",
@@ -113,12 +146,51 @@ def coax_stub(feed: Feed) -> Part:
             ("bared_mm", round(core, 2)),
             ("cut_length_mm", round(jacket + core, 2)),
             ("overlap_mm", feed.capacitor.overlap_mm),
+            ("gap_to_bar_mm", round(bond_gap_mm(feed), 2)),
         ),
         tolerance="bare length +0.5/0 mm, cut after the first measurement",
         finish=bond,
         solid=kernel.once(lambda: _stub_solid(feed)),
         mass_kg=volume * 1e-9 * 5500.0,
         notes=(f"bend the bare centre conductor over {run.bend_mm:.1f} mm radius (of its axis) at the tap height",),
+    )
+
+
+def bond_gap_mm(feed: Feed) -> float:
+    """Between the coax's jacket and the bar that it is bonded to."""
+    outer = tables.coax(feed.job.cable.coax).outer_mm
+    return coax_axis(feed)[0] - feed.sizes.leg_x_mm - (leg_depth_mm(feed) + outer) / 2
+
+
+def coax_bond(feed: Feed) -> Part | None:
+    """The strip of copper that bonds the jacket to its bar where a connector's screw head keeps them apart.
+
+    None where they touch, or where solder alone fills the gap. In tenths, as sheet is sold; solder fills the rest.
+    """
+    gap = bond_gap_mm(feed)
+    if gap <= WIDEST_FILLET_MM:
+        return None
+    run, metal, outer = crossing_of(feed), tables.metal("cu-etp"), tables.coax(feed.job.cable.coax).outer_mm
+    thick, high = math.floor(10 * gap + 1e-6) / 10, run.jacket_top_mm
+    face = run.x_mm - outer / 2
+    low_corner = (face - thick, run.coax_y_mm - outer / 2, 0.0)
+    return Part(
+        key="coax-bond",
+        name="bond strip between coax and bar",
+        process=("laser",),
+        material=metal.key,
+        material_name=metal.name,
+        temper=metal.default_temper.key,
+        colour=metal.colour,
+        quantity=1,
+        sizes=(("thickness_mm", thick), ("width_mm", outer), ("length_mm", round(high, 2))),
+        tolerance="length and width +-0.2 mm",
+        finish="bright; solder to bar and jacket over its whole length",
+        flat=FlatPattern(rectangle((0.0, 0.0), (outer, round(high, 2))), thickness_mm=thick),
+        thickness_mm=thick,
+        solid=kernel.once(lambda: kernel.box(low_corner, (face, run.coax_y_mm + outer / 2, high))),
+        mass_kg=thick * outer * high * 1e-9 * metal.density_kg_per_m3,
+        notes=(f"fills the gap of {gap:.2f} mm: the jacket's current goes to the bar through it",),
     )
 
 
@@ -142,7 +214,7 @@ def _stub_solid(feed: Feed) -> cadquery.Shape:
         [cq.Edge.makeThreePointArc(start, middle, level), cq.Edge.makeLine(level, end)]
     )
     ring = cq.Wire.makeCircle(row.inner_mm / 2, start, cq.Vector(0, 0, 1))
-    core = cq.Solid.sweep(ring, [], path)
+    core = _slanted(run, cq.Solid.sweep(ring, [], path))
     jacket = kernel.rod(
         (run.x_mm, run.coax_y_mm, floor_bottom_mm(feed)), start.toTuple(), row.outer_mm
     )
@@ -172,7 +244,7 @@ def _liner(feed: Feed) -> Part:
         ),
         tolerance="length +-0.5 mm; a sliding fit in the brass tube",
         finish="cut square with a blade",
-        solid=kernel.once(lambda: kernel.tube(start, end, capacitor.outer_mm, capacitor.inner_mm)),
+        solid=kernel.once(lambda: _slanted(run, kernel.tube(start, end, capacitor.outer_mm, capacitor.inner_mm))),
         mass_kg=volume * 1e-9 * PTFE_DENSITY,
     )
 
@@ -184,6 +256,7 @@ def _sleeve(feed: Feed) -> Part:
     start = (run.x_mm, run.open_end_y_mm, run.tap_z_mm)
     end = (run.x_mm, run.far_end_y_mm, run.tap_z_mm)
     volume = math.pi / 4 * (outer**2 - capacitor.outer_mm**2) * length
+    lean = run.slant_deg >= LEAST_SLANT_DEG
     return Part(
         key="capacitor-tube",
         name="capacitor tube",
@@ -201,9 +274,12 @@ def _sleeve(feed: Feed) -> Part:
         ),
         tolerance="length +-0.5 mm; bore a sliding fit on the PTFE tube",
         finish="deburred, soldered along the bar at -y",
-        solid=kernel.once(lambda: kernel.tube(start, end, outer, capacitor.outer_mm)),
+        solid=kernel.once(lambda: _slanted(run, kernel.tube(start, end, outer, capacitor.outer_mm))),
         mass_kg=volume * 1e-9 * metal.density_kg_per_m3,
-        notes=("slide to trim; set with a drop of varnish once the reflection is right",),
+        notes=(
+            *((f"lies against the bar: lead the conductor {run.slant_deg:.1f} degrees towards it",) * lean),
+            "slide to trim; set with a drop of varnish once the reflection is right",
+        ),
     )
 
 

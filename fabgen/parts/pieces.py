@@ -81,6 +81,15 @@ def ear_screw_radius_mm(joint: Joint) -> float:
     return joint.envelope.wall_radius_mm + EAR_REACH_MM - 4.5
 
 
+def floor_tongue_mm(joint: Joint) -> float:
+    """Half width of the tongue in the floor; 0 for a floor too thin for one, which is joined flat.
+
+    The lips beside the groove keep the least wall.
+    """
+    half = joint.floor_mm / 2 - joint.rules.wall_min_mm - joint.rules.clearance_mm * math.sqrt(2)
+    return half if half >= joint.rules.line_mm else 0.0
+
+
 def with_joints(whole: cadquery.Shape, joint: Joint) -> cadquery.Shape:
     """The body with ears, bells and keys, and the ears' screw holes."""
     extra = [*_ears(joint), *_bells(joint)]
@@ -207,10 +216,9 @@ def _tongues(joint: Joint, gap_mm: float) -> list[cadquery.Shape]:
     """Square prisms on edge along the cut at angle 0, larger by ``gap_mm`` normal to their faces."""
     envelope, spread = joint.envelope, gap_mm * math.sqrt(2)
     shapes = []
-    # The lips beside the groove keep the least wall; a thin floor is joined flat.
-    half = joint.floor_mm / 2 - joint.rules.wall_min_mm - joint.rules.clearance_mm * math.sqrt(2)
+    half = floor_tongue_mm(joint)
     start = max(envelope.hub_radius_mm, 0.1 * envelope.wall_radius_mm) + 2.0
-    if half >= joint.rules.line_mm:
+    if half > 0:
         z, h = envelope.bottom_mm + joint.floor_mm / 2, half + spread
         end = envelope.wall_radius_mm + EAR_REACH_MM
         square = [(start - gap_mm, 0.0, z - h), (start - gap_mm, h, z), (start - gap_mm, 0.0, z + h),
@@ -221,5 +229,6 @@ def _tongues(joint: Joint, gap_mm: float) -> list[cadquery.Shape]:
     h = EAR_TONGUE_MM + spread
     for low, high in ear_spans_mm(joint):
         square = [(radius - h, 0.0, low), (radius, h, low), (radius + h, 0.0, low), (radius, -h, low)]
-        shapes.append(kernel.extruded(square, (0, 0, high - low + 1.0)))
+        # Ends short of a bell, so that the groove has no roof.
+        shapes.append(kernel.extruded(square, (0, 0, high - low + 0.3)))
     return shapes

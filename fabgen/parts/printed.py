@@ -15,6 +15,7 @@ from fabgen.parts.pieces import (
     Joint,
     ear_screw_heights_mm,
     ear_screw_radius_mm,
+    floor_tongue_mm,
     in_print,
     piece_solid,
     with_joints,
@@ -96,7 +97,7 @@ def _part(
     pieces = printed.joint.split.pieces
     notes = printed.notes
     if pieces > 1:
-        notes = (*notes, "join with epoxy and the screws through the ears, then line over the joints")
+        notes = (*notes, _joining(printed.joint))
     return Part(
         key=key,
         name=name,
@@ -114,6 +115,18 @@ def _part(
         mass_kg=printed.volume_mm3 / pieces * 1e-9 * plastic.density_kg_per_m3,
         notes=notes,
     )
+
+
+def _joining(joint: Joint) -> str:
+    """How the pieces come together; where the floor is too thin for a tongue, what brings its halves level."""
+    if joint.split.sectors > 1 and not ear_screw_heights_mm(joint):
+        return "bond the pieces with epoxy on a flat plate, with the strips over their joints"
+    how = "join with epoxy and the screws through the ears, then line over the joints"
+    if joint.split.sectors == 1:
+        return "join the rings with epoxy, spigot in bell and key in slot, then line over the joints"
+    if floor_tongue_mm(joint) > 0:
+        return how
+    return f"{how}; the floor has no tongue: join on a flat plate, which brings its faces level"
 
 
 def _posed(printed: Printed, solid: kernel.Shape, sector: int) -> kernel.Shape:

@@ -11,6 +11,7 @@ import sys
 import pytest
 
 from fabgen.errors import GeometryError
+from fabgen.parts import kernel
 from fabgen.parts.build import assembly, build_parts
 from fabgen.parts.capacitor import crossing_of
 from fabgen.sizing.records import Feed
@@ -141,14 +142,41 @@ def test_coax_touches_its_bar_and_core_slides_in_the_tube(form: str) -> None:
         assert a.intersect(b).Volume() < 1e-3
     assert stub.distance(liner) == pytest.approx(0.0, abs=1e-6)
     assert tube.distance(liner) == pytest.approx(0.0, abs=1e-6)
-    # The sleeve on the other bar is 0.4 mm thicker than the coax and sets the distance of both: a gap for solder.
-    assert stub.distance(loop) < 0.25
+    # Both lie against their bars; what is left is a fillet of solder.
+    assert stub.distance(loop) < 0.01
     assert stub.intersect(loop).Volume() < 1e-3
-    assert tube.distance(loop) < 0.25
-    box, core = tube.BoundingBox(1e-6), stub.BoundingBox(1e-6)
+    assert tube.distance(loop) < 0.06
+    assert tube.intersect(loop).Volume() < 1e-3
+    # Seen along the crossing, which is turned about the coax so that the sleeve meets its bar.
+    run = crossing_of(feed)
+    assert run.slant_deg < 5.0
+    box, core = (
+        kernel.turned(kernel.moved(s, -run.x_mm, -run.coax_y_mm), run.slant_deg).BoundingBox(1e-6) for s in (tube, stub)
+    )
     overlap = box.ymax - core.ymin
     assert overlap == pytest.approx(feed.capacitor.overlap_mm, abs=1e-3)
     assert box.ylen >= feed.capacitor.overlap_max_mm
+
+
+@pytest.mark.parametrize("connector", ["sma-4", "sma-2", "n-4", "bnc-4"])
+@pytest.mark.parametrize("form", ["wire", "sheet"])
+def test_the_jackets_bond_to_its_bar_is_drawn_as_made(form: str, connector: str) -> None:
+    """Solder fills 0.3 mm by itself (common practice); a wider gap has its strip of copper, drawn and listed."""
+    feed = with_cable(sample_feed(form, "turned"), connector=connector)
+    parts = {p.key: p for p in build_parts(feed)}
+    stub, loop = parts["coax-stub"], parts["loop"].solid()
+    gap = dict(stub.sizes)["gap_to_bar_mm"]
+    assert stub.solid().distance(loop) == pytest.approx(gap, abs=0.02)
+    assert ("coax-bond" in parts) == (gap > 0.3) == (form == "sheet" and connector in {"n-4", "bnc-4"})
+    if "coax-bond" in parts:
+        strip = parts["coax-bond"].solid()
+        assert "bond strip" in stub.finish
+        assert strip.distance(stub.solid()) == pytest.approx(0.0, abs=1e-6)
+        assert strip.distance(loop) < 0.1
+        assert strip.intersect(stub.solid()).Volume() < 1e-3
+        assert strip.intersect(loop).Volume() < 1e-3
+        above = dict(stub.sizes)["jacket_mm"] - feed.sizes.floor_mm
+        assert dict(parts["coax-bond"].sizes)["length_mm"] == pytest.approx(above, abs=0.011)
 
 
 def test_plate_capacitor_has_its_overlap_and_film() -> None:
