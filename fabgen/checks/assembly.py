@@ -158,14 +158,15 @@ def solder_heat(context: Context) -> Iterator[Fault]:
 
 @check("ASSY-202", "caution", source="metals table: aluminium and stainless do not take soft solder")
 def metal_takes_solder(context: Context) -> Iterator[Fault]:
-    """A wire loop or coax that is soldered to a floor that does not take solder."""
+    """Feet of a loop or a coax that are soldered to a floor that does not take solder."""
     if context.printed:
         return
     metal = tables.metal(context.job.can.metal)
     if metal.solderable:
         return
     wire = context.sizes.wire_mm
-    joint = "wire feet and coax" if wire else "the coax"
+    screwed = any(part.key == "screw-foot" for part in context.parts)
+    joint = "wire feet and coax" if wire else "the coax" if screwed else "feet and coax"
     feet = f" thread the feet M{wire:g} with nuts on both sides," if wire in {3.0, 4.0, 5.0, 6.0} else ""
     yield Fault(
         part="floor",

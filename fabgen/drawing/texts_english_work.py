@@ -192,6 +192,10 @@ WORK: dict[str, str] = {
         "Set the folded loop on the floor with the gap towards +x and screw both feet down. Correct the height by "
         "bending at the feet, not at the ring."
     ),
+    "step.loop.soldered.do": (
+        "Set the folded loop on the floor with the gap towards +x, level on a block {height} mm high to the sheet's "
+        "middle, and fix both feet flat. Correct the height by bending at the feet, not at the ring."
+    ),
     "step.loop.do": "Set the loop on the floor with the gap towards +x and fix both feet.",
     "step.loop.tools": "height blocks, square, calliper; iron or screwdriver.",
     "step.loop.wire-bond.join": (
@@ -213,6 +217,10 @@ WORK: dict[str, str] = {
     "step.loop.wire.join": "solder both feet to the floor inside and outside, fillets all round the wire.",
     "step.loop.sheet.join": (
         "screws with toothed washers on bright metal; sweat the feet with solder where the floor takes it."
+    ),
+    "step.loop.soldered.join": (
+        "tin floor and feet, solder each foot flat with a fillet all round; where the floor takes no solder, to a "
+        "plate of brass or copper screwed to it; on foil hot and short, on paint with conductive glue."
     ),
     "step.loop.measure": (
         "height {height} ±{height_tolerance} mm at four points of the loop; bars {pitch} mm apart, centre to centre; "

@@ -34,11 +34,13 @@ def connector_fasteners(feed: Feed) -> tuple[Part, ...]:
 
 
 def foot_fasteners(feed: Feed) -> tuple[Part, ...]:
-    """Screws from outside and nuts on the feet of a sheet loop; a wire loop is soldered and has none."""
+    """Screws from outside and nuts on the feet of a sheet loop; feet that are soldered have none."""
     sizes = feed.sizes
     if sizes.conductor != "strip" or sizes.sheet_mm is None:
         return ()
     screw, at = foot_screw(feed), centres(foot_holes(feed))
+    if screw is None:
+        return ()
     bottom = floor_bottom_mm(feed)
     length = screw_length_mm(sizes.sheet_mm - bottom + screw.nut_height_mm + PROUD_MM)
     return (

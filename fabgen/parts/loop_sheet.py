@@ -54,16 +54,17 @@ from fabgen.parts.kernel import once
 from fabgen.parts.making import metal_part
 from fabgen.parts.records import Part
 from fabgen.sizing.records import Feed
-from fabgen.stock import tables
+from fabgen.stock import joints, tables
 from fabgen.stock.records import Screw
 
-FOOT_SCREWS = ("M4", "M3", "M2.5", "M2")
-"""Screws for the feet, the largest that the bar's width takes."""
+SOLDERED_FOOT_MM = 2.0
+"""Flat length of a foot without a screw, at least: room for a fillet and a tip. Common practice, no source."""
 
 
 @dataclass(frozen=True)
 class TabPlan:
-    """One tab, all lengths of its folded form. ``sign`` is -1 for tabs inward, +1 outward."""
+    """One tab, all lengths of its folded form. ``sign`` is -1 for tabs inward, +1 outward. A foot that is soldered has
+    no screw, and its hole is 0."""
 
     sign: float
     root_x_mm: float
@@ -74,33 +75,20 @@ class TabPlan:
     foot_width_mm: float
     foot_hole_mm: float
     hole_from_bend_mm: float
-    screw: str
+    screw: str | None
 
 
-def _pad_mm(screw: Screw, thickness_mm: float) -> float:
-    """Width of a foot about that screw: 1.5 t, and at least 1 mm, of sheet on each side of its hole."""
-    return screw.clearance_medium_mm + 2 * max(1.0, 1.5 * thickness_mm)
-
-
-def foot_screw(feed: Feed) -> Screw:
-    """Largest screw that the bar's width takes; for narrower bars M2, in a foot wider than its bar.
-
-    Raises GeometryError when the two feet would meet.
-    """
+def foot_screw(feed: Feed) -> Screw | None:
+    """Screw of the feet; None where they are soldered. Raises GeometryError where the metal takes no solder."""
     s = feed.sizes
-    thickness = s.sheet_mm or 0.0
-    for key in FOOT_SCREWS:
-        screw = tables.screw(key)
-        if _pad_mm(screw, thickness) <= s.leg_width_mm:
-            return screw
-    least = tables.screw(FOOT_SCREWS[-1])
-    room = s.leg_pitch_mm - max(1.0, thickness)
-    if _pad_mm(least, thickness) > room:
+    screw = joints.foot_screw(s.leg_width_mm, s.leg_pitch_mm, s.sheet_mm or 0.0, feed.job.wavelength_mm)
+    metal = tables.metal(feed.job.loop.metal)
+    if screw is None and not metal.solderable:
         raise GeometryError(
-            f"bars {s.leg_width_mm:g} mm wide at a pitch of {s.leg_pitch_mm:g} mm take no foot screw; make the pitch "
-            f"{_pad_mm(least, thickness) + max(1.0, thickness):.1f} mm, use thinner sheet, or use a wire loop"
+            f"bars {s.leg_width_mm:g} mm wide at a pitch of {s.leg_pitch_mm:g} mm take no foot screw and {metal.name} "
+            "takes no solder; use a loop of brass or copper, or a larger pitch"
         )
-    return least
+    return screw
 
 
 def _foot_width(feed: Feed, pad_mm: float) -> float:
@@ -129,22 +117,26 @@ def tab_plan(feed: Feed) -> TabPlan:
             f"of {r:g} mm inside radius; use a bend radius of {max(0.0, r - (2 * t - bar) / 2):.2f} mm or thinner sheet"
         )
     screw = foot_screw(feed)
+    half = s.leg_width_mm / 2
+    ends = s.leg_x_mm - sign * mid, s.leg_pitch_mm / 2 - half, s.leg_pitch_mm / 2 + half
+    if screw is None:
+        foot = max(SOLDERED_FOOT_MM, tables.limit("flange_min_thicknesses", feed.job.overrides).value * t)
+        return TabPlan(sign, *ends, bar, foot, s.leg_width_mm, 0.0, 0.0, None)
     hole = screw.clearance_medium_mm
     from_bend = max(hole / 2 + 2 * t, screw.head_mm / 2 + 0.5)
     # The screw's head below must clear the connector's flange or its spacer.
     reach = connector_reach_mm(feed) + screw.head_mm / 2 + 0.5
     from_bend = max(from_bend, s.leg_x_mm - mid - (coax_axis(feed)[0] - reach))
     foot = from_bend + max(hole / 2 + 1.5 * t, screw.head_mm / 2)
-    half = s.leg_width_mm / 2
-    return TabPlan(
-        sign, s.leg_x_mm - sign * mid, s.leg_pitch_mm / 2 - half, s.leg_pitch_mm / 2 + half, bar, foot,
-        _foot_width(feed, _pad_mm(screw, t)), hole, from_bend, screw.key,
-    )
+    width = _foot_width(feed, joints.foot_pad_mm(screw, t))
+    return TabPlan(sign, *ends, bar, foot, width, hole, from_bend, screw.key)
 
 
 def foot_holes(feed: Feed) -> tuple[FloorHole, ...]:
-    """Screw holes of the feet in the floor."""
+    """Screw holes of the feet in the floor; none for feet that are soldered."""
     plan, s = tab_plan(feed), feed.sizes
+    if plan.screw is None:
+        return ()
     x = s.leg_x_mm - s.leg_bend_radius_mm - (s.sheet_mm or 0.0) / 2 - plan.hole_from_bend_mm
     y = s.leg_pitch_mm / 2
     return tuple(FloorHole("loop foot", Circle(x, side * y, plan.foot_hole_mm)) for side in (1, -1))
@@ -232,14 +224,14 @@ def folded_loop(feed: Feed) -> FoldedSheet:
     ring = _ring(feed, plan, zone)
     out = Bend(90.0 if plan.sign < 0 else -90.0, r, k, 1)
     foot = _foot(feed, plan)
-    hole = Circle(width / 2, plan.hole_from_bend_mm, plan.foot_hole_mm)
+    holes = () if plan.screw is None else (Circle(width / 2, plan.hole_from_bend_mm, plan.foot_hole_mm),)
     faces = [Face("ring", ring)]
     root, near, far = plan.root_x_mm, plan.near_y_mm, plan.far_y_mm
     for name, a, b in (("+y", near, far), ("-y", -far, -near)):
         ends = ((root, a), (root, b)) if plan.sign > 0 else ((root, b), (root, a))
         edge = edge_of(ring, *ends)
         faces.append(Face(f"bar {name}", box_face(width, plan.bar_mm), (), "ring", (0, edge), down))
-        faces.append(Face(f"foot {name}", foot, (hole,), f"bar {name}", (0, 2), out))
+        faces.append(Face(f"foot {name}", foot, holes, f"bar {name}", (0, 2), out))
     return FoldedSheet(tuple(faces), t)
 
 
@@ -277,12 +269,21 @@ def _refuse_crossing(feed: Feed, plan: TabPlan, zone_mm: float) -> None:
         )
 
 
+def _tools(plan: TabPlan) -> str:
+    """What the folds ask of the tools: the ring's band stands beside the fold lines, the feet beside the die."""
+    where = "inside the ring" if plan.sign < 0 else "outside the ring"
+    return (
+        f"feet first, then both bars at once, {where}: punch and die no longer than {2 * plan.far_y_mm:.0f} mm and "
+        f"reaching no more than {plan.bar_mm:.0f} mm beside the fold, or two bars of that length in a vice"
+    )
+
+
 def loop_sheet(feed: Feed) -> Part:
     """The sheet loop as a part in the feed's frame; the top side is the one seen from the aperture."""
     s, plan = feed.sizes, tab_plan(feed)
     sheet = folded_loop(feed)
     base = Frame((0.0, 0.0, s.loop_height_mm), LEVEL.u, LEVEL.v, LEVEL.n)
-    sizes = (
+    sizes: tuple[tuple[str, float], ...] = (
         ("loop_diameter_mm", s.loop_diameter_mm),
         ("strip_width_mm", s.strip_width_mm or 0.0),
         ("loop_height_mm", s.loop_height_mm),
@@ -292,9 +293,11 @@ def loop_sheet(feed: Feed) -> Part:
         ("leg_bend_radius_mm", s.leg_bend_radius_mm),
         ("foot_mm", plan.foot_mm),
         ("foot_width_mm", plan.foot_width_mm),
-        ("foot_hole_mm", plan.foot_hole_mm),
-        ("hole_from_bend_mm", plan.hole_from_bend_mm),
     )
+    feet = "feet: soldered flat to the floor"
+    if plan.screw is not None:
+        sizes += (("foot_hole_mm", plan.foot_hole_mm), ("hole_from_bend_mm", plan.hole_from_bend_mm))
+        feet = f"feet: {plan.screw} screws from below, nuts on the feet"
     return metal_part(
         "loop",
         "loop with bars",
@@ -306,5 +309,5 @@ def loop_sheet(feed: Feed) -> Part:
         flat=flat_pattern(sheet, "side towards the aperture"),
         thickness_mm=s.sheet_mm,
         solid=once(partial(folded_solid, sheet, base, "loop")),
-        notes=(rule_text(feed.job.limits), f"feet: {plan.screw} screws from below, nuts on the feet"),
+        notes=(rule_text(feed.job.limits), _tools(plan), feet),
     )

@@ -18,7 +18,7 @@ from fabgen.errors import JobError, NoSolutionError
 from fabgen.job import Job
 from fabgen.sizing.capacitor_part import sleeve_tube_mm
 from fabgen.sizing.rounding import round_to
-from fabgen.stock import tables
+from fabgen.stock import joints, tables
 from fabgen.stock.records import Coax, Metal
 from fabgen.theory.bending import min_inside_radius_mm
 
@@ -35,7 +35,10 @@ LEAST_PLATE_MM = 1.0
 LEAST_RADIUS_SHARE = 0.5
 FIT_SHARE = 0.8
 """Outer edges of the bars over the ring's inner radius: beyond this the tabs leave no ring beside them."""
-LEAST_FOOT_SCREW = "M2"
+SHARP_CIRCUMFERENCE = 0.9
+"""Circumference over the wavelength of the smallest ring of the selectivity front."""
+LEAST_STRIP_THICKNESSES = 1.5
+"""Narrowest strip that a laser cuts and a hand folds without twisting it. Common practice, no source."""
 
 
 @dataclass(frozen=True)
@@ -79,19 +82,30 @@ def loop_stock(job: Job) -> LoopStock:
         axis = WIRE_AXIS_RADIUS_RATIO * wire if inside is None else inside + wire / 2
         pitch = job.fixed.leg_pitch_mm or round_to(wire + gap, step)
         _refuse_touching(pitch, wire)
-        crossing = min(sleeve_crossing_mm(coax), CROSSING_LIMIT_WAVELENGTHS * wavelength)
-        return LoopStock(wire, None, None, wire, pitch, axis, max(round_to(crossing, step), step))
+        return LoopStock(wire, None, None, wire, pitch, axis, crossing_width_mm(job))
     sheet = job.loop.sheet_mm or 0.0
     _refuse_thick(sheet, wavelength, "loop.sheet_mm")
-    width = job.loop.strip_width_mm or _strip_width_mm(sheet, wavelength, step)
+    width = job.loop.strip_width_mm or round_to(_strip_width_mm(sheet, wavelength, gap), step)
     _refuse_thick(width, wavelength, "loop.strip_width_mm")
     inside = job.loop.bend_radius_mm
     if inside is None:
         inside = _round_up(_inside_radius_mm(job, metal, sheet), step)
     pitch = job.fixed.leg_pitch_mm or round_to(width + gap, step)
     _refuse_touching(pitch, width)
-    crossing = round_to(max(PLATE_WAVELENGTHS * wavelength, LEAST_PLATE_MM), step)
-    return LoopStock(None, sheet, width, width, pitch, inside, max(crossing, step))
+    stock = LoopStock(None, sheet, width, width, pitch, inside, crossing_width_mm(job))
+    _refuse_unsoldered_feet(stock, metal, wavelength)
+    return stock
+
+
+def crossing_width_mm(job: Job) -> float:
+    """Width of the flat strip that stands for the crossing, in the shop's resolution: of coax and sleeve behind a wire
+    loop, of the capacitor's plates behind a sheet one."""
+    wavelength, step = job.wavelength_mm, job.limits.resolution_mm
+    if job.loop.form == "wire":
+        width = min(sleeve_crossing_mm(tables.coax(job.cable.coax)), CROSSING_LIMIT_WAVELENGTHS * wavelength)
+    else:
+        width = max(PLATE_WAVELENGTHS * wavelength, LEAST_PLATE_MM)
+    return max(round_to(width, step), step)
 
 
 def _inside_radius_mm(job: Job, metal: Metal, sheet_mm: float) -> float:
@@ -106,16 +120,26 @@ def _round_up(value: float, step: float) -> float:
     return round_to(math.ceil(value / step - 1e-9) * step, step)
 
 
-def _strip_width_mm(sheet_mm: float, wavelength: float, step: float) -> float:
-    """Width of ring and bars: 0.034 wavelengths, or what a foot with the smallest screw needs (1.5 thicknesses, at
-    least 1 mm, on each side of its hole)."""
-    foot = tables.screw(LEAST_FOOT_SCREW).clearance_medium_mm + 2 * max(1.0, 1.5 * sheet_mm)
-    if foot > wavelength / 10:
-        raise NoSolutionError(
-            f"sheet of {sheet_mm:g} mm needs bars {foot:.1f} mm wide for an {LEAST_FOOT_SCREW} screw in their feet, "
-            f"more than a tenth of the wavelength ({wavelength / 10:.1f} mm); use a wire loop, or thinner sheet"
-        )
-    return round_to(max(STRIP_WIDTH_WAVELENGTHS * wavelength, foot), step)
+def _strip_width_mm(sheet_mm: float, wavelength: float, gap_mm: float) -> float:
+    """Width of ring and bars: 0.034 wavelengths, or what a foot with the smallest screw needs where nut and bars of
+    that width suit the ring; else the feet are soldered."""
+    wanted = max(STRIP_WIDTH_WAVELENGTHS * wavelength, LEAST_STRIP_THICKNESSES * sheet_mm)
+    screw = tables.screw(joints.FOOT_SCREWS[-1])
+    pad = joints.foot_pad_mm(screw, sheet_mm)
+    inner = SHARP_CIRCUMFERENCE * wavelength / (2 * math.pi) - pad / 2
+    if joints.foot_screw_suits(screw, wavelength) and pad + gap_mm / 2 < FIT_SHARE * inner:
+        return max(wanted, pad)
+    return wanted
+
+
+def _refuse_unsoldered_feet(stock: LoopStock, metal: Metal, wavelength: float) -> None:
+    sheet = stock.sheet_mm or 0.0
+    if metal.solderable or joints.foot_screw(stock.leg_width_mm, stock.leg_pitch_mm, sheet, wavelength) is not None:
+        return
+    raise NoSolutionError(
+        f"bars {stock.leg_width_mm:g} mm wide, {stock.leg_pitch_mm:g} mm apart, take no foot screw at a wavelength of "
+        f"{wavelength:.0f} mm; their feet are soldered, but {metal.name} takes no soft solder; use brass or copper"
+    )
 
 
 def sleeve_crossing_mm(coax: Coax) -> float:

@@ -1,6 +1,6 @@
 """When nothing fits: the nearest job that does, found by really matching it.
 
-Depends on: errors, job, progress.
+Depends on: errors, job, progress, stock.
 """
 
 from __future__ import annotations
@@ -11,6 +11,7 @@ from typing import Any
 from fabgen.errors import FabgenError
 from fabgen.job import Job, typical_sheet_mm, typical_wire_mm
 from fabgen.progress import Progress
+from fabgen.stock import tables
 
 MOST_TRIALS = 6
 
@@ -53,6 +54,8 @@ def _relaxations(job: Job) -> Iterator[tuple[str, str, dict[str, Any]]]:
     else:
         sheet = typical_sheet_mm(wavelength)
         plain = {"sheet_mm": sheet, "strip_width_mm": None, "bend_radius_mm": None}
+        if not tables.metal(job.loop.metal).solderable:
+            yield 'set loop.metal = "cuzn37"', "loop", {"metal": "cuzn37", "temper": None}
         yield f"use sheet of {sheet:g} mm and leave the strip's width out", "loop", plain
     if job.loop.form == "sheet":
         wire = typical_wire_mm(wavelength)

@@ -1,4 +1,4 @@
-"""How the sheets of a can are held together, as far as it bounds the can's sizes.
+"""How sheets are held together and to the floor, as far as it bounds the feed's sizes.
 
 Depends on: stock.tables.
 """
@@ -9,6 +9,32 @@ import math
 
 from fabgen.stock import tables
 from fabgen.stock.records import Screw
+
+FOOT_SCREWS = ("M4", "M3", "M2.5", "M2")
+"""Screws for the feet of a sheet loop, the largest that the bar's width takes."""
+NUT_WAVELENGTHS = 1 / 12
+"""A nut wider than this would be a part of the antenna. Common practice, no source."""
+
+
+def foot_pad_mm(screw: Screw, thickness_mm: float) -> float:
+    """Width of a foot about its screw: 1.5 t, and at least 1 mm, of sheet on each side of the hole."""
+    return screw.clearance_medium_mm + 2 * max(1.0, 1.5 * thickness_mm)
+
+
+def foot_screw_suits(screw: Screw, wavelength_mm: float) -> bool:
+    """Whether the screw's nut is small enough to lie in the feed."""
+    return screw.nut_across_flats_mm <= NUT_WAVELENGTHS * wavelength_mm
+
+
+def foot_screw(width_mm: float, pitch_mm: float, thickness_mm: float, wavelength_mm: float) -> Screw | None:
+    """The screw for the feet of bars of this width and pitch: the largest that the width takes, for narrower bars M2
+    in a foot wider than its bar; None where the feet would meet or the nut is too large: such feet are soldered."""
+    suited = [screw for screw in map(tables.screw, FOOT_SCREWS) if foot_screw_suits(screw, wavelength_mm)]
+    for screw in suited:
+        if foot_pad_mm(screw, thickness_mm) <= width_mm:
+            return screw
+    room = pitch_mm - max(1.0, thickness_mm)
+    return suited[-1] if suited and foot_pad_mm(suited[-1], thickness_mm) <= room else None
 
 
 def joint_screw(bore_mm: float) -> Screw:

@@ -9,13 +9,22 @@ import pytest
 from fabgen.errors import JobError, NoSolutionError
 from fabgen.job import Job
 from fabgen.sizing.layout import leg_place, loop_stock
+from fabgen.sizing.relax import relaxed_jobs
 from fabgen.sizing.rounding import round_to
+from fabgen.stock.joints import foot_screw
 from tests.samples import sample_job
 
 
 def changed(job: Job, section: str, **values: object) -> Job:
     data = job.model_dump()
     data[section].update(values)
+    return Job.model_validate(data)
+
+
+def thin_sheet_job(frequency_mhz: float, sheet_mm: float) -> Job:
+    data = sample_job("sheet").model_dump()
+    data["target"]["frequency_mhz"] = frequency_mhz
+    data["loop"]["sheet_mm"] = sheet_mm
     return Job.model_validate(data)
 
 
@@ -46,7 +55,7 @@ def test_fixed_pitch_is_kept() -> None:
 
 
 def test_narrow_bars_are_widened_for_their_foot_screw() -> None:
-    job = sample_job("sheet", frequency_mhz=5760.0)
+    job = sample_job("sheet", frequency_mhz=3400.0)
     assert loop_stock(changed(job, "loop", sheet_mm=0.5)).leg_width_mm >= 4.4
 
 
@@ -67,10 +76,20 @@ def test_bars_that_nearly_touch_are_refused() -> None:
         loop_stock(changed(sample_job(), "fixed", leg_pitch_mm=4.1))
 
 
-def test_strip_that_its_foot_screw_widens_past_a_tenth_of_the_wavelength_is_refused() -> None:
-    job = changed(sample_job("sheet", frequency_mhz=8000.0), "loop", sheet_mm=1.0)
-    with pytest.raises(NoSolutionError, match="use a wire loop"):
-        loop_stock(job)
+@pytest.mark.parametrize(("frequency_mhz", "sheet_mm"), [(5760.0, 0.5), (8000.0, 1.0), (12_000.0, 0.3)])
+def test_bars_keep_their_width_where_a_nut_would_be_part_of_the_antenna(frequency_mhz: float, sheet_mm: float) -> None:
+    # M2: 4 mm across flats (ISO 4032), 2.4 mm hole (ISO 273); 0.034 wavelengths of strip are 1.8 mm at 5760 MHz.
+    stock = loop_stock(thin_sheet_job(frequency_mhz, sheet_mm))
+    wanted = max(0.034 * 299_792.458 / frequency_mhz, 1.5 * sheet_mm)
+    assert stock.leg_width_mm == pytest.approx(wanted, abs=0.05)
+    assert foot_screw(stock.leg_width_mm, 3.0, sheet_mm, 299_792.458 / frequency_mhz) is None
+
+
+def test_feet_that_are_soldered_need_a_metal_that_takes_solder() -> None:
+    job = changed(thin_sheet_job(12_000.0, 0.3), "cable", coax="semi-rigid-047")
+    with pytest.raises(NoSolutionError, match="takes no soft solder; use brass or copper"):
+        loop_stock(changed(job, "loop", metal="en-aw-5754"))
+    assert 'set loop.metal = "cuzn37"' in dict(relaxed_jobs(changed(job, "loop", metal="en-aw-5754")))
 
 
 def test_bend_and_pitch_that_leave_no_loop() -> None:
