@@ -114,6 +114,8 @@ def _special(context: Context, kind: str) -> str:
         return "form"
     if kind == "body" and "can-1" in keys:
         return "pieces"
+    if kind == "loop" and job.loop.form == "sheet" and "screw-foot" not in keys:
+        return "soldered"
     if job.can.make == "printed" and kind in {"lining", "loop", "choke"}:
         lining = tables.lining(job.can.lining).kind
         return {"lining": lining, "loop": f"{lining}-{job.loop.form}", "choke": "printed"}[kind]
