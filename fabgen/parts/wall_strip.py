@@ -142,9 +142,13 @@ def wall_flat(wall: Wall, corner_mm: float) -> FlatPattern:
 
 
 def _fold_lines(wall: Wall) -> tuple[FoldLine, ...]:
-    """Upright folds (corners, step) in order along the strip, then the tabs, which are folded last."""
+    """Upright folds in order along the strip, then the tabs.
+
+    The step is folded first, while the strip is flat; then the corners, and the tabs last, once the wall is closed.
+    """
     t, tab = wall.path.thickness_mm, wall.tab
     folds: list[FoldLine] = []
+    upright = sum(1 for piece in wall.path.stretches if piece.radius_mm and not piece.rolled)
     for at, piece in zip(wall.path.starts_mm(), wall.path.stretches, strict=False):
         if piece.rolled or not piece.radius_mm:
             continue
@@ -155,7 +159,7 @@ def _fold_lines(wall: Wall) -> tuple[FoldLine, ...]:
         folds.append(
             FoldLine(
                 number, (s, 0.0), (s, wall.depth_mm), -piece.sweep_deg, inside, piece.k_factor, piece.flat_mm,
-                deduction, number,
+                deduction, (number + 1) % upright + 1,
             )
         )
     zone = bend_allowance(90.0, tab.inside_radius_mm, tab.k_factor, t)

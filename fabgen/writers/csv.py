@@ -1,6 +1,6 @@
 """The tables of a pack as comma-separated values: UTF-8, header row with units in the names, point as decimal mark.
 
-Depends on: sizing.records, parts (records, bend_table), checks.records.
+Depends on: sizing.records, parts (records, bend_rule, bend_table), checks.records.
 """
 
 from __future__ import annotations
@@ -12,6 +12,7 @@ from dataclasses import fields
 
 from fabgen.checks.records import Finding
 from fabgen.errors import GeometryError
+from fabgen.parts.bend_rule import DEFINITION
 from fabgen.parts.bend_table import fold_edges_mm
 from fabgen.parts.records import Part
 from fabgen.sizing.records import PatternCut
@@ -119,6 +120,7 @@ def bend_table_csv(parts: Sequence[Part]) -> str:
     header = (
         "part", "order", "fold", "angle_deg", "direction", "seen_from", "inside_radius_mm", "k_factor", "allowance_mm",
         "deduction_mm", "thickness_mm", "x1_mm", "y1_mm", "x2_mm", "y2_mm", "left_edge_mm", "right_edge_mm",
+        "k_definition",
     )  # fmt: skip
     return csv_text(
         header,
@@ -127,7 +129,7 @@ def bend_table_csv(parts: Sequence[Part]) -> str:
                 part.key, fold.order, fold.number, _number(abs(fold.angle_deg)), "up" if fold.angle_deg > 0 else "down",
                 part.flat.face, _number(fold.inside_radius_mm), f"{fold.k_factor:.4f}", _number(fold.allowance_mm),
                 _number(fold.deduction_mm), _number(part.flat.thickness_mm), *map(_number, (*fold.start, *fold.end)),
-                *map(_number, fold_edges_mm(part.flat, fold)),
+                *map(_number, fold_edges_mm(part.flat, fold)), DEFINITION,
             )
             for part in parts
             if part.flat is not None

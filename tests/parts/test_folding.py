@@ -3,8 +3,10 @@ forms, and the CAD kernel's own measures."""
 
 from __future__ import annotations
 
+import itertools
 import math
 import random
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -13,7 +15,9 @@ import shapely
 
 from fabgen.errors import GeometryError
 from fabgen.parts.bend_table import fold_edges_mm
-from fabgen.parts.contour import Circle, Contour, Vertex, area_mm2, rectangle, sampled
+from fabgen.parts.can_sheet import can_wall, choke_wall
+from fabgen.parts.choke_ring import folded_ring
+from fabgen.parts.contour import Circle, Contour, Vertex, area_mm2, polygon, rectangle, sampled
 from fabgen.parts.folding import (
     Bend,
     Face,
@@ -26,7 +30,11 @@ from fabgen.parts.folding import (
     folded_volume_mm3,
     frames,
 )
+from fabgen.parts.loop_sheet import folded_loop
+from fabgen.parts.wall_strip import wall_flat
 from tests.parts.flat_folder import fold
+from tests.parts.test_loops import sheet_feed
+from tests.samples import sample_feed
 
 
 def random_sheet(seed: int) -> FoldedSheet:
@@ -159,3 +167,85 @@ def test_fold_lines_are_measured_to_the_first_edge_on_either_side() -> None:
     pattern = flat_pattern(sheet)
     zone = allowance_mm(bend, 1.0)
     assert sorted(fold_edges_mm(pattern, pattern.folds[0])) == pytest.approx([8.0 + zone / 2, 30.0 + zone / 2])
+
+
+def _half_way(sheet: FoldedSheet, now: int, share: float) -> FoldedSheet:
+    """Bends before ``now`` in the order done, those of ``now`` turned by a share, later ones flat."""
+    faces = []
+    for face in sheet.faces:
+        bend = face.bend
+        if bend is not None:
+            done = 1.0 if bend.order < now else share if bend.order == now else 0.0
+            bend = replace(bend, angle_deg=bend.angle_deg * done)
+        faces.append(replace(face, bend=bend))
+    return FoldedSheet(tuple(faces), sheet.thickness_mm)
+
+
+def _pierced(sheet: FoldedSheet) -> list[tuple[str, str]]:
+    """Pairs of faces, not joined by a bend, of which the second one's edge goes through the first one's material."""
+    at, found = frames(sheet), []
+    edges = {f.name: np.array([at[f.name].at(x, y) for x, y in sampled(f.outline, 0.5)]) for f in sheet.faces}
+    for face, other in itertools.permutations(sheet.faces, 2):
+        if other.parent == face.name or face.parent == other.name:
+            continue
+        frame = at[face.name]
+        local = (edges[other.name] - np.array(frame.origin)) @ np.array([frame.u, frame.v, frame.n]).T
+        ahead = np.roll(local, -1, axis=0)
+        across = np.flatnonzero(local[:, 2] * ahead[:, 2] < 0)
+        share = local[across, 2] / (local[across, 2] - ahead[across, 2])
+        spots = local[across] + share[:, None] * (ahead[across] - local[across])
+        region = shapely.Polygon(sampled(face.outline, 0.1))
+        if any(region.contains(shapely.Point(x, y)) for x, y, _ in spots):
+            found.append((face.name, other.name))
+    return found
+
+
+@pytest.mark.parametrize("kind", ["inward", "outward", "choke ring"])
+def test_folding_in_the_stated_order_never_runs_the_part_into_itself(kind: str) -> None:
+    """Every bend of the order is turned in steps of 5 degrees with the earlier ones done and the later ones flat."""
+    if kind == "choke ring":
+        feed = sample_feed("wire", "rolled", metal="cuzn37", choke=True)
+        outer = choke_wall(feed)
+        assert outer is not None
+        sheet = folded_ring(feed, can_wall(feed), outer)
+    else:
+        sheet = folded_loop(sheet_feed(kind))
+    for now in sorted({f.bend.order for f in sheet.faces if f.bend}):
+        for share in np.linspace(0.0, 1.0, 19):
+            assert _pierced(_half_way(sheet, now, float(share))) == [], (now, share)
+
+
+def test_a_fold_that_runs_into_the_part_is_seen_by_that_measure() -> None:
+    bend = Bend(130.0, 1.0, 0.33)
+    wide = polygon([(-10, 0), (40, 0), (40, 40), (30, 40), (0, 40), (-10, 40)])
+    plate, long = Face("plate", wide), box_face(30.0, 38.0)
+    sheet = FoldedSheet(
+        (plate, Face("web", box_face(30.0, 12.0), (), "plate", (0, 3), bend),
+         Face("flange", long, (), "web", (0, 2), replace(bend, order=2))), 1.0,
+    )  # fmt: skip
+    assert ("plate", "flange") in _pierced(sheet)
+
+
+@pytest.mark.parametrize("flats", [6, 8, 12])
+def test_a_folded_wall_gets_its_step_first_its_corners_in_turn_and_its_tabs_last(flats: int) -> None:
+    """The strip's way after each fold of the order: no two stretches cross until the lap closes."""
+    feed = sample_feed("wire", "folded", flats=flats)
+    wall = can_wall(feed)
+    folds = wall_flat(wall, 0.5).folds
+    order = [f.number for f in sorted(folds, key=lambda f: (f.order, f.number))]
+    corners = list(range(1, flats + 1))
+    assert order == [flats + 1, flats + 2, *corners, *range(flats + 3, len(folds) + 1)]
+    assert len({f.order for f in folds if f.number <= flats + 2}) == flats + 2
+    for count in range(flats + 3):
+        ready = set(order[:count])
+        points, heading, at, number = [np.zeros(2)], 0.0, np.zeros(2), 0
+        for piece in wall.path.stretches:
+            turn = 0.0
+            if piece.radius_mm:
+                number += 1
+                turn = piece.sweep_deg if number in ready else 0.0
+            heading += turn / 2
+            at = at + piece.middle_mm * np.array([math.cos(math.radians(heading)), math.sin(math.radians(heading))])
+            heading += turn / 2
+            points.append(at)
+        assert shapely.LineString(points).is_simple, count
