@@ -154,6 +154,7 @@ def can_printed(feed: Feed) -> tuple[Part, ...]:
         volume_mm3=shell_volume_mm3(body, holes, flange_holes) - _insert_volume(len(at)),
         joint=joint,
         whole=whole,
+        tied_by="the screwed choke ring",
     )
     parts = [*printed_parts(printed), *ear_fasteners(printed)]
     if at and body.ledge is not None:

@@ -159,7 +159,7 @@ def coax_stub(feed: Feed) -> Part:
 def bond_gap_mm(feed: Feed) -> float:
     """Between the coax's jacket and the bar that it is bonded to."""
     outer = tables.coax(feed.job.cable.coax).outer_mm
-    return coax_axis(feed)[0] - feed.sizes.leg_x_mm - (leg_depth_mm(feed) + outer) / 2
+    return max(0.0, coax_axis(feed)[0] - feed.sizes.leg_x_mm - (leg_depth_mm(feed) + outer) / 2)
 
 
 def coax_bond(feed: Feed) -> Part | None:

@@ -77,6 +77,7 @@ def choke_printed(feed: Feed) -> tuple[Part, ...]:
         volume_mm3=revolved_volume_mm3(points) - len(at) * math.pi / 4 * hole**2 * (high - low),
         joint=_joint(feed, points, at),
         whole=whole,
+        tied_by="the can's ledge",
     )
     length = screw_length_mm(feed.sizes.floor_mm + GRIP_MM)
     fixing = screws(

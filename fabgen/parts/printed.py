@@ -30,7 +30,8 @@ from fabgen.stock import tables
 class Printed:
     """A printed body before it is cut: what its parts say, how it is cut, and the builder of the whole.
 
-    ``volume_mm3`` is the whole body's without joints; the pieces share it equally for their masses.
+    ``volume_mm3`` is the whole body's without joints; the pieces share it equally for their masses. ``tied_by``: what
+    lies over the joints of sectors that have no room for ears.
     """
 
     key: str
@@ -44,6 +45,7 @@ class Printed:
     joint: Joint
     whole: Callable[[], kernel.Shape]
     upside_down: bool = False
+    tied_by: str = ""
 
 
 def printed_parts(printed: Printed) -> tuple[Part, ...]:
@@ -97,7 +99,7 @@ def _part(
     pieces = printed.joint.split.pieces
     notes = printed.notes
     if pieces > 1:
-        notes = (*notes, _joining(printed.joint))
+        notes = (*notes, _joining(printed))
     return Part(
         key=key,
         name=name,
@@ -117,10 +119,11 @@ def _part(
     )
 
 
-def _joining(joint: Joint) -> str:
+def _joining(printed: Printed) -> str:
     """How the pieces come together; where the floor is too thin for a tongue, what brings its halves level."""
+    joint = printed.joint
     if joint.split.sectors > 1 and not ear_screw_heights_mm(joint):
-        return "bond the pieces with epoxy on a flat plate, with the strips over their joints"
+        return f"bond the pieces with epoxy on a flat plate, with {printed.tied_by} over their joints"
     how = "join with epoxy and the screws through the ears, then line over the joints"
     if joint.split.sectors == 1:
         return "join the rings with epoxy, spigot in bell and key in slot, then line over the joints"

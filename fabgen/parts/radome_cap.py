@@ -125,6 +125,7 @@ def radome_cap(feed: Feed) -> tuple[Part, ...]:
         joint=_joint(feed, cap),
         whole=cap.solid,
         upside_down=True,
+        tied_by="the strips",
     )
     return (*printed_parts(printed), *_strips(printed, feed.sizes.can_bore_mm / 2 - 1.0))
 

@@ -4,10 +4,38 @@ from __future__ import annotations
 
 import dataclasses
 import math
+from pathlib import Path
 from typing import Any
 
+from fabgen.job_reader import read_job
 from fabgen.sizing.records import Feed, Sizes
-from tests.samples import sample_feed, sample_sizes
+from tests.samples import sample_capacitor, sample_feed, sample_sizes
+
+TEMPLATES = Path(__file__).parents[2] / "templates"
+TEMPLATE_SIZES = {
+    "hydrogen-brass": Sizes(
+        can_bore_mm=217.1, can_depth_mm=53.4, wall_mm=2.4, floor_mm=3.2, choke=None, can_flats=0,
+        loop_diameter_mm=67.2, loop_height_mm=31.7, conductor="strip", wire_mm=None, strip_width_mm=7.2, sheet_mm=1.5,
+        leg_x_mm=23.767, leg_pitch_mm=16.7, leg_width_mm=7.2, leg_bend_radius_mm=1.5, tap_height_mm=12.5,
+        crossing_width_mm=3.8, series_capacitor_pf=1.37, tabs="inward",
+    ),
+    "c-band-5760": Sizes(
+        can_bore_mm=58.3, can_depth_mm=18.75, wall_mm=2.4, floor_mm=3.2, choke=None, can_flats=0,
+        loop_diameter_mm=17.4, loop_height_mm=10.4, conductor="wire", wire_mm=1.0, strip_width_mm=None, sheet_mm=None,
+        leg_x_mm=8.57496355677387, leg_pitch_mm=4.2, leg_width_mm=1.0, leg_bend_radius_mm=1.5, tap_height_mm=3.3,
+        crossing_width_mm=1.55, series_capacitor_pf=0.236, tabs=None,
+    ),
+}  # fmt: skip
+"""Sizes of the two printed templates as an earlier run sized them: for their geometry only, no test reads them as
+results."""
+
+
+def template_feed(name: str) -> Feed:
+    """A printed template's own job with sizes near its own, and the sample's capacitor."""
+    job, sizes = read_job(TEMPLATES / f"{name}.toml"), TEMPLATE_SIZES[name]
+    feed = sample_feed("wire", "printed")
+    capacitor = sample_capacitor(job, sizes)
+    return dataclasses.replace(feed, job=job, sizes=sizes, capacitor=capacitor)
 
 
 def with_bed(feed: Feed, bed_mm: tuple[float, float, float]) -> Feed:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -16,39 +17,88 @@ def trimesh_of(shape: Any, chord_mm: float = 0.02) -> trimesh.Trimesh:
     return trimesh.Trimesh(mesh.vertices_mm, mesh.triangles, process=False)
 
 
-def overhangs_mm(shape: Any, limit_deg: float = 45.0) -> list[float]:
-    """Widths of all patches that face down flatter than the limit and are not on the bed (z = 0).
+@dataclass(frozen=True)
+class Overhang:
+    """One patch of the skin that faces down too flat: the longest span that a bridge has to cross, and how far the
+    plastic reaches out where nothing holds its other end (a ledge)."""
 
-    The width of a patch is the shorter side of its box seen from above: the span a bridge has to cross.
+    bridge_mm: float
+    ledge_mm: float
+    height_mm: float
+
+
+def overhangs_mm(shape: Any, limit_deg: float = 45.0) -> list[Overhang]:
+    """All patches that face down flatter than the limit and are not on the bed (z = 0).
+
+    An edge of a patch is held where the skin beyond it goes down, and free where it goes up. At points spread over
+    the patch, lines in 36 directions run to its edges: the shortest line between two held edges is the bridge there;
+    where there is none, the way to the nearest held edge is a ledge.
     """
     mesh = trimesh_of(shape)
     down = mesh.face_normals[:, 2] < -np.cos(np.radians(limit_deg - 0.5))
     off_bed = mesh.triangles[:, :, 2].max(axis=1) > 1e-3
-    faces = np.flatnonzero(down & off_bed & (mesh.area_faces > 1e-9))
-    parent = {int(f): int(f) for f in faces}
-
-    def root(f: int) -> int:
-        while parent[f] != f:
-            parent[f] = parent[parent[f]]
-            f = parent[f]
-        return f
-
-    for a, b in mesh.face_adjacency:
-        if int(a) in parent and int(b) in parent:
-            parent[root(int(a))] = root(int(b))
-    groups: dict[int, list[int]] = {}
-    for f in parent:
-        groups.setdefault(root(f), []).append(f)
-    widths = []
-    for group in groups.values():
-        points = mesh.triangles[group][:, :, :2].reshape(-1, 2)
-        widths.append(min(_width(points, a) for a in np.radians(np.arange(0, 180, 5))))
-    return widths
+    chosen = down & off_bed & (mesh.area_faces > 1e-9)
+    return [_overhang(mesh, np.array(sorted(group)), chosen) for group in _groups(mesh, chosen)]
 
 
-def _width(points: Any, angle: float) -> float:
-    along = points @ np.array([np.cos(angle), np.sin(angle)])
-    return float(along.max() - along.min())
+def _groups(mesh: trimesh.Trimesh, chosen: np.ndarray) -> list[list[int]]:
+    inner = mesh.face_adjacency[chosen[mesh.face_adjacency].all(axis=1)]
+    faces = np.flatnonzero(chosen)
+    if not len(faces):
+        return []
+    return [list(g) for g in trimesh.graph.connected_components(inner, nodes=faces, min_len=1)]
+
+
+def _overhang(mesh: trimesh.Trimesh, faces: np.ndarray, chosen: np.ndarray) -> Overhang:
+    starts, ends, held = _edges(mesh, faces, chosen)
+    corners = mesh.triangles[faces][:, :, :2]
+    weights = np.array([[1, 1, 1], [8, 1, 1], [1, 8, 1], [1, 1, 8], [1, 4, 4], [4, 1, 4], [4, 4, 1]], float)
+    points = np.einsum("ki,tij->tkj", weights / weights.sum(1, keepdims=True), corners).reshape(-1, 2)
+    spans = [_span(point, starts, ends, held) for point in points]
+    bridges = [bridge for bridge, _ in spans if np.isfinite(bridge)]
+    ledges = [ledge for bridge, ledge in spans if not np.isfinite(bridge)]
+    height = float(mesh.triangles[faces][:, :, 2].max())
+    return Overhang(max(bridges, default=0.0), max(ledges, default=0.0), height)
+
+
+def _edges(mesh: trimesh.Trimesh, faces: np.ndarray, chosen: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+    """Boundary edges of a patch seen from above, and which of them are held from below."""
+    here = set(map(int, faces))
+    starts, ends, held = [], [], []
+    for (a, b), edge in zip(mesh.face_adjacency, mesh.face_adjacency_edges, strict=True):
+        if (int(a) in here) == (int(b) in here):
+            continue
+        beyond = int(b) if int(a) in here else int(a)
+        ends_of = mesh.vertices[edge]
+        tip = mesh.vertices[next(v for v in mesh.faces[beyond] if v not in edge)]
+        along = ends_of[1] - ends_of[0]
+        foot = ends_of[0] + along * np.dot(tip - ends_of[0], along) / np.dot(along, along)
+        starts.append(ends_of[0][:2])
+        ends.append(ends_of[1][:2])
+        held.append(tip[2] < foot[2] - 1e-9)
+    return np.array(starts), np.array(ends), np.array(held)
+
+
+def _span(point: np.ndarray, starts: np.ndarray, ends: np.ndarray, held: np.ndarray) -> tuple[float, float]:
+    """(shortest bridge through the point, or inf; shortest way to a held edge)."""
+    edge = ends - starts
+    bridge, ledge = np.inf, np.inf
+    for angle in np.radians(np.arange(0.0, 180.0, 5.0)):
+        way = np.array([np.cos(angle), np.sin(angle)])
+        across = way[0] * edge[:, 1] - way[1] * edge[:, 0]
+        off = starts - point
+        with np.errstate(divide="ignore", invalid="ignore"):
+            along = (off[:, 0] * edge[:, 1] - off[:, 1] * edge[:, 0]) / across
+            share = (off[:, 0] * way[1] - off[:, 1] * way[0]) / across
+        met = (np.abs(across) > 1e-12) & (share >= -1e-9) & (share <= 1 + 1e-9)
+        ends_here = []
+        for sign in (1.0, -1.0):
+            reach = np.where(met & (sign * along > 1e-9), sign * along, np.inf)
+            nearest = int(np.argmin(reach))
+            ends_here.append(float(reach[nearest]) if held[nearest] else np.inf)
+        bridge = min(bridge, sum(ends_here))
+        ledge = min(ledge, *ends_here)
+    return bridge, ledge
 
 
 def wall_thicknesses_mm(shape: Any, count: int = 400, seed: int = 1) -> np.ndarray:
