@@ -17,17 +17,28 @@ import os
 import secrets
 import shutil
 import socket
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from pathlib import Path
+from typing import Any
 
 from fabgen.errors import FabgenError, OutputError
 
 RECORD_NAME = "record.json"
+CHECKSUM_KEY = "record_sha256"
+"""Where a record carries its own checksum."""
 _PREFIX = ".fabgen-"
 _AT_FDCWD = -100
 _RENAME_EXCHANGE = 2
 _TRIES = 100
 _READ_CHUNK = 1 << 20
+
+
+def record_checksum(record: Mapping[str, Any]) -> str:
+    """SHA-256 over all of a record but its own checksum, in one form whatever order and spaces a file has: keys
+    sorted, no spaces, UTF-8."""
+    rest = {key: value for key, value in record.items() if key != CHECKSUM_KEY}
+    text = json.dumps(rest, sort_keys=True, separators=(",", ":"), ensure_ascii=False)
+    return hashlib.sha256(text.encode("utf-8")).hexdigest()
 
 
 def sha256_of(path: Path) -> str:

@@ -17,7 +17,7 @@ from fabgen.parts.records import Part
 from fabgen.progress import Progress, Silent
 from fabgen.sizing.records import Feed
 from fabgen.writers import csv as tables
-from fabgen.writers.record import record_data, record_text
+from fabgen.writers.record import as_recorded, record_data, record_text
 from fabgen.writers.touchstone import touchstone_text
 
 
@@ -85,6 +85,7 @@ def write_pack(
     progress = progress or Silent()
     chosen = chosen_groups(options.only)
     require_self_checks(feed)
+    feed = as_recorded(feed)
     progress.step("planning the parts and checking them")
     parts, findings = build_content(feed)
     require_no_stop(findings, options.despite)

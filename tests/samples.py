@@ -7,13 +7,15 @@ import math
 from typing import Any
 
 from fabgen.job import Job
+from fabgen.sizing.capacitor_part import capacitor_part
+from fabgen.sizing.layout import crossing_width_mm
+from fabgen.sizing.modes import bore_modes
 from fabgen.sizing.records import (
     CapacitorPart,
     ChokeSizes,
     Feed,
     GainPoint,
     JointCurrent,
-    Mode,
     PatternCut,
     Predicted,
     Response,
@@ -25,6 +27,8 @@ from fabgen.sizing.records import (
     WallCurrent,
     Yield,
 )
+from fabgen.sizing.tolerances import deviations
+from fabgen.stock import tables
 
 
 def sample_job(
@@ -84,12 +88,13 @@ def sample_sizes(job: Job) -> Sizes:
         wire_mm=job.loop.wire_mm,
         strip_width_mm=None if wire else width,
         sheet_mm=job.loop.sheet_mm,
-        leg_x_mm=mm(leg_x),
+        # A wire's bars follow from its bend, to every digit.
+        leg_x_mm=leg_x if wire else mm(leg_x),
         leg_pitch_mm=pitch,
         leg_width_mm=job.loop.wire_mm or width,
         leg_bend_radius_mm=bend,
         tap_height_mm=mm(0.061 * wl),
-        crossing_width_mm=3.7,
+        crossing_width_mm=crossing_width_mm(job),
         series_capacitor_pf=1.06,
         tabs=None if wire else "inward",
     )
@@ -104,13 +109,17 @@ def sample_predicted(job: Job) -> Predicted:
     theta = tuple(float(t) for t in range(-180, 181, 3))
     cut = tuple(9.0 - 12 * (t / 60) ** 2 if abs(t) < 90 else -18.0 for t in theta)
     cross = tuple(-25.0 for _ in theta)
+    aperture, radiated = 0.87 * 0.99 * 0.985 * (1 - 0.12), 10**-0.003
+    gain_of_dish = aperture * radiated * (math.pi * 1e3 * job.dish.diameter_m / job.wavelength_mm) ** 2
     return Predicted(
-        impedance_ohm=50.3 + 105.7j, return_loss_db=32.0, bandwidth_mhz=42.0, bandwidth_return_loss_db=20.0,
-        aperture_efficiency=0.74, illumination_efficiency=0.87, phase_efficiency=0.99,
-        polarisation_efficiency=0.985, spillover=0.12, edge_taper_db=-11.5, half_power_beamwidth_e_deg=58.0,
-        half_power_beamwidth_h_deg=60.0, directivity_dbi=9.3, front_to_back_db=19.0, phase_centre_mm=40.0,
-        ohmic_loss_db=0.03, radiation_efficiency=0.993, spillover_noise_k=12.0, feed_noise_k=2.0,
-        system_noise_k=55.0, g_over_t_db_per_k=9.0, wall_current=sample_wall_current(job),
+        impedance_ohm=50.3 + 105.7j, return_loss_db=32.0, bandwidth_mhz=42.0,
+        bandwidth_return_loss_db=job.wishes.return_loss_db,
+        aperture_efficiency=aperture, illumination_efficiency=0.87, phase_efficiency=0.99,
+        polarisation_efficiency=0.985, spillover=0.12, edge_taper_db=-11.5, half_power_beamwidth_e_deg=60.0,
+        half_power_beamwidth_h_deg=60.0, directivity_dbi=9.0, front_to_back_db=19.0, phase_centre_mm=40.0,
+        ohmic_loss_db=0.03, radiation_efficiency=radiated, spillover_noise_k=12.0, feed_noise_k=290 * (1 - radiated),
+        system_noise_k=55.0, g_over_t_db_per_k=10 * math.log10(gain_of_dish / 55.0),
+        wall_current=sample_wall_current(job),
         gain=(GainPoint(900.0, -20.0, -29.0, -0.2), GainPoint(f0, 9.0, 0.0, -32.0)),
         patterns=(PatternCut(90.0, theta, cut, cross), PatternCut(0.0, theta, cut, cross)),
         response=Response(freqs, refl, gain),
@@ -129,22 +138,29 @@ def sample_wall_current(job: Job) -> WallCurrent:
     )
 
 
+def sample_capacitor(job: Job, sizes: Sizes) -> CapacitorPart:
+    """A sleeve for the sample's capacitance, whatever the loop is made of."""
+    return capacitor_part(
+        "sleeve", sizes.series_capacitor_pf, job.target.frequency_mhz, coax=tables.coax(job.cable.coax),
+        plate_width_mm=sizes.crossing_width_mm, transmit_w=job.wishes.transmit_w,
+    )  # fmt: skip
+
+
 def sample_feed(
     form: str = "wire", make: str = "rolled", frequency_mhz: float = 1420.406, choke: bool = False, **can: Any
 ) -> Feed:
     """A whole feed record."""
     job = sample_job(form, make, frequency_mhz, choke, **can)
-    capacitor = CapacitorPart(
-        form="sleeve", capacitance_pf=1.06, minimum_pf=0.6, maximum_pf=1.9, overlap_mm=6.2, overlap_max_mm=12.0,
-        inner_mm=0.92, outer_mm=2.985, tube_wall_mm=0.5, plate_width_mm=0.0, film_mm=0.0, relative_permittivity=2.05,
-        pf_per_mm=0.097, peak_voltage_v=0.0, formula="C = 2 pi e0 er L / ln(D/d) + end correction", source="sample",
-    )
+    sizes = sample_sizes(job)
     names = ("loop_diameter_mm", "loop_height_mm", "tap_height_mm", "can_bore_mm", "can_depth_mm", "leg_pitch_mm")
-    sens = tuple(Sensitivity(n, 0.3, -12.0 / (i + 1), -1.0, 3.6 / (i + 1)) for i, n in enumerate(names))
+    tolerances = {row.size: row.tolerance_mm for row in deviations(job, sizes)}
+    slopes = {name: 12.0 / (i + 1) for i, name in enumerate(names)}
+    sens = tuple(Sensitivity(n, tolerances[n], -slopes[n], -1.0, tolerances[n] * slopes[n]) for n in names)
     return Feed(
-        job=job, sizes=sample_sizes(job), predicted=sample_predicted(job), capacitor=capacitor, sensitivities=sens,
+        job=job, sizes=sizes, predicted=sample_predicted(job), capacitor=sample_capacitor(job, sizes),
+        sensitivities=sens,
         yields=Yield(2000, 20, 0.01, 0.82, 0.99, names[:3], 1.0, -1.2, 28.0, 27.0),
-        modes=(Mode("TE11", 792.0, True, True, "dominant"), Mode("TM01", 1034.0, True, False, "symmetry")),
+        modes=bore_modes(sizes.can_bore_mm, job.target.frequency_mhz),
         self_checks=(SelfCheck("power balance", 0.001, 0.005, True, "radiated against input power"),),
         settings=Settings(12.0, 900, 700, 9, 2.0, 1.0, 0.09, "sample"),
         remarks=(),

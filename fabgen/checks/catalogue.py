@@ -2,16 +2,16 @@
 
     python -m fabgen.checks.catalogue > fabgen/checks/CATALOGUE.md
 
-Depends on: checks (run, readback, registry), stock.
+Depends on: checks (pack_register, readback, registry, solid), stock.
 """
 
 from __future__ import annotations
 
 import sys
 
-from fabgen.checks.readback import PACK_CODES, SOURCE
+from fabgen.checks.pack_register import PACK_CODES, SHEETS_CODE, SHEETS_TITLE, SOURCE
+from fabgen.checks.readback import LOADED
 from fabgen.checks.registry import GROUPS, Check, all_checks, source_text
-from fabgen.checks.run import MODULES
 from fabgen.checks.solid import SOLID_CODES
 from fabgen.checks.solid import SOURCE as SOLID_SOURCE
 from fabgen.stock import tables
@@ -34,6 +34,7 @@ def catalogue_text() -> str:
         lines += [_row(entry) for entry in rows]
         if group == "CONS":
             lines += [f"| {code} | stop | {title} |  | {SOURCE} |" for code, (title, _) in sorted(PACK_CODES.items())]
+            lines.append(f"| {SHEETS_CODE} | stop | {SHEETS_TITLE} |  | {SOURCE} |")
             lines += [f"| {c} | {level} | {title} |  | {SOLID_SOURCE} |" for c, (level, title) in SOLID_CODES.items()]
         lines.append("")
     lines += ["## Limits", "", "| key | value | meaning | source |", "|---|---|---|---|"]
@@ -50,5 +51,5 @@ def _row(entry: Check) -> str:
     return "| " + " | ".join(cell.replace("|", "/") for cell in cells) + " |"
 
 
-if __name__ == "__main__" and MODULES:
+if __name__ == "__main__" and LOADED:
     sys.stdout.write(catalogue_text())

@@ -3,18 +3,20 @@
 The consistency checks of a feed run again on the feed and parts rebuilt from the files; the checks here compare
 files with files. ``check_pack`` is what a user runs on a pack that came by mail.
 
-Depends on: checks (registry, read_files, run, consistency), errors, parts, stock.
+Depends on: checks (registry, pack_register, read_files, run, consistency, derived), errors, parts, stock.
 """
 
 from __future__ import annotations
 
 import hashlib
 import math
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
 from fabgen import __version__
+from fabgen.checks import derived
+from fabgen.checks.pack_register import PACK_CODES, SOLID_CODES, SOURCE, differs, pack_check
 from fabgen.checks.read_files import (
     RECORD,
     Pack,
@@ -30,26 +32,16 @@ from fabgen.checks.records import Finding
 from fabgen.checks.registry import Context, Fault, all_checks, findings_of
 from fabgen.checks.run import MODULES, gathered
 from fabgen.errors import FabgenError
+from fabgen.folder import CHECKSUM_KEY, record_checksum
 from fabgen.parts.build import build_parts
 from fabgen.parts.contour import Outline, bounds_mm, length_mm
 from fabgen.parts.records import FlatPattern, Part
 from fabgen.stock import tables
 
-PackCheck = Callable[[Pack], Iterator[Fault]]
-PACK_CODES: dict[str, tuple[str, PackCheck]] = {}
-SOURCE = "the pack's own files"
+LOADED = (*MODULES, derived)
+"""The modules whose import registers checks."""
 BOX_MM = 0.05
 """Boxes and lengths of files that count as equal: rounding of tables and chord error of meshes."""
-
-
-def pack_check(code: str) -> Callable[[PackCheck], PackCheck]:
-    """Register a check of a written pack; all of them are of severity stop."""
-
-    def register(function: PackCheck) -> PackCheck:
-        PACK_CODES[code] = (" ".join((function.__doc__ or "").split()), function)
-        return function
-
-    return register
 
 
 def check_pack(folder: Path | str, solids: bool = False) -> tuple[Finding, ...]:
@@ -58,23 +50,23 @@ def check_pack(folder: Path | str, solids: bool = False) -> tuple[Finding, ...]:
     ``solids`` also reads every STEP file with the CAD kernel (seconds). Raises JobError when the folder is no
     pack or its record is not whole."""
     pack = read_pack(folder)
+    return findings_of_pack(pack, solids)
+
+
+def findings_of_pack(pack: Pack, solids: bool = False) -> tuple[Finding, ...]:
+    """Like ``check_pack``, for a pack that was read already."""
     context = Context(pack.feed, pack.parts)
     accepted = set(pack.record["despite"])
     consistency = [
-        entry for entry in all_checks() if entry.code.startswith("CONS-") and entry.code not in accepted and MODULES
+        entry for entry in all_checks() if entry.code.startswith("CONS-") and entry.code not in accepted and LOADED
     ]
     found = [finding for entry in consistency for finding in gathered(findings_of(entry, context))]
     for code, (_, function) in sorted(PACK_CODES.items()):
-        if code == "CONS-208" and not solids:
+        if code in SOLID_CODES and not solids:
             continue
         faults = function(pack)
         found += [Finding(code, "stop", f.part, f.feature, f.value, f.limit, SOURCE, f.message, f.cure) for f in faults]
     return tuple(found)
-
-
-def _differs(part: str, feature: str, value: str, limit: str, message: str) -> Fault:
-    cure = f"write the pack anew; do not use {part} as it is: {value} is wrong"
-    return Fault(part, feature, value, limit, message, cure)
 
 
 @pack_check("CONS-201")
@@ -88,11 +80,19 @@ def files_are_whole(pack: Pack) -> Iterator[Fault]:
     }
     for name in sorted(set(listed) | set(present)):
         if name not in present:
-            yield _differs(name, "file", "missing", "in the record", f"{name} is in the record but not in the folder")
+            yield differs(name, "file", "missing", "in the record", f"{name} is in the record but not in the folder")
         elif name not in listed:
-            yield _differs(name, "file", "extra", "in the record", f"{name} is in the folder but not in the record")
+            yield differs(name, "file", "extra", "in the record", f"{name} is in the folder but not in the record")
         elif hashlib.sha256(present[name].read_bytes()).hexdigest() != listed[name]:
-            yield _differs(name, "file", "changed", listed[name][:12], f"{name} was changed after the pack was written")
+            yield differs(name, "file", "changed", listed[name][:12], f"{name} was changed after the pack was written")
+
+
+@pack_check("CONS-211")
+def record_is_whole(pack: Pack) -> Iterator[Fault]:
+    """The record against the SHA-256 over all its other fields that it carries itself."""
+    stated, found = str(pack.record.get(CHECKSUM_KEY, "none")), record_checksum(pack.record)
+    if stated != found:
+        yield differs(RECORD, CHECKSUM_KEY, stated[:12], found[:12], f"{RECORD} was changed after the pack was written")
 
 
 @pack_check("CONS-202")
@@ -104,7 +104,7 @@ def parts_list(pack: Pack) -> Iterator[Fault]:
     for part in pack.parts:
         row = rows.get(part.key)
         if row is None:
-            yield _differs(part.key, "parts.csv", "missing", "one row", f"{part.key} has no row in parts.csv")
+            yield differs(part.key, "parts.csv", "missing", "one row", f"{part.key} has no row in parts.csv")
             continue
         for feature, value, wanted in (
             ("quantity", row["quantity"], str(part.quantity)),
@@ -112,16 +112,16 @@ def parts_list(pack: Pack) -> Iterator[Fault]:
             ("temper", row["temper"], part.temper),
         ):
             if value != wanted:
-                yield _differs(
+                yield differs(
                     part.key, feature, value, wanted, f"parts.csv has {feature} {value}, the record {wanted}"
                 )
         listed = dict(text.rsplit(" ", 1) for text in row["sizes"].split("; ") if text)
         for name, size in part.sizes:
             # The table has six significant digits.
             if name not in listed or abs(float(listed[name]) - size) > 1e-5 * abs(size) + 1e-6:
-                yield _differs(part.key, name, listed.get(name, "missing"), f"{size:g}", f"{name} differs in parts.csv")
+                yield differs(part.key, name, listed.get(name, "missing"), f"{size:g}", f"{name} differs in parts.csv")
         if abs(float(row["mass_kg_each"]) - part.mass_kg) > 1e-4:
-            yield _differs(part.key, "mass", row["mass_kg_each"], f"{part.mass_kg:.4f}", "mass differs from the record")
+            yield differs(part.key, "mass", row["mass_kg_each"], f"{part.mass_kg:.4f}", "mass differs from the record")
 
 
 @pack_check("CONS-203")
@@ -139,11 +139,11 @@ def drawings_agree(pack: Pack) -> Iterator[Fault]:
                 continue
             second = _measures(outlines_of(other))
             if len(first) != len(second) or any(abs(a - b) > 1e-4 for a, b in zip(first, second, strict=False)):
-                yield _differs(
+                yield differs(
                     other.name, "outlines", "other contours", main.name, f"{other.name} and {main.name} differ"
                 )
         if part.thickness_mm is not None and f"_{part.thickness_mm:g}mm_" not in main.name:
-            yield _differs(
+            yield differs(
                 main.name, "thickness", "other name", f"{part.thickness_mm:g} mm", "file name and record differ"
             )
 
@@ -173,17 +173,17 @@ def orders_agree(pack: Pack) -> Iterator[Fault]:
 def _order_row(pack: Pack, note: str, row: dict[str, str], part: Part | None, revision: str) -> Iterator[Fault]:
     key = row["part"]
     if part is None:
-        yield _differs(note, key, "unknown", "a part of the record", f"order/{note} has {key}, the record has not")
+        yield differs(note, key, "unknown", "a part of the record", f"order/{note} has {key}, the record has not")
         return
     wanted = {
         "quantity": str(part.quantity), "material": part.material, "temper": part.temper, "revision": revision,
     }  # fmt: skip
     for feature, value in wanted.items():
         if row[feature] != value:
-            yield _differs(note, f"{feature} of {key}", row[feature], value, f"order/{note} and the record differ")
+            yield differs(note, f"{feature} of {key}", row[feature], value, f"order/{note} and the record differ")
     for name in row["files"].split():
         if not (pack.folder / name).is_file():
-            yield _differs(
+            yield differs(
                 note, f"file of {key}", name, "in the pack", f"order/{note} names {name}, which is not there"
             )
     if part.flat is not None and row["cut_length_mm"]:
@@ -195,11 +195,11 @@ def _order_flat(note: str, row: dict[str, str], flat: FlatPattern) -> Iterator[F
     total = length_mm(flat.outline) + math.fsum(map(length_mm, flat.holes))
     for feature, drawn in (("bbox_x_mm", x1 - x0), ("bbox_y_mm", y1 - y0), ("cut_length_mm", total)):
         if abs(float(row[feature]) - drawn) > BOX_MM:
-            yield _differs(
+            yield differs(
                 note, f"{feature} of {row['part']}", row[feature], f"{drawn:.2f} mm", f"order/{note} and the DXF differ"
             )
     if row["pierces"] and int(row["pierces"]) != 1 + len(flat.holes):
-        yield _differs(note, f"pierces of {row['part']}", row["pierces"], str(1 + len(flat.holes)), "holes differ")
+        yield differs(note, f"pierces of {row['part']}", row["pierces"], str(1 + len(flat.holes)), "holes differ")
 
 
 @pack_check("CONS-205")
@@ -210,17 +210,17 @@ def reflection_agrees(pack: Pack) -> Iterator[Fault]:
         return
     target, stated = pack.feed.job.target.frequency_mhz, pack.feed.predicted.return_loss_db
     if max(map(abs, reflection)) > 1 + 1e-6:
-        yield _differs(
+        yield differs(
             "predicted.s1p", "reflection", f"{max(map(abs, reflection)):.4f}", "1", "an active feed cannot be"
         )
     if not frequencies[0] <= target <= frequencies[-1]:
-        yield _differs("predicted.s1p", "sweep", f"{frequencies[0]:g} to {frequencies[-1]:g} MHz", f"{target:g} MHz",
+        yield differs("predicted.s1p", "sweep", f"{frequencies[0]:g} to {frequencies[-1]:g} MHz", f"{target:g} MHz",
                        "the sweep leaves the target out")  # fmt: skip
         return
     near = min(range(len(frequencies)), key=lambda i: abs(frequencies[i] - target))
     if abs(frequencies[near] - target) < 1e-3 and abs(abs(reflection[near]) - 10 ** (-stated / 20)) > 0.03:
         loss = -20 * math.log10(max(abs(reflection[near]), 1e-4))
-        yield _differs("predicted.s1p", "return loss", f"{loss:.1f} dB", f"{stated:.1f} dB", "sweep and record differ")
+        yield differs("predicted.s1p", "return loss", f"{loss:.1f} dB", f"{stated:.1f} dB", "sweep and record differ")
 
 
 @pack_check("CONS-206")
@@ -231,18 +231,18 @@ def meshes_agree(pack: Pack) -> Iterator[Fault]:
         (low, high), volume = stl_box(path)
         size = [b - a for a, b in zip(low, high, strict=True)]
         if abs(low[2]) > BOX_MM:
-            yield _differs(path.name, "bed", f"z = {low[2]:.2f} mm", "z = 0", "the part does not stand on the bed")
+            yield differs(path.name, "bed", f"z = {low[2]:.2f} mm", "z = 0", "the part does not stand on the bed")
         if size[2] > bed[2] or sorted(size[:2]) > sorted(bed[:2]):
             fits = f"{bed[0]:g} x {bed[1]:g} x {bed[2]:g} mm"
-            yield _differs(path.name, "size", " x ".join(f"{s:.1f}" for s in size), fits, "larger than the bed")
+            yield differs(path.name, "size", " x ".join(f"{s:.1f}" for s in size), fits, "larger than the bed")
         if volume <= 0:
-            yield _differs(path.name, "volume", f"{volume:.0f} mm3", "above zero", "the mesh is inside out or open")
+            yield differs(path.name, "volume", f"{volume:.0f} mm3", "above zero", "the mesh is inside out or open")
         other = path.with_suffix(".3mf")
         if other.is_file():
             (low3, high3), unit = threemf_box(other)
             same = all(abs(b - a - s) <= BOX_MM for a, b, s in zip(low3, high3, size, strict=True))
             if not same or unit != "millimeter":
-                yield _differs(other.name, "size", unit, path.name, f"{other.name} and {path.name} differ")
+                yield differs(other.name, "size", unit, path.name, f"{other.name} and {path.name} differ")
 
 
 @pack_check("CONS-207")
@@ -252,13 +252,13 @@ def findings_agree(pack: Pack) -> Iterator[Fault]:
     recorded = [tuple(str(value) for value in item.values()) for item in pack.record["findings"]]
     listed = [tuple(value.removeprefix("'") for value in row.values()) for row in rows]
     if rows and sorted(listed) != sorted(tuple(v.removeprefix("'") for v in row) for row in recorded):
-        yield _differs(
+        yield differs(
             "findings.csv", "rows", f"{len(listed)}", f"{len(recorded)}", "findings.csv and the record differ"
         )
     accepted = set(pack.record["despite"])
     for item in pack.record["findings"]:
         if item["severity"] == "stop" and item["code"] not in accepted:
-            yield _differs(item["part"], item["code"], "stop", "accepted", "the pack was written in spite of a stop")
+            yield differs(item["part"], item["code"], "stop", "accepted", "the pack was written in spite of a stop")
 
 
 @pack_check("CONS-208")
@@ -273,16 +273,16 @@ def solids_agree(pack: Pack) -> Iterator[Fault]:
             continue
         solids = cq.importers.importStep(str(path)).solids().vals()
         if len(solids) != 1 or not solids[0].isValid():
-            yield _differs(path.name, "solids", f"{len(solids)}", "1 valid solid", "it is not one valid solid")
+            yield differs(path.name, "solids", f"{len(solids)}", "1 valid solid", "it is not one valid solid")
             continue
         mass = solids[0].Volume() * 1e-9 * metals[part.material].density_kg_per_m3
         if abs(mass - part.mass_kg) > 0.01 * part.mass_kg + 1e-5:
-            yield _differs(path.name, "mass", f"{mass:.4f} kg", f"{part.mass_kg:.4f} kg", "solid and record differ")
+            yield differs(path.name, "mass", f"{mass:.4f} kg", f"{part.mass_kg:.4f} kg", "solid and record differ")
         drawn = _radii_mm(solids[0])
         for name, radius in _wanted_radii_mm(pack, part.key).items():
             nearest = min(drawn, key=lambda r: abs(r - radius), default=0.0)
             if abs(nearest - radius) > 0.01:
-                yield _differs(path.name, name, f"{nearest:.3f} mm", f"{radius:.3f} mm", f"no face has the {name}")
+                yield differs(path.name, name, f"{nearest:.3f} mm", f"{radius:.3f} mm", f"no face has the {name}")
 
 
 @pack_check("CONS-209")
@@ -295,12 +295,12 @@ def parts_made_anew(pack: Pack) -> Iterator[Fault]:
     try:
         anew = {part.key: part for part in build_parts(pack.feed)}
     except FabgenError as error:
-        yield _differs("record.json", "sizes", "no part", "buildable", f"the record's sizes make no parts: {error}")
+        yield differs("record.json", "sizes", "no part", "buildable", f"the record's sizes make no parts: {error}")
         return
     listed = {part.key: part for part in pack.parts}
     for key in sorted(set(anew) ^ set(listed)):
         have, want = ("listed", "not made") if key in listed else ("missing", "made")
-        yield _differs(key, "part", have, want, f"{key} is {have} in the record and {want} of its sizes")
+        yield differs(key, "part", have, want, f"{key} is {have} in the record and {want} of its sizes")
     for key in sorted(set(anew) & set(listed)):
         yield from _part_anew(listed[key], anew[key], pack.feed.job.limits.kerf_mm)
 
@@ -309,23 +309,23 @@ def _part_anew(part: Part, anew: Part, kerf_mm: float) -> Iterator[Fault]:
     for feature in ("process", "quantity", "material", "material_name", "temper", "tolerance", "finish", "notes"):
         value, wanted = getattr(part, feature), getattr(anew, feature)
         if value != wanted:
-            yield _differs(part.key, feature, str(value), str(wanted), f"{feature} of {part.key} was changed")
+            yield differs(part.key, feature, str(value), str(wanted), f"{feature} of {part.key} was changed")
     sizes, wanted_sizes = _numbers(part), _numbers(anew)
     for name in sorted(set(sizes) | set(wanted_sizes)):
         value, wanted = sizes.get(name, math.nan), wanted_sizes.get(name, math.nan)
         if not abs(value - wanted) <= 1e-5:
             message = f"{name} of {part.key} is {value:.3f} in the record, the sizes give {wanted:.3f}"
-            yield _differs(part.key, name, f"{value:.3f}", f"{wanted:.3f}", message)
+            yield differs(part.key, name, f"{value:.3f}", f"{wanted:.3f}", message)
     if abs(part.mass_kg - anew.mass_kg) > 1e-5 * anew.mass_kg + 1e-9:
         message = f"the record's mass of {part.key} is not that of its sizes"
-        yield _differs(part.key, "mass", f"{part.mass_kg:.6f} kg", f"{anew.mass_kg:.6f} kg", message)
+        yield differs(part.key, "mass", f"{part.mass_kg:.6f} kg", f"{anew.mass_kg:.6f} kg", message)
     if part.flat is not None and anew.flat is not None and not kerf_mm:
         drawn, wanted_flat = (
             _measures({"OUTLINE": [flat.outline], "HOLES": list(flat.holes)}) for flat in (part.flat, anew.flat)
         )
         if len(drawn) != len(wanted_flat) or any(abs(a - b) > 1e-3 for a, b in zip(drawn, wanted_flat, strict=True)):
             message = f"the drawing of {part.key} is not that of the record's sizes"
-            yield _differs(part.key, "outlines", "other contours", "1 um", message)
+            yield differs(part.key, "outlines", "other contours", "1 um", message)
 
 
 def _numbers(part: Part) -> dict[str, float]:
@@ -348,7 +348,7 @@ def record_and_job(pack: Pack) -> Iterator[Fault]:
             rows.append((name, getattr(s, name), wanted))
     for name, value, wanted in rows:
         if not math.isclose(value, wanted, rel_tol=1e-8, abs_tol=1e-6):
-            yield _differs("record.json", name, f"{value:g}", f"{wanted:g}", f"{name} of the record is not the job's")
+            yield differs("record.json", name, f"{value:g}", f"{wanted:g}", f"{name} of the record is not the job's")
 
 
 def _radii_mm(solid: Any) -> list[float]:

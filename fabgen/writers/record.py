@@ -3,7 +3,7 @@
 Sizes are written as they are; results of the field computation with six significant digits, which is far finer
 than their uncertainty and keeps the text the same on machines whose arithmetic differs in the last bits.
 
-Depends on: sizing.records, parts.records, checks.records.
+Depends on: folder, sizing.records, parts.records, checks.records.
 """
 
 from __future__ import annotations
@@ -11,11 +11,12 @@ from __future__ import annotations
 import json
 import math
 from collections.abc import Mapping, Sequence
-from dataclasses import asdict, is_dataclass
+from dataclasses import asdict, is_dataclass, replace
 from typing import Any
 
 from fabgen import __version__
 from fabgen.checks.records import Finding
+from fabgen.folder import CHECKSUM_KEY, record_checksum
 from fabgen.parts.records import Part
 from fabgen.sizing.records import Feed, Predicted
 
@@ -30,9 +31,9 @@ def record_data(
     files: Mapping[str, str] | None = None,
     despite: Sequence[str] = (),
 ) -> dict[str, Any]:
-    """The record as plain data; ``files`` maps relative path to SHA-256."""
+    """The record as plain data with its own checksum; ``files`` maps relative path to SHA-256."""
     job = feed.job
-    return {
+    data = {
         "fabgen_version": __version__,
         "job": job.model_dump(mode="json"),
         "frequency_mhz": job.target.frequency_mhz,
@@ -53,6 +54,38 @@ def record_data(
         "despite": sorted(despite),
         "files": dict(sorted((files or {}).items())),
     }
+    return {**data, CHECKSUM_KEY: record_checksum(data)}
+
+
+def as_recorded(feed: Feed) -> Feed:
+    """The feed with its numbers rounded as the record holds them, so that whatever is made of it also follows from
+    the record alone. Job, pattern and sweep stay as they are."""
+    sizes = replace(feed.sizes, **{key: _rounded_size(value) for key, value in vars(feed.sizes).items()})
+    kept = {"patterns", "response"}
+    predicted = {key: _rounded(value) for key, value in vars(feed.predicted).items() if key not in kept}
+    rest = {
+        key: _rounded(value)
+        for key, value in vars(feed).items()
+        if key not in {"job", "sizes", "predicted", "can_trials"}
+    }
+    return replace(feed, sizes=sizes, predicted=replace(feed.predicted, **predicted), **rest)
+
+
+def _rounded_size(value: Any) -> Any:
+    if is_dataclass(value) and not isinstance(value, type):
+        return replace(value, **{key: _size(inner) for key, inner in vars(value).items()})
+    return _size(value)
+
+
+def _rounded(value: Any) -> Any:
+    """Like ``_plain``, keeping records, tuples and complex numbers what they are."""
+    if is_dataclass(value) and not isinstance(value, type):
+        return replace(value, **{key: _rounded(inner) for key, inner in vars(value).items()})
+    if isinstance(value, tuple):
+        return tuple(map(_rounded, value))
+    if isinstance(value, complex):
+        return complex(*_plain(value))
+    return _plain(value) if isinstance(value, float) and math.isfinite(value) else value
 
 
 def record_text(data: Mapping[str, Any]) -> str:

@@ -39,7 +39,7 @@ def test_turned_can_without_flange_has_its_closed_form_volume(form: str) -> None
     screws = 3 * math.pi / 4 * 2.6**2
     if form == "wire":
         # One slot for coax and bar (4.2 wide), one hole for the other foot.
-        between = (4.0 + max(3.58, 2.985 + 1.0)) / 2
+        between = (4.0 + max(3.58, 1.6 + 2 * 0.45)) / 2
         taken = screws + math.pi / 4 * 4.2**2 + 4.2 * between + math.pi / 4 * 4.2**2
     else:
         taken = screws + math.pi / 4 * 4.2**2 + 2 * math.pi / 4 * _foot_hole(feed.sizes.leg_width_mm) ** 2
