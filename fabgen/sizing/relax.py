@@ -5,6 +5,7 @@ Depends on: errors, job, progress, stock.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Iterator
 from typing import Any
 
@@ -14,6 +15,7 @@ from fabgen.progress import Progress
 from fabgen.stock import tables
 
 MOST_TRIALS = 6
+MOST_HALVINGS = 3
 
 
 def nearest_that_works(job: Job, tell: Progress, find: Callable[[Job, Progress], object]) -> str:
@@ -26,8 +28,28 @@ def nearest_that_works(job: Job, tell: Progress, find: Callable[[Job, Progress],
             break
         tell.step(f"looking for the nearest job that works: {change}")
         if _matches(other, tell, find):
-            return f"The nearest job that works: {change}"
+            return f"The nearest job that works: {_nearer(job, change, other, tell, find)}"
     return "No nearby job that works was found; start again from a template"
+
+
+def _nearer(job: Job, change: str, other: Job, tell: Progress, find: Callable[[Job, Progress], object]) -> str:
+    """The same change; where it is one of wire or sheet, with the stock nearest to the job's own that matches, by
+    halving the range between in steps of 0.1 mm."""
+    form, key = job.loop.form, f"{job.loop.form}_mm"
+    bad, good = getattr(job.loop, key), getattr(other.loop, key)
+    if other.loop.form != form or bad == good:
+        return change
+    first = f"{form} of {good:g} mm"
+    for _ in range(MOST_HALVINGS):
+        middle = round(math.sqrt(bad * good), 1)
+        if not min(bad, good) < middle < max(bad, good):
+            break
+        tell.step(f"looking for the nearest job that works: {form} of {middle:g} mm")
+        if _matches(_with(other, "loop", {key: middle}), tell, find):
+            good = middle
+        else:
+            bad = middle
+    return change.replace(first, f"{form} of {good:g} mm")
 
 
 def relaxed_jobs(job: Job) -> Iterator[tuple[str, Job]]:

@@ -95,7 +95,19 @@ def require_advice(job: Job) -> None:
     limit, _, change = str(refusal.value).partition(NEAREST)
     assert re.search(r"\d", limit), limit
     assert change, f"no nearest job: {limit}"
-    require_matched(find_matched(next(other for text, other in relaxed_jobs(job) if text == change)))
+    require_matched(find_matched(changed(job, change)))
+
+
+def changed(job: Job, change: str) -> Job:
+    """The job after the change that the message names; a thickness may lie between the job's own and the usual one."""
+    given = re.match(r"use (wire|sheet) of ([\d.]+) mm", change)
+    if given is None:
+        return dict(relaxed_jobs(job))[change]
+    key = f"{given[1]}_mm"
+    plain = next(other for text, other in relaxed_jobs(job) if text.startswith(f"use {given[1]} of"))
+    usual, own, value = getattr(plain.loop, key), getattr(job.loop, key), float(given[2])
+    assert min(usual, own) <= value <= max(usual, own)
+    return plain.model_copy(update={"loop": plain.loop.model_copy(update={key: value})})
 
 
 @pytest.mark.slow
