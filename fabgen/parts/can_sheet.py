@@ -13,7 +13,7 @@ from fabgen.parts.floor_sheet import floor_sheet
 from fabgen.parts.joint_screws import joint_screws
 from fabgen.parts.kernel import once
 from fabgen.parts.making import metal_part
-from fabgen.parts.records import Part
+from fabgen.parts.records import Part, Place
 from fabgen.parts.wall_plan import wall_plan
 from fabgen.parts.wall_solid import wall_solid
 from fabgen.parts.wall_strip import Wall, wall_flat
@@ -66,20 +66,25 @@ def _wall_part(feed: Feed, wall: Wall, key: str, name: str) -> Part:
         ("tab_width_mm", tab.width_mm),
         ("tab_count", float(len(wall.tabs_mm))),
     )
+    seams = "the tail of the seam outside, seam at +y"
+    if wall.copies > 1:
+        seams = "two halves, alike: the tail of each outside the beginning of the other, seams at +y and -y"
     form = "fold" if feed.sizes.can_flats else "roll"
     return metal_part(
         key,
-        name,
+        name if wall.copies == 1 else f"{name}, half",
         ("laser", "fold", "roll") if form == "roll" else ("laser", "fold"),
         (feed.job.can.metal, feed.job.can.temper),
         feed,
         volume_mm3=wall_volume_mm3(wall, corner),
         sizes=sizes,
+        quantity=wall.copies,
+        places=tuple(Place(turn_deg=turn) for turn in wall.turns_deg),
         flat=wall_flat(wall, corner),
         thickness_mm=wall.path.thickness_mm,
         solid=once(partial(wall_solid, wall, corner)),
         notes=(
-            f"{form} with the seen side out; the tail of the seam outside, seam at +y; step first, tabs last",
+            f"{form} with the seen side out; {seams}; step first, tabs last",
             *_rolling(feed, wall),
             f"{joint}; holes fit {seam.screw} screws and rivets",
             *(("the holes close to the lower edge are drains: no screw, no solder in them",) if wall.drains else ()),

@@ -174,9 +174,26 @@ def _inner_edge(feed: Feed, wall: Wall, shape: TabShape, root: float, tip: float
             roots.append(((ends[1].x_mm, ends[1].y_mm), (ends[0].x_mm, ends[0].y_mm)))
             cursor = share + span
         vertices += _edge_piece(piece, cursor, last, edge)
-    closing = _recess(feed, wall, vertices[-1], vertices[0])
-    ring = reversed_contour(tidied(Contour((*vertices[:-1], *closing))))
-    return ring, [edge_of(ring, *ends) for ends in roots]
+    # The wall before this seam is the copy before this one.
+    pitch = 360.0 / wall.copies
+    closing = _recess(feed, wall, _turned(vertices[-1], -pitch), vertices[0])
+    run = [*vertices[:-1], *(_turned(v, pitch) for v in closing)]
+    ring = reversed_contour(tidied(Contour(tuple(_turned(v, turn) for turn in wall.turns_deg for v in run))))
+    indices = []
+    for turn in wall.turns_deg:
+        for root_start, root_end in roots:
+            first, second = _turned(Vertex(*root_start), turn), _turned(Vertex(*root_end), turn)
+            indices.append(edge_of(ring, (first.x_mm, first.y_mm), (second.x_mm, second.y_mm)))
+    return ring, indices
+
+
+def _turned(vertex: Vertex, turn_deg: float) -> Vertex:
+    """The vertex turned about the axis; a whole turn leaves it as it is."""
+    if turn_deg % 360.0 == 0.0:
+        return vertex
+    a = math.radians(turn_deg)
+    x, y = vertex.x_mm, vertex.y_mm
+    return Vertex(x * math.cos(a) - y * math.sin(a), x * math.sin(a) + y * math.cos(a), vertex.bulge)
 
 
 def _edge_piece(piece: Stretch, first: float, last: float, right_mm: float) -> list[Vertex]:

@@ -16,14 +16,15 @@ Depends on: stock, parts (screws, records, strip_path, wall_strip), sizing.recor
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from fabgen.parts.choke_ring import CLEARANCE_MM
-from fabgen.parts.contour import Point
+from fabgen.parts.contour import Circle, Point
 from fabgen.parts.records import Part, Place
 from fabgen.parts.screws import PROUD_MM, nuts, screw_length_mm, screws, side_nuts, side_screws
 from fabgen.parts.strip_path import outward
-from fabgen.parts.wall_strip import SEAM_GAP_MM, Wall, tab_holes
+from fabgen.parts.wall_strip import SEAM_GAP_MM, Wall, tab_holes, turned_circle
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
 
@@ -66,22 +67,28 @@ def _tab_screws(key: str, name: str, wall: Wall, floor_mm: float) -> tuple[Part,
 
 def _seam_row(wall: Wall) -> _Row:
     seam, t = wall.seam, wall.path.thickness_mm
-    places = tuple(_place(wall, seam.inner_row_mm, z) for z in seam.heights_mm)
+    places = _places(wall, [(seam.inner_row_mm, z) for z in seam.heights_mm])
     return _Row(seam.screw, places, _head_seat_mm(wall, seam.screw), 1.5 * t + SEAM_GAP_MM)
 
 
 def _ring_row(wall: Wall, floor_mm: float) -> _Row:
     """Through the can's wall and the tabs of the choke's floor outside it."""
     size, t = wall.tab.screw, wall.path.thickness_mm
-    places = tuple(_place(wall, hole.along_mm, hole.height_mm) for hole in wall.holes)
+    places = _places(wall, [(hole.along_mm, hole.height_mm) for hole in wall.holes])
     return _Row(size, places, _head_seat_mm(wall, size), t / 2 + CLEARANCE_MM + floor_mm)
 
 
-def _place(wall: Wall, along_mm: float, height_mm: float) -> Place:
-    """On the mid-surface of the wall, +y turned outwards."""
-    (x, y), heading = wall.path.at(along_mm)
-    ox, oy = outward(heading)
-    return Place(x, y, wall.base_z_mm + height_mm, math.degrees(math.atan2(oy, ox)) - 90.0)
+def _places(wall: Wall, spots: Sequence[Point]) -> tuple[Place, ...]:
+    """On the mid-surface of every copy of the wall, at places along it and heights, +y turned outwards."""
+    places = []
+    for turn in wall.turns_deg:
+        for along, height in spots:
+            (x, y), heading = wall.path.at(along)
+            ox, oy = outward(heading)
+            at = turned_circle(Circle(x, y, 0.0), turn)
+            angle = math.degrees(math.atan2(oy, ox)) - 90.0 + turn
+            places.append(Place(at.x_mm, at.y_mm, wall.base_z_mm + height, angle))
+    return tuple(places)
 
 
 def _head_seat_mm(wall: Wall, size: str) -> float:

@@ -32,9 +32,10 @@ SIDES_DEG = (0.0, 90.0, 180.0, 270.0)
 
 
 def wall_drains(
-    feed: Feed, path: StripPath, tab: TabShape, tabs_mm: Sequence[float], seam: Seam, fixings: Sequence[WallHole]
+    feed: Feed, path: StripPath, tab: TabShape, tabs_mm: Sequence[float], seam: Seam, fixings: Sequence[WallHole],
+    sides_deg: Sequence[float] = SIDES_DEG,
 ) -> tuple[WallHole, ...]:
-    """Beside the tab nearest to each of the four sides that has room; clear of folds, of the lap and of the tabs of
+    """Beside the tab nearest to each of the sides that has room; clear of folds, of the lap and of the tabs of
     a choke's ring, which hold on to ``fixings``.
 
     None where the tabs are too close: their reliefs are the openings then.
@@ -65,7 +66,7 @@ def wall_drains(
     ]
     if not places:
         return ()
-    chosen = sorted({min(places, key=lambda s, side=side: (_off_deg(path, s, side), s)) for side in SIDES_DEG})
+    chosen = sorted({_nearest(path, places, side) for side in sides_deg})
     return tuple(WallHole(s, radius + edge, DRAIN_HOLE_MM) for s in chosen)
 
 
@@ -80,6 +81,9 @@ def _spans(path: StripPath, seam: Seam, room_mm: float) -> list[tuple[float, flo
     return spans
 
 
-def _off_deg(path: StripPath, along_mm: float, side_deg: float) -> float:
-    x, y = path.at(along_mm)[0]
-    return round(abs((math.degrees(math.atan2(y, x)) - side_deg + 180.0) % 360.0 - 180.0), 6)
+def _nearest(path: StripPath, places: Sequence[float], side_deg: float) -> float:
+    def off(along_mm: float) -> tuple[float, float]:
+        x, y = path.at(along_mm)[0]
+        return round(abs((math.degrees(math.atan2(y, x)) - side_deg + 180.0) % 360.0 - 180.0), 6), along_mm
+
+    return min(places, key=off)

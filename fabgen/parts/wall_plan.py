@@ -1,19 +1,21 @@
 """From sizes to the wall of a rolled or folded can: way of the strip, seam, tabs and their screws.
 
-Depends on: errors, stock, parts (strip_path, wall_strip, wall_drains, bend_rule), theory.bending, sizing.records.
+Depends on: errors, stock, parts (strip_path, wall_strip, wall_drains, bend_rule, nesting), theory.bending,
+sizing.records.
 """
 
 from __future__ import annotations
 
 import itertools
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from fabgen.errors import GeometryError
 from fabgen.parts.bend_rule import chosen_k
 from fabgen.parts.can_printed import SKIRT_MM
+from fabgen.parts.nesting import SPACING_MM
 from fabgen.parts.strip_path import Joggle, StripPath, joggle
-from fabgen.parts.wall_drains import wall_drains
+from fabgen.parts.wall_drains import SIDES_DEG, wall_drains
 from fabgen.parts.wall_strip import EDGE_GAP_MM, SEAM_GAP_MM, Seam, TabShape, Wall, WallHole, check_wall
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
@@ -55,10 +57,10 @@ def fold_radius_mm(feed: Feed, thickness_mm: float) -> float:
 def wall_plan(
     feed: Feed, bore_mm: float, depth_mm: float, base_z_mm: float, name: str, fixings: Fixings | None = None
 ) -> Wall:
-    """The wall of a can of that bore (across flats where the can has flats).
+    """The wall of a can of that bore (across flats where the can has flats), in two halves where the stock sheet is
+    too short for it: then with seams at +y and -y, both in the E-plane.
 
-    ``fixings``: the holes that hold a choke. Raises GeometryError where
-    tabs, seam or folds do not fit.
+    ``fixings``: the holes that hold a choke. Raises GeometryError where tabs, seam or folds do not fit.
     """
     t = feed.sizes.wall_mm
     inside = fold_radius_mm(feed, t)
@@ -67,23 +69,36 @@ def wall_plan(
     screw = joint_screw(bore_mm)
     overlap = 4 * screw.clearance_medium_mm
     flats = feed.sizes.can_flats
-    path = _folded(bore_mm, flats, t, bends, overlap) if flats else _rolled(bore_mm, t, bends, overlap)
+
+    def way(copies: int) -> StripPath:
+        if flats:
+            return _folded(bore_mm, flats, t, bends, overlap, copies)
+        return _rolled(bore_mm, t, bends, overlap, copies)
+
+    longest = max(feed.job.limits.sheet_mm) - 2 * SPACING_MM
+    copies = 1 if way(1).flat_mm <= longest else 2
+    path = way(copies)
     seam = _seam(feed, path, depth_mm, bends, overlap, screw)
     tab = tab_shape(feed, screw, t)
     tabs = _tab_places(feed, path, seam, tab)
-    holes = _fixing_holes(path, tabs, seam, overlap, fixings, screw.clearance_medium_mm) if fixings else ()
-    drains = wall_drains(feed, path, tab, tabs, seam, holes)
-    wall = Wall(path, depth_mm, base_z_mm, tab, tabs, seam, holes, drains)
+    holes: tuple[WallHole, ...] = ()
+    if fixings:
+        share = replace(fixings, count=math.ceil(fixings.count / copies))
+        holes = _fixing_holes(path, tabs, seam, overlap, share, math.ceil(3 / copies), screw.clearance_medium_mm)
+    # Two halves have their drains at the other two sides by themselves.
+    sides = SIDES_DEG if copies == 1 else SIDES_DEG[1:3]
+    drains = wall_drains(feed, path, tab, tabs, seam, holes, sides)
+    wall = Wall(path, depth_mm, base_z_mm, tab, tabs, seam, holes, drains, copies)
     check_wall(wall, name)
     return wall
 
 
-def _rolled(bore_mm: float, t: float, bends: _Bends, overlap: float) -> StripPath:
-    """Once round from the E-plane (phi = 90 degrees) at the bore, the step, and the tail outside."""
+def _rolled(bore_mm: float, t: float, bends: _Bends, overlap: float, copies: int) -> StripPath:
+    """Once (for halves half) round from the E-plane (phi = 90 degrees) at the bore, the step, and the tail outside."""
     middle = bore_mm / 2 + t / 2
     step = joggle(bends.inside_mm, t, bends.step_mm, middle)
     gap = math.degrees(EDGE_GAP_MM / middle)
-    path = StripPath(t, (0.0, middle), 180.0).roll(middle, 360.0 - step.turn_deg - gap)
+    path = StripPath(t, (0.0, middle), 180.0).roll(middle, 360.0 / copies - step.turn_deg - gap)
     path = _stepped(path, step, bends)
     outer = middle + bends.step_mm
     return path.roll(outer, math.degrees((overlap + EDGE_GAP_MM) / outer))
@@ -94,9 +109,9 @@ def _stepped(path: StripPath, step: Joggle, bends: _Bends) -> StripPath:
     return out.bend(bends.inside_mm, step.back_deg, bends.k_factor)
 
 
-def _folded(bore_mm: float, flats: int, t: float, bends: _Bends, overlap: float) -> StripPath:
-    """Round a prism. The seam is in the middle of the flat on the E-plane; with six flats the E-plane meets a
-    corner, and the seam lies beside it."""
+def _folded(bore_mm: float, flats: int, t: float, bends: _Bends, overlap: float, copies: int) -> StripPath:
+    """Round a prism, or half round. The seam is in the middle of the flat on the E-plane; with six flats the E-plane
+    meets a corner, and the seam lies beside it."""
     middle, radius = bore_mm / 2 + t / 2, bends.inside_mm + t / 2
     half = math.tan(math.pi / flats) * (middle - radius)
     step = joggle(bends.inside_mm, t, bends.step_mm, None)
@@ -110,9 +125,10 @@ def _folded(bore_mm: float, flats: int, t: float, bends: _Bends, overlap: float)
             f"flats of {2 * half:.1f} mm are too short for a seam of {overlap:.1f} mm; use fewer flats or a rolled can"
         )
     path = StripPath(t, start, math.degrees(phi) + 90.0).straight(half - at)
-    for i in range(flats):
+    corners = flats // copies
+    for i in range(corners):
         path = path.bend(bends.inside_mm, 360.0 / flats, bends.k_factor)
-        path = path.straight(2 * half if i < flats - 1 else half + at - length - EDGE_GAP_MM)
+        path = path.straight(2 * half if i < corners - 1 else half + at - length - EDGE_GAP_MM)
     return _stepped(path, step, bends).straight(overlap + EDGE_GAP_MM)
 
 
@@ -175,22 +191,23 @@ def _tab_places(feed: Feed, path: StripPath, seam: Seam, tab: TabShape) -> tuple
 
 
 def _fixing_holes(
-    path: StripPath, tabs_mm: tuple[float, ...], seam: Seam, overlap: float, fixings: Fixings, hole_mm: float
+    path: StripPath, tabs_mm: tuple[float, ...], seam: Seam, overlap: float, fixings: Fixings, least: int,
+    hole_mm: float,
 ) -> tuple[WallHole, ...]:
-    """Holes above tabs, spread evenly, clear of the lap and of folds."""
+    """Holes above tabs, at least ``least``, spread evenly, clear of the lap and of folds."""
     free: list[float] = []
     end = fixings.end_mm
     for at, piece in zip(path.starts_mm(), path.stretches, strict=False):
         low, high = max(at, overlap), min(at + piece.flat_mm, seam.step_at_mm)
         if piece.rolled or not piece.radius_mm:
             free += [s for s in tabs_mm if low + end <= s <= high - end]
-    if len(free) < 3:
+    if len(free) < least:
         raise GeometryError(
-            f"the can's wall has room for {len(free)} of the choke's fixings and needs 3; "
+            f"the can's wall has room for {len(free)} of the choke's fixings and needs {least}; "
             "use a rolled can or fewer flats"
         )
-    count = min(fixings.count, len(free))
-    while count > 3 and min(b - a for a, b in itertools.pairwise(_spread(free, count))) < fixings.room_mm:
+    count = max(least, min(fixings.count, len(free)))
+    while count > least and min(b - a for a, b in itertools.pairwise(_spread(free, count))) < fixings.room_mm:
         count -= 1
     return tuple(WallHole(s, fixings.height_mm, hole_mm) for s in _spread(free, count))
 

@@ -75,7 +75,8 @@ class WallHole:
 @dataclass(frozen=True)
 class Wall:
     """All that makes a wall. ``base_z_mm``: height of its lower edge in the feed's frame; ``holes`` hold a choke,
-    ``drains`` stay open."""
+    ``drains`` stay open. A wall longer than the stock sheet is ``copies`` = 2 equal halves, each with its lap on the
+    beginning of the other; all else is of one half."""
 
     path: StripPath
     depth_mm: float
@@ -85,6 +86,12 @@ class Wall:
     seam: Seam
     holes: tuple[WallHole, ...] = ()
     drains: tuple[WallHole, ...] = ()
+    copies: int = 1
+
+    @property
+    def turns_deg(self) -> tuple[float, ...]:
+        """Where its copies stand, by turn about z."""
+        return tuple(360.0 * i / self.copies for i in range(self.copies))
 
     @property
     def bend_mid_mm(self) -> float:
@@ -176,14 +183,24 @@ def _fold_lines(wall: Wall) -> tuple[FoldLine, ...]:
 
 
 def tab_holes(wall: Wall) -> tuple[Circle, ...]:
-    """Where the tabs' holes are over the floor, in the feed's frame."""
+    """Where the tabs' holes of all copies are over the floor, in the feed's frame."""
     out = wall.bend_mid_mm + wall.tab.hole_from_bend_mm
     circles = []
-    for s in wall.tabs_mm:
-        (x, y), heading = wall.path.at(s)
-        ox, oy = outward(heading)
-        circles.append(Circle(x + out * ox, y + out * oy, wall.tab.hole_mm))
+    for turn in wall.turns_deg:
+        for s in wall.tabs_mm:
+            (x, y), heading = wall.path.at(s)
+            ox, oy = outward(heading)
+            circles.append(turned_circle(Circle(x + out * ox, y + out * oy, wall.tab.hole_mm), turn))
     return tuple(circles)
+
+
+def turned_circle(circle: Circle, turn_deg: float) -> Circle:
+    """The circle turned about the axis; untouched for a turn of 0."""
+    if turn_deg == 0.0:
+        return circle
+    a = math.radians(turn_deg)
+    x, y = circle.x_mm, circle.y_mm
+    return Circle(x * math.cos(a) - y * math.sin(a), x * math.sin(a) + y * math.cos(a), circle.diameter_mm)
 
 
 def tabs_width_mm(wall: Wall) -> float:

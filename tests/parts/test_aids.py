@@ -261,7 +261,7 @@ def test_the_picture_shows_every_part_on_its_sheet() -> None:
 
 def test_a_part_larger_than_the_sheet_is_named_in_table_and_picture() -> None:
     feed = sample_feed("wire", "rolled")
-    limits = feed.job.limits.model_copy(update={"sheet_mm": (500.0, 500.0)})
+    limits = feed.job.limits.model_copy(update={"sheet_mm": (300.0, 300.0)})
     thin, thick = nest(build_parts(feed), limits)
     assert thin.too_large == ("wall",)
     assert thick.too_large == ()
