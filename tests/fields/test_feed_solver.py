@@ -45,11 +45,9 @@ def a_feed(form: str = "sheet", **can: object) -> FeedGeometry:
 
 
 FORMS = pytest.mark.parametrize("form", ["wire", "sheet"])
-CANS = pytest.mark.parametrize(
-    "can",
-    [{}, {"flats": 8}, {"choke": ChokeGeometry(0.78 * WAVE, 0.1 * WAVE, 0.2 * WAVE)}],
-    ids=["round", "flats", "choke"],
-)
+FLATS = {"flats": 8}
+CHOKE = {"choke": ChokeGeometry(0.78 * WAVE, 0.1 * WAVE, 0.2 * WAVE)}
+CANS = pytest.mark.parametrize("can", [{}, FLATS, CHOKE], ids=["round", "flats", "choke"])
 
 
 @FORMS
@@ -76,9 +74,11 @@ def test_loss_is_what_is_missing_from_the_far_field(surface_ohm: complex) -> Non
     assert missing == pytest.approx(solution.ohmic_power_w, rel=0.01)
 
 
-def test_block_elimination_equals_full_solve() -> None:
-    feed = a_feed()
-    plan = plan_mesh(feed, WAVE, 12)
+@FORMS
+@CANS
+def test_block_elimination_equals_full_solve(form: str, can: dict[str, object]) -> None:
+    feed = a_feed(form, **can)
+    plan = plan_mesh(feed, WAVE, 7)
     kept = FeedSolver(plan).solve(feed, TARGET_HZ)
     full = solve_mesh(feed_mesh(feed, plan)[0], TARGET_HZ)
     assert kept.impedance_ohm == pytest.approx(full.impedance_ohm, rel=1e-8)
@@ -121,8 +121,14 @@ def test_impedance_is_smooth_in_the_tap_height(form: str) -> None:
     assert np.abs(fit - r).max() < 0.02
 
 
-def test_quadrature_is_fine_enough() -> None:
-    feed = a_feed()
+@FORMS
+@pytest.mark.parametrize(
+    "can",
+    [{}, pytest.param(FLATS, marks=pytest.mark.thorough), pytest.param(CHOKE, marks=pytest.mark.thorough)],
+    ids=["round", "flats", "choke"],
+)
+def test_quadrature_is_fine_enough(form: str, can: dict[str, object]) -> None:
+    feed = a_feed(form, **can)
     plan = plan_mesh(feed, WAVE, 12)
     usual = FeedSolver(plan).solve(feed, TARGET_HZ).impedance_ohm
     finer = FeedSolver(plan, QuadratureSettings(6, 12, 12, 3.0)).solve(feed, TARGET_HZ).impedance_ohm

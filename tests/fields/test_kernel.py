@@ -85,3 +85,14 @@ def test_far_moments_against_the_plain_sum(count: int) -> None:
         np.einsum("tij,ix,tjx->t", g, r, source),
     ]  # fmt: skip
     np.testing.assert_allclose(found, expected, rtol=0, atol=1e-9)
+
+
+def test_static_moments_do_not_care_which_triangle_comes_first() -> None:
+    bary, weight = triangle_rule(6)
+    corners = np.random.default_rng(5).random((2, 3, 3))
+    corners[1, 0] = corners[0, 1]  # neighbours at a corner
+    area = 0.5 * np.linalg.norm(np.cross(corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0]), axis=1)
+    found = np.zeros((2, 8))
+    pairs = np.array([0, 1]), np.array([1, 0])
+    kernel.static_moments(0, 2, *pairs, corners, corners, bary, weight, area, found)
+    np.testing.assert_allclose(found[0], found[1][[0, 4, 5, 6, 1, 2, 3, 7]], rtol=1e-13)

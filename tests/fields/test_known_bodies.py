@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from functools import lru_cache
 
 import numpy as np
@@ -12,11 +12,13 @@ import trimesh
 from scipy.special import spherical_jn, spherical_yn
 
 from fabgen.fields.functions import edge_functions
-from fabgen.fields.geometry import FREE_SPACE_IMPEDANCE, SPEED_OF_LIGHT
+from fabgen.fields.geometry import FREE_SPACE_IMPEDANCE, SPEED_OF_LIGHT, CanGeometry, FeedGeometry, LoopGeometry
 from fabgen.fields.mesh import Mesh, single
 from fabgen.fields.model import FieldSolution, solve_mesh
+from fabgen.fields.plan import plan_mesh
 from fabgen.fields.quadrature import triangle_rule
 from fabgen.fields.strips import equivalent_radius_m, lone_strip_width_m, paired_strip_width_m
+from fabgen.fields.surfaces import feed_mesh
 from fabgen.fields.system import Assembler
 from fabgen.theory.lines import two_wire_ohm
 from tests.fields.structures import ring_loop, strip_dipole, strip_line
@@ -223,8 +225,16 @@ def test_fine_strip_is_a_wire_of_a_quarter_of_its_width() -> None:
     assert equivalent_radius_m(lone_strip_width_m(0.002, 5), 5) == pytest.approx(0.002, rel=1e-9)
 
 
-def test_mirrored_solve_equals_full_solve() -> None:
-    half = ring_loop(1.05 / (2 * math.pi), 0.004, 0.1, 10)
+def _half_feed() -> Mesh:
+    """A sheet loop in a can, in metres, for a wave of one metre."""
+    loop = LoopGeometry("sheet", 0.16, 0.15, 0.036, 0.036, 0.074, 0.12, 0.014, 0.06, 0.02)
+    feed = FeedGeometry(CanGeometry(0.52, 0.2), loop)
+    return feed_mesh(feed, plan_mesh(feed, 1.0, 8))[0]
+
+
+@pytest.mark.parametrize("make", [lambda: ring_loop(1.05 / (2 * math.pi), 0.004, 0.1, 10), _half_feed])
+def test_mirrored_solve_equals_full_solve(make: Callable[[], Mesh]) -> None:
+    half = make()
     symmetric = solve_mesh(half, ONE_METRE_WAVE)
     full = _whole(half)
     functions = edge_functions(full)
