@@ -17,7 +17,7 @@ def self_checks(solution: Solution, sweep_error: float, reflection_change: float
     """Power balance, residual, condition, mesh, sweep and second mesh, each against its limit."""
     rows = (
         ("power balance", abs(solution.power_balance), 0.01, "input minus radiated minus ohmic power, over input"),
-        ("residual", solution.residual, 1e-6, "of the linear system, over the right-hand side"),
+        ("residual", solution.residual, 1e-6, "largest backward error of a row, |Zx - v| over |Z||x| + |v|"),
         ("condition", solution.condition, 1e9, "of the system that was factorised"),
         ("largest edge", solution.largest_edge_wavelengths, 0.2, "of the mesh, in wavelengths"),
         ("sweep error", sweep_error, SWEEP_ERROR, "estimated change of reflection between the solved frequencies"),
