@@ -129,12 +129,12 @@ def sample_predicted(job: Job) -> Predicted:
 def sample_wall_current(job: Job) -> WallCurrent:
     """Currents by the angle as in the dominant mode alone."""
     angles = tuple(5.0 * i for i in range(37))
-    crossing = tuple(8.0 * abs(math.cos(math.radians(a))) for a in angles)
+    crossing = tuple(0.4 * abs(math.cos(math.radians(a))) for a in angles)
     names = ("wall", "choke wall") if job.can.choke else ("wall",)
     joints = ["wall on floor", *(["choke floor on wall", "choke wall on its floor"] if job.can.choke else [])]
     return WallCurrent(
-        tuple(SeamCurrent(name, 8.0, angles, crossing) for name in names),
-        tuple(JointCurrent(name, 7.0, 6.0, 12.0) for name in joints),
+        tuple(SeamCurrent(name, 0.4, angles, crossing) for name in names),
+        tuple(JointCurrent(name, 0.35, 0.3, 0.03) for name in joints),
     )
 
 

@@ -10,7 +10,6 @@ from collections.abc import Iterator
 
 from fabgen.checks.registry import Context, Fault, check, source_text
 from fabgen.checks.texts import down, mm, up
-from fabgen.parts.can_sheet import can_wall
 from fabgen.parts.contour import Outline, bounds_mm
 from fabgen.parts.floor_holes import floor_holes
 from fabgen.stock import tables
@@ -81,60 +80,6 @@ def openings(context: Context) -> Iterator[Fault]:
         message=f"{len(open_holes)} open holes of {mm(longest)}; the floor's thickness alone holds back {loss:.0f} dB",
         cure=f"make them {down(most):g} mm or smaller, and more of them",
     )
-
-
-@check("ELEC-303", "caution", "seam_screw_pitch_max_wavelengths", "soldered_pitch_factor")
-def joint_to_the_floor(context: Context) -> Iterator[Fault]:
-    """Pitch of the tabs that join wall and floor: that joint carries the wall's current all round.
-
-    A soldered joint may have its tabs farther apart, since the solder carries the current."""
-    most = context.limit("seam_screw_pitch_max_wavelengths") * context.wavelength_mm
-    if tables.metal(context.job.can.metal).solderable:
-        most *= context.limit("soldered_pitch_factor")
-    for part in context.parts:
-        sizes = dict(part.sizes)
-        if "tab_count" not in sizes or "flat_length_mm" not in sizes:
-            continue
-        length = min(sizes["flat_length_mm"], _once_round_mm(context, part.key))
-        pitch = length / max(sizes["tab_count"], 1.0)
-        if pitch > most:
-            yield Fault(
-                part=part.key,
-                feature="joint to the floor",
-                value=mm(pitch),
-                limit=mm(most),
-                message=f"{sizes['tab_count']:g} tabs hold the wall at {mm(pitch)} pitch; between them the joint opens "
-                "and radiates",
-                cure=f"use {math.ceil(length / most)} tabs, or solder the joint all round",
-            )
-
-
-def _once_round_mm(context: Context, key: str) -> float:
-    """Once round the middle of the wall, without the lap of its seam."""
-    s = context.sizes
-    bore = s.choke.bore_mm if s.choke is not None and key.startswith("choke") else s.can_bore_mm
-    turn = 2 * s.can_flats * math.tan(math.pi / s.can_flats) if s.can_flats else 2 * math.pi
-    return turn * (bore + s.wall_mm) / 2
-
-
-@check("ELEC-304", "caution", "seam_current_max", source="TE11 in round guide: circumferential current of the wall "
-       "goes with the cosine of the angle, zero in the E-plane; Marcuvitz, Waveguide Handbook")  # fmt: skip
-def seam_in_the_current(context: Context) -> Iterator[Fault]:
-    """Longitudinal seam against the wall current: away from the E-plane, current has to cross it."""
-    if context.job.can.make not in {"rolled", "folded"}:
-        return
-    x, y = can_wall(context.feed).path.start
-    share, most = abs(x) / math.hypot(x, y), context.limit("seam_current_max")
-    if share > most:
-        yield Fault(
-            part="wall",
-            feature="seam",
-            value=f"{share:.0%} of the largest current",
-            limit=f"{most:.0%}",
-            message=f"the seam lies {math.degrees(math.asin(share)):.0f} degrees off the E-plane; {share:.0%} of the "
-            "largest wall current crosses it",
-            cure="solder the seam over its whole length, or use 8 or 12 flats, whose seam lies in the E-plane",
-        )
 
 
 @check("ELEC-302", "caution", "bar_pitch_max_wavelengths")

@@ -8,14 +8,25 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import replace
 
-from fabgen.checks import assembly, consistency, electrical, materials, outdoors, overrides, printed, sheet, wire
+from fabgen.checks import (
+    assembly,
+    consistency,
+    electrical,
+    joints,
+    materials,
+    outdoors,
+    overrides,
+    printed,
+    sheet,
+    wire,
+)
 from fabgen.checks.records import Finding
 from fabgen.checks.registry import GROUPS, SEVERITIES, Context, all_checks, findings_of
 from fabgen.parts.records import Part
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
 
-MODULES = (electrical, materials, sheet, wire, printed, assembly, outdoors, consistency, overrides)
+MODULES = (electrical, joints, materials, sheet, wire, printed, assembly, outdoors, consistency, overrides)
 """The modules whose import registers their checks."""
 
 

@@ -29,6 +29,13 @@ def with_sizes(feed: Feed, **sizes: Any) -> Feed:
     return replace(feed, sizes=replace(feed.sizes, **sizes))
 
 
+def with_seam_current(feed: Feed, share: float) -> Feed:
+    """The same share of the largest current across a seam wherever it lies."""
+    (seam,) = feed.predicted.wall_current.seams
+    even = replace(seam, crossing_a_per_m=tuple(share * seam.peak_a_per_m for _ in seam.angle_deg))
+    return with_predicted(feed, wall_current=replace(feed.predicted.wall_current, seams=(even,)))
+
+
 def with_predicted(feed: Feed, **values: Any) -> Feed:
     return replace(feed, predicted=replace(feed.predicted, **values))
 
@@ -244,10 +251,16 @@ PAIRS: dict[str, Pair] = {
     "ELEC-302": Pair(lambda: (with_sizes(base(), leg_pitch_mm=40.0), parts_of()), good(), "caution", "apart"),
     "ELEC-303": Pair(lambda: alone(base(), tabs(20)), lambda: alone(base(), tabs(34)), "caution", "pitch"),
     "ELEC-304": Pair(
-        lambda: overridden("seam_current_max", 0.01, sample_feed(WIRE, "folded", flats=6), ()),
-        lambda: (sample_feed(WIRE, "folded", flats=8), ()),
+        lambda: (with_seam_current(sample_feed(WIRE, "folded", flats=8), 0.5), ()),
+        lambda: (with_seam_current(sample_feed(WIRE, "folded", flats=8), 0.19), ()),
         "caution",
-        "seam",
+        "50% of the largest wall current",
+    ),
+    "ELEC-305": Pair(
+        good(WIRE, "rolled"),
+        lambda: (with_job(base(WIRE, "rolled"), can={"metal": "cuzn37"}), parts_of(WIRE, "rolled")),
+        "note",
+        "cross this joint",
     ),
     "ELEC-401": Pair(
         lambda: (with_voltage(100.0, 2000.0), ()), lambda: (with_voltage(100.0, 100.0), ()), "stop", "arcs"
