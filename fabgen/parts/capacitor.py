@@ -117,8 +117,7 @@ def _slanted(run: Crossing, shape: kernel.Shape) -> kernel.Shape:
     """The shape turned about the coax's axis by the run's slant."""
     if run.slant_deg == 0.0:
         return shape
-    turned = kernel.turned(kernel.moved(shape, -run.x_mm, -run.coax_y_mm), -run.slant_deg)
-    return kernel.moved(turned, run.x_mm, run.coax_y_mm)
+    return kernel.turned(shape, -run.slant_deg, through=(run.x_mm, run.coax_y_mm, 0.0))
 
 
 def coax_stub(feed: Feed) -> Part:

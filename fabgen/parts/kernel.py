@@ -154,11 +154,14 @@ def moved(shape: cadquery.Shape, x_mm: float = 0.0, y_mm: float = 0.0, z_mm: flo
     return shape.moved(cq.Location(cq.Vector(x_mm, y_mm, z_mm)))
 
 
-def turned(shape: cadquery.Shape, angle_deg: float, axis: Point3 = (0, 0, 1)) -> cadquery.Shape:
-    """The shape turned about an axis through the origin."""
+def turned(
+    shape: cadquery.Shape, angle_deg: float, axis: Point3 = (0, 0, 1), through: Point3 = (0, 0, 0)
+) -> cadquery.Shape:
+    """The shape turned about an axis through a point."""
     import cadquery as cq
 
-    return shape.rotate(cq.Vector(0, 0, 0), cq.Vector(*axis), angle_deg)
+    start = cq.Vector(*through)
+    return shape.rotate(start, start + cq.Vector(*axis), angle_deg)
 
 
 def placed(shape: cadquery.Shape, place: Place) -> cadquery.Shape:

@@ -151,7 +151,7 @@ def test_coax_touches_its_bar_and_core_slides_in_the_tube(form: str) -> None:
     run = crossing_of(feed)
     assert run.slant_deg < 5.0
     box, core = (
-        kernel.turned(kernel.moved(s, -run.x_mm, -run.coax_y_mm), run.slant_deg).BoundingBox(1e-6) for s in (tube, stub)
+        kernel.turned(s, run.slant_deg, through=(run.x_mm, run.coax_y_mm, 0.0)).BoundingBox(1e-6) for s in (tube, stub)
     )
     overlap = box.ymax - core.ymin
     assert overlap == pytest.approx(feed.capacitor.overlap_mm, abs=1e-3)

@@ -278,3 +278,32 @@ def test_parts_without_solids_and_bad_chords_are_refused(tmp_path: Path) -> None
     with pytest.raises(GeometryError, match="give a positive length"):
         write_stl(CAN, tmp_path / "x.stl", chord_mm=0.0)
     assert list(tmp_path.iterdir()) == []
+
+
+@pytest.mark.parametrize(
+    ("groups", "loads"),
+    [
+        ("tables bend cut", "none"),
+        pytest.param("order", "kernel", marks=pytest.mark.slow),
+        pytest.param("print", "kernel", marks=pytest.mark.slow),
+        pytest.param("model", "kernel", marks=pytest.mark.slow),
+    ],
+)
+def test_the_kernel_is_imported_for_solids_alone(groups: str, loads: str, tmp_path: Path) -> None:
+    """What ``pack --only`` leaves out is not loaded either: seen in the modules of a process of its own.
+
+    The order tells the size of a printed piece on the bed, which is its solid's.
+    """
+    code = (
+        "import sys; from pathlib import Path; from fabgen.pack import PackOptions, build_content, write_pack\n"
+        "from tests.samples import sample_feed\n"
+        "feed = sample_feed('wire', 'printed', choke=True, radome=True)\n"
+        "stops = tuple({f.code for f in build_content(feed)[1] if f.severity == 'stop'})\n"
+        "write_pack(feed, Path(sys.argv[1]) / 'pack', PackOptions(tuple(sys.argv[2].split()), stops))\n"
+        "heavy = {'cadquery', 'OCP', 'vtkmodules', 'netgen'} & set(sys.modules)\n"
+        "sys.stdout.write('kernel' if 'OCP' in heavy else ' '.join(heavy) or 'none')\n"
+    )
+    call = [sys.executable, "-c", code, str(tmp_path), groups]
+    done = subprocess.run(call, capture_output=True, text=True, check=False)
+    assert done.returncode == 0, done.stderr
+    assert done.stdout == loads
