@@ -97,13 +97,15 @@ def thermal_drift(context: Context) -> Iterator[Fault]:
     drift = max(abs(yields.drift_mhz_cold), abs(yields.drift_mhz_hot))
     most = context.limit("drift_max_mhz_share") * half
     if drift > most:
+        printed = "use a metal can in place of a printed one"
+        first = printed if context.printed else "trim at the usual temperature of the site"
         yield Fault(
             part="feed",
             feature="thermal drift",
             value=f"{drift:.1f} MHz",
             limit=f"{most:.1f} MHz",
             message=f"between -20 and +50 degC the resonance moves by {drift:.1f} MHz, half the band is {half:.1f} MHz",
-            cure=f"use a metal can in place of a printed one, or wish for a band of {4 * drift:.0f} MHz",
+            cure=f"{first}, or wish for a band of {4 * drift:.0f} MHz",
         )
 
 
