@@ -64,10 +64,13 @@ def wall_drains(
         and all(abs(s - other) > beside - 1e-9 for other in tabs_mm)
         and any(start <= s <= end for start, end in spans)
     ]
-    if not places:
-        return ()
-    chosen = sorted({_nearest(path, places, side) for side in sides_deg})
-    return tuple(WallHole(s, radius + edge, DRAIN_HOLE_MM) for s in chosen)
+    height, apart = radius + edge, radius + edge + max((hole.diameter_mm / 2 for hole in fixings), default=0.0)
+    places = [s for s in places if all(math.dist((s, height), (f.along_mm, f.height_mm)) > apart for f in fixings)]
+    chosen: list[float] = []
+    for side in sides_deg:
+        clear = [s for s in places if all(abs(s - other) > 2 * (radius + edge) for other in chosen)]
+        chosen += [_nearest(path, clear, side)] if clear else []
+    return tuple(WallHole(s, height, DRAIN_HOLE_MM) for s in sorted(chosen))
 
 
 def _spans(path: StripPath, seam: Seam, room_mm: float) -> list[tuple[float, float]]:

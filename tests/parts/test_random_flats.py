@@ -22,7 +22,8 @@ from tests.samples import sample_feed
 
 
 def random_feed(dice: random.Random) -> Feed:
-    """Stock, make and frequency at random; loop sizes by ratio to the wavelength, reliefs of any depth."""
+    """Stock, make and frequency at random; loop sizes by ratio to the wavelength, reliefs of any depth; sheets so
+    short that some walls come in halves."""
     form = dice.choice(["wire", "sheet"])
     feed = sample_feed(
         form,
@@ -35,6 +36,9 @@ def random_feed(dice: random.Random) -> Feed:
         floor_mm=dice.choice([0.8, 1, 1.5, 2, 3]),
         flange={"pattern": dice.choice(["circle", "square", "none"]), "count": 4},
     )
+    sheet = dice.choice([(1000.0, 2000.0), (500.0, 1000.0), (250.0, 500.0)])
+    limits = feed.job.limits.model_copy(update={"sheet_mm": sheet})
+    feed = dataclasses.replace(feed, job=feed.job.model_copy(update={"limits": limits}))
     if form == "wire":
         return feed
     t = dice.choice([0.3, 0.5, 0.8, 1, 1.5, 2, 3])
