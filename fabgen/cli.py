@@ -214,8 +214,6 @@ def _explain(error: Exception) -> int:
     if isinstance(error, MemoryError):
         return _say("there is not enough memory; close other programs or use a machine with more", 9)
     if isinstance(error, ImportError):
-        if (error.name or "").startswith("fabgen."):
-            return _say(f"this version does not build that yet ({error.name})", 7)
         return _say(_missing_library(error), 1)
     if isinstance(error, OSError):
         _close_output()

@@ -13,20 +13,22 @@ SHELLS = ("bash", "zsh", "fish")
 
 def completion_script(shell: str, parser: argparse.ArgumentParser, words: Mapping[str, Sequence[str]]) -> str:
     """The script for one shell; ``words`` gives what may follow an option or a command's first argument."""
-    commands = {name: sorted(_options(sub)) for name, sub in _commands(parser)}
+    commands = {name: sorted(options_of(sub)) for name, sub in commands_of(parser)}
     if shell == "fish":
         return _fish(commands, words)
     script = _bash(commands, words)
     return f"autoload -U +X bashcompinit && bashcompinit\n{script}" if shell == "zsh" else script
 
 
-def _commands(parser: argparse.ArgumentParser) -> Iterator[tuple[str, argparse.ArgumentParser]]:
+def commands_of(parser: argparse.ArgumentParser) -> Iterator[tuple[str, argparse.ArgumentParser]]:
+    """The commands of a parser, each with its own parser."""
     for action in parser._actions:
         if isinstance(action, argparse._SubParsersAction):
             yield from action.choices.items()
 
 
-def _options(parser: argparse.ArgumentParser) -> Iterator[str]:
+def options_of(parser: argparse.ArgumentParser) -> Iterator[str]:
+    """The long options of a parser."""
     for action in parser._actions:
         yield from (option for option in action.option_strings if option.startswith("--"))
 

@@ -36,7 +36,7 @@ HEAVY = ("numpy", "scipy.optimize", "scipy.special", "cadquery", "shapely", "hyp
 ARITHMETIC = {ast.Add: ast.Sub, ast.Sub: ast.Add, ast.Mult: ast.Div, ast.Div: ast.Mult, ast.Pow: ast.Mult}
 NEGATED = {ast.Lt: ast.GtE, ast.LtE: ast.Gt, ast.Gt: ast.LtE, ast.GtE: ast.Lt, ast.Eq: ast.NotEq, ast.NotEq: ast.Eq}
 TWINS = {"min": "max", "max": "min", "sin": "cos", "cos": "sin", "any": "all", "all": "any"}
-KILLED, SURVIVED, BROKEN = 1, 0, 2
+BROKEN = 2
 
 
 @dataclass(frozen=True)
@@ -191,7 +191,8 @@ def verdict(mutant: Mutant, near: Sequence[str], tests: Sequence[str], seconds: 
     try:
         if near and in_fork(lambda: run_tests(near), seconds) != 0:
             return True
-        return in_fork(lambda: run_tests(tests), seconds) != 0
+        # the limit ends a loop among the near tests; here it only ends the search
+        return in_fork(lambda: run_tests(tests), seconds) not in {0, -signal.SIGXCPU, -signal.SIGKILL}
     finally:
         mutant.module.write_text(original, encoding="utf-8")
 

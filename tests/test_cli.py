@@ -5,7 +5,9 @@ from __future__ import annotations
 import contextlib
 import io
 import json
+import math
 import os
+import resource
 import subprocess
 import sys
 import types
@@ -25,6 +27,7 @@ from fabgen.sizing.front import Front, FrontPoint
 from fabgen.sizing.records import SelfCheck
 from fabgen.start import ask_job, templates, with_value
 from tests.samples import sample_feed
+from tests.test_job import FAULTS
 
 ROOT = Path(__file__).parent.parent
 JOB = str(ROOT / "templates" / "hydrogen-wire.toml")
@@ -228,6 +231,7 @@ def test_a_failed_self_check_stops_the_pack(
         (ImportError("libGL.so.1: cannot open shared object file"), 1, "install it: apt-get install libgl1"),
         (ImportError("libodd.so.7: cannot open"), 1, "install the system package that holds it"),
         (ImportError("No module named 'scipy'"), 1, "Install fabgen again"),
+        (ImportError("No module named 'fabgen.sizing.match'"), 1, "Install fabgen again"),
         (ZeroDivisionError("float division by zero"), 1, "a fault in fabgen itself: ZeroDivisionError in test_cli.py"),
     ],
 )
@@ -313,6 +317,61 @@ def test_own_stock_rows(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> N
         forget_user_rows()
     own.write_text("[[lining]]\nkey = 1\n", encoding="utf-8")
     assert main(["stock", "--stock", str(own)]) == 2
+
+
+def test_a_job_may_name_own_rows(sizing: object, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    from fabgen.stock.tables import forget_user_rows
+
+    job, own = tmp_path / "job.toml", tmp_path / "own.toml"
+    text = Path(JOB).read_text(encoding="utf-8")
+    job.write_text(with_value(text, "can", "lining", '"drawer-foil"'), encoding="utf-8")
+    shipped = (ROOT / "fabgen" / "stock" / "linings.toml").read_text(encoding="utf-8")
+    row = "[[lining]]" + shipped.split("[[lining]]")[1].replace('"copper-foil-35"', '"drawer-foil"')
+    own.write_text(row, encoding="utf-8")
+    assert main(["size", str(job), "--quiet"]) == 2
+    assert "can.lining = 'drawer-foil' is not in the stock tables" in capsys.readouterr().err
+    try:
+        assert main(["size", str(job), "--quiet", "--stock", str(own)]) == 0
+    finally:
+        forget_user_rows()
+
+
+STOCK_FAULTS = {
+    "no file": (None, "no such file; give a TOML file"),
+    "not TOML": ("[[wire", "cannot be read as TOML"),
+    "unknown kind": ("[[wires]]\nkey = 'x'\n", "unknown kind of stock 'wires'. Did you mean 'wire'?"),
+    "one table": ("[wire]\nkey = 'x'\n", "'wire' is one table; write rows as [[wire]]"),
+    "not whole": ("[[wire]]\nkey = 'x'\n", "[[wire]]"),
+    "twice": (2 * "[[wire]]\nkey='x'\nname='y'\ndiameters_mm=[1]\nsource='s'\nknown_from='m'\n", "stands there twice"),
+}
+
+
+@pytest.mark.parametrize("name", STOCK_FAULTS)
+def test_each_fault_of_own_rows_is_named(name: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    text, words = STOCK_FAULTS[name]
+    own = tmp_path / "own.toml"
+    if text is not None:
+        own.write_text(text, encoding="utf-8")
+    assert main(["stock", "--stock", str(own)]) == 2
+    captured = capsys.readouterr()
+    assert words in captured.err
+    assert "own.toml" in captured.err or name == "unknown kind"
+    assert captured.out == ""
+
+
+@pytest.mark.parametrize("name", FAULTS)
+def test_a_wrong_job_is_status_2_and_writes_nothing(
+    name: str, sizing: Callable[[Sizing], None], tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    sizing(raising(AssertionError("was computed")))
+    text, words = FAULTS[name]
+    (tmp_path / "job.toml").write_text(text, encoding="utf-8")
+    assert main(["pack", str(tmp_path / "job.toml"), "-o", str(tmp_path / "pack")]) == 2
+    captured = capsys.readouterr()
+    assert captured.out == ""
+    assert captured.err.startswith("fabgen: ")
+    assert [word for word in words if word not in captured.err] == []
+    assert [path.name for path in tmp_path.iterdir()] == ["job.toml"]
 
 
 def test_start_lists_and_writes(
@@ -545,6 +604,21 @@ def test_short_answers_load_no_heavy_package(words: list[str]) -> None:
     )
     result = subprocess.run([sys.executable, "-c", code, *words], capture_output=True, text=True, cwd=ROOT, check=False)
     assert result.stderr.endswith("LOADED ")
+
+
+@pytest.mark.parametrize(
+    ("words", "status"),
+    [(["--help"], 0), (["stock"], 0), (["start", "--list"], 0), (["size", "none.toml"], 2), (["nonsense"], 2)],
+)
+def test_short_answers_are_quick(words: list[str], status: int) -> None:
+    """0.4 s of processor time, the best of three: another program's load is not this one's."""
+    best = math.inf
+    for _ in range(3):
+        before = resource.getrusage(resource.RUSAGE_CHILDREN)
+        assert run(*words).returncode == status
+        after = resource.getrusage(resource.RUSAGE_CHILDREN)
+        best = min(best, after.ru_utime + after.ru_stime - before.ru_utime - before.ru_stime)
+    assert best < 0.4
 
 
 def test_a_reader_that_goes_away_is_no_error() -> None:

@@ -13,7 +13,9 @@ from pathlib import Path
 
 import pytest
 
-from fabgen.cli import EXIT_STATUSES
+from fabgen.cli import EXIT_STATUSES, build_parser, main
+from fabgen.completion import commands_of as subparsers
+from fabgen.completion import options_of
 from fabgen.folder import RECORD_NAME, files_in, sha256_of
 from fabgen.job_page import MEANINGS, job_page
 from fabgen.job_reader import parse_job
@@ -57,6 +59,71 @@ def test_every_command_runs(
             check=False,
         )
         assert result.returncode == 0, f"{words}: {result.stderr}"
+
+
+def commands_in_words() -> list[tuple[str, str]]:
+    """Commands of fabgen within sentences, tables and the comments of templates, each with where it stands."""
+    found = [(page.name, text) for page in PAGES for text in re.findall(r"`(fabgen [^`]+)`", page.read_text("utf-8"))]
+    for path in sorted((ROOT / "templates").glob("*.toml")):
+        found += [(path.name, text) for text in re.findall(r"# (fabgen stock \w+)", path.read_text("utf-8"))]
+    return sorted(set(found))
+
+
+@pytest.mark.parametrize(("where", "text"), commands_in_words(), ids=lambda item: item)
+def test_every_command_in_a_sentence_is_one(
+    where: str, text: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    own = tmp_path / "own.toml"
+    own.write_text("", encoding="utf-8")
+    places = {"JOB": str(ROOT / "templates" / "hydrogen-wire.toml"), "DIR": "pack", "FILE": str(own), "...": "stock"}
+    words = [places.get(word, word) for word in shlex.split(text)[1:]]
+    if words[0] in {"size", "check", "pack"}:
+        # these run in the commands of their own lines; here they must be understood
+        assert build_parser().parse_args(words).command == words[0]
+    else:
+        assert main(words) == 0, where
+        assert capsys.readouterr().out
+
+
+def test_every_option_named_is_one() -> None:
+    parser = build_parser()
+    known = {option for _, sub in [("", parser), *subparsers(parser)] for option in options_of(sub)}
+    # the developers' page has options of other programs
+    for page in (page for page in PAGES if page.name != "DEVELOPERS.md"):
+        text = re.sub(r"```.*?```", "", page.read_text(encoding="utf-8"), flags=re.DOTALL)
+        for option in re.findall(r"`(--[a-z-]+)", text):
+            assert option in known, f"{page.name}: {option}"
+
+
+@pytest.mark.slow
+def test_every_module_that_the_pages_run_can_be_run() -> None:
+    """The long ones are not run here: that they load and have a main is what can fall behind."""
+    names = {
+        name for page in PAGES for name in re.findall(r"python -m ((?:tests|fabgen)[\w.]*)", page.read_text("utf-8"))
+    }
+    assert {"tests.regenerate", "tests.mutation", "tests.bench.fields"} <= names
+    for name in names:
+        path = ROOT / (name.replace(".", "/") + ".py")
+        assert '__name__ == "__main__"' in path.read_text(encoding="utf-8"), name
+        subprocess.run(
+            [sys.executable, "-c", f"import {name}"], check=True, cwd=ROOT, env={**os.environ, "PYTHONPATH": str(ROOT)}
+        )
+
+
+@pytest.mark.slow
+def test_a_mutant_is_noticed_and_an_idle_one_is_not(tmp_path: Path) -> None:
+    only = tmp_path / "test_only.py"
+    only.write_text(
+        "import math\nimport pytest\nfrom fabgen.theory.lines import two_wire_ohm\n"
+        "def test_it():\n    assert two_wire_ohm(10, 4) == pytest.approx(120 * math.acosh(2.5), rel=1e-3)\n",
+        encoding="utf-8",
+    )
+    result = subprocess.run(
+        [sys.executable, "-m", "tests.mutation", "theory", "--modules", "lines", "--tests", str(only), "--sample", "9"],
+        capture_output=True, text=True, check=True, cwd=ROOT, env={**os.environ, "PYTHONPATH": str(ROOT)},
+    )  # fmt: skip
+    assert re.search(r"theory: [1-8] of 9 noticed", result.stdout), result.stdout
+    assert re.search(r"fabgen/theory/lines.py:\d+: .*survived, reached by no test", result.stdout)
 
 
 @pytest.mark.parametrize("page", PAGES, ids=lambda page: page.name)

@@ -6,10 +6,13 @@ import os
 import shutil
 import subprocess
 import sys
-import zipfile
+from collections.abc import Callable
 from pathlib import Path
 
 import pytest
+
+from fabgen import commands
+from fabgen.folder import files_in
 
 ROOT = Path(__file__).parent.parent
 pytestmark = pytest.mark.slow
@@ -17,7 +20,7 @@ pytestmark = pytest.mark.slow
 
 @pytest.fixture(scope="module")
 def installed(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    """The content of the wheel, unpacked where the tree is not seen; built from a copy, so the tree stays clean."""
+    """The wheel, installed where the tree is not seen; built from a copy, so the tree stays clean."""
     folder = tmp_path_factory.mktemp("wheel")
     source = folder / "source"
     keep_out = shutil.ignore_patterns(".git", ".venv", "build", "*.egg-info", "__pycache__", "out_examples", "tests")
@@ -29,21 +32,27 @@ def installed(tmp_path_factory: pytest.TempPathFactory) -> Path:
     if result.returncode and "setuptools" in result.stderr:
         pytest.skip("no network to fetch the build tool")
     assert result.returncode == 0, result.stderr
-    with zipfile.ZipFile(next(folder.glob("fabgen-*.whl"))) as wheel:
-        wheel.extractall(folder / "installed")
-    return folder / "installed"
+    place = folder / "installed"
+    wheel = next(folder.glob("fabgen-*.whl"))
+    subprocess.run(
+        [sys.executable, "-m", "pip", "install", "--quiet", "--no-deps", "--target", str(place), str(wheel)],
+        check=True, capture_output=True,
+    )  # fmt: skip
+    shutil.rmtree(source)
+    return place
 
 
 def run(installed: Path, words: list[str], cwd: Path, environment: dict[str, str]) -> subprocess.CompletedProcess[str]:
+    """The installed command itself, in a folder that is not the tree."""
     return subprocess.run(
-        [sys.executable, "-m", "fabgen", *words], capture_output=True, text=True, check=False, cwd=cwd,
+        [str(installed / "bin" / "fabgen"), *words], capture_output=True, text=True, check=False, cwd=cwd,
         env={**environment, "PYTHONPATH": str(installed)},
     )  # fmt: skip
 
 
 def test_it_holds_code_tables_templates_and_fonts_and_nothing_else(installed: Path) -> None:
     names = {path.relative_to(installed).as_posix() for path in installed.rglob("*") if path.is_file()}
-    names = {name for name in names if ".dist-info/" not in name}
+    names = {name for name in names if ".dist-info/" not in name and "__pycache__" not in name} - {"bin/fabgen"}
     assert all(name.startswith("fabgen/") for name in names)
     for name in ("templates/hydrogen-wire.toml", "stock/metals.toml", "py.typed", "drawing/DejaVuSans.ttf"):
         assert f"fabgen/{name}" in names
@@ -51,21 +60,56 @@ def test_it_holds_code_tables_templates_and_fonts_and_nothing_else(installed: Pa
     assert {name for name in names if name.endswith(".py")} == tree
 
 
+OWN_ROW = """
+[[wire]]
+key = "reel"
+name = "reel in the drawer"
+metal = "cu-etp"
+diameters_mm = [3.3]
+source = "measured"
+known_from = "measured"
+"""
+# Every command, each with what its output must hold.
+COMMANDS = (
+    (["--version"], "fabgen "),
+    (["--help"], "exit status"),
+    (["--completion", "bash"], "complete -o filenames"),
+    (["--completion", "zsh"], "bashcompinit"),
+    (["--completion", "fish"], "complete -c fabgen"),
+    (["start"], "hydroxyl-choke"),
+    (["start", "--list"], "hydrogen-brass"),
+    (["start", "--keys"], "frequency_mhz"),
+    (["start", "hydrogen-wire", "-o", "job.toml"], "job.toml is written"),
+    (["stock"], "source: "),
+    (["stock", "metal", "brass", "--json"], "cuzn37"),
+    (["stock", "wire", "--stock", "own.toml"], "reel in the drawer"),
+    (["size", "job.toml", "--quiet"], "return loss"),
+    (["size", "job.toml", "--quiet", "--json", "--plots", "plots"], '"fabgen_version"'),
+    (["check", "job.toml", "--quiet"], "findings"),
+    (["pack", "job.toml", "-o", "some", "--only", "tables", "--quiet"], "5 files"),
+    (["pack", "job.toml", "-o", "pack", "--quiet"], "return loss"),
+    (["check", "pack", "--quiet"], "pack pack"),
+)
+
+
 def test_every_command_runs_without_the_tree(
-    installed: Path, tmp_path: Path, real_environment: dict[str, str], real_pack: object
+    installed: Path, tmp_path: Path, real_environment: dict[str, str], real_pack: Callable[[str], Path]
 ) -> None:
-    real_pack("hydrogen-wire")  # type: ignore[operator]
+    wanted = real_pack("hydrogen-wire")
     environment = {key: value for key, value in real_environment.items() if key in {"PATH", "HOME", "FABGEN_CACHE"}}
-    environment |= {key: value for key, value in os.environ.items() if key.startswith("COV")}
-    for words in (
-        ["start", "hydrogen-wire", "-o", "job.toml"],
-        ["start", "--list"],
-        ["stock", "metal"],
-        ["size", "job.toml", "--quiet"],
-        ["check", "job.toml", "--quiet"],
-        ["pack", "job.toml", "-o", "pack", "--quiet"],
-    ):
+    (tmp_path / "own.toml").write_text(OWN_ROW, encoding="utf-8")
+    for words, output in COMMANDS:
         result = run(installed, words, tmp_path, environment)
         assert result.returncode == 0, f"{words}: {result.stderr}"
-    pack = real_pack("hydrogen-wire")  # type: ignore[operator]
-    assert (tmp_path / "pack" / "record.json").read_bytes() == (pack / "record.json").read_bytes()
+        assert output in result.stdout, words
+    assert {words[0] for words, _ in COMMANDS if not words[0].startswith("-")} == set(commands.COMMANDS)
+    assert files_in(tmp_path / "pack") == files_in(wanted)
+    assert [n for n in files_in(wanted) if (tmp_path / "pack" / n).read_bytes() != (wanted / n).read_bytes()] == []
+
+
+def test_it_is_the_installed_copy_that_runs(installed: Path, tmp_path: Path) -> None:
+    result = subprocess.run(
+        [sys.executable, "-c", "import fabgen; print(fabgen.__file__)"], capture_output=True, text=True, check=True,
+        cwd=tmp_path, env={"PATH": os.environ["PATH"], "PYTHONPATH": str(installed)},
+    )  # fmt: skip
+    assert Path(result.stdout.strip()).is_relative_to(installed)
