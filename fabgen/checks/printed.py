@@ -6,12 +6,14 @@ Depends on: checks (registry, texts), parts (can_printed, split, floor_holes), s
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import dataclass
 
 from fabgen.checks.registry import Context, Fault, check, source_text
 from fabgen.checks.texts import down, mm, up
 from fabgen.parts.can_printed import ledge_of
 from fabgen.parts.contour import bounds_mm
 from fabgen.parts.floor_holes import floor_holes
+from fabgen.parts.kernel import teardrop_roof_mm
 from fabgen.parts.records import Part
 from fabgen.parts.split import EAR_SCREW
 from fabgen.stock import tables
@@ -78,22 +80,40 @@ def in_pieces(context: Context) -> Iterator[Fault]:
         )
 
 
+@dataclass(frozen=True)
+class Roof:
+    """A flat roof of a printed body, and how far the printer has to bridge it."""
+
+    part: str
+    feature: str
+    span_mm: float
+
+
+def roofs(context: Context) -> tuple[Roof, ...]:
+    """Every flat roof of the printed parts. Bodies have 45 degree cones, chamfers and teardrops where they would have
+    ceilings; the flat tops of the joint screws' level holes are what is left. The tests measure all meshes for it."""
+    found = []
+    for key in ("can", "choke"):
+        if any(part.key == f"screw-{key}" for part in context.parts):
+            hole = tables.screw(EAR_SCREW).clearance_medium_mm + context.limit("print_hole_allowance_mm")
+            found.append(Roof(key, "level holes of the joint screws", teardrop_roof_mm(hole)))
+    return tuple(found)
+
+
 @check("PRINT-104", "caution", "bridge_max_mm")
 def bridges(context: Context) -> Iterator[Fault]:
-    """Cross holes whose roof has to be bridged: those of the joints' screws, which lie flat in print."""
+    """Flat roofs of all printed parts, which have to be bridged."""
     most = context.limit("bridge_max_mm")
-    if not any(part.key.startswith("screw-can") for part in context.parts):
-        return
-    hole = tables.screw(EAR_SCREW).clearance_medium_mm + context.limit("print_hole_allowance_mm")
-    if hole > most:
-        yield Fault(
-            part="can",
-            feature="holes of the joint screws",
-            value=mm(hole),
-            limit=mm(most),
-            message=f"lying holes of {mm(hole)} bridge more than the printer can",
-            cure=f"drill them after printing, or allow {up(hole):g} mm (overrides.bridge_max_mm)",
-        )
+    for roof in roofs(context):
+        if roof.span_mm > most:
+            yield Fault(
+                part=roof.part,
+                feature=roof.feature,
+                value=mm(roof.span_mm),
+                limit=mm(most),
+                message=f"{roof.feature}: a roof of {mm(roof.span_mm)} bridges more than the printer can",
+                cure=f"drill them after printing, or allow {up(roof.span_mm):g} mm (overrides.bridge_max_mm)",
+            )
 
 
 @check("PRINT-105", "caution", "insert_wall_min_mm")

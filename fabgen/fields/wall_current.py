@@ -176,10 +176,11 @@ def _level(wall: Sheet, z_m: float) -> LineCurrent:
 def _upright(wall: Sheet, rim_m: float) -> UprightCurrent:
     """Crossing currents row by row, with their phase from line to line, so that a zero between two lines is seen."""
     height = wall.corners_m[..., 2]
-    body = wall.where(~(np.abs(height - rim_m) < SAME_PLACE * rim_m).any(1))
+    at_rim: NDArray[np.bool_] = np.abs(height - rim_m) < SAME_PLACE * rim_m
+    body = wall.where(~np.asarray(at_rim.any(1)))
     rows: dict[int, dict[float, complex]] = {}
-    for row, angle, density in upright_crossings(body):
-        rows.setdefault(row, {})[angle] = density
+    for middle, angle, density in upright_crossings(body):
+        rows.setdefault(middle, {})[angle] = density
     largest = np.zeros(len(ANGLES_DEG))
     for row in rows.values():
         places = sorted(row)

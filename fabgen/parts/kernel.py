@@ -103,6 +103,15 @@ def box(low: Point3, high: Point3) -> cadquery.Shape:
     return cq.Solid.makeBox(*(b - a for a, b in zip(low, high, strict=True)), cq.Vector(*low))
 
 
+TEARDROP_FLAT = 1.1
+"""Height of a teardrop's flat roof over its axis, in radii."""
+
+
+def teardrop_roof_mm(diameter_mm: float) -> float:
+    """Width of a teardrop hole's flat roof: what the printer has to bridge, 2 (sqrt 2 - 1.1) r."""
+    return diameter_mm * (math.sqrt(2) - TEARDROP_FLAT)
+
+
 def teardrop(start: Point3, end: Point3, diameter_mm: float) -> cadquery.Shape:
     """A horizontal hole that prints without support: a cylinder with a 45 degree roof, flat at 1.1 radii so
     that the roof's bridge stays short."""
@@ -114,8 +123,8 @@ def teardrop(start: Point3, end: Point3, diameter_mm: float) -> cadquery.Shape:
         raise GeometryError("a teardrop hole lies level; its ends must have the same height")
     plane = cq.Plane(origin=start, xDir=(-axis.y, axis.x, 0), normal=axis.toTuple())
     up = 1.0 if plane.yDir.z > 0 else -1.0
-    s, flat = radius * math.sqrt(0.5), 1.1 * radius
-    half = radius * math.sqrt(2) - flat
+    s, flat = radius * math.sqrt(0.5), TEARDROP_FLAT * radius
+    half = teardrop_roof_mm(diameter_mm) / 2
     corners = ((s, s), (half, flat), (-half, flat), (-s, s))
     points = [plane.toWorldCoords((u, up * v)) for u, v in corners]
     below = plane.toWorldCoords((0.0, -up * radius))

@@ -452,7 +452,7 @@ PAIRS: dict[str, Pair] = {
         "pieces",
     ),
     "PRINT-104": Pair(
-        lambda: overridden("bridge_max_mm", 3.0, base(WIRE, "printed"), parts_of(WIRE, "printed")),
+        lambda: overridden("bridge_max_mm", 1.0, base(WIRE, "printed"), parts_of(WIRE, "printed")),
         good(WIRE, "printed"),
         "caution",
         "bridge",
