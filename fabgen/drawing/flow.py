@@ -91,9 +91,10 @@ def flow(paper: Paper, blocks: Sequence[Block]) -> list[Page]:
 
     A block higher than a column is set alone and the caller must have made it fit."""
     pages = _flow(paper, blocks)
-    if len(pages) > 1:
-        close = _flow(paper, [replace(block, height=block.height - block.slack) for block in blocks])
-        return close if len(close) < len(pages) else pages
+    for share in (0.4, 0.7, 1.0) if len(pages) > 1 else ():
+        close = _flow(paper, [replace(block, height=block.height - share * block.slack) for block in blocks])
+        if len(close) < len(pages):
+            return close
     return pages
 
 
@@ -167,10 +168,9 @@ def paragraph(
         if bullet and i == 0:
             items.append(Text(0, -size * 1.3, bullet, size, bold=bold, colour=colour))
         blocks.append(Block(pitch, tuple(items)))
-    if len(blocks) > 1:
-        blocks[0] = replace(blocks[0], stay=True)
-    if len(blocks) > 3:
-        blocks[-2] = replace(blocks[-2], stay=True)
+    # No line stands alone: three lines stay whole, of more the first two and the last two.
+    held = {0, len(blocks) - 2} if len(blocks) > 3 else set(range(len(blocks) - 1))
+    blocks = [replace(block, stay=i in held and len(blocks) > 1) for i, block in enumerate(blocks)]
     return [*blocks, gap(size * 0.5)]
 
 
@@ -279,7 +279,7 @@ def _row_block(
     items.append(Line(0, -height, x, -height, rule))
     if rule == "outline":
         items.insert(0, Polyline(((0, 0), (x, 0), (x, -height), (0, -height)), None, True, (0.93, 0.93, 0.93)))
-    return Block(height, tuple(items), slack=0.2 * size)
+    return Block(height, tuple(items), slack=0.1 * size)
 
 
 def beside(blocks: Sequence[Block], offsets: Sequence[float]) -> Block:

@@ -54,6 +54,25 @@ class Measured:
     notch_x_mm: float | None = None
 
 
+def squared(shape: Any) -> Any:
+    """The shape turned so that the axis of its largest cylinder lies along the nearest coordinate axis: a tube that
+    sits askew in the feed is made and drawn straight."""
+    import cadquery
+
+    rounds = [f for f in shape.Faces() if f.geomType() == "CYLINDER"]
+    if not rounds:
+        return shape
+    way = cadquery.Vector(max(rounds, key=lambda f: round(f.Area(), 3))._geomAdaptor().Cylinder().Axis().Direction())
+    near = max((cadquery.Vector(*v) for v in ((1, 0, 0), (0, 1, 0), (0, 0, 1))), key=lambda v: abs(v.dot(way)))
+    if near.dot(way) < 0:
+        way = -way
+    turn, angle = way.cross(near), math.degrees(way.getAngle(near))
+    if angle < 1e-4:
+        return shape
+    centre = shape.Center()
+    return shape.rotate(centre, centre + turn, angle)
+
+
 def measured(shape: Any) -> Measured:
     """Read the solid's plane and cylindrical faces."""
     from OCP.BRepAdaptor import BRepAdaptor_Surface
@@ -200,6 +219,15 @@ def hole_rows(m: Measured) -> tuple[tuple[str, ...], ...]:
     )
 
 
+def bore_of_tube(m: Measured) -> Cross | None:
+    """The bore of a round tube that lies along y: as wide as high, with one hole along its axis."""
+    wide, high = m.high[0] - m.low[0], m.high[2] - m.low[2]
+    middle = ((m.low[0] + m.high[0]) / 2, (m.low[2] + m.high[2]) / 2)
+    if len(m.crosses) != 1 or m.rounds or abs(wide - high) > SAME_MM or m.crosses[0].direction != (0.0, 1.0, 0.0):
+        return None
+    return m.crosses[0] if math.dist(middle, (m.crosses[0].at[0], m.crosses[0].at[2])) < 2 * SAME_MM else None
+
+
 def cross_rows(m: Measured) -> tuple[tuple[str, ...], ...]:
     """Rows of holes across: middle of the hole, direction of its axis, diameter."""
     return tuple(
@@ -209,12 +237,20 @@ def cross_rows(m: Measured) -> tuple[tuple[str, ...], ...]:
             "; ".join(number(v, 3) for v in c.direction),
             f"{DIAMETER}{c.diameter_mm:.2f}",
         )
-        for i, c in enumerate(m.crosses, start=1)
+        for i, c in enumerate(() if bore_of_tube(m) else m.crosses, start=1)
     )
 
 
 def front_asks(m: Measured) -> list[Ask]:
     """Dimensions for the view along +y or the section by y = 0: diameters about the axis, levels, overall width."""
+    bore = bore_of_tube(m)
+    if bore is not None:
+        at = (bore.at[0] + bore.diameter_mm / 2 * math.sqrt(0.5), bore.at[2] + bore.diameter_mm / 2 * math.sqrt(0.5))
+        outer = f"{DIAMETER}{number(m.high[0] - m.low[0])}"
+        return [
+            along_x("diameter", m.low[0], m.high[0], m.low[2], "bottom", text=outer),
+            leader("bore", bore.diameter_mm, f"{DIAMETER}{number(bore.diameter_mm)}", at, 45.0),
+        ]
     asks: list[Ask] = []
     seen: set[float] = set()
     for r in about_axis(m):

@@ -55,7 +55,7 @@ WORK: dict[str, str] = {
     "assembly.do": "Do:",
     "assembly.tools": "Tools:",
     "assembly.caution": "Caution:",
-    "assembly.coating": "{lining}, {thickness} mm dry",
+    "assembly.coating": "{lining}, {thickness} mm thick",
     "assembly.join": "Joint:",
     "assembly.measure": "Measure before going on:",
     "step.tool.title": "{n}. Forms and test bend",
@@ -123,7 +123,7 @@ WORK: dict[str, str] = {
     "step.lining.foil.do": "Line floor and wall ({lining}); overlap floor and wall so that they touch all round.",
     "step.lining.foil.tools": "knife, roller, multimeter.",
     "step.lining.foil.caution": (
-        "foil edges cut like a knife; solder with moving air and short, hot plastic gives off fumes."
+        "foil edges cut like a knife. Solder in moving air and for a short time: hot plastic gives off fumes."
     ),
     "step.lining.foil.join": (
         "foil over foil by 10 mm or more, rubbed down; solder or conductive glue across each overlap."
@@ -170,6 +170,7 @@ WORK: dict[str, str] = {
         "can and screw it down."
     ),
     "step.choke.printed.tools": "screwdriver or hexagon key, what the lining needs.",
+    "step.choke.printed.caution": "as for the lining.",
     "step.choke.printed.join": "the lining of ring and can joined all round at the ring's floor.",
     "step.choke.printed.measure": "gap equal in four directions within 0.5 mm; under {limit} ohm ring to can.",
     "step.choke.level.title": "{n}. Wall of the choke",
@@ -202,7 +203,7 @@ WORK: dict[str, str] = {
         "this floor takes no soft solder: solder the feet to a plate of brass or copper screwed to the floor, or "
         "thread the feet and set a nut on both sides of the floor."
     ),
-    "step.loop.foil-wire.join": "solder both feet to the foil all round, hot and short: the plastic below it softens.",
+    "step.loop.foil-wire.join": "solder both feet to the foil all round, iron hot and time short: the plastic softens.",
     "step.loop.paint-wire.join": (
         "thread the feet: a nut and a plain washer on both sides of the floor, paint over the washer's edge."
     ),
@@ -210,7 +211,8 @@ WORK: dict[str, str] = {
         "thread the feet: a nut and a plain washer on both sides of the floor, bright copper below them."
     ),
     "step.loop.foil-sheet.join": (
-        "screws with plain washers, so that the foil does not tear; solder the feet's edges to it, hot and short."
+        "screws with plain washers, so that the foil does not tear; solder the feet's edges to it, iron hot and time "
+        "short."
     ),
     "step.loop.paint-sheet.join": "screws with plain washers; paint once more over the edges of the feet.",
     "step.loop.plating-sheet.join": "screws with plain washers, bright copper below the feet.",
@@ -224,13 +226,13 @@ WORK: dict[str, str] = {
     ),
     "step.loop.measure": (
         "height {height} ±{height_tolerance} mm at four points of the loop; bars {pitch} mm apart, centre to centre; "
-        "loop ⌀{diameter} mm; 0 ohm loop to can."
+        "loop ⌀{diameter} mm; under {limit} ohm loop to can."
     ),
     "step.connector.title": "{n}. Connector",
     "step.connector.do": "Fit the connector from below; its flange lies on bright metal.",
     "step.connector.tools": "screwdriver or hexagon key, torque as the screw's maker states.",
     "step.connector.join": "screws and nuts; no paint or oxide between flange and floor.",
-    "step.connector.measure": "0 ohm flange to can; centre pin open to the can (over 10 megohm).",
+    "step.connector.measure": "under {limit} ohm flange to can; centre pin open to the can (over 10 megohm).",
     "step.coax.title": "{n}. Coax up the bar",
     "step.coax.do": (
         "Lay the coax along the bar at +y from the connector up to the tap. Strip and bend the core as its page says "
@@ -293,7 +295,7 @@ WORK: dict[str, str] = {
     "bench.tap_down": "Move the crossing down the bars.",
     "bench.no_dip": "No dip at all, trace at the rim of the chart",
     "bench.no_dip_do": "Look for a short of core to jacket, an open joint of bar to floor, a missing crossing.",
-    "bench.no_dip_amount": "core to can over 10 megohm, bars to can under 0.01 ohm",
+    "bench.no_dip_amount": "core to can over 10 megohm, bars to can under {limit} ohm",
     "bench.shallow": "Dip in place, shallow, and wider than expected",
     "bench.shallow_do": "Look for loss: poor floor joint, bad lining, flux or paint on the bars.",
     "bench.shallow_amount": "floor to rim under {limit} ohm",

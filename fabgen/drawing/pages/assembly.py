@@ -9,7 +9,7 @@ from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, beside, framed, gap, hea
 from fabgen.drawing.hidden import ISOMETRIC, Curve, dressed
 from fabgen.drawing.model import Item, bounds, number
 from fabgen.drawing.pages.base import Context, Draft, draft
-from fabgen.drawing.pages.lining import limit_text, lined, one_digit, reading
+from fabgen.drawing.pages.lining import is_coated, limit_text, lined, one_digit, reading
 from fabgen.drawing.pages.steps import ABOVE_EYE, Step, StepView
 from fabgen.drawing.pages.stock import item_leaders, items_of
 from fabgen.drawing.picture import Body, Drawn, close_up, free, outside, shape_of
@@ -20,7 +20,6 @@ PICTURE_MM = 78.0
 PICTURE_HEIGHT_MM = 62.0
 TEXT_MM = 85.0
 WHOLE = {"loop", "lining"}  # steps that need the whole floor to show which way things point
-COATED = ("foil-floor", "foil-wall", "foil-choke-wall")  # the faces that paint or plating covers
 
 
 def drafts(context: Context) -> list[Draft]:
@@ -40,12 +39,13 @@ def _step_block(context: Context, n: int, view: StepView) -> Block:
 
 
 def _forms(step: Step) -> Block:
-    """Forms and strips that are no part of the feed, one under the other."""
-    shapes = [(p, shape_of(p)) for p in step.parts]
-    found = [(p, s) for p, s in shapes if s is not None][:3]
-    high = PICTURE_HEIGHT_MM / max(len(found), 1)
-    pictures = [free(outside("", [Body(p, s)], ISOMETRIC), PICTURE_MM, high) for p, s in found]
-    return stack(pictures) if pictures else Block(1.0, ())
+    """Forms and strips that are no part of the feed, one under the other, of more than three two beside each other."""
+    shapes = [(p, s) for p in step.parts if (s := shape_of(p)) is not None]
+    across = 1 if len(shapes) <= 3 else 2
+    wide, high = PICTURE_MM / across, PICTURE_HEIGHT_MM / max(-(-len(shapes) // across), 1)
+    pictures = [free(outside("", [Body(p, s)], ISOMETRIC), wide, high) for p, s in shapes]
+    rows = [pictures[i : i + across] for i in range(0, len(pictures), across)]
+    return stack([beside(row, [wide * k for k in range(len(row))]) for row in rows]) if rows else Block(1.0, ())
 
 
 def picture_block(context: Context, view: StepView) -> Block:
@@ -73,8 +73,10 @@ def _lined(context: Context, view: StepView) -> list[tuple[str, tuple[Curve, ...
     """Item numbers of the foils, or none for paint and plating, and the lines that show what is covered."""
     sizes, numbers = context.feed.sizes, items_of(context.parts)
     keys = [p.key for p in view.step.parts if p.key.startswith("foil")]
-    if view.step.kind == "lining" and not keys:
-        keys = list(COATED)
+    if is_coated(context.feed):
+        ring = any(step.step.kind == "choke" for step in context.steps)
+        choke = ["foil-choke-wall"] if (view.step.kind == "choke") == ring else []
+        keys = {"lining": ["foil-floor", "foil-wall", *choke], "choke": choke}.get(view.step.kind, [])
     outer = sizes.can_bore_mm + 2 * sizes.wall_mm
     return [(str(numbers.get(key, "")), lined(key, sizes, outer, ABOVE_EYE)) for key in keys]
 

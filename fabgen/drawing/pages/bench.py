@@ -140,7 +140,7 @@ def _off_resistance(feed: Feed) -> list[Advice]:
 
 def _missing(feed: Feed) -> list[Advice]:
     return [
-        Advice(say("bench.no_dip"), say("bench.no_dip_do"), say("bench.no_dip_amount")),
+        Advice(say("bench.no_dip"), say("bench.no_dip_do"), say("bench.no_dip_amount", limit=limit_text(feed))),
         Advice(say("bench.shallow"), say("bench.shallow_do"), say("bench.shallow_amount", limit=limit_text(feed))),
         Advice(say("bench.hand"), say("bench.hand_do"), say("bench.hand_amount")),
     ]

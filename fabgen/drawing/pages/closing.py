@@ -91,14 +91,16 @@ def settings_blocks(context: Context) -> list[Block]:
                                    triangles=s.triangles, largest=number(s.largest_edge_wavelengths, 4))),
         (say("settings.unknowns"), say("settings.unknowns_value", unknowns=s.unknowns, solves=s.solves)),
         (say("settings.uncertainty"), say("settings.uncertainty_value", mhz=number(s.resonance_uncertainty_mhz, 2),
-                                          db=number(s.return_loss_uncertainty_db, 2))),
+                                          db=number(s.return_loss_uncertainty_db, 1))),
         (say("settings.capacitor"), f"{feed.capacitor.formula} ({feed.capacitor.source})"),
     ]  # fmt: skip
     blocks = [
         heading(say("settings.head")),
         *table("settings", (say("settings.what"), say("table.value")), rows, widths=(50, 120)),
     ]
-    return [*blocks, *_checks_table(context), *_modes_table(context), *_yield_table(context), *_sources(context)]
+    # What tolerances do and where figures come from stay together: no short table has a sheet of its own.
+    last = kept([*_yield_table(context), *_sources(context)])
+    return [*blocks, *_checks_table(context), *_modes_table(context), *last]
 
 
 def _checks_table(context: Context) -> list[Block]:
@@ -110,19 +112,19 @@ def _checks_table(context: Context) -> list[Block]:
     if not rows:
         return []
     head = tuple(say(f"settings.check_{k}") for k in ("name", "value", "limit", "result", "meaning"))
-    return [heading(say("settings.checks_head"), 2.5), *table("self-checks", head, rows)]
+    return [heading(say("settings.checks_head"), 2.5), *table("self-checks", head, rows, widths=(30, 18, 16, 17, 89))]
 
 
 def _modes_table(context: Context) -> list[Block]:
     rows = [
-        (m.name, f"{number(m.cutoff_mhz, 1)} MHz", say("words.yes") if m.propagates else say("words.no"),
+        (m.name, number(m.cutoff_mhz, 1), say("words.yes") if m.propagates else say("words.no"),
          say("words.yes") if m.excited else say("words.no"), m.why)
         for m in context.feed.modes
     ]  # fmt: skip
     if not rows:
         return []
     head = tuple(say(f"settings.mode_{k}") for k in ("name", "cutoff", "propagates", "excited", "why"))
-    return [heading(say("settings.modes_head"), 2.5), *table("modes", head, rows)]
+    return [heading(say("settings.modes_head"), 2.5), *table("modes", head, rows, widths=(15, 26, 25, 17, 87))]
 
 
 def _yield_table(context: Context) -> list[Block]:

@@ -53,6 +53,7 @@ from fabgen.sizing.records import Feed
 
 WIDTH_MM = COLUMN_WIDTH_MM
 BOUGHT = ("buy",)
+CUT_LENGTH = ("buy", "wire")
 BOUGHT_PICTURE_MM = 28.0
 FOLD_HEAD = ("no", "order", "angle", "way", "radius", "k", "ba", "bd", "left", "right")
 
@@ -140,8 +141,14 @@ def _tells_more(part: Part) -> bool:
 def _tables(part: Part) -> list[Block]:
     if part.flat is not None:
         return flat_tables(part.flat)
-    shape = shape_of(part)
+    shape = _made_shape(part)
     return solid_tables(shape) if shape is not None else []
+
+
+def _made_shape(part: Part) -> Any | None:
+    """The part's solid as it is made: a length of tube or cable straight, whatever way it lies in the feed."""
+    shape = shape_of(part)
+    return solid_view.squared(shape) if shape is not None and part.process == CUT_LENGTH else shape
 
 
 def material_text(part: Part) -> str:
@@ -217,7 +224,7 @@ class SolidViews:
 
 
 def _solid_views(part: Part) -> SolidViews:
-    shape = shape_of(part)
+    shape = _made_shape(part)
     m = solid_view.measured(shape)
     bodies = [Body(part, shape)]
     hollow = any(r.hole for r in solid_view.about_axis(m)) and m.low[1] < -1 < 1 < m.high[1]

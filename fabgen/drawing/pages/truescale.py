@@ -17,6 +17,7 @@ from fabgen.drawing.hidden import dressed as dress
 from fabgen.drawing.model import Arc, Box, Item, Line, Point, Text, View, bounds, moved, number
 from fabgen.drawing.pages.base import Context, Draft
 from fabgen.drawing.paper import Paper
+from fabgen.drawing.solid import squared
 from fabgen.drawing.texts import say
 from fabgen.parts.contour import Contour
 from fabgen.parts.records import Part
@@ -116,7 +117,7 @@ def _small(part: Part) -> tuple[Item, ...]:
     """A small part seen on its largest face; one that is no plate also from its end, to the left of that."""
     if part.solid is None:
         return ()
-    shape = part.solid()
+    shape = squared(part.solid())
     box = shape.BoundingBox(1e-3)
     extents = sorted(((box.xlen, FROM_GAP), (box.ylen, GAP), (box.zlen, ABOVE)), key=lambda e: round(e[0], 3))
     face = dress(look([shape], extents[0][1])[0].visible, "outline")
