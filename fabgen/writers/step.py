@@ -63,7 +63,7 @@ def _add_shape(tool: Any, colours: Any, part: Part) -> Any:
 
     if part.solid is None:
         raise GeometryError(f"{part.name} has no solid; write its flat pattern instead")
-    label = tool.AddShape(_single(part.solid(), part.name).wrapped, False)
+    label = tool.AddShape(_in_place(_single(part.solid(), part.name).wrapped), False)
     colour = Quantity_Color(*part.colour, Quantity_TypeOfColor.Quantity_TOC_sRGB)
     colours.SetColor(label, colour, XCAFDoc_ColorType.XCAFDoc_ColorGen)
     return label
@@ -74,6 +74,17 @@ def _single(shape: cadquery.Shape, name: str) -> cadquery.Shape:
     if len(solids) != 1:
         raise GeometryError(f"{name} consists of {len(solids)} bodies; a part is one body, make them two parts")
     return solids[0]
+
+
+def _in_place(shape: Any) -> Any:
+    """The shape with its shift in its own coordinates; one that is kept beside it would become a second product."""
+    from OCP.BRepBuilderAPI import BRepBuilderAPI_Transform
+    from OCP.TopLoc import TopLoc_Location
+
+    shift = shape.Location()
+    if shift.IsIdentity():
+        return shape
+    return BRepBuilderAPI_Transform(shape.Located(TopLoc_Location()), shift.Transformation(), True).Shape()
 
 
 def _name(label: Any, name: str) -> None:

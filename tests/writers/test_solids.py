@@ -25,10 +25,12 @@ from fabgen.writers.step_text import canonical_step
 from fabgen.writers.stl import write_stl
 from fabgen.writers.threemf import write_3mf
 from tests.parts.feeds import with_bed
+from tests.parts.volume import volume_mm3
 from tests.samples import sample_feed
 
 FEED = with_bed(sample_feed("sheet", "printed", radome=True), (300.0, 300.0, 300.0))
 PARTS = build_parts(FEED)
+PRODUCT = re.compile(r"PRODUCT\('((?:[^']|'')*)'")
 CAN = next(p for p in PARTS if p.key == "can")
 
 
@@ -129,6 +131,27 @@ def test_step_of_a_part_is_one_valid_solid_with_name_and_colour(part: Part, tmp_
     assert solid.isValid()
     assert part.solid is not None
     assert solid.Volume() == pytest.approx(part.solid().Volume(), rel=1e-6)
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("make", ["rolled", "folded"])
+def test_shifted_and_turned_parts_are_one_product_in_place(make: str, tmp_path: Path) -> None:
+    path = tmp_path / "part.step"
+    parts = [p for p in build_parts(sample_feed("sheet", make, choke=True, metal="cuzn37")) if p.solid is not None]
+    for part in parts:
+        write_step(part, path)
+        names = [name.replace("''", "'") for name in PRODUCT.findall(path.read_text(encoding="ascii"))]
+        assert names == [part.name]
+        ((solid, name, colour),) = read_step(path)
+        assert name == part.name
+        assert colour == pytest.approx(part.colour, abs=1e-3)
+        assert solid.isValid()
+        assert part.solid is not None
+        assert volume_mm3(solid) == pytest.approx(volume_mm3(part.solid()), rel=1e-6)
+        found, drawn = solid.BoundingBox(1e-6), part.solid().BoundingBox(1e-6)
+        for side in ("xmin", "xmax", "ymin", "ymax", "zmin", "zmax"):
+            assert getattr(found, side) == pytest.approx(getattr(drawn, side), abs=1e-3), part.key
+    assert {"choke-wall", "screw-seam", "screw-foot"} <= {p.key for p in parts}
 
 
 def test_step_of_the_assembly_keeps_names_colours_and_places(tmp_path: Path) -> None:
