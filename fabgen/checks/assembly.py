@@ -1,6 +1,6 @@
 """Assembly checks: access, clearances, soldering, metals that meet, threads, screws, stack-up.
 
-Depends on: checks (registry, texts), parts, stock.
+Depends on: checks (registry, texts), parts, sizing (match, yields), stock.
 """
 
 from __future__ import annotations
@@ -278,29 +278,48 @@ def screw_lengths(context: Context) -> Iterator[Fault]:
         )
 
 
+TRIMMED = ("series_capacitor_pf", "tap_height_mm")
+"""What the screwdriver sets: their own tolerances are trimmed away with the rest."""
+
+
 @check("ASSY-301", "caution", source="sensitivities from the field computation")
 def trimming_range(context: Context) -> Iterator[Fault]:
-    """Stack-up of all tolerances against what the capacitor's range can put right."""
-    rows = context.feed.sensitivities
-    per_pf = [row for row in rows if row.size == "series_capacitor_pf"]
-    others = [row.effect_mhz for row in rows if row.size != "series_capacitor_pf"]
-    if not per_pf or not others:
+    """Stack-up of all tolerances against what the ranges of capacitor and tap can put right."""
+    slopes = {row.size: abs(row.resonance_mhz_per_mm) for row in context.feed.sensitivities}
+    others = [row for row in context.feed.sensitivities if row.size not in TRIMMED]
+    if "series_capacitor_pf" not in slopes or not others:
         return
-    stack = math.sqrt(math.fsum(effect**2 for effect in others))
+    stack = math.sqrt(math.fsum(row.effect_mhz**2 for row in others))
     part = context.feed.capacitor
-    steps = min(part.maximum_pf - part.capacitance_pf, part.capacitance_pf - part.minimum_pf)
-    reach = abs(per_pf[0].resonance_mhz_per_mm) * steps
+    by_capacitor = slopes["series_capacitor_pf"] * min(
+        part.maximum_pf - part.capacitance_pf, part.capacitance_pf - part.minimum_pf
+    )
+    travel = tap_travel_mm(context)
+    by_tap = slopes.get("tap_height_mm", 0.0) * travel
+    reach = by_capacitor + by_tap
     if stack <= reach:
         return
-    worst = max((row for row in rows if row.size != "series_capacitor_pf"), key=lambda row: row.effect_mhz)
+    worst = max(others, key=lambda row: row.effect_mhz)
     yield Fault(
         part="capacitor",
         feature="trimming range",
         value=f"+-{stack:.1f} MHz",
         limit=f"+-{reach:.1f} MHz",
-        message=f"all tolerances together move the resonance by {stack:.1f} MHz; the capacitor reaches {reach:.1f} MHz",
-        cure=f"hold {worst.size} to {worst.tolerance_mm * reach / stack:.2f} mm, or move the tap as well",
+        message=f"all tolerances together move the resonance by {stack:.1f} MHz; the capacitor reaches "
+        f"{by_capacitor:.1f} MHz and the tap, moved by {travel:.1f} mm, {by_tap:.1f} MHz",
+        cure=f"hold {worst.size} to {worst.tolerance_mm * reach / stack:.2f} mm",
     )
+
+
+def tap_travel_mm(context: Context) -> float:
+    """How far the tap can be moved either way: on the straight part of the bars, and no farther than the yield after
+    trimming reckons with."""
+    from fabgen.sizing.match import tap_range_mm
+    from fabgen.sizing.yields import TRIM_WAVELENGTHS
+
+    low, high = tap_range_mm(context.sizes)
+    height = context.sizes.tap_height_mm
+    return max(0.0, min(TRIM_WAVELENGTHS * context.wavelength_mm, height - low, high - height))
 
 
 @check("ASSY-302", "caution", "yield_after_min")

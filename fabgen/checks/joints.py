@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator
+from itertools import pairwise
 
 from fabgen.checks.registry import Context, Fault, check
 from fabgen.checks.texts import mm
@@ -59,10 +60,12 @@ def _once_round_mm(context: Context, key: str) -> float:
 
 def crossing_at(seam: SeamCurrent, angle_deg: float) -> float:
     """Computed current across an upright line at an angle from +x, A/m for 1 W, linear between the angles told."""
-    import numpy as np
-
     folded = abs((angle_deg + 180.0) % 360.0 - 180.0)
-    return float(np.interp(folded, seam.angle_deg, seam.crossing_a_per_m))
+    points = list(zip(seam.angle_deg, seam.crossing_a_per_m, strict=True))
+    for (low, first), (high, second) in pairwise(points):
+        if low <= folded <= high:
+            return first + (second - first) * (folded - low) / (high - low)
+    return points[-1][1]
 
 
 def seam_angle_deg(wall: Wall) -> float:

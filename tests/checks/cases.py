@@ -178,9 +178,13 @@ def with_voltage(watts: float, volts: float) -> Feed:
     return replace(feed, capacitor=replace(feed.capacitor, peak_voltage_v=volts))
 
 
-def with_capacitor_row(reach_mhz_per_pf: float) -> Case:
+def with_capacitor_row(reach_mhz_per_pf: float, tap_mhz_per_mm: float = 0.5) -> Case:
     row = Sensitivity("series_capacitor_pf", 0.02, -reach_mhz_per_pf, -1.0, 0.02 * reach_mhz_per_pf)
-    return replace(base(), sensitivities=(*base().sensitivities, row)), parts_of()
+    others = (
+        replace(r, resonance_mhz_per_mm=tap_mhz_per_mm) if r.size == "tap_height_mm" else r
+        for r in base().sensitivities
+    )
+    return replace(base(), sensitivities=(*others, row)), parts_of()
 
 
 def changed_part(key: str, form: str = WIRE, make: str = "tube", **changes: Any) -> Case:

@@ -16,7 +16,7 @@ from fabgen.checks.registry import Context, all_checks, check, findings_of
 from fabgen.checks.run import run_checks
 from fabgen.errors import FabgenError, JobError
 from fabgen.stock import tables
-from tests.checks.cases import PAIRS, Case, base, parts_of, printed, with_job, with_sizes
+from tests.checks.cases import PAIRS, Case, base, parts_of, printed, with_capacitor_row, with_job, with_sizes
 
 ENTRIES = {entry.code: entry for entry in all_checks()}
 TESTED_BELOW = {"PRINT-105"}
@@ -75,6 +75,13 @@ def test_severity_follows_the_case() -> None:
     protected = with_job(base("wire", "tube", 1665.402), wishes={"transmit_w": 1.0})
     assert [f.severity for f in found("ELEC-404", (protected, ()))] == ["caution"]
     assert [f.severity for f in found("OUT-402", (base("wire", "printed"), ()))] == ["caution"]
+
+
+def test_tap_and_capacitor_together_trim() -> None:
+    # 1 MHz/pF leaves the capacitor 0.43 MHz; the tap moves by a hundredth of the wavelength of 211 mm.
+    (finding,) = found("ASSY-301", with_capacitor_row(1.0, 0.5))
+    assert "the capacitor reaches 0.4 MHz and the tap, moved by 2.1 mm, 1.1 MHz" in finding.message
+    assert found("ASSY-301", with_capacitor_row(1.0, 5.0)) == []
 
 
 def test_issue_example_of_a_cure() -> None:
