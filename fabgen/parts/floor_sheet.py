@@ -83,8 +83,12 @@ def floor_sheet(feed: Feed, wall: Wall, outer: Wall | None = None) -> Part:
         flat=FlatPattern(outline, holes, (), s.floor_mm, "inside"),
         thickness_mm=s.floor_mm,
         solid=once(partial(prism, outline, holes, -s.floor_mm, s.floor_mm)),
-        notes=("round notches on the edge: E-plane, seam of the wall at +y; pointed notch: gap of the loop",),
+        notes=(f"round notches on the edge: E-plane, {_seams(wall)}; pointed notch: gap of the loop",),
     )
+
+
+def _seams(wall: Wall) -> str:
+    return "seam of the wall at +y" if wall.copies == 1 else "seams of the wall at +y and -y"
 
 
 def with_e_marks(outline: Outline, radius_mm: float = E_MARK_MM) -> Contour:

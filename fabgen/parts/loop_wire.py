@@ -15,7 +15,8 @@ Each bar bends by 90 degrees in the vertical plane that touches the loop's circl
 R sin(phi1) - r cos(phi1) = leg_pitch / 2 with R = loop_diameter / 2 and r = leg_bend_radius. The loop's arc runs
 from phi1 over 180 degrees to -phi1.
 
-Depends on: errors, stock, theory (bending, springback), parts (records, kernel, making, floor_plan), sizing.records.
+Depends on: errors, stock, theory (bending, springback), parts (records, kernel, making, floor_plan, screws),
+sizing.records.
 """
 
 from __future__ import annotations
@@ -30,6 +31,7 @@ from fabgen.parts.floor_plan import floor_bottom_mm
 from fabgen.parts.kernel import once
 from fabgen.parts.making import metal_part
 from fabgen.parts.records import Part, WireBend, WirePath
+from fabgen.parts.screws import PROUD_MM
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
 from fabgen.theory.bending import wire_arc_mm, wire_neutral_shift_mm
@@ -140,9 +142,30 @@ def wire_path(feed: Feed) -> WirePath:
                 )
             )
         at += piece.length_mm
-    solder = tables.metal(feed.job.can.metal).solderable
-    ends = "cut square, deburr, tin the last " + f"{-floor_bottom_mm(feed) + 2:.0f} mm" if solder else "cut square"
-    return WirePath(diameter, at, tuple(bends), ends)
+    return WirePath(diameter, at, tuple(bends), end_preparation(feed))
+
+
+def end_preparation(feed: Feed) -> str:
+    """What is done to the wire's ends for their joint with the floor.
+
+    A floor that takes soft solder has the feet soldered in. On another they get threads and nuts where the wire is as
+    thick as a metric thread, and a plate of brass to solder to where it is not.
+    """
+    can, diameter, floor = feed.job.can, feed.sizes.wire_mm or 0.0, -floor_bottom_mm(feed)
+    copper = can.lining.startswith("copper-foil")
+    takes = copper if can.make == "printed" else tables.metal(can.metal).solderable
+    tinned = f"cut square, deburr, tin the last {floor + 2:.0f} mm"
+    if takes:
+        return tinned
+    for screw in tables.all_rows("screw"):
+        if abs(screw.diameter_mm - diameter) < 1e-9:
+            beyond = math.ceil(screw.nut_height_mm + PROUD_MM)
+            thread = math.ceil(beyond + floor + screw.nut_height_mm + PROUD_MM)
+            return (
+                f"leave {beyond} mm more beyond both ends of the schedule, thread the last {thread} mm {screw.key}: "
+                "nuts with toothed washers on both faces of the floor, which takes no soft solder"
+            )
+    return f"{tinned}: the feet are soldered to a brass plate of 0.5 mm screwed onto the floor, which takes no solder"
 
 
 def bend_to_deg(feed: Feed, bend: WireBend) -> float:

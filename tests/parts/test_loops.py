@@ -266,6 +266,24 @@ def test_the_wires_neutral_line_is_as_long_as_the_cut_at_every_bend_radius() -> 
     assert tight > 100
 
 
+@pytest.mark.parametrize(
+    ("make", "can", "wire_mm", "words"),
+    [
+        ("rolled", {"metal": "cuzn37"}, 4.0, "tin the last 4 mm"),
+        ("printed", {}, 4.0, "tin the last 5 mm"),
+        ("printed", {"lining": "silver-copper-paint"}, 4.0, "thread"),
+        ("rolled", {"metal": "en-aw-5754"}, 4.0, "leave 4 mm more beyond both ends of the schedule, thread the last 10"),
+        ("turned", {"metal": "en-aw-6082"}, 2.05, "soldered to a brass plate"),
+    ],
+)
+def test_the_feet_have_a_joint_with_every_floor(make: str, can: dict[str, str], wire_mm: float, words: str) -> None:
+    """Nut M4 3.2 mm high (ISO 4032, from memory) and 0.5 mm of thread outside, the same inside a floor of 1.5 mm."""
+    feed = sample_feed("wire", make, **can)
+    feed = dataclasses.replace(feed, sizes=dataclasses.replace(feed.sizes, wire_mm=wire_mm))
+    assert words in wire_path(feed).end_preparation
+    assert wire_path(feed).end_preparation in loop_wire(feed).notes
+
+
 def test_tight_bends_say_why_the_cut_is_shorter_than_the_axis() -> None:
     feed = sample_feed("wire")
     assert any("shorter than the drawn axis" in note for note in loop_wire(feed).notes)
