@@ -6,8 +6,10 @@ Depends on: parts (contour, records). Imports shapely when called.
 from __future__ import annotations
 
 import math
+from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import lru_cache
+from itertools import pairwise
 from typing import TYPE_CHECKING, Any
 
 from fabgen.parts.contour import Circle, FoldLine, Outline, bounds_mm, sampled
@@ -181,3 +183,17 @@ def size_mm(flat: FlatPattern) -> tuple[float, float]:
     """Length and width of the box around the flat pattern, longer side first."""
     x0, y0, x1, y1 = bounds_mm(flat.outline)
     return max(x1 - x0, y1 - y0), min(x1 - x0, y1 - y0)
+
+
+def tab_gaps(flat: FlatPattern) -> Iterator[tuple[int, int, float]]:
+    """Neighbouring folds on one line by their numbers, and the gap between their ends, negative where they overlap."""
+    lines: dict[tuple[float, float], list[tuple[float, float, int]]] = {}
+    for fold in flat.folds:
+        (x0, y0), (x1, y1) = sorted((fold.start, fold.end))
+        angle = math.atan2(y1 - y0, x1 - x0)
+        u, v = math.cos(angle), math.sin(angle)
+        key = round(angle, 4), round(y0 * u - x0 * v, 2) + 0.0
+        lines.setdefault(key, []).append((x0 * u + y0 * v, x1 * u + y1 * v, fold.number))
+    for spans in lines.values():
+        for (_, end, first), (start, _, second) in pairwise(sorted(spans)):
+            yield first, second, start - end

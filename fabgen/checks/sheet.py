@@ -372,6 +372,24 @@ def bend_relief(context: Context) -> Iterator[Fault]:
             )
 
 
+@check("SHEET-308", "stop", "hole_min_mm")
+def tabs_that_overlap(context: Context) -> Iterator[Fault]:
+    """Tabs side by side whose fold lines overlap: the same metal is folded twice."""
+    least = context.limit("hole_min_mm")
+    for part, flat in flats(context):
+        for first, second, gap in flat_shapes.tab_gaps(flat):
+            if gap < -1e-6:
+                yield Fault(
+                    part=part.key,
+                    feature=f"folds {first} and {second}",
+                    value=mm(gap),
+                    limit=mm(least),
+                    message=f"the tabs of folds {first} and {second} overlap by {mm(-gap)}; between them the laser "
+                    f"needs {mm(least)}",
+                    cure=f"move them {up(least - gap):g} mm apart, or make each {up((least - gap) / 2):g} mm narrower",
+                )
+
+
 @check("SHEET-401", "caution", "laser_min_sheet_mm")
 def thin_sheet_under_the_laser(context: Context) -> Iterator[Fault]:
     """Sheet thinner than laser cutting is specified for."""

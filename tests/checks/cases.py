@@ -208,6 +208,11 @@ def good(form: str = WIRE, make: str = "tube") -> Callable[[], Case]:
     return lambda: (base(form, make), parts_of(form, make))
 
 
+def _inwards(at: tuple[float, float]) -> tuple[float, float]:
+    """A bar's fold moved over the gap onto the other bar's."""
+    return at[0], at[1] - 10.0 if at[1] > 0 else at[1]
+
+
 def with_folds(move: Callable[[FoldLine], FoldLine]) -> Case:
     part = part_of("loop", SHEET)
     assert part.flat is not None
@@ -396,6 +401,12 @@ PAIRS: dict[str, Pair] = {
         lambda: alone(base(), sheet_part(bracket(folds=(fold(28.0),), outline=RELIEVED))),
         "caution",
         "tears",
+    ),
+    "SHEET-308": Pair(
+        lambda: with_folds(lambda f: replace(f, start=_inwards(f.start), end=_inwards(f.end))),
+        good(SHEET),
+        "stop",
+        "overlap by",
     ),
     "SHEET-401": Pair(
         lambda: alone(base(), sheet_part(bracket(0.3, folds=()))),
