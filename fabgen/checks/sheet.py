@@ -374,19 +374,20 @@ def bend_relief(context: Context) -> Iterator[Fault]:
 
 @check("SHEET-308", "stop", "hole_min_mm")
 def tabs_that_overlap(context: Context) -> Iterator[Fault]:
-    """Tabs side by side whose fold lines overlap: the same metal is folded twice."""
+    """Tabs side by side that overlap, or leave less between them than a laser cuts: stop where they overlap."""
     least = context.limit("hole_min_mm")
     for part, flat in flats(context):
         for first, second, gap in flat_shapes.tab_gaps(flat):
-            if gap < -1e-6:
+            if gap < least - 1e-6:
+                state = f"overlap by {mm(-gap)}" if gap < 0 else f"are {mm(gap)} apart"
                 yield Fault(
                     part=part.key,
                     feature=f"folds {first} and {second}",
                     value=mm(gap),
                     limit=mm(least),
-                    message=f"the tabs of folds {first} and {second} overlap by {mm(-gap)}; between them the laser "
-                    f"needs {mm(least)}",
+                    message=f"the tabs of folds {first} and {second} {state}; between them a laser needs {mm(least)}",
                     cure=f"move them {up(least - gap):g} mm apart, or make each {up((least - gap) / 2):g} mm narrower",
+                    severity="stop" if gap < 0 else "caution",
                 )
 
 
