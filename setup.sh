@@ -29,13 +29,14 @@ if ! [ -e "$mark" ] || [ -n "$(find "$home/pyproject.toml" "$home/fabgen" "$home
 fi
 if ! trouble=$("$venv/bin/python" -c 'import OCP.gp, netgen.occ' 2>&1); then
     case "$trouble" in
-        *libGL*|*libX*|*libxcb*|*libSM*|*libICE*)
-            packages="libgl1 libxext6 libsm6"
+        *lib*"cannot open shared object"*)
+            packages="libgl1 libxext6 libsm6 libexpat1"
             if [ "$(id -u)" = 0 ] && command -v apt-get >/dev/null; then
                 printf 'setup.sh: installing the system libraries %s\n' "$packages" >&2
                 { apt-get update -qq && apt-get install -y -qq $packages; } >&2 || fail "apt-get install $packages failed"
             else
-                fail "system libraries are missing; run: sudo apt-get install $packages"
+                missing=$(printf '%s' "$trouble" | grep -o 'lib[^ :]*\.so[.0-9]*' | head -n 1)
+                fail "the system library $missing is missing; run: sudo apt-get install $packages"
             fi ;;
         *) fail "a library does not load: $(printf '%s' "$trouble" | tail -n 1)" ;;
     esac

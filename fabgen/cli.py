@@ -41,6 +41,9 @@ _LIBRARY_PACKAGES = {
     "libgomp.so.1": "libgomp1",
     "libSM.so.6": "libsm6",
     "libICE.so.6": "libice6",
+    "libexpat.so.1": "libexpat1",
+    "libgcc_s.so.1": "libgcc-s1",
+    "libstdc++.so.6": "libstdc++6",
 }
 
 
@@ -109,7 +112,7 @@ def _add_check(commands: _Commands, common: argparse.ArgumentParser) -> None:
     _add_run_options(parser, "the job file (TOML), or the folder of a written pack to read it back")
     parser.add_argument("--json", action="store_true", help="findings as JSON")
     parser.add_argument("--strict", action="store_true", help="exit status 4 for a caution too")
-    parser.add_argument("--solid", action="store_true", help="solve the drawn solids too and compare (minutes)")
+    parser.add_argument("--solid", action="store_true", help="solve the drawn solids too and compare (some tens of seconds)")
 
 
 def _add_pack(commands: _Commands, common: argparse.ArgumentParser) -> None:

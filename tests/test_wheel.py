@@ -3,15 +3,17 @@
 from __future__ import annotations
 
 import os
+import re
 import shutil
 import subprocess
 import sys
 from collections.abc import Callable
+from importlib.util import find_spec
 from pathlib import Path
 
 import pytest
 
-from fabgen import commands
+from fabgen import cli, commands
 from fabgen.folder import files_in
 
 ROOT = Path(__file__).parent.parent
@@ -113,3 +115,22 @@ def test_it_is_the_installed_copy_that_runs(installed: Path, tmp_path: Path) -> 
         cwd=tmp_path, env={"PATH": os.environ["PATH"], "PYTHONPATH": str(installed)},
     )  # fmt: skip
     assert Path(result.stdout.strip()).is_relative_to(installed)
+
+
+# Part of the C library, on every machine.
+LIBC = {"ld-linux-x86-64.so.2", "libc.so.6", "libdl.so.2", "libm.so.6", "libpthread.so.0", "librt.so.1"}
+
+
+def test_every_system_library_has_its_package_named() -> None:
+    """The CAD kernel and the mesher as installed here: what they need and do not bring along."""
+    if shutil.which("readelf") is None:
+        pytest.skip("readelf (binutils) is not installed")
+    site = Path(find_spec("OCP").submodule_search_locations[0]).parent  # type: ignore[union-attr,index]
+    folders = ("OCP", "netgen", "pyngcore", "cadquery_ocp.libs", "netgen_mesher.libs", "netgen_occt.libs")
+    present = {path.name for path in site.rglob("*.so*")} | {path.name for path in site.parent.glob("*.so*")}
+    files = [str(path) for folder in folders for path in (site / folder).rglob("*.so*")]
+    text = subprocess.run(["readelf", "-d", *files], capture_output=True, text=True, check=True).stdout
+    needed = set(re.findall(r"\(NEEDED\).*\[(.+?)\]", text)) - present - LIBC
+    kernel = {name for name in needed if name.startswith("libTK")}  # netgen finds the CAD kernel's by its own path
+    assert needed - kernel
+    assert sorted(needed - kernel - set(cli._LIBRARY_PACKAGES)) == []
