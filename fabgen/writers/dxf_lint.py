@@ -175,12 +175,14 @@ def _segments(loops: list[_Loop]) -> Iterator[Fault]:
                 continue
             if abs(a.bulge) > LARGEST_BULGE:
                 yield Fault("bulge", f"an arc over 90 degrees at ({a.x_mm:.2f}, {a.y_mm:.2f})")
-            ends = sorted((_grid(a.x_mm, a.y_mm), _grid(b.x_mm, b.y_mm)))
-            yield from _once(seen, (*ends, round(abs(a.bulge), 4)), "segment")
+            # The same segment whichever way it runs: the bulge's sign turns with it, so that a lens of two arcs passes.
+            ends, bulge = [_grid(a.x_mm, a.y_mm), _grid(b.x_mm, b.y_mm)], round(a.bulge, 4)
+            low, high = sorted(ends)
+            yield from _once(seen, (low, high, (bulge if ends[0] == low else -bulge) + 0.0), "segment")
 
 
 def _grid(x: float, y: float) -> Point:
-    return round(x, 3) + 0.0, round(y, 3) + 0.0
+    return round(float(x), 3) + 0.0, round(float(y), 3) + 0.0
 
 
 def _once(seen: dict[tuple[Any, ...], str], key: tuple[Any, ...], what: str) -> Iterator[Fault]:

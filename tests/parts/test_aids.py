@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import csv
 import dataclasses
+import io
 import math
 from pathlib import Path
 from typing import Any
@@ -13,7 +15,7 @@ import shapely
 
 from fabgen.drawing.nesting import nest_items
 from fabgen.errors import GeometryError
-from fabgen.job_reader import read_job
+from fabgen.job_reader import parse_job, read_job
 from fabgen.parts.bend_rule import chosen_k, rule_text
 from fabgen.parts.bend_strip import STRIP_LENGTH_MM, bend_strip
 from fabgen.parts.build import build_parts
@@ -25,7 +27,9 @@ from fabgen.parts.nesting import SPACING_MM, nest
 from fabgen.parts.records import Part
 from fabgen.stock import tables
 from fabgen.theory.bending import k_from_test_bend
+from fabgen.writers.csv import bend_table_csv
 from fabgen.writers.nesting import nesting_files
+from fabgen.writers.order import order_notes
 from fabgen.writers.svg import svg_text
 from tests.parts.feeds import with_bed
 from tests.samples import sample_feed
@@ -72,6 +76,59 @@ def test_the_users_own_k_rules_the_patterns() -> None:
     assert chosen_k(handbook, temper, 1.0, 1.0) == temper.handbook_k
     with pytest.raises(Exception, match="test_bend_k"):
         chosen_k(limits.model_copy(update={"test_bend_k": None}), temper, 1.0, 1.0)
+
+
+JOB = """
+[target]
+frequency_mhz = 1420.406
+[dish]
+diameter_m = 2.4
+focal_ratio = 0.4
+[loop]
+form = "sheet"
+sheet_mm = 1.5
+metal = "cuzn37"
+[can]
+make = "rolled"
+choke = true
+[limits]
+"""
+
+
+@pytest.mark.parametrize(
+    ("rule", "words"),
+    [("", "DIN 6935"), ('bend_rule = "handbook"', "Machinery's Handbook"),
+     ('bend_rule = "test-bend"\ntest_bend_k = 0.412', "own test bend")],
+)  # fmt: skip
+def test_k_and_its_definition_stand_on_every_output(rule: str, words: str) -> None:
+    """From the job file's text to flat patterns, bend table, order note and part notes; a K of one's own comes back."""
+    job = parse_job(JOB + rule)
+    feed = dataclasses.replace(sample_feed("sheet", "rolled", choke=True), job=job)
+    parts = build_parts(feed)
+    folded = [p for p in parts if p.flat is not None and p.flat.folds]
+    assert {p.key for p in folded} >= {"loop", "wall", "choke-ring", "choke-wall", "bend-strip-1"}
+    table = list(csv.DictReader(io.StringIO(bend_table_csv(parts))))
+    assert len(table) == sum(len(p.flat.folds) for p in folded if p.flat)
+    assert all("R + K t" in row["k_definition"] for row in table)
+    note = " ".join(order_notes(feed, parts)["fold.txt"].split())
+    for part in folded:
+        assert any("R + K t" in text and words in text for text in part.notes)
+        assert part.flat is not None
+        for fold in part.flat.folds:
+            if job.limits.test_bend_k is not None:
+                assert fold.k_factor == 0.412
+            allowance = math.radians(abs(fold.angle_deg)) * (
+                fold.inside_radius_mm + fold.k_factor * part.flat.thickness_mm
+            )
+            assert fold.allowance_mm == pytest.approx(allowance, rel=1e-12)
+    assert note.count("R + K t") >= len(folded)
+    if job.limits.test_bend_k is not None:
+        assert {row["k_factor"] for row in table} == {"0.4120"}
+        for part in folded:
+            values = dict(part.sizes)
+            if "expected_leg_mm" in values:
+                leg, t = values["expected_leg_mm"], part.thickness_mm or 0.0
+                assert k_from_test_bend(100.0, leg, leg, values["inside_radius_mm"], t) == pytest.approx(0.412)
 
 
 def test_jigs_are_true_to_scale() -> None:

@@ -21,6 +21,7 @@ from fabgen.parts.contour import Circle, Contour, Vertex, area_mm2, bounds_mm, l
 from fabgen.parts.kerf import compensated
 from fabgen.parts.records import Part
 from fabgen.writers.dxf import Version, dxf_text, file_name, write_dxf
+from fabgen.writers.dxf_lint import lint_dxf
 from tests.samples import sample_feed
 
 FEEDS: dict[str, tuple[str, str, dict[str, Any]]] = {
@@ -116,6 +117,21 @@ def test_kerf_is_off_by_default_and_moves_contours_into_the_waste() -> None:
     assert area_mm2(wide["OUTLINE"][0]) == pytest.approx(grown, rel=1e-9)
     assert grown > area_mm2(part.flat.outline)
     assert wide["HOLES"][0].diameter_mm == pytest.approx(nominal["HOLES"][0].diameter_mm - 0.2)
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_kerf_compensated_files_are_sound_and_offset_by_half_the_kerf(name: str) -> None:
+    """Every part with a kerf of 0.2 mm: linted, and its material against shapely's round offset of the nominal part."""
+    flat = flat_parts()[name].flat
+    assert flat is not None
+    text = dxf_text(flat, kerf_mm=0.2)
+    assert lint_dxf(text, flat, 0.2) == ()
+    found = loops(ezdxf.read(io.StringIO(text)))
+    outer = shapely.Polygon(sampled(flat.outline, 0.0005)).buffer(0.1, quad_segs=64)
+    assert area_mm2(found["OUTLINE"][0]) == pytest.approx(outer.area, rel=5e-5)
+    for have, want in zip(found["HOLES"], flat.holes, strict=True):
+        inner = shapely.Polygon(sampled(want, 0.0005)).buffer(-0.1, join_style="mitre")
+        assert area_mm2(have) == pytest.approx(inner.area, rel=1e-3)
 
 
 def test_a_fold_copy_with_kerf_is_refused() -> None:

@@ -10,7 +10,7 @@ import ezdxf
 import pytest
 
 from fabgen.errors import GeometryError
-from fabgen.parts.contour import Circle, FoldLine, rectangle
+from fabgen.parts.contour import Circle, Contour, FoldLine, Vertex, rectangle
 from fabgen.parts.records import FlatPattern
 from fabgen.writers.dxf import dxf_text
 from fabgen.writers.dxf_lint import lint_dxf, refuse_faults
@@ -163,6 +163,58 @@ def test_each_seeded_fault_is_found(spoil: Callable[[Any], None], rule: str) -> 
     assert rule in {fault.rule for fault in lint_dxf(text(doc), PLATE)}
     with pytest.raises(GeometryError, match="not fit to be cut"):
         refuse_faults(text(doc), "plate", PLATE)
+
+
+def open_in_r12(doc: Any) -> None:
+    outline(doc).close(False)
+
+
+def doubled_arc(doc: Any) -> None:
+    """The same lens twice, the second run the other way round and from the other end."""
+    space = doc.modelspace()
+    space.add_lwpolyline([(20, 30, 0.3), (26, 30, 0.3)], format="xyb", close=True, dxfattribs={"layer": "HOLES"})
+    space.add_lwpolyline([(26, 30, -0.3), (20, 30, -0.3)], format="xyb", close=True, dxfattribs={"layer": "HOLES"})
+
+
+def shared_edge(doc: Any) -> None:
+    """A second hole that shares half an edge with the first."""
+    doc.modelspace().add_lwpolyline([(40, 12), (44, 12), (44, 16), (40, 16)], close=True, dxfattribs={"layer": "HOLES"})
+
+
+def slit(doc: Any) -> None:
+    """An outline that runs out and back over the same line."""
+    points = list(outline(doc).get_points("xyb"))
+    outline(doc).set_points([*points, (20.0, 20.0, 0.0), (*points[-1][:2], 0.0)], format="xyb")
+
+
+@pytest.mark.parametrize(
+    ("spoil", "rules"),
+    [(doubled_arc, {"doubled"}), (shared_edge, {"crossing"}), (slit, {"self-crossing", "doubled"})],
+)
+def test_edges_that_are_cut_twice_are_found_in_every_guise(spoil: Callable[[Any], None], rules: set[str]) -> None:
+    doc = document()
+    spoil(doc)
+    assert rules & {fault.rule for fault in lint_dxf(text(doc))}
+
+
+def test_a_lens_of_two_equal_arcs_is_no_doubled_edge() -> None:
+    lens = Contour((Vertex(20, 30, 0.3), Vertex(26, 30, 0.3)))
+    flat = FlatPattern(PLATE.outline, (lens,), (), 1.0)
+    assert lint_dxf(dxf_text(flat), flat) == ()
+
+
+@pytest.mark.parametrize(
+    ("spoil", "rule"),
+    [(open_in_r12, "open contour"), (loose_line, "open contour"), (doubled_edge, "doubled"),
+     (doubled_circle, "doubled"), (text_on_cut_layer, "entity"), (hole_outside, "hole outside"),
+     (hole_over_the_edge, "hole outside"),
+     (holes_that_meet, "crossing"), (fold_past_the_edge, "fold line"), (fold_short_of_the_edge, "fold line"),
+     (two_parts, "outline"), (mirrored, "flat"), (moved_contour, "model")],
+)  # fmt: skip
+def test_faults_are_found_in_r12_files_too(spoil: Callable[[Any], None], rule: str) -> None:
+    doc = document("R12")
+    spoil(doc)
+    assert rule in {fault.rule for fault in lint_dxf(text(doc), PLATE)}
 
 
 @pytest.mark.parametrize("version", ["R2010", "R12"])
