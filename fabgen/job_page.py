@@ -42,7 +42,7 @@ MEANINGS = {
     "can.choke.bore_mm": "inner diameter of the choke's wall; found when left out",
     "can.choke.depth_mm": "depth of the choke; found when left out",
     "can.choke.floor_z_mm": "upper face of the choke's floor above the can's floor; found when left out",
-    "can.drain_holes": "drain holes in the floor's lowest place",
+    "can.drain_holes": "drain holes at the floor's edge, and in a wall of sheet beside the floor on all four sides",
     "can.radome": "printed cap over the rim",
     "can.flange.pattern": "bolt pattern of the mounting flange",
     "can.flange.count": "number of bolts",

@@ -65,19 +65,23 @@ def _longest_mm(outline: Outline) -> float:
 
 @check("ELEC-301", "caution", "slot_max_wavelengths")
 def openings(context: Context) -> Iterator[Fault]:
-    """Open holes in the floor against leakage. Holes that a screw, the coax or the loop fills are left out."""
+    """Open holes in floor and wall against leakage. Holes that a screw, the coax or the loop fills are left out; the
+    drains in a wall of sheet are as wide as the floor's."""
     most = context.limit("slot_max_wavelengths") * context.wavelength_mm
     open_holes = [_longest_mm(hole.outline) for hole in floor_holes(context.feed) if hole.purpose == "drain"]
     longest = max(open_holes, default=0.0)
     if longest <= most:
         return
-    loss = waveguide.decay_db_per_mm("TE11", longest, context.frequency_mhz) * context.sizes.floor_mm
+    sheet = context.sizes.floor_mm
+    if context.job.can.make in {"rolled", "folded"}:
+        sheet = min(sheet, context.sizes.wall_mm)
+    loss = waveguide.decay_db_per_mm("TE11", longest, context.frequency_mhz) * sheet
     yield Fault(
         part="floor",
         feature="drain holes",
         value=mm(longest),
         limit=mm(most),
-        message=f"{len(open_holes)} open holes of {mm(longest)}; the floor's thickness alone holds back {loss:.0f} dB",
+        message=f"{len(open_holes)} open holes of {mm(longest)}; {mm(sheet)} of thickness hold back {loss:.0f} dB",
         cure=f"make them {down(most):g} mm or smaller, and more of them",
     )
 
