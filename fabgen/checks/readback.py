@@ -3,7 +3,7 @@
 The consistency checks of a feed run again on the feed and parts rebuilt from the files; the checks here compare
 files with files. ``check_pack`` is what a user runs on a pack that came by mail.
 
-Depends on: checks (registry, pack_register, read_files, run, consistency, derived), errors, parts, stock.
+Depends on: checks (registry, pack_register, read_files, read_solids, run, consistency, derived), errors, parts, stock.
 """
 
 from __future__ import annotations
@@ -12,10 +12,9 @@ import hashlib
 import math
 from collections.abc import Iterator
 from pathlib import Path
-from typing import Any
 
 from fabgen import __version__
-from fabgen.checks import derived
+from fabgen.checks import derived, read_solids
 from fabgen.checks.pack_register import PACK_CODES, SOLID_CODES, SOURCE, differs, pack_check
 from fabgen.checks.read_files import (
     RECORD,
@@ -36,9 +35,8 @@ from fabgen.folder import CHECKSUM_KEY, record_checksum
 from fabgen.parts.build import build_parts
 from fabgen.parts.contour import Outline, bounds_mm, length_mm
 from fabgen.parts.records import FlatPattern, Part
-from fabgen.stock import tables
 
-LOADED = (*MODULES, derived)
+LOADED = (*MODULES, derived, read_solids)
 """The modules whose import registers checks."""
 BOX_MM = 0.05
 """Boxes and lengths of files that count as equal: rounding of tables and chord error of meshes."""
@@ -261,30 +259,6 @@ def findings_agree(pack: Pack) -> Iterator[Fault]:
             yield differs(item["part"], item["code"], "stop", "accepted", "the pack was written in spite of a stop")
 
 
-@pack_check("CONS-208")
-def solids_agree(pack: Pack) -> Iterator[Fault]:
-    """STEP of each metal part: one valid solid, its mass as in the record, its radii those of the sizes."""
-    import cadquery as cq
-
-    metals = {row.key: row for row in tables.all_rows("metal")}
-    for part in pack.parts:
-        path = pack.folder / "model" / f"{part.key}.step"
-        if part.material not in metals or not path.is_file():
-            continue
-        solids = cq.importers.importStep(str(path)).solids().vals()
-        if len(solids) != 1 or not solids[0].isValid():
-            yield differs(path.name, "solids", f"{len(solids)}", "1 valid solid", "it is not one valid solid")
-            continue
-        mass = solids[0].Volume() * 1e-9 * metals[part.material].density_kg_per_m3
-        if abs(mass - part.mass_kg) > 0.01 * part.mass_kg + 1e-5:
-            yield differs(path.name, "mass", f"{mass:.4f} kg", f"{part.mass_kg:.4f} kg", "solid and record differ")
-        drawn = _radii_mm(solids[0])
-        for name, radius in _wanted_radii_mm(pack, part.key).items():
-            nearest = min(drawn, key=lambda r: abs(r - radius), default=0.0)
-            if abs(nearest - radius) > 0.01:
-                yield differs(path.name, name, f"{nearest:.3f} mm", f"{radius:.3f} mm", f"no face has the {name}")
-
-
 @pack_check("CONS-209")
 def parts_made_anew(pack: Pack) -> Iterator[Fault]:
     """Parts of the record and their drawings against the parts made anew from the record's job and sizes.
@@ -349,29 +323,3 @@ def record_and_job(pack: Pack) -> Iterator[Fault]:
     for name, value, wanted in rows:
         if not math.isclose(value, wanted, rel_tol=1e-8, abs_tol=1e-6):
             yield differs("record.json", name, f"{value:g}", f"{wanted:g}", f"{name} of the record is not the job's")
-
-
-def _radii_mm(solid: Any) -> list[float]:
-    """Radii of cylinders and large radii of tori among the solid's faces."""
-    radii = []
-    for face in solid.Faces():
-        if face.geomType() == "CYLINDER":
-            radii.append(face._geomAdaptor().Cylinder().Radius())
-        elif face.geomType() == "TORUS":
-            radii.append(face._geomAdaptor().Torus().MajorRadius())
-    return radii
-
-
-def _wanted_radii_mm(pack: Pack, key: str) -> dict[str, float]:
-    """Radii that a part must show, from the sizes that were simulated."""
-    s, choke = pack.feed.sizes, pack.feed.sizes.choke
-    if key == "loop" and s.strip_width_mm is not None:
-        half, width = s.loop_diameter_mm / 2, s.strip_width_mm / 2
-        return {"outer radius of the ring": half + width, "inner radius of the ring": half - width}
-    if key == "loop":
-        return {"radius of the loop": s.loop_diameter_mm / 2, "radius of the bar bends": s.leg_bend_radius_mm}
-    if key in {"can", "can-tube", "wall"} and not s.can_flats:
-        return {"radius of the bore": s.can_bore_mm / 2}
-    if key in {"choke", "choke-tube", "choke-wall"} and choke is not None and not s.can_flats:
-        return {"radius of the choke": choke.bore_mm / 2}
-    return {}
