@@ -21,6 +21,7 @@ from fabgen.fields.plan import plan_mesh
 from fabgen.fields.solid_can import DrawnCan
 from fabgen.fields.solid_mesh import SolidLoop, solid_mesh
 from fabgen.fields.surfaces import feed_mesh
+from fabgen.parts.can_section import can_section
 from fabgen.parts.containment import gaps_mm
 from fabgen.parts.contour import bounds_mm
 from fabgen.parts.floor_holes import floor_holes
@@ -58,8 +59,12 @@ class Containment:
 
 @dataclass(frozen=True)
 class SolidComparison:
-    """Sizing model against the surfaces of the drawn loop: impedance at the tap, return loss, resonance."""
+    """Sizing model against the surfaces of the drawn loop and can: impedance at the tap, return loss, resonance.
 
+    ``can``: what of the can was solved.
+    """
+
+    can: str
     model_ohm: complex
     solid_ohm: complex
     model_return_loss_db: float
@@ -140,12 +145,12 @@ def solid_findings(
                     "CONS-301", "stop", group.name, f"{group.gap_mm:.2f} mm", f"{group.limit_mm:.2f} mm", message, cure
                 )
             )
-    compared = compare_solid(feed, loop_step, progress)
+    compared = compare_solid(feed, parts, loop_step, progress)
     limit_mhz = 0.01 * feed.job.target.frequency_mhz
     shift = compared.resonance_shift_mhz
     message = (
-        f"{compared.solid_ohm.real:.1f} {compared.solid_ohm.imag:+.1f}j ohm on the drawn surface "
-        f"({compared.unknowns} unknowns), "
+        f"{compared.solid_ohm.real:.1f} {compared.solid_ohm.imag:+.1f}j ohm on the drawn surface of loop and bars in "
+        f"{compared.can} ({compared.unknowns} unknowns), "
         f"{compared.model_ohm.real:.1f} {compared.model_ohm.imag:+.1f}j ohm in the sizing model; return loss "
         f"{compared.solid_return_loss_db:.1f} dB against {compared.model_return_loss_db:.1f} dB, "
         f"{compared.trimmed_return_loss_db:.1f} dB with {compared.trimmed_capacitor_pf:.2f} pF"
@@ -182,15 +187,19 @@ def _in_holes(points: NDArray[np.float64], feed: Feed) -> NDArray[np.bool_]:
     return inside
 
 
-def compare_solid(feed: Feed, loop_step: Path, progress: Callable[[str], None] = lambda _: None) -> SolidComparison:
-    """Solve the feed on the true surface of the drawn loop (STEP in the feed's frame) near the target.
+def compare_solid(
+    feed: Feed, parts: Sequence[Part], loop_step: Path, progress: Callable[[str], None] = lambda _: None
+) -> SolidComparison:
+    """Solve the feed on the true surface of the drawn loop (STEP in the feed's frame) and can near the target.
 
-    The can's conducting faces are meshed as finely, with its flats and its choke; perfect conductors in both models.
+    A can of metal is meshed with both faces of its sheet, rims and flange, as its section through the drawn solids
+    shows them; holes, tabs and seam are left out. A printed can is its lining. Perfect conductors in both models.
     """
     sizes, target = feed.sizes, feed.job.target.frequency_mhz
-    drawn = drawn_loop(feed, loop_step)
-    progress("meshing the drawn loop")
-    mesh = solid_mesh(drawn)
+    progress("cutting the drawn can")
+    can, told = drawn_can(feed, parts)
+    progress("meshing the drawn loop and can")
+    mesh = solid_mesh(drawn_loop(feed, loop_step, can))
     model = FieldModel(target)
     frequencies = target * np.array([1.0, 1.0 - STEP_OF_FREQUENCY, 1.0 + STEP_OF_FREQUENCY])
     pairs = []
@@ -201,11 +210,11 @@ def compare_solid(feed: Feed, loop_step: Path, progress: Callable[[str], None] =
         unknowns = solid.unknowns
         pairs.append((model.solve(sizes, float(frequency)).impedance_ohm, solid.impedance_ohm))
     impedance = np.array(pairs)
-    return _compared(impedance, frequencies, sizes.series_capacitor_pf, unknowns)
+    return _compared(told, impedance, frequencies, sizes.series_capacitor_pf, unknowns)
 
 
 def _compared(
-    impedance: NDArray[np.complex128], frequencies: NDArray[np.float64], capacitor_pf: float, unknowns: int
+    can: str, impedance: NDArray[np.complex128], frequencies: NDArray[np.float64], capacitor_pf: float, unknowns: int
 ) -> SolidComparison:
     series = 1 / (2j * np.pi * frequencies * 1e6 * capacitor_pf * 1e-12)
     total = impedance + series[:, None]
@@ -214,6 +223,7 @@ def _compared(
     trimmed = complex(impedance[0, 1]).imag
     loss = [_return_loss_db(complex(z)) for z in total[0]]
     return SolidComparison(
+        can,
         complex(impedance[0, 0]),
         complex(impedance[0, 1]),
         loss[0],
@@ -229,14 +239,23 @@ def _return_loss_db(impedance: complex) -> float:
     return -20 * math.log10(max(abs((impedance - 50) / (impedance + 50)), 1e-9))
 
 
-def _drawn_can(sizes: Sizes) -> DrawnCan:
-    bore, depth, choke = sizes.can_bore_mm, sizes.can_depth_mm, sizes.choke
-    if choke is None:
-        return DrawnCan(bore, depth, sizes.can_flats)
-    return DrawnCan(bore, depth, sizes.can_flats, choke.bore_mm, choke.floor_z_mm, choke.depth_mm)
+def drawn_can(feed: Feed, parts: Sequence[Part]) -> tuple[DrawnCan, str]:
+    """The can's surface to be meshed, and what it is in words."""
+    sizes, choke = feed.sizes, feed.sizes.choke
+    faces = DrawnCan(sizes.can_bore_mm, sizes.can_depth_mm, sizes.can_flats)
+    if choke is not None:
+        faces = replace(
+            faces, choke_bore_mm=choke.bore_mm, choke_floor_mm=choke.floor_z_mm, choke_depth_mm=choke.depth_mm
+        )
+    if feed.job.can.make == "printed":
+        return faces, "the faces of the lining"
+    section = can_section(parts, sizes.can_flats)
+    if section is None:
+        return faces, "the can's inner faces (no section through the drawn can is free of openings)"
+    return replace(faces, section=section), "the drawn can with its flange"
 
 
-def drawn_loop(feed: Feed, step_file: Path) -> SolidLoop:
+def drawn_loop(feed: Feed, step_file: Path, can: DrawnCan) -> SolidLoop:
     """What the mesh of the drawn loop needs to know of the feed."""
     sizes = feed.sizes
     width = sizes.wire_mm or sizes.strip_width_mm or 1.0
@@ -244,7 +263,7 @@ def drawn_loop(feed: Feed, step_file: Path) -> SolidLoop:
     bend = sizes.leg_bend_radius_mm + (0.0 if wire else sizes.sheet_mm or 0.0)
     return SolidLoop(
         step_file=step_file,
-        can=_drawn_can(sizes),
+        can=can,
         leg_x_mm=sizes.leg_x_mm,
         bar_reach_mm=sizes.leg_pitch_mm / 2 + sizes.leg_width_mm,
         bar_top_mm=sizes.loop_height_mm - bend - (0.0 if wire else (sizes.sheet_mm or 0.0) / 2),

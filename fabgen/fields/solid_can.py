@@ -29,7 +29,11 @@ NEAR_WALL = 0.97
 
 @dataclass(frozen=True)
 class DrawnCan:
-    """Inner faces of the can, millimetres; ``flats`` 0 for a round one, ``choke_bore_mm`` 0 without a choke."""
+    """Inner faces of the can, millimetres; ``flats`` 0 for a round one, ``choke_bore_mm`` 0 without a choke.
+
+    ``section``: outline of the drawn metal in (distance from the axis, z), from the axis on the floor's inner face to
+    the axis below; it takes the place of the inner faces.
+    """
 
     bore_mm: float
     depth_mm: float
@@ -37,6 +41,7 @@ class DrawnCan:
     choke_bore_mm: float = 0.0
     choke_floor_mm: float = 0.0
     choke_depth_mm: float = 0.0
+    section: tuple[tuple[float, float], ...] = ()
 
 
 def can_faces(can: DrawnCan, quarter: Any, loop: Any) -> list[Any]:
@@ -46,6 +51,8 @@ def can_faces(can: DrawnCan, quarter: Any, loop: Any) -> list[Any]:
     """
     if can.flats % 2:
         raise GeometryError(f"a can of {can.flats} flats has no plane of symmetry through the gap; use 6, 8 or 12")
+    if can.section:
+        return _metal_faces(can, loop)
     choke = can.choke_bore_mm > 0
     level = choke and can.choke_floor_mm < SMALL_MM
     floor = _disc(can, can.choke_bore_mm if level else can.bore_mm, 0.0, quarter) - loop
@@ -59,6 +66,37 @@ def can_faces(can: DrawnCan, quarter: Any, loop: Any) -> list[Any]:
     return faces
 
 
+def _metal_faces(can: DrawnCan, loop: Any) -> list[Any]:
+    """The outline carried round the half turn: about the axis, or with equal flats."""
+    import OCP.gp  # noqa: F401 - first: loaded after netgen, the CAD kernel runs on netgen's older copy of itself
+    from netgen.occ import Axis, Pnt, Segment, Z
+
+    faces: list[Any] = []
+    for (r1, z1), (r2, z2) in itertools.pairwise(can.section):
+        if can.flats:
+            for (a, b), (c, d) in zip(_sides(can, 2 * r1), _sides(can, 2 * r2), strict=True):
+                corners = [(*a, z1), (*b, z1), (*d, z2), (*c, z2)]
+                faces.append(_polygon(_distinct(corners)))
+        else:
+            edge = Segment(Pnt(r1, 0, z1), Pnt(r2, 0, z2))
+            faces += list(edge.Revolve(Axis(Pnt(0, 0, 0), Z), 180).faces)
+    return [face - loop if _on_the_floor(face) else face for face in faces]
+
+
+def _distinct(corners: Sequence[tuple[float, float, float]]) -> list[tuple[float, float, float]]:
+    """Without corners that fall together, as at the axis."""
+    return [p for p, q in zip(corners, (*corners[1:], corners[0]), strict=True) if math.dist(p, q) > SMALL_MM]
+
+
+def _on_the_floor(face: Any) -> bool:
+    low, high = face.bounding_box
+    return bool(low.z > -SMALL_MM and high.z < SMALL_MM)
+
+
+def _sides(can: DrawnCan, bore_mm: float) -> list[tuple[tuple[float, float], tuple[float, float]]]:
+    return list(itertools.pairwise(_corners(can, bore_mm)))
+
+
 def can_name(face: Any, can: DrawnCan) -> str:
     """"floor", "wall" or "choke" for a face of the glued can; empty for a face of the loop."""
     low, high = face.bounding_box
@@ -67,6 +105,8 @@ def can_name(face: Any, can: DrawnCan) -> str:
     nearest = min(math.hypot(v.p.x, v.p.y) for v in face.vertices)
     if nearest < NEAR_WALL * can.bore_mm / 2:
         return ""
+    if can.section:
+        return "wall"
     beyond = nearest > (can.bore_mm + can.choke_bore_mm) / 4 if can.choke_bore_mm else False
     return "choke" if beyond or high.z - low.z < SMALL_MM else "wall"
 
