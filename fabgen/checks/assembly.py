@@ -10,7 +10,7 @@ from collections.abc import Iterator
 from itertools import combinations
 
 from fabgen.checks.registry import Context, Fault, check, row_source, source_text
-from fabgen.checks.texts import mm, up
+from fabgen.checks.texts import mm, size_words, up
 from fabgen.errors import GeometryError
 from fabgen.parts.capacitor import crossing_of
 from fabgen.parts.connector import flange_face_mm
@@ -307,7 +307,7 @@ def trimming_range(context: Context) -> Iterator[Fault]:
         limit=f"+-{reach:.1f} MHz",
         message=f"all tolerances together move the resonance by {stack:.1f} MHz; the capacitor reaches "
         f"{by_capacitor:.1f} MHz and the tap, moved by {travel:.1f} mm, {by_tap:.1f} MHz",
-        cure=f"hold {worst.size} to {worst.tolerance_mm * reach / stack:.2f} mm",
+        cure=f"hold {size_words(worst.size)} to {worst.tolerance_mm * reach / stack:.2f} mm",
     )
 
 
@@ -328,7 +328,7 @@ def yield_after_trimming(context: Context) -> Iterator[Fault]:
     value, least = context.feed.yields.after_trimming, context.limit("yield_after_min")
     if value >= least:
         return
-    names = ", ".join(context.feed.yields.dominant[:3])
+    names = ", ".join(map(size_words, context.feed.yields.dominant[:3]))
     yield Fault(
         part="feed",
         feature="yield",
@@ -346,14 +346,14 @@ def yield_before_trimming(context: Context) -> Iterator[Fault]:
     value, least = context.feed.yields.before_trimming, context.limit("yield_before_min")
     if value >= least:
         return
-    names = ", ".join(context.feed.yields.dominant[:3])
+    names = ", ".join(map(size_words, context.feed.yields.dominant[:3]))
     yield Fault(
         part="feed",
         feature="trimming",
         value=f"{value:.0%} without trimming",
         limit=f"{least:.0%}",
         message=f"{1 - value:.0%} of feeds need the screwdriver: measure, then trim overlap and tap",
-        cure=f"measure {names} to 0.1 mm before soldering: they matter most",
+        cure=f"set {names} to 0.1 mm before soldering: they matter most",
     )
 
 

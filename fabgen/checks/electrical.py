@@ -197,10 +197,16 @@ def band_of_the_target(context: Context) -> Iterator[Fault]:
             value=f"{context.frequency_mhz:g} MHz",
             limit=f"{band.low_mhz:g} to {band.high_mhz:g} MHz",
             message=f"the target lies in {band.low_mhz:g} to {band.high_mhz:g} MHz: {band.meaning}",
-            cure=f"receiving needs nothing; before transmitting on {band.low_mhz:g} to {band.high_mhz:g} MHz ask the "
-            "national table of allocations",
+            cure=_band_advice(band),
             source=source_text(band.source),
         )
+
+
+def _band_advice(band: Band) -> str:
+    span = f"{band.low_mhz:g} to {band.high_mhz:g} MHz"
+    if band.kind == "passive":
+        return f"receiving needs nothing; nobody may transmit on {span}"
+    return f"receiving needs nothing; before transmitting on {span} ask the national table of allocations"
 
 
 @check("ELEC-406", "note", source="table of bands; the national table of allocations decides")

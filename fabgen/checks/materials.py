@@ -124,8 +124,15 @@ def roughness(context: Context) -> Iterator[Fault]:
         limit=f"{most:g} x",
         message=f"a surface rough by {height:g} um rms raises the loss of {can.name} {factor:.2f} times and adds up "
         f"to {noise:.1f} K that the prediction leaves out",
-        cure=f"smooth the inside to {_height_for(most, can.depth_mm * 1e3):.1f} um rms before lining or plating",
+        cure=f"{_SMOOTH[kind]} to {_height_for(most, can.depth_mm * 1e3):.1f} um rms",
     )
+
+
+_SMOOTH = {
+    "rolled": "take sheet, tube or foil with an inside",
+    "turned": "turn the inside with a fine feed, or polish it,",
+    "printed": "sand and fill the inside before lining or plating",
+}
 
 
 def _height_for(factor: float, depth_um: float) -> float:

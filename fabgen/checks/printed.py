@@ -68,6 +68,7 @@ def in_pieces(context: Context) -> Iterator[Fault]:
         pieces = [part for part in printed_parts(context) if part.key.rsplit("-", 1)[0] == key]
         if len(pieces) < 2:
             continue
+        crossing = _largest_current(context, key)
         width = context.sizes.can_bore_mm + 2 * context.sizes.wall_mm
         bed = min(context.job.limits.bed_mm[:2])
         yield Fault(
@@ -75,9 +76,17 @@ def in_pieces(context: Context) -> Iterator[Fault]:
             feature="bed",
             value=f"{len(pieces)} pieces",
             limit=f"bed {bed:g} mm",
-            message=f"{key} is larger than the bed and comes in {len(pieces)} pieces",
+            message=f"{key} is larger than the bed and comes in {len(pieces)} pieces; up to {crossing:.2f} A/m for 1 W "
+            "at the port cross the joints of its lining",
             cure=f"line over every joint with foil or paint; a bed of {up(width + 30, 10):g} mm takes it in one piece",
         )
+
+
+def _largest_current(context: Context, key: str) -> float:
+    """Largest computed current of the wall that a body carries, A/m for 1 W."""
+    name = "choke wall" if key == "choke" else "wall"
+    seams = context.feed.predicted.wall_current.seams
+    return max((seam.peak_a_per_m for seam in seams if seam.name == name), default=0.0)
 
 
 @dataclass(frozen=True)

@@ -22,3 +22,12 @@ def up(value: float, step: float = 0.1) -> float:
 def down(value: float, step: float = 0.1) -> float:
     """The next multiple of ``step`` at or below the value."""
     return round(math.floor(value / step + 1e-9) * step, 6)
+
+
+def size_words(name: str) -> str:
+    """A size of the feed in words, without its unit: ``loop_diameter_mm`` is "loop diameter"."""
+    if name == "series_capacitor_pf":
+        return "overlap of the capacitor"
+    return name.removeprefix("choke.").removesuffix("_mm").replace("leg", "bar").replace("_", " ") + (
+        " of the choke" if name.startswith("choke.") else ""
+    )
