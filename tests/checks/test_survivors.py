@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pytest
 
-from fabgen.checks.flat_shapes import relieved
+from fabgen.checks.flat_shapes import relieved, size_mm
 from fabgen.parts.contour import FoldLine
 from fabgen.parts.records import FlatPattern
 from tests.checks.cases import rectangle
@@ -28,3 +28,8 @@ def test_a_fold_inside_the_sheet_tears_unless_it_is_relieved(turned: bool) -> No
     assert not relieved(FlatPattern(plate, (left,), (fold,)), fold, 1.0)
     assert not relieved(FlatPattern(plate, (right,), (fold,)), fold, 1.0)
     assert relieved(FlatPattern(plate, (left, right), (fold,)), fold, 1.0)
+
+
+def test_the_box_of_a_part_that_lies_off_the_origin() -> None:
+    assert size_mm(FlatPattern(rectangle(10, 20, 40, 30))) == (30, 10)
+    assert size_mm(FlatPattern(rectangle(-5, -20, 5, 30))) == (50, 10)

@@ -13,8 +13,11 @@ from fabgen.parts.can_printed import _keep_clear, body_of, choke_screw_points
 from fabgen.parts.can_tube import LIP_MM
 from fabgen.parts.contour import Circle, FoldLine, area_mm2, bounds_mm, polygon
 from fabgen.parts.floor_plan import _rounded_square
+from fabgen.parts.jig import leg_outlines
 from fabgen.parts.print_rules import print_rules
+from fabgen.parts.radome_cap import cover_mm
 from fabgen.parts.records import FlatPattern
+from fabgen.parts.screws import STEEL_DENSITY
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
 from tests.parts.feeds import with_cable
@@ -105,3 +108,43 @@ def test_a_printed_choke_states_the_bores_that_are_printed() -> None:
     assert sizes["bore_before_lining_mm"] == pytest.approx(feed.sizes.choke.bore_mm + 2 * lining, abs=0.3)
     outside = feed.sizes.can_bore_mm + 2 * lining + 2 * feed.sizes.wall_mm
     assert 0.0 < sizes["hub_bore_mm"] - outside < 2.0
+
+
+@pytest.mark.parametrize("frequency_mhz", [408.0, 1420.406, 3400.0, 5800.0, 7000.0])
+def test_a_cap_stays_thin_against_the_wavelength(frequency_mhz: float) -> None:
+    feed = sample_feed("wire", "printed", frequency_mhz)
+    share = tables.limit("radome_max_wavelengths").value
+    least = tables.limit("print_wall_thin_mm").value
+    cover = cover_mm(feed)
+    assert least <= cover <= max(least, share * feed.job.wavelength_mm)
+    # six layers of 0.2 mm where there is room for them, else the next tenth below the limit
+    assert cover in {1.2, least} or cover > share * feed.job.wavelength_mm - 0.1 - 1e-9
+
+
+def test_a_cap_slips_over_the_can() -> None:
+    feed = sample_feed("wire", "tube", radome=True)
+    cap = next(part for part in build_parts(feed) if part.key.startswith("radome"))
+    sizes = dict(cap.sizes)
+    outside = feed.sizes.can_bore_mm + 2 * feed.sizes.wall_mm
+    assert 0.0 < sizes["skirt_bore_mm"] - outside < 3.0
+
+
+def test_the_wire_lies_between_fence_and_block() -> None:
+    feed = sample_feed("wire", "rolled")
+    path = next(part for part in build_parts(feed) if part.key == "loop").wire
+    assert path is not None
+    leg = path.bends[0]
+    block, fence, stop = (bounds_mm(outline) for outline in leg_outlines(path, leg, 95.0))
+    # the channel between them takes the wire with less than half a millimetre to spare
+    assert path.diameter_mm < block[1] - fence[3] < path.diameter_mm + 0.5
+    assert fence[3] < 0 < block[1]
+    # the stop closes the end of the channel, where the wire's straight piece ends
+    assert stop[2] == pytest.approx(fence[0])
+    assert 0 <= -leg.start_mm - stop[2] < 0.5
+    assert stop[1] <= fence[1]
+    assert stop[3] >= block[1]
+
+
+def test_screws_are_of_stainless_steel() -> None:
+    # A2 and A4: 7.9 to 8.0 g/cm3 (EN 10088-1; from memory)
+    assert 7850 <= STEEL_DENSITY <= 8000
