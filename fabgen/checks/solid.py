@@ -22,6 +22,7 @@ from fabgen.fields.solid_can import DrawnCan
 from fabgen.fields.solid_mesh import SolidLoop, solid_mesh
 from fabgen.fields.surfaces import feed_mesh
 from fabgen.parts.can_section import can_section
+from fabgen.parts.can_sheet import can_wall, choke_wall
 from fabgen.parts.containment import gaps_mm
 from fabgen.parts.contour import bounds_mm
 from fabgen.parts.floor_holes import floor_holes
@@ -78,8 +79,8 @@ class SolidComparison:
 def containment(feed: Feed, parts: Sequence[Part]) -> tuple[Containment, ...]:
     """Sample the simulated surfaces and measure them against the solids of the parts.
 
-    Strips are sampled over the width of the metal they stand for (a wire: on its axis). Points in holes of the
-    floor and beside the seam, with its screws, are left out: there metal is meant to be missing.
+    Strips are sampled over the width of the metal they stand for (a wire: on its axis). Points in holes of floor and
+    walls and beside the seam, with its screws, are left out: there metal is meant to be missing.
     """
     sizes = feed.sizes
     drawn = _metal_widths(feed_geometry(sizes), sizes)
@@ -90,12 +91,13 @@ def containment(feed: Feed, parts: Sequence[Part]) -> tuple[Containment, ...]:
         # on the axis or mid-plane: a point of it within half the thickness lies inside the metal
         ("loop and bars", loop, POLYGON_MM + 0.02 * (sizes.wire_mm or sizes.sheet_mm or 0.0)),
         ("floor", floor[~_in_holes(floor, feed)], sizes.floor_mm / 2),
-        ("wall", _off_the_seam(_wall_points(drawn.can, 0.0)), sizes.wall_mm / 2),
+        ("wall", _off_holes(_off_the_seam(_wall_points(drawn.can, 0.0)), feed), sizes.wall_mm / 2),
     ]
     choke = drawn.can.choke
     if choke is not None:
         ring = CanGeometry(choke.radius_m, choke.depth_m, drawn.can.flats)
-        samples.append(("choke wall", _off_the_seam(_wall_points(ring, choke.floor_z_m)), sizes.wall_mm / 2))
+        outer = _off_holes(_off_the_seam(_wall_points(ring, choke.floor_z_m)), feed)
+        samples.append(("choke wall", outer, sizes.wall_mm / 2))
     return tuple(
         Containment(name, len(points), float(gaps_mm(points, _drawn_as(name, parts)).max()), limit)
         for name, points, limit in samples
@@ -121,6 +123,21 @@ def _wall_points(can: CanGeometry, foot_m: float) -> NDArray[np.float64]:
 
 def _off_the_seam(points: NDArray[np.float64]) -> NDArray[np.float64]:
     return points[np.abs(points[:, 0]) > SEAM_HALF_MM]
+
+
+def _off_holes(points: NDArray[np.float64], feed: Feed) -> NDArray[np.float64]:
+    """Without the points in drains and in a choke's screw holes; walls of other makes have none."""
+    if feed.job.can.make not in {"rolled", "folded"}:
+        return points
+    keep = np.ones(len(points), dtype=bool)
+    walls = [wall for wall in (can_wall(feed), choke_wall(feed)) if wall is not None]
+    for wall in walls:
+        for hole in (*wall.holes, *wall.drains):
+            (x, y), _ = wall.path.at(hole.along_mm)
+            centre = np.array([x, y, wall.base_z_mm + hole.height_mm])
+            reach = math.hypot(hole.diameter_mm / 2, wall.path.thickness_mm / 2) + POLYGON_MM
+            keep &= np.linalg.norm(points - centre, axis=1) > reach
+    return points[keep]
 
 
 def _disc_points(feed: FeedGeometry) -> NDArray[np.float64]:

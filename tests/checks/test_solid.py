@@ -11,7 +11,7 @@ from typing import Any
 import numpy as np
 import pytest
 
-from fabgen.checks.solid import compare_solid, containment, drawn_can, drawn_loop, solid_findings
+from fabgen.checks.solid import _off_holes, compare_solid, containment, drawn_can, drawn_loop, solid_findings
 from fabgen.errors import GeometryError
 from fabgen.fields.mesh import CHOKE, CROSSING, FLOOR, LOOP, WALL, Mesh
 from fabgen.fields.solid_can import DrawnCan, can_faces
@@ -19,6 +19,7 @@ from fabgen.fields.solid_mesh import solid_mesh
 from fabgen.parts import kernel
 from fabgen.parts.build import build_parts
 from fabgen.parts.can_section import can_section
+from fabgen.parts.can_sheet import can_wall
 from fabgen.parts.floor_plan import floor_bottom_mm
 from fabgen.parts.loop_wire import axis_length_mm, wire_pieces
 from fabgen.writers.step import write_step
@@ -56,6 +57,16 @@ def test_the_drawn_solid_computes_to_the_strip_model(form: str, make: str, choke
     assert abs(found.resonance_shift_mhz) < 0.01 * feed.job.target.frequency_mhz
     # R alone, as after trimming the capacitor: no worse than 25 dB apart from the model's
     assert abs((found.solid_ohm.real - found.model_ohm.real) / (found.solid_ohm.real + 50)) < 0.056
+
+
+def test_points_in_a_drain_of_the_wall_are_left_out() -> None:
+    feed = sample_feed("wire", "rolled")
+    drain = can_wall(feed).drains[0]
+    (x, y), _ = can_wall(feed).path.at(drain.along_mm)
+    scale = feed.sizes.can_bore_mm / 2 / math.hypot(x, y)
+    inner = np.array([x * scale, y * scale, drain.height_mm])
+    points = inner + np.array([[0.0, 0.0, up] for up in (0.0, 1.4, 2.0)])
+    assert len(_off_holes(points, feed)) == 1
 
 
 @pytest.mark.slow
