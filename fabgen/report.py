@@ -9,7 +9,7 @@ from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
 from fabgen.checks.records import Finding
-from fabgen.job import Job
+from fabgen.job import AsWritten, Job
 from fabgen.sizing.records import BENCH_LIMIT_DB, CanTrial, Feed, Sizes
 from fabgen.units import INCH_MM
 
@@ -37,7 +37,7 @@ def size_report(feed: Feed) -> str:
     lines = [
         f"{feed.job.target.name}: {feed.job.target.frequency_mhz:g} MHz, wavelength {feed.job.wavelength_mm:.2f} mm"
     ]
-    lines += _section("As written", ((w.key, w.text, f"= {w.value:.6g}") for w in feed.job.as_written))
+    lines += _section("As written", ((w.key, w.text, f"= {_with_unit(w)}") for w in feed.job.as_written))
     lines += _section("Sizes", _size_rows(feed.sizes))
     lines += _section("Series capacitor", _capacitor_rows(feed))
     lines += _section("Expected at the target", _predicted_rows(feed))
@@ -59,6 +59,17 @@ def size_report(feed: Feed) -> str:
     )
     lines += ["", *(f"Remark: {remark}" for remark in feed.remarks)] if feed.remarks else []
     return "\n".join(lines) + "\n"
+
+
+def _with_unit(written: AsWritten) -> str:
+    """A converted value with the unit that its key names: millimetres also in inches, metres also in feet."""
+    ending = written.key.rstrip(".0123456789").rpartition("_")[2]
+    value = f"{written.value:.6g}"
+    if ending == "mm":
+        return f"{value} mm ({written.value / INCH_MM:.4g} in)"
+    if ending == "m":
+        return f"{value} m ({written.value * 1000 / INCH_MM / 12:.4g} ft)"
+    return f"{value} MHz"
 
 
 def loss_text(loss_db: float) -> str:

@@ -105,6 +105,32 @@ def test_size_prints_a_table(sizing: object, capsys: pytest.CaptureFixture[str])
     assert "\x1b[" not in captured.out
 
 
+def test_sizes_as_written_are_shown_both_ways(
+    sizing: Callable[[Sizing], None], tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    sizing(lambda job, progress: replace(sample_feed(), job=job))
+    text = Path(JOB).read_text(encoding="utf-8")
+    for section, key, value in (
+        ("target", "frequency_mhz", '"1.42 GHz"'),
+        ("dish", "diameter_m", '"10 ft"'),
+        ("loop", "wire_mm", '"6 AWG"'),
+        ("limits", "bed_mm", '["10 in", 250, 250]'),
+    ):
+        text = with_value(text, section, key, value)
+    (tmp_path / "job.toml").write_text(text, encoding="utf-8")
+    assert main(["size", str(tmp_path / "job.toml"), "--quiet"]) == 0
+    shown = " ".join(capsys.readouterr().out.split())
+    # ASTM B258: 6 AWG is 0.1620 in, 4.115 mm (from memory)
+    for words in (
+        "target.frequency_mhz 1.42 GHz = 1420 MHz",
+        "dish.diameter_m 10 ft = 3.048 m (10 ft)",
+        "loop.wire_mm 6 AWG = 4.115",
+        " mm (0.162 in) ",
+        "limits.bed_mm.1 10 in = 254 mm (10 in)",
+    ):
+        assert words in shown
+
+
 def test_size_json_is_the_record(sizing: object, capsys: pytest.CaptureFixture[str]) -> None:
     assert main(["size", JOB, "--json", "--plain"]) == 0
     record = json.loads(capsys.readouterr().out)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import dataclasses
+import itertools
 import math
 
 import pytest
@@ -14,10 +15,12 @@ from fabgen.parts.can_tube import LIP_MM
 from fabgen.parts.contour import Circle, FoldLine, area_mm2, bounds_mm, polygon
 from fabgen.parts.floor_plan import _rounded_square
 from fabgen.parts.jig import leg_outlines
-from fabgen.parts.print_rules import print_rules
+from fabgen.parts.print_rules import PrintRules, print_rules
 from fabgen.parts.radome_cap import cover_mm
 from fabgen.parts.records import FlatPattern
 from fabgen.parts.screws import STEEL_DENSITY
+from fabgen.parts.shell import profile
+from fabgen.parts.split import Envelope, plan_split
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
 from tests.parts.feeds import with_cable
@@ -148,3 +151,23 @@ def test_the_wire_lies_between_fence_and_block() -> None:
 def test_screws_are_of_stainless_steel() -> None:
     # A2 and A4: 7.9 to 8.0 g/cm3 (EN 10088-1; from memory)
     assert 7850 <= STEEL_DENSITY <= 8000
+
+
+@pytest.mark.parametrize("low_mm", [30.0, 45.0, 60.0])
+def test_every_ring_fits_the_bed_where_a_band_moves_its_joint(low_mm: float) -> None:
+    band, bed_mm = (low_mm, low_mm + 40.0), 90.0
+    envelope = Envelope("body", 60.0, 60.0, 0.0, 150.0, (), bands=(band,))
+    rules = PrintRules(0.4, 1.2, 0.2, 0.25, 2.0, 1.6, (200.0, 200.0, bed_mm), 0.3)
+    levels = plan_split(envelope, rules).levels_mm
+    assert levels
+    assert all(not band[0] < level < band[1] for level in levels)
+    assert all(0 < high - low <= bed_mm for low, high in itertools.pairwise((0.0, *levels, 150.0)))
+
+
+def test_only_a_can_with_a_cap_has_the_bead_that_holds_it() -> None:
+    for radome in (False, True):
+        body = body_of(sample_feed("wire", "printed", radome=radome, flange={"pattern": "none"}))
+        below = [r for r, z in profile(body) if z > body.flange_top_mm + 1.0]
+        assert (max(below) > body.outer_radius_mm) == radome
+        if radome:
+            assert max(below) == pytest.approx(body.outer_radius_mm + body.bead_mm)
