@@ -272,7 +272,7 @@ def test_the_wires_neutral_line_is_as_long_as_the_cut_at_every_bend_radius() -> 
         ("rolled", {"metal": "cuzn37"}, 4.0, "tin the last 4 mm"),
         ("printed", {}, 4.0, "tin the last 5 mm"),
         ("printed", {"lining": "silver-copper-paint"}, 4.0, "thread"),
-        ("rolled", {"metal": "en-aw-5754"}, 4.0, "leave 4 mm more beyond both ends of the schedule, thread the last 10"),
+        ("rolled", {"metal": "en-aw-5754"}, 4.0, "leave 4 mm more beyond both ends of the schedule"),
         ("turned", {"metal": "en-aw-6082"}, 2.05, "soldered to a brass plate"),
     ],
 )
