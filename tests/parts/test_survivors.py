@@ -14,7 +14,7 @@ from fabgen.parts.can_printed import _keep_clear, body_of, choke_screw_points
 from fabgen.parts.can_tube import LIP_MM
 from fabgen.parts.contour import Circle, FoldLine, area_mm2, bounds_mm, polygon
 from fabgen.parts.floor_plan import _rounded_square
-from fabgen.parts.jig import leg_outlines
+from fabgen.parts.jig import bending_jig, leg_outlines
 from fabgen.parts.print_rules import PrintRules, print_rules
 from fabgen.parts.radome_cap import cover_mm
 from fabgen.parts.records import FlatPattern
@@ -141,11 +141,22 @@ def test_the_wire_lies_between_fence_and_block() -> None:
     # the channel between them takes the wire with less than half a millimetre to spare
     assert path.diameter_mm < block[1] - fence[3] < path.diameter_mm + 0.5
     assert fence[3] < 0 < block[1]
+    # the fence ends before the bend begins, so that the hand that bends has room
+    assert fence[2] < 0
     # the stop closes the end of the channel, where the wire's straight piece ends
     assert stop[2] == pytest.approx(fence[0])
     assert 0 <= -leg.start_mm - stop[2] < 0.5
     assert stop[1] <= fence[1]
     assert stop[3] >= block[1]
+
+
+def test_a_bending_form_shows_where_the_loop_begins_and_ends() -> None:
+    # one mark at each side of the gap, which lies on +x: the form is its own mirror image in y
+    form = next(part for part in bending_jig(sample_feed("wire", "rolled")) if part.key == "jig-loop")
+    assert form.print_solid is not None
+    solid = form.print_solid()
+    box = solid.BoundingBox(1e-3)
+    assert solid.Center().y == pytest.approx((box.ymin + box.ymax) / 2, abs=1e-5)
 
 
 def test_screws_are_of_stainless_steel() -> None:
