@@ -103,6 +103,7 @@ def copper_feed() -> tuple[Job, Sizes]:
 
 
 @pytest.mark.slow
+@pytest.mark.thorough
 def test_feed_of_one_metal_drifts_like_a_body_of_it(monkeypatch: pytest.MonkeyPatch) -> None:
     # A body that grows by a share in every direction resonates lower by that share (PR-18: df/f = -alpha dT); its
     # capacitor then grows by the same share. Real solves; the model leaves out the crossing's width.
