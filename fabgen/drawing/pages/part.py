@@ -108,7 +108,9 @@ def _views(context: Context, part: Part, words: float) -> Built:
 
 
 def _pictured(context: Context, part: Part, wanted: bool, room: float) -> list[Block]:
-    return [picture(part, min(room, 70.0), shown=context.shown(part)), gap(3)] if wanted else []
+    """The picture in the room that is left; where that is next to nothing it goes to the following sheet."""
+    height = min(room, 70.0) if room > 25 else 50.0
+    return [picture(part, height, shown=context.shown(part)), gap(3)] if wanted else []
 
 
 def _view_of(context: Context, part: Part) -> Callable[[float], Built]:
@@ -305,9 +307,11 @@ def notes(part: Part) -> list[Block]:
 
 
 def sizes_blocks(part: Part, width: float = WIDTH_MM, feed: Feed | None = None) -> list[Block]:
-    """The sizes that make a part, two columns of names and values, with the tolerance of those that have their own."""
+    """The sizes that make a part, two columns of names and values, with the tolerance of those that have their own;
+    foil is cut to its own tolerance, not to that of the can it lines."""
+    own = feed if "foil" not in part.process else None
     rows = [
-        (size_name(key), quantity(key, value) + (_own_tolerance(feed, key) if feed is not None else ""))
+        (size_name(key), quantity(key, value) + (_own_tolerance(own, key) if own is not None else ""))
         for key, value in part.sizes
     ]
     if not rows:
