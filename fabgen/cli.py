@@ -112,7 +112,7 @@ def _add_check(commands: _Commands, common: argparse.ArgumentParser) -> None:
     _add_run_options(parser, "the job file (TOML), or the folder of a written pack to read it back")
     parser.add_argument("--json", action="store_true", help="findings as JSON")
     parser.add_argument("--strict", action="store_true", help="exit status 4 for a caution too")
-    parser.add_argument("--solid", action="store_true", help="solve the drawn solids too and compare (some tens of seconds)")
+    parser.add_argument("--solid", action="store_true", help="solve the drawn solids too and compare")
 
 
 def _add_pack(commands: _Commands, common: argparse.ArgumentParser) -> None:
