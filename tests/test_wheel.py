@@ -66,7 +66,6 @@ OWN_ROW = """
 [[wire]]
 key = "reel"
 name = "reel in the drawer"
-metal = "cu-etp"
 diameters_mm = [3.3]
 source = "measured"
 known_from = "measured"
