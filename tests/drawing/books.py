@@ -1,4 +1,4 @@
-"""Books of sheets for tests: made once a session for each kind of feed."""
+"""Books of sheets for tests: made once a session for each kind of feed, samples by words, templates by name."""
 
 from __future__ import annotations
 
@@ -12,8 +12,10 @@ from fabgen.parts.build import build_parts
 from fabgen.parts.records import Part
 from fabgen.sizing.records import Feed
 from tests.samples import sample_feed
+from tests.template_feeds import KEPT, template_feed
 
-KINDS = ("wire-rolled", "sheet-folded-2304", "sheet-printed", "wire-tube-choke")
+SAMPLES = ("wire-rolled", "sheet-folded-2304", "sheet-printed", "wire-tube-choke")
+KINDS = (*SAMPLES, *KEPT)
 FINDINGS = (
     Finding(
         "SHEET-101", "stop", "loop", "bend 1", "0.5 mm", "1.5 mm", "EN 1652", "The inside radius is too small.",
@@ -28,10 +30,13 @@ FINDINGS = (
 
 @cache
 def feed_of(kind: str, paper: str = "A4") -> Feed:
-    """A sample feed by the words of its kind."""
-    words = kind.split("-")
-    frequency = next((float(w) for w in words if w.isdigit()), 1420.406)
-    feed = sample_feed(words[0], words[1], frequency, choke="choke" in words)
+    """The kept feed of a template, or a sample feed by the words of its kind."""
+    if kind in KEPT:
+        feed = template_feed(kind)
+    else:
+        words = kind.split("-")
+        frequency = next((float(w) for w in words if w.isdigit()), 1420.406)
+        feed = sample_feed(words[0], words[1], frequency, choke="choke" in words)
     limits = feed.job.limits.model_copy(update={"paper": paper})
     return replace(feed, job=feed.job.model_copy(update={"limits": limits}))
 

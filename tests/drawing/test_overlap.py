@@ -20,9 +20,10 @@ def test_every_sheet_is_legible(kind: str) -> None:
     assert [(s.number, c) for s in book_of(kind) for c in clashes(s)] == []
 
 
+@pytest.mark.parametrize("kind", ["wire-tube-choke", "s-band-3400"])
 @pytest.mark.parametrize("paper", ["A3", "letter", "tabloid"])
-def test_every_paper_is_legible(paper: str) -> None:
-    assert [(s.number, c) for s in book_of("wire-tube-choke", paper) for c in clashes(s)] == []
+def test_every_paper_is_legible(paper: str, kind: str) -> None:
+    assert [(s.number, c) for s in book_of(kind, paper) for c in clashes(s)] == []
 
 
 @given(numbers, numbers, numbers, numbers, numbers, numbers, st.floats(1, 30), st.floats(1, 30))

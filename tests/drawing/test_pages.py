@@ -21,7 +21,10 @@ from fabgen.drawing.texts_english import ENGLISH
 from fabgen.errors import FabgenError, JobError
 from fabgen.parts.build import build_parts
 from fabgen.parts.floor_plan import floor_bottom_mm
+from fabgen.parts.records import Part
+from fabgen.sizing.records import Feed
 from tests.drawing.books import FINDINGS, KINDS, book_of, feed_of, parts_of
+from tests.samples import sample_feed
 
 ORDER = (
     "general", "stock", "part", "bought", "wire", "true", "assembly", "bench", "mounting", "findings", "cautions",
@@ -236,6 +239,99 @@ def test_the_lining_is_drawn_where_the_eye_sees_it() -> None:
             assert (x / (bore / 2)) ** 2 + ((y - full) / (bore / 2 * n[2])) ** 2 < 1.0 + 1e-3
     # A can as deep as wide hides the near part of its floor.
     assert len(lined_floor(bore, 100.0, ABOVE_EYE)) < len(floor)
+
+
+def _lined(lining: str, form: str = "wire", choke: bool = False) -> tuple[Feed, tuple[Part, ...]]:
+    feed = sample_feed(form, "printed", choke=choke, lining=lining)
+    return feed, build_parts(feed)
+
+
+@pytest.mark.parametrize(
+    ("lining", "words"),
+    [
+        ("silver-copper-paint", ("fumes of solvent", "Metal dust", "ohm", "masking tape")),
+        ("copper-plating", ("bath and its mist", "Primer fumes", "ohm", "plating bath")),
+    ],
+)
+def test_painted_and_plated_cans_have_their_step_of_lining(lining: str, words: tuple[str, ...]) -> None:
+    from fabgen.drawing.model import Line
+
+    feed, parts = _lined(lining)
+    pages = [s for s in sheets(feed, parts, ()) if s.kind == "assembly"]
+    sheet, title = next((s, t) for s in pages for t in s.texts if t.text.endswith("Lining"))
+    text = " ".join(t.text for t in sheet.texts)
+    for word in (*words, say("assembly.tools"), say("assembly.caution"), say("assembly.join"), say("assembly.measure")):
+        assert word in text, word
+    hatched = [i for i in sheet.items if isinstance(i, Line) and i.role == "new" and abs(i.y0 - title.y) < 70]
+    assert len(hatched) > 20
+    order = [s.kind for s in steps(parts, coated=True)]
+    assert order.index("body") < order.index("lining") < order.index("loop")
+    assert "lining" not in [s.kind for s in steps(parts)]
+
+
+def test_paint_is_stock_to_have() -> None:
+    feed, parts = _lined("silver-paint")
+    rows = [r for s in sheets(feed, parts, ()) for t in s.tables if t.name == "stock" for r in t.rows]
+    (row,) = [r for r in rows if r[0] == "silver paint"]
+    bore, depth = feed.sizes.can_bore_mm, feed.sizes.can_depth_mm
+    assert float(row[2].split()[0]) == pytest.approx((math.pi * bore**2 / 4 + math.pi * bore * depth) / 100, abs=0.51)
+
+
+def test_the_foil_of_a_choke_goes_in_with_its_ring_and_is_hatched() -> None:
+    from fabgen.drawing.pages.lining import lined
+    from fabgen.drawing.pages.steps import ABOVE_EYE
+
+    feed, parts = _lined("copper-foil-35", choke=True)
+    joined = {p.key: s.kind for s in steps(parts) for p in s.parts}
+    assert (joined["foil-wall"], joined["foil-choke-wall"]) == ("lining", "choke")
+    s = feed.sizes
+    assert s.choke is not None
+    lines = lined("foil-choke-wall", s, s.can_bore_mm + 2 * s.wall_mm, ABOVE_EYE)
+    rim = s.choke.floor_z_mm + s.choke.depth_mm
+    n, r = ABOVE_EYE.towards_eye, s.choke.bore_mm / 2
+    assert len(lines) > 10
+    for line in lines:  # the upper end of each is on the picture of the rim
+        top = max(line.y0, line.y1)
+        raised = rim * math.hypot(n[0], n[1])
+        assert (line.x0 / r) ** 2 + ((top - raised) / (r * n[2])) ** 2 == pytest.approx(1.0, abs=1e-6)
+
+
+def test_the_reading_on_a_lining_is_that_of_probes_on_a_sheet() -> None:
+    from fabgen.drawing.pages.lining import spreading_ohm
+
+    # Two equal discs on a wide sheet: R = R_s / pi arccosh(d / 2a), exact (two-wire line; textbooks). One of them on
+    # a straight edge takes twice its half.
+    for distance in (20.0, 150.0, 600.0):
+        both = math.acosh(distance / 2) / math.pi
+        assert spreading_ohm(1.0, distance) == pytest.approx(1.5 * both, rel=1e-2)
+    assert spreading_ohm(0.3, 150.0) == pytest.approx(0.3 * spreading_ohm(1.0, 150.0))
+
+
+def test_advice_for_a_wire_loop_says_nothing_of_a_strip() -> None:
+    words = {kind: " ".join(a.do for a in bench.advice(feed_of(kind))) for kind in ("wire-rolled", "sheet-printed")}
+    assert "strip" not in words["wire-rolled"]
+    assert "strip" in words["sheet-printed"]
+
+
+def test_cautions_name_every_hazard() -> None:
+    heads = [r[0] for s in book_of("wire-rolled") for t in s.tables if t.name == "cautions" for r in t.rows]
+    for hazard in ("Sharp sheet", "solder and fumes", "paints, plating and dust", "Masts", "Lightning", "Transmitting",
+                   "sun at the focus"):  # fmt: skip
+        assert any(hazard in head for head in heads), hazard
+
+
+def test_a_part_far_larger_than_the_largest_sheet_is_drawn_small_and_whole() -> None:
+    from fabgen.drawing.pages.part import flat_block
+    from fabgen.parts.contour import Contour, Vertex
+    from fabgen.parts.records import FlatPattern
+
+    for wide, high in ((40_000.0, 30_000.0), (90_000.0, 400.0)):
+        corners = (Vertex(0, 0), Vertex(wide, 0), Vertex(wide, high), Vertex(0, high))
+        block, scale, left_over = flat_block(FlatPattern(Contour(corners)), 150.0)
+        assert scale.startswith("1:")
+        assert block.height <= 150.0
+        assert left_over == ()
+        assert {d.value for d in block.dimensions} == {wide, high}
 
 
 def test_the_step_of_the_lining_shows_the_can_and_both_foils() -> None:

@@ -120,11 +120,57 @@ def test_fold_lines_and_bends_are_listed(kind: str) -> None:
 
 
 def _count(runs: str) -> int:
-    total = 0
+    return len(_numbers(runs))
+
+
+def _numbers(runs: str) -> list[int]:
+    found: list[int] = []
     for run in runs.split(", "):
         first, _, last = run.partition("–")
-        total += int(last or first) - int(first) + 1
-    return total
+        found += range(int(first), int(last or first) + 1)
+    return found
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_fold_lines_have_their_distance_from_both_edges(kind: str) -> None:
+    # Measured by a geometry library on the cutting contour: the first edge met square to the line from its middle.
+    for part in parts_of(kind):
+        if part.flat is None or not part.flat.folds:
+            continue
+        (table,) = [t for t in _tables(_part_pages(kind, part.key)) if t.name == "bends"]
+        assert table.head[-2:] == (say("fold.left"), say("fold.right"))
+        printed = {n: (float(r[-2]), float(r[-1])) for r in table.rows for n in _numbers(r[0])}
+        slots = [h for h in part.flat.holes if isinstance(h, c.Contour)]
+        edges = shapely.union_all([shapely.LinearRing(c.sampled(o, 0.001)) for o in (part.flat.outline, *slots)])
+        for fold in part.flat.folds:
+            (x0, y0), (x1, y1) = fold.start, fold.end
+            length = math.dist(fold.start, fold.end)
+            left = (-(y1 - y0) / length, (x1 - x0) / length)
+            middle = ((x0 + x1) / 2, (y0 + y1) / 2)
+            for value, sign in zip(printed[fold.number], (1, -1), strict=True):
+                far = (middle[0] + sign * 5000 * left[0], middle[1] + sign * 5000 * left[1])
+                met = edges.intersection(shapely.LineString([middle, far]))
+                assert value == pytest.approx(shapely.Point(middle).distance(met), abs=0.0075), (part.key, fold.number)
+
+
+def test_notched_discs_are_dimensioned_by_their_diameter() -> None:
+    page = next(s for s in book_of("hydrogen-wire") if s.kind == "part" and s.part_key == "floor")
+    (diameter,) = [d for d in page.dimensions if d.name == "diameter"]
+    width = dict(next(p for p in parts_of("hydrogen-wire") if p.key == "floor").sizes)["flange_width_mm"]
+    assert diameter.text == f"⌀{number(width)}"
+    assert not [d for d in page.dimensions if d.name in {"width", "height"}]
+
+
+def test_a_tube_askew_is_drawn_straight_with_both_diameters() -> None:
+    from fabgen.parts import kernel
+
+    tube = kernel.tube((1, 2, 3), (1, 32, 4), 4.0, 3.1)
+    straight = solid.squared(tube)
+    box = straight.BoundingBox(1e-4)
+    assert (box.xlen, box.ylen, box.zlen) == pytest.approx((4.0, math.hypot(30, 1), 4.0), abs=1e-3)
+    m = solid.measured(straight)
+    assert {a.text for a in solid.front_asks(m)} == {"⌀4", "⌀3.1"}
+    assert solid.cross_rows(m) == ()
 
 
 def test_a_repeating_edge_is_told_once() -> None:

@@ -18,7 +18,7 @@ from pypdf import PdfReader
 from fabgen.drawing.pages.sheets import sheets
 from fabgen.errors import OutputError
 from fabgen.writers.pdf import Metadata, write_pdf
-from tests.drawing.books import FINDINGS, KINDS, book_of, feed_of, parts_of
+from tests.drawing.books import FINDINGS, SAMPLES, book_of, feed_of, parts_of
 
 METADATA = Metadata("sample feed", "someone", "Assembly sheets", ("feed", "dish"))
 POPPLER = shutil.which("pdftoppm") is not None
@@ -129,7 +129,7 @@ def test_same_bytes_in_other_processes(pdf: Path, tmp_path: Path) -> None:
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize("kind", KINDS)
+@pytest.mark.parametrize("kind", SAMPLES)
 def test_size_and_time(kind: str, tmp_path: Path) -> None:
     if os.getloadavg()[0] > 2.0:
         pytest.skip("the machine is busy: times would say nothing")

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import xml.etree.ElementTree as ET
 from pathlib import Path
 
@@ -12,6 +13,8 @@ from fabgen.drawing.pages.sheets import pictures
 from fabgen.errors import OutputError
 from fabgen.writers.svg import svg_text, write_svg
 from tests.drawing.books import book_of, feed_of, parts_of
+from tests.examples import ROOT
+from tests.template_feeds import DRAWN, STALE, views
 
 NS = "{http://www.w3.org/2000/svg}"
 
@@ -40,6 +43,15 @@ def test_items_are_cropped_to_their_bounds() -> None:
     assert next(root.iter(f"{NS}text")).text == "a < b & c"
     line = next(root.iter(f"{NS}path")).get("d")
     assert line == "M3 33L53 33"
+
+
+@pytest.mark.parametrize("name", DRAWN)
+def test_kept_views_are_those_of_the_kept_feeds(name: str) -> None:
+    for file, text in views(name).items():
+        kept = (ROOT / "docs" / file).read_text("utf-8")
+        assert re.sub(r"[-\d.]+", "0", kept) == re.sub(r"[-\d.]+", "0", text), STALE.format(name=name)
+        numbers = [[float(n) for n in re.findall(r"-?\d+(?:\.\d+)?", t)] for t in (kept, text)]
+        assert numbers[0] == pytest.approx(numbers[1], abs=0.01)
 
 
 def test_folder_that_is_not_there(tmp_path: Path) -> None:
