@@ -43,8 +43,10 @@ from fabgen.fields.system import (
 
 SYMMETRY_PLANES = (1,)
 KEPT_CANS = 4
-REFINEMENTS = 4
-REFINED_RESIDUAL = 1e-4
+REFINEMENTS = 12
+REFINED_RESIDUAL = 1e-10
+"""Residual at which a refined solution is as good as a factorised one."""
+REFUSED_RESIDUAL = 1e-6
 
 
 @dataclass(frozen=True)
@@ -181,13 +183,12 @@ class FeedSolver:
         if step:
             del matrix  # makes room for the next one
             matrix = self._full(self._can_matrix(feed.can, ready, top, surface), ready, top, surface)
-            for _ in range(REFINEMENTS):
-                currents = currents + system.solve(_residual(matrix, currents, drive)[0])
+            currents = _refined(system, matrix, currents, drive)
             second = _solution(ready, top, surface, currents, drive, condition, matrix)
-            if second.residual > REFINED_RESIDUAL:
+            if second.residual > REFUSED_RESIDUAL:
                 raise NumericalError(
                     f"the solution {step:+.1%} beside {frequency_hz / 1e6:.1f} MHz is refined to {second.residual:.1e} "
-                    f"only; {REFINED_RESIDUAL:g} is needed: use a smaller step"
+                    f"only; {REFUSED_RESIDUAL:g} is needed: use a smaller step"
                 )
             found.append(second)
         return found
@@ -270,6 +271,18 @@ def _residual(matrix: ComplexArray, currents: ComplexArray, right: NDArray[Any])
     """v - Z x (N,), and the largest backward error of a row, |Z x - v| / (|Z| |x| + |v|)."""
     left = np.empty(len(currents), dtype=np.complex128)
     return left, float(kernel.residual(matrix, currents, right.astype(np.complex128), left))
+
+
+def _refined(
+    system: _System, matrix: ComplexArray, currents: ComplexArray, right: NDArray[Any]
+) -> ComplexArray:
+    """Solution of Z x = v by refinement with the factors of a matrix nearby."""
+    for _ in range(REFINEMENTS):
+        left, error = _residual(matrix, currents, right)
+        if error < REFINED_RESIDUAL:
+            break
+        currents = currents + system.solve(left)
+    return currents
 
 
 def _solution(

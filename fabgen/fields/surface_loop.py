@@ -10,16 +10,17 @@ sensitivities need.
        |=== crossing -> y = 0                           |=== crossing -> y = 0
      __|__ foot on the floor                          __|__
 
-Depends on: fields.geometry, fields.mesh, fields.plan.
+Depends on: errors, fields.geometry, fields.mesh, fields.plan.
 """
 
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
+from fabgen.errors import GeometryError
 from fabgen.fields.geometry import LoopGeometry
 from fabgen.fields.mesh import CROSSING, LOOP, FloatArray, Mesh, grid
 from fabgen.fields.plan import LoopCounts, tangent_angle
@@ -34,6 +35,8 @@ class LoopSurface:
 
 
 EDGE_CELL = 0.12
+BEND_SHARE = 0.85
+"""Share of the distance between bar and ring that the meshed bend of a sheet loop may take."""
 
 
 def across_positions(cells: int) -> FloatArray:
@@ -106,12 +109,13 @@ def _wire_surface(loop: LoopGeometry, counts: LoopCounts) -> LoopSurface:
 
 
 def _sheet_surface(loop: LoopGeometry, counts: LoopCounts) -> LoopSurface:
-    rows, low, high = leg_stations(loop, counts)
     across = across_positions(counts.across)
     y = loop.leg_pitch_m / 2 + across * loop.leg_band_m / 2
     side = 1.0 if loop.inward else -1.0
     ring = _ring_nodes(loop, counts, y)
     edge = ring[0, : counts.across + 1] if loop.inward else ring[-1, : counts.across + 1]
+    loop = replace(loop, bend_radius_m=min(loop.bend_radius_m, BEND_SHARE * _room(loop, edge)))
+    rows, low, high = leg_stations(loop, counts)
     b, h = loop.bend_radius_m, loop.height_m
     alpha = np.linspace(math.pi / 2, 0.0, counts.bend + 1)
     arc = np.zeros((counts.bend + 1, len(y), 3))
@@ -125,6 +129,17 @@ def _sheet_surface(loop: LoopGeometry, counts: LoopCounts) -> LoopSurface:
     strip = np.concatenate([leg, arc[1:], tab])
     meshes = (grid(ring, LOOP), grid(strip, LOOP), _crossing(leg[low : high + 1, 0], counts))
     return LoopSurface(meshes, leg[0])
+
+
+def _room(loop: LoopGeometry, edge: FloatArray) -> float:
+    """Distance between bar and ring; the meshed ring is wider than the sheet's, so a short tab gets shorter still."""
+    room = float(np.min(edge[:, 0]) - loop.leg_x_m if loop.inward else loop.leg_x_m - np.max(edge[:, 0]))
+    if room <= 0:
+        raise GeometryError(
+            f"the tab between ring and bar is {-1e3 * room:.2f} mm too short to be computed; make the ring's strip "
+            "narrower or the tab longer"
+        )
+    return room
 
 
 def _ring_nodes(loop: LoopGeometry, counts: LoopCounts, y: FloatArray) -> FloatArray:

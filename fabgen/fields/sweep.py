@@ -25,6 +25,10 @@ ComplexArray = NDArray[np.complex128]
 FloatArray = NDArray[np.float64]
 
 
+SUPPORT_SHARE = 0.8
+"""Share of the samples that may become support points."""
+
+
 @dataclass(frozen=True)
 class RationalFit:
     """Barycentric rational functions with common support points s = j f (n,), weights (n,), values (n, q)."""
@@ -50,7 +54,7 @@ def fit_rational(frequency: FloatArray, values: ComplexArray, tolerance: float =
     """Fit samples (m,), (m, q) and their mirror images by one common set of poles.
 
     Support points are chosen greedily where the fit is worst, until the relative error is below ``tolerance`` or
-    half the samples are used.
+    there are too few other samples to find the weights from. The more quantities, the more poles can be told.
     """
     s = 1j * np.concatenate([-frequency[::-1], frequency])
     data = np.concatenate([values[::-1].conj(), values])
@@ -63,7 +67,7 @@ def fit_rational(frequency: FloatArray, values: ComplexArray, tolerance: float =
     chosen: list[int] = []
     fit = np.broadcast_to(data.mean(0), data.shape)
     best: RationalFit | None = None
-    while len(chosen) < (len(s) + 1) // 2:
+    while len(chosen) <= min(SUPPORT_SHARE * len(s), data.shape[1] * (len(s) - len(chosen) - 2) - 2):
         error = np.abs(data - fit).max(1)
         error[chosen] = -1.0
         worst = int(np.argmax(error))
@@ -83,7 +87,7 @@ def _barycentric(s: ComplexArray, data: ComplexArray, chosen: list[int]) -> tupl
     loewner = np.concatenate(
         [cauchy * (data[rest, q][:, None] - data[chosen, q][None, :]) for q in range(data.shape[1])]
     )
-    _, _, right = np.linalg.svd(loewner, full_matrices=True)
+    _, _, right = np.linalg.svd(loewner, full_matrices=False)
     weights = right[-1].conj()
     found = RationalFit(s[chosen], weights, data[chosen])
     fit = data.copy()
@@ -115,7 +119,7 @@ def adaptive_sweep(
     """Solve where it is needed until the fit is good.
 
     ``sample(f)`` makes one full solve and gives frequencies (p,) and quantities (p, q) at and near f, the first of
-    which is the impedance; ``measure`` turns frequencies and quantities into what the tolerance is stated for
+    which is the impedance, all with the same poles; ``measure`` turns frequencies and quantities into what the tolerance is stated for
     (reflection). The error estimate is the largest change of ``measure`` on a fine grid when the newest sample is
     added; a change below ``tolerance`` ends the sweep, as does the number of solves ``most``.
     """

@@ -130,3 +130,19 @@ def _ring_current(solution: FieldSolution, phi: float, step: float) -> complex:
     cell = np.abs(angle - phi) < step / 2
     along = -moment[cell, 0] * np.sin(angle[cell]) + moment[cell, 1] * np.cos(angle[cell])
     return complex(along.sum() / (step * np.linalg.norm(place[cell][:, :2], axis=1).mean()))
+
+
+@pytest.mark.parametrize("bend_mm", [2.0, 4.0, 4.3, 6.0])
+def test_a_bend_too_wide_for_the_meshed_tab_is_drawn_tighter(bend_mm: float) -> None:
+    feed = a_feed("sheet")
+    feed = replace(feed, loop=replace(feed.loop, bend_radius_m=bend_mm / 1e3))
+    mesh, _ = feed_mesh(feed, plan_mesh(feed, WAVE, 10))
+    areas = mesh.areas_m2()
+    assert areas.min() > 1e-3 * areas.mean()
+
+
+def test_a_tab_shorter_than_nothing_is_refused() -> None:
+    feed = a_feed("sheet")
+    short = replace(feed, loop=replace(feed.loop, leg_x_m=feed.loop.radius_m - feed.loop.band_m / 2))
+    with pytest.raises(GeometryError, match="too short to be computed; make the ring's strip narrower"):
+        feed_mesh(short, plan_mesh(feed, WAVE, 10))
