@@ -119,9 +119,9 @@ def adaptive_sweep(
     """Solve where it is needed until the fit is good.
 
     ``sample(f)`` makes one full solve and gives frequencies (p,) and quantities (p, q) at and near f, the first of
-    which is the impedance, all with the same poles; ``measure`` turns frequencies and quantities into what the tolerance is stated for
-    (reflection). The error estimate is the largest change of ``measure`` on a fine grid when the newest sample is
-    added; a change below ``tolerance`` ends the sweep, as does the number of solves ``most``.
+    which is the impedance, all with the same poles; ``measure`` turns frequencies and quantities into what the
+    tolerance is stated for (reflection). The error estimate is the largest change of ``measure`` on a fine grid when
+    the newest sample is added; a change below ``tolerance`` ends the sweep, as does the number of solves ``most``.
     """
     centres = list(np.linspace(start, stop, first))
     if target is not None:
