@@ -27,7 +27,8 @@ from numpy.typing import NDArray
 
 from fabgen.errors import NumericalError
 
-ComplexArray = NDArray[np.complex128]
+ComplexArray = NDArray[Any]
+"""Of complex numbers, double or single."""
 BLOCK = 160
 SHARES = 4
 HAGER_TURNS = 5
@@ -36,7 +37,8 @@ HAGER_TURNS = 5
 class SymmetricFactors:
     """Factors of ``matrix`` (n, n), made in its memory, which is lost: L below the diagonal, D L^T above.
 
-    Raises NumericalError where a diagonal block is singular.
+    Of double or single precision, as the matrix is; so are solutions. Raises NumericalError where a diagonal block is
+    singular.
     """
 
     def __init__(self, matrix: ComplexArray) -> None:
@@ -63,7 +65,7 @@ class SymmetricFactors:
             a[rows, block] = a[rows, block] @ inverse
 
         subtract(block)
-        inverse: ComplexArray = np.asarray(np.linalg.inv(a[block, block]), dtype=np.complex128)
+        inverse: ComplexArray = np.asarray(np.linalg.inv(a[block, block]), dtype=a.dtype)
         self._inverse.append(inverse)
 
         def below(rows: slice) -> None:
@@ -74,7 +76,7 @@ class SymmetricFactors:
 
     def solve(self, right: NDArray[Any]) -> ComplexArray:
         """Solution for one right-hand side (n,)."""
-        a, x = self._factors, np.array(right, dtype=np.complex128)
+        a, x = self._factors, np.array(right, dtype=self._factors.dtype)
         for block in self._blocks:
             x[block] -= a[block, : block.start] @ x[: block.start]
         for block, inverse in zip(reversed(self._blocks), reversed(self._inverse), strict=True):
@@ -83,7 +85,7 @@ class SymmetricFactors:
 
     def halfway(self, right: ComplexArray) -> tuple[ComplexArray, ComplexArray]:
         """W = L^-1 B and V = D^-1 W for B (n, m): B^T A^-1 B = W^T V at half the work of A^-1 B."""
-        w, v, a = np.array(right, order="C"), np.empty(right.shape, dtype=np.complex128), self._factors
+        w, v, a = np.array(right, order="C"), np.empty_like(right, order="C"), self._factors
 
         def columns(share: slice) -> None:
             for block, inverse in zip(self._blocks, self._inverse, strict=True):

@@ -144,6 +144,7 @@ class FeedSolver:
         self._cans: _Recent[tuple[CanGeometry, float, complex], _KeptCan] = _Recent(KEPT_CANS)
         self._can_assemblers: _Recent[CanGeometry, Assembler] = _Recent(2)
         self._feeds: _Recent[FeedGeometry, _Prepared] = _Recent(2)
+        self._whole_assemblers: _Recent[FeedGeometry, Assembler] = _Recent(1)
 
     def solve(
         self, feed: FeedGeometry, frequency_hz: float, surface: SurfaceImpedance | None = None
@@ -152,24 +153,9 @@ class FeedSolver:
 
         Raises GeometryError for sizes that clash or a mesh too coarse, NumericalError where the solution is not finite.
         """
-        return self._solutions(feed, frequency_hz, surface or SurfaceImpedance(), 0.0)[0]
-
-    def solve_pair(
-        self, feed: FeedGeometry, frequency_hz: float, step: float, surface: SurfaceImpedance | None = None
-    ) -> tuple[FieldSolution, FieldSolution]:
-        """Solutions at f and at f (1 + step), the second by iterative refinement with the factors of the first.
-
-        ``step`` at most about 0.01. One factorisation serves both, which gives a sweep slopes at little cost.
-        """
-        first, second = self._solutions(feed, frequency_hz, surface or SurfaceImpedance(), step)
-        return first, second
-
-    def _solutions(
-        self, feed: FeedGeometry, frequency_hz: float, surface: SurfaceImpedance, step: float
-    ) -> list[FieldSolution]:
+        surface = surface or SurfaceImpedance()
         ready = self._feeds.recall(feed, lambda: self._prepare(feed))
-        top = frequency_hz * (1 + step)
-        check_mesh(ready.mesh, SPEED_OF_LIGHT / max(frequency_hz, top))
+        check_mesh(ready.mesh, SPEED_OF_LIGHT / frequency_hz)
         drive = port_drive(ready.mesh, ready.functions)
         can = self._cans.recall(
             (feed.can, frequency_hz, complex(surface.can_ohm)),
@@ -177,21 +163,46 @@ class FeedSolver:
         )
         matrix = self._full(can.matrix, ready, frequency_hz, surface)
         system = _System(can, matrix, ready.functions.inner)
-        currents = system.solve(drive)
-        condition = math.nan if step else system.condition()
-        found = [_solution(ready, frequency_hz, surface, currents, drive, condition, matrix)]
-        if step:
-            del matrix  # makes room for the next one
-            matrix = self._full(self._can_matrix(feed.can, ready, top, surface), ready, top, surface)
-            currents = _refined(system, matrix, currents, drive)
-            second = _solution(ready, top, surface, currents, drive, condition, matrix)
-            if second.residual > REFUSED_RESIDUAL:
-                raise NumericalError(
-                    f"the solution {step:+.1%} beside {frequency_hz / 1e6:.1f} MHz is refined to {second.residual:.1e} "
-                    f"only; {REFUSED_RESIDUAL:g} is needed: use a smaller step"
-                )
-            found.append(second)
-        return found
+        return _solution(ready, frequency_hz, surface, system.solve(drive), drive, system.condition(), matrix)
+
+    def solve_pair(
+        self, feed: FeedGeometry, frequency_hz: float, step: float, surface: SurfaceImpedance | None = None
+    ) -> tuple[FieldSolution, FieldSolution]:
+        """Solutions at f and at f (1 + step), the second by iterative refinement with the factors of the first.
+
+        ``step`` at most about 0.01. One factorisation serves both, which gives a sweep slopes at little cost. No can
+        is kept. Raises as ``solve``, and NumericalError where the refinement does not settle.
+        """
+        surface = surface or SurfaceImpedance()
+        ready = self._feeds.recall(feed, lambda: self._prepare(feed))
+        top = frequency_hz * (1 + step)
+        check_mesh(ready.mesh, SPEED_OF_LIGHT / max(frequency_hz, top))
+        drive = port_drive(ready.mesh, ready.functions)
+        matrix = self._whole(feed, ready, frequency_hz, surface)
+        factors, currents = _quickly_solved(matrix, drive)
+        first = _solution(ready, frequency_hz, surface, currents, drive, math.nan, matrix)
+        del matrix  # makes room for the next one
+        matrix = self._whole(feed, ready, top, surface)
+        currents = _refined(factors, matrix, currents, drive)
+        second = _solution(ready, top, surface, currents, drive, math.nan, matrix)
+        if second.residual > REFUSED_RESIDUAL:
+            raise NumericalError(
+                f"the solution {step:+.1%} beside {frequency_hz / 1e6:.1f} MHz is refined to {second.residual:.1e} "
+                f"only; {REFUSED_RESIDUAL:g} is needed: use a smaller step"
+            )
+        return first, second
+
+    def _whole(
+        self, feed: FeedGeometry, ready: _Prepared, frequency_hz: float, surface: SurfaceImpedance
+    ) -> ComplexArray:
+        """The full matrix made in one go."""
+        assembler = self._whole_assemblers.recall(
+            feed, lambda: Assembler(ready.mesh, ready.functions, SYMMETRY_PLANES, 0, self.quadrature)
+        )
+        matrix = assembler.matrix(frequency_hz)
+        if surface.loop_ohm or surface.can_ohm:
+            add_overlap(matrix, ready.mesh, ready.functions, surface.per_triangle(ready.mesh))
+        return matrix
 
     def _prepare(self, feed: FeedGeometry) -> _Prepared:
         mesh, kept = feed_mesh(feed, self.plan)
@@ -273,15 +284,28 @@ def _residual(matrix: ComplexArray, currents: ComplexArray, right: NDArray[Any])
     return left, float(kernel.residual(matrix, currents, right.astype(np.complex128), left))
 
 
+def _quickly_solved(matrix: ComplexArray, right: NDArray[Any]) -> tuple[SymmetricFactors, ComplexArray]:
+    """Factors in single precision, half the time of double ones, with the solution refined to double.
+
+    Where the refinement does not settle, factors in double precision.
+    """
+    factors = SymmetricFactors(matrix.astype(np.complex64))
+    currents = _refined(factors, matrix, np.zeros(len(right), dtype=np.complex128), right)
+    if _residual(matrix, currents, right)[1] < REFINED_RESIDUAL:
+        return factors, currents
+    factors = SymmetricFactors(matrix.copy())
+    return factors, factors.solve(right)
+
+
 def _refined(
-    system: _System, matrix: ComplexArray, currents: ComplexArray, right: NDArray[Any]
+    factors: SymmetricFactors, matrix: ComplexArray, currents: ComplexArray, right: NDArray[Any]
 ) -> ComplexArray:
     """Solution of Z x = v by refinement with the factors of a matrix nearby."""
     for _ in range(REFINEMENTS):
         left, error = _residual(matrix, currents, right)
         if error < REFINED_RESIDUAL:
             break
-        currents = currents + system.solve(left)
+        currents = currents + factors.solve(left)
     return currents
 
 

@@ -38,6 +38,16 @@ def test_block_elimination_against_the_plain_product() -> None:
     np.testing.assert_allclose(found, found.T, rtol=0, atol=1e-12 * np.abs(expected).max())
 
 
+def test_single_precision_is_enough_to_start_from() -> None:
+    matrix, right = symmetric(2 * BLOCK + 3, 6), np.ones(2 * BLOCK + 3)
+    factors = SymmetricFactors(matrix.astype(np.complex64))
+    x = factors.solve(right)
+    assert x.dtype == np.complex64
+    for _ in range(10):
+        x = x + factors.solve(right - matrix @ x)
+    np.testing.assert_allclose(x, np.linalg.solve(matrix, right), rtol=0, atol=1e-10 * np.abs(x).max())
+
+
 def test_norm_of_the_inverse_is_found_within_a_factor_of_three() -> None:
     """Hager's estimate is a lower bound, seldom under a third of the true norm (Hager 1984)."""
     for seed in range(8):
