@@ -39,7 +39,7 @@ def test_block_elimination_against_the_plain_product() -> None:
 
 
 def test_single_precision_is_enough_to_start_from() -> None:
-    matrix, right = symmetric(2 * BLOCK + 3, 6), np.ones(2 * BLOCK + 3)
+    matrix, right = symmetric(2 * BLOCK + 3, 6) + 8 * np.eye(2 * BLOCK + 3), np.ones(2 * BLOCK + 3)
     factors = SymmetricFactors(matrix.astype(np.complex64))
     x = factors.solve(right)
     assert x.dtype == np.complex64
