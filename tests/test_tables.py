@@ -138,6 +138,7 @@ def test_wire_schedule() -> None:
     rows = rows_of(wire_schedule_csv(part))
     assert [row["name"] for row in rows] == ["loop", "leg"]
     assert rows[1]["mark_end_mm"] == "49.4"
+    assert [row["turn_before_deg"] for row in rows] == ["90", "-90"]
     with pytest.raises(GeometryError, match="is not a wire"):
         wire_schedule_csv(a_part())
 

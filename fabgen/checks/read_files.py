@@ -14,8 +14,9 @@ import json
 import struct
 import types
 import typing
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from itertools import accumulate
 from pathlib import Path
 from typing import Any, Union
 
@@ -193,16 +194,24 @@ def _wire(key: str, folder: Path) -> WirePath | None:
     rows = rows_of(folder / "bend" / f"{key}_wire_schedule.csv")
     if not rows:
         return None
-    bends = sorted((_bend(row) for row in rows), key=lambda bend: bend.number)
     first = rows[0]
-    return WirePath(float(first["wire_mm"]), float(first["cut_length_mm"]), tuple(bends), first["end_preparation"])
+    bends = _bends(rows)
+    return WirePath(float(first["wire_mm"]), float(first["cut_length_mm"]), bends, first["end_preparation"])
 
 
-def _bend(row: Mapping[str, str]) -> WireBend:
+def _bends(rows: Sequence[Mapping[str, str]]) -> tuple[WireBend, ...]:
+    """The bends along the wire; the turns of the file are from row to row, in order of work."""
+    planes = accumulate(float(row["turn_before_deg"]) for row in rows)
+    along = sorted(zip(rows, planes, strict=True), key=lambda pair: int(pair[0]["bend"]))
+    before = (0.0, *(plane for _, plane in along))
+    return tuple(_bend(row, plane - last) for (row, plane), last in zip(along, before, strict=False))
+
+
+def _bend(row: Mapping[str, str], plane_deg: float) -> WireBend:
     return WireBend(
         number=int(row["bend"]), start_mm=float(row["mark_start_mm"]), end_mm=float(row["mark_end_mm"]),
         angle_deg=float(row["angle_deg"]), radius_mm=float(row["axis_radius_mm"]), mandrel_mm=float(row["mandrel_mm"]),
-        plane_deg=float(row["turn_before_deg"]), order=int(row["order"]), name=row["name"],
+        plane_deg=plane_deg, order=int(row["order"]), name=row["name"],
     )  # fmt: skip
 
 

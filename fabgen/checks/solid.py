@@ -38,7 +38,7 @@ DRAWN_AS = {"loop and bars": "loop", "floor": "floor can", "wall": "wall can", "
 """Beginnings of the keys of the parts that each group of surfaces is drawn as."""
 SOLID_CODES = {
     "CONS-301": ("stop", "Simulated surfaces lie in the drawn metal, within half its thickness (`check --solid`)."),
-    "CONS-302": ("note", "The true surface of the drawn loop computes to the sizing model (`check --solid`)."),
+    "CONS-302": ("note", "The true surfaces of the drawn loop and can compute to the sizing model (`check --solid`)."),
 }
 SOURCE = "the drawn solids and the project's own field computation"
 

@@ -24,13 +24,16 @@ WORK: dict[str, str] = {
     "wire.mandrel": "Mandrel ⌀",
     "wire.plane": "Turn",
     "wire.order": "Order",
-    "wire.table_head": "Bend table (mm; in order along the wire)",
+    "wire.table_head": "Bend table (mm; in order along the wire, each turn from the row above)",
     "wire.work_head": "Work",
     "wire.step_cut": "Straighten the wire and cut it to {length} mm.",
     "wire.step_mark": "Mark all distances from end A.",
+    "wire.step_mark_beyond": "Mark A and B {beyond} mm inside the cut ends, and all distances from the mark A.",
+    "wire.no_turn": "keep the wire in the plane of the bend just made, its bent end to the same side; ",
+    "wire.turn": "turn the wire by {plane}° about its own axis from the bend just made; ",
     "wire.step_bend": (
-        "Bend {number}: turn the wire {plane}° about its own axis, then bend it round a mandrel of {mandrel} mm "
-        "diameter until it stands at {angle}° after it is let go."
+        "Bend {number}: {turn}bend it round a mandrel of {mandrel} mm diameter until it stands at {angle}° after it "
+        "is let go."
     ),
     "wire.step_check": "Lay the wire on the true-scale page and correct it until it covers the drawing.",
     "wire.step_end": "Ends: {preparation}.",

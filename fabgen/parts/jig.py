@@ -123,6 +123,11 @@ def _plastic(
     )  # fmt: skip
 
 
+def _stop_to_bend_mm(path: WirePath, leg: WireBend) -> float:
+    """From the cut end of the wire, beyond the end of the schedule where it gets a thread, to the bend's first mark."""
+    return path.beyond_mm + leg.start_mm
+
+
 def leg_outlines(path: WirePath, leg: WireBend, bend_to: float) -> tuple[Contour, Contour, Contour]:
     """Block, fence and stop of the leg form in its plane; the bend starts at the origin, the wire comes from -x.
 
@@ -131,7 +136,7 @@ def leg_outlines(path: WirePath, leg: WireBend, bend_to: float) -> tuple[Contour
     if not 45 <= bend_to <= 160:
         raise GeometryError(f"a bar would have to be bent to {bend_to:.0f} degrees; use a softer temper")
     d, r = path.diameter_mm, leg.mandrel_mm / 2
-    near, reach = d / 2 + CHANNEL_CLEARANCE_MM / 2, leg.start_mm
+    near, reach = d / 2 + CHANNEL_CLEARANCE_MM / 2, _stop_to_bend_mm(path, leg)
     turn = math.radians(bend_to)
     corner = r * math.tan(turn / 2)
     side = corner + BLOCK_MM
@@ -192,7 +197,7 @@ def _leg_plan(path: WirePath, leg: WireBend, bend_to: float) -> _Form:
 def _leg_form(feed: Feed, path: WirePath, leg: WireBend) -> tuple[Part, ...]:
     bend_to = bend_to_deg(feed, leg)
     form = _leg_plan(path, leg, bend_to)
-    sizes = (("mandrel_mm", leg.mandrel_mm), ("stop_to_bend_mm", leg.start_mm), ("bend_to_deg", bend_to))
+    sizes = (("mandrel_mm", leg.mandrel_mm), ("stop_to_bend_mm", _stop_to_bend_mm(path, leg)), ("bend_to_deg", bend_to))
     text = f"end of the wire against the stop, bend along the block to {bend_to:.1f} degrees; both ends alike"
     key, name = "jig-leg", "bending form for the bars"
     x0, y0, x1, y1 = bounds_mm(form.plate)

@@ -142,11 +142,11 @@ def wire_path(feed: Feed) -> WirePath:
                 )
             )
         at += piece.length_mm
-    return WirePath(diameter, at, tuple(bends), end_preparation(feed))
+    return WirePath(diameter, at, tuple(bends), *end_preparation(feed, at))
 
 
-def end_preparation(feed: Feed) -> str:
-    """What is done to the wire's ends for their joint with the floor.
+def end_preparation(feed: Feed, length_mm: float) -> tuple[str, float]:
+    """What is done to the ends of a wire of this length for their joint with the floor; wire beyond each end in mm.
 
     A floor that takes soft solder has the feet soldered in. On another they get threads and nuts where the wire is as
     thick as a metric thread, and a plate of brass to solder to where it is not.
@@ -156,16 +156,18 @@ def end_preparation(feed: Feed) -> str:
     takes = copper if can.make == "printed" else tables.metal(can.metal).solderable
     tinned = f"cut square, deburr, tin the last {floor + 2:.0f} mm"
     if takes:
-        return tinned
+        return tinned, 0.0
     for screw in tables.all_rows("screw"):
         if abs(screw.diameter_mm - diameter) < 1e-9:
             beyond = math.ceil(screw.nut_height_mm + PROUD_MM)
             thread = math.ceil(beyond + floor + screw.nut_height_mm + PROUD_MM)
             return (
-                f"leave {beyond} mm more beyond both ends of the schedule, thread the last {thread} mm {screw.key}: "
-                "nuts with toothed washers on both faces of the floor, which takes no soft solder"
-            )
-    return f"{tinned}: the feet are soldered to a brass plate of 0.5 mm screwed onto the floor, which takes no solder"
+                f"cut {length_mm + 2 * beyond:.1f} mm, {beyond} mm more beyond both ends of the schedule; thread the "
+                f"last {thread} mm {screw.key}: nuts with toothed washers on both faces of the floor, which takes no "
+                "soft solder"
+            ), float(beyond)
+    plate = "the feet are soldered to a brass plate of 0.5 mm screwed onto the floor, which takes no solder"
+    return f"{tinned}: {plate}", 0.0
 
 
 def bend_to_deg(feed: Feed, bend: WireBend) -> float:
@@ -212,8 +214,8 @@ def _shorter(path: WirePath, axis_mm: float) -> tuple[str, ...]:
     if shift < 0.005:
         return ()
     return (
-        f"cut {axis_mm - path.cut_length_mm:.2f} mm shorter than the drawn axis: in bends tighter than two diameters "
-        f"the neutral line lies {shift:.2f} mm inside it, and the wire stretches by that",
+        f"schedule {axis_mm - path.cut_length_mm:.2f} mm shorter than the drawn axis: in bends tighter than two "
+        f"diameters the neutral line lies {shift:.2f} mm inside it, and the wire stretches by that",
     )
 
 

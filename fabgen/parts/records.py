@@ -48,12 +48,32 @@ class WireBend:
 
 @dataclass(frozen=True)
 class WirePath:
-    """A bent wire: cut length, bends, and the axis as points in the feed's frame for drawing."""
+    """A bent wire: length between the ends of the schedule, bends in order along the wire, work on the ends.
+
+    ``beyond_mm``: wire left beyond each end of the schedule, for threads; the piece cut is longer by twice that.
+    """
 
     diameter_mm: float
     cut_length_mm: float
     bends: tuple[WireBend, ...]
     end_preparation: str
+    beyond_mm: float = 0.0
+
+    def work(self) -> tuple[tuple[WireBend, float], ...]:
+        """The bends in order of work, each with the turn in degrees, over -180 to 180, from the one bent before it.
+
+        The first one's is from the plane of the schedule. The turns differ from ``plane_deg`` where the order of work
+        is not that along the wire.
+        """
+        planes, plane = {}, 0.0
+        for bend in self.bends:
+            plane += bend.plane_deg
+            planes[bend.number] = plane
+        out: list[tuple[WireBend, float]] = []
+        for bend in sorted(self.bends, key=lambda b: (b.order, b.number)):
+            before = planes[out[-1][0].number] if out else 0.0
+            out.append((bend, 180.0 - (180.0 - (planes[bend.number] - before)) % 360.0))
+        return tuple(out)
 
 
 @dataclass(frozen=True)

@@ -89,7 +89,7 @@ def _number(value: float | None) -> str:
 
 
 def wire_schedule_csv(part: Part) -> str:
-    """The marks of one bent wire along the straight piece, in the order of bending."""
+    """The marks of one bent wire along the straight piece, in the order of bending; a turn is from the row before."""
     if part.wire is None:
         raise GeometryError(f"{part.key} is not a wire; only wires have a schedule")
     header = (
@@ -102,11 +102,11 @@ def wire_schedule_csv(part: Part) -> str:
         (
             (
                 bend.order, bend.number, bend.name, _number(bend.start_mm), _number(bend.end_mm),
-                _number(bend.angle_deg), _number(bend.radius_mm), _number(bend.mandrel_mm), _number(bend.plane_deg),
+                _number(bend.angle_deg), _number(bend.radius_mm), _number(bend.mandrel_mm), _number(turn_deg),
                 _number(wire.diameter_mm), _number(wire.cut_length_mm), wire.end_preparation,
                 _number(bend.neutral_shift_mm),
             )
-            for bend in sorted(wire.bends, key=lambda bend: bend.order)
+            for bend, turn_deg in wire.work()
         ),
     )  # fmt: skip
 

@@ -307,6 +307,17 @@ def test_the_reading_on_a_lining_is_that_of_probes_on_a_sheet() -> None:
     assert spreading_ohm(0.3, 150.0) == pytest.approx(0.3 * spreading_ohm(1.0, 150.0))
 
 
+def test_the_wires_work_turns_it_from_the_bend_just_made_and_cuts_it_with_its_threads() -> None:
+    """Both bars are bent to one side of the straight wire; only the loop lies across them."""
+    said = " ".join(_words([s for s in book_of("wire-rolled") if s.kind == "wire"]).split())
+    path = next(p.wire for p in parts_of("wire-rolled") if p.key == "loop")
+    assert path is not None
+    bars, loop = said.index("Bend 3: keep the wire in the plane"), said.index("Bend 2: turn the wire by 90")
+    assert said.index("Bend 1: bend it round") < bars < loop
+    assert f"cut it to {path.cut_length_mm + 2 * path.beyond_mm:.1f}" in said
+    assert (path.beyond_mm > 0) == ("inside the cut ends" in said)
+
+
 def test_advice_for_a_wire_loop_says_nothing_of_a_strip() -> None:
     words = {kind: " ".join(a.do for a in bench.advice(feed_of(kind))) for kind in ("wire-rolled", "sheet-printed")}
     assert "strip" not in words["wire-rolled"]

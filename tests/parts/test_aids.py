@@ -131,6 +131,16 @@ def test_k_and_its_definition_stand_on_every_output(rule: str, words: str) -> No
                 assert k_from_test_bend(100.0, leg, leg, values["inside_radius_mm"], t) == pytest.approx(0.412)
 
 
+def test_the_stop_of_the_bars_form_leaves_the_wire_for_threads() -> None:
+    """The cut end lies at the stop; on a floor that takes no solder it is 4 mm beyond the end of the schedule."""
+    feed = sample_feed("wire", "rolled", metal="en-aw-5754")
+    leg, path = bending_jig(feed)[0], wire_path(feed)
+    assert path.beyond_mm == 4.0
+    assert dict(leg.sizes)["stop_to_bend_mm"] == pytest.approx(path.bends[0].start_mm + 4.0)
+    stop = leg_outlines(path, path.bends[0], dict(leg.sizes)["bend_to_deg"])[2]
+    assert max(v.x_mm for v in stop.vertices) == pytest.approx(-path.bends[0].start_mm - 4.2)
+
+
 def test_jigs_are_true_to_scale() -> None:
     """Mandrels and stop measured on a section of the solid, within 0.1 mm (per 100 mm, the issue's figure)."""
     feed = sample_feed("wire")
@@ -147,7 +157,7 @@ def test_jigs_are_true_to_scale() -> None:
         if x != -1.0:
             assert gaps.length == pytest.approx(path.diameter_mm + 0.2, abs=0.02)
     stop = form.intersection(shapely.LineString([(-200, 0), (0, 0)]))
-    assert stop.bounds[2] == pytest.approx(-path.bends[0].start_mm - 0.2, abs=0.02)
+    assert stop.bounds[2] == pytest.approx(-path.beyond_mm - path.bends[0].start_mm - 0.2, abs=0.02)
 
 
 def test_the_leg_forms_corner_has_the_mandrels_radius_and_leans_over_for_spring_back() -> None:
@@ -221,7 +231,8 @@ def test_a_loop_form_larger_than_the_bed_comes_in_sectors_that_key_and_close(
 def test_a_leg_form_longer_than_the_bed_comes_in_two_pieces_that_add_up() -> None:
     """Stop to bend, measured over both pieces on sections of their solids, within 0.1 mm over 100 mm."""
     feed = with_bed(sample_feed("wire", frequency_mhz=300.0), (120.0, 120.0, 120.0))
-    leg = wire_path(feed).bends[0]
+    path = wire_path(feed)
+    leg = path.bends[0]
     pieces = [p for p in bending_jig(feed) if p.key.startswith("jig-leg")]
     assert [p.key for p in pieces] == ["jig-leg-a", "jig-leg-b"]
     for part in pieces:
@@ -234,7 +245,7 @@ def test_a_leg_form_longer_than_the_bed_comes_in_two_pieces_that_add_up() -> Non
     mandrel = next(f for f in printed(pieces[1]).Faces() if f.geomType() == "CYLINDER"
                    and abs(_radius(f) - leg.mandrel_mm / 2) < 1e-5)  # fmt: skip
     start = _cylinder(mandrel).Axis().Location().X() - second.bounds[0]
-    assert high - stop + start == pytest.approx(leg.start_mm + 0.2, abs=0.1 * leg.start_mm / 100)
+    assert high - stop + start == pytest.approx(path.beyond_mm + leg.start_mm + 0.2, abs=0.1 * leg.start_mm / 100)
 
 
 def test_a_bed_too_small_for_any_piece_is_named_with_the_bed_that_does() -> None:

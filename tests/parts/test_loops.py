@@ -272,7 +272,7 @@ def test_the_wires_neutral_line_is_as_long_as_the_cut_at_every_bend_radius() -> 
         ("rolled", {"metal": "cuzn37"}, 4.0, "tin the last 4 mm"),
         ("printed", {}, 4.0, "tin the last 5 mm"),
         ("printed", {"lining": "silver-copper-paint"}, 4.0, "thread"),
-        ("rolled", {"metal": "en-aw-5754"}, 4.0, "leave 4 mm more beyond both ends of the schedule"),
+        ("rolled", {"metal": "en-aw-5754"}, 4.0, "4 mm more beyond both ends of the schedule"),
         ("turned", {"metal": "en-aw-6082"}, 2.05, "soldered to a brass plate"),
     ],
 )
@@ -280,8 +280,12 @@ def test_the_feet_have_a_joint_with_every_floor(make: str, can: dict[str, str], 
     """Nut M4 3.2 mm high (ISO 4032, from memory) and 0.5 mm of thread outside, the same inside a floor of 1.5 mm."""
     feed = sample_feed("wire", make, **can)
     feed = dataclasses.replace(feed, sizes=dataclasses.replace(feed.sizes, wire_mm=wire_mm))
-    assert words in wire_path(feed).end_preparation
-    assert wire_path(feed).end_preparation in loop_wire(feed).notes
+    path = wire_path(feed)
+    assert words in path.end_preparation
+    assert path.end_preparation in loop_wire(feed).notes
+    assert path.beyond_mm == (4.0 if "thread" in path.end_preparation else 0.0)
+    if path.beyond_mm:
+        assert path.end_preparation.startswith(f"cut {path.cut_length_mm + 8:.1f} mm, ")
 
 
 def test_tight_bends_say_why_the_cut_is_shorter_than_the_axis() -> None:
@@ -313,6 +317,43 @@ def test_marks_join_without_gap_and_mandrels_spring_back_to_the_sizes() -> None:
         tool = (bend.mandrel_mm + path.diameter_mm) / 2
         assert wire_released_mm(tool, 4.0, 70.0, 120.0) == pytest.approx(bend.radius_mm, rel=1e-6)
         assert bend_to_deg(feed, bend) * tool == pytest.approx(bend.angle_deg * bend.radius_mm)
+
+
+def test_the_bends_made_in_order_of_work_give_the_drawn_wire() -> None:
+    """A straight wire bent by hand as the steps say, by rotations of what is bent already: its far end meets the foot.
+
+    Each turn is from the bend made before; a turn along the wire put there sets the second bar across the first.
+    """
+    import numpy as np
+
+    feed = sample_feed("wire")
+    path, pieces = wire_path(feed), wire_pieces(feed)
+    cuts = (0.0, *(at for b in path.bends for at in (b.start_mm, b.end_mm)), path.cut_length_mm)
+    angles: dict[int, tuple[float, float]] = {}
+    plane = 0.0
+    for bend, turn_deg in path.work():
+        plane += turn_deg
+        angles[bend.number] = (math.radians(plane), math.radians(bend.angle_deg))
+    assert [turn for _, turn in path.work()] == [0.0, 0.0, 90.0]
+    # The planes were all set on the still straight wire, so along it every bend turns about its own marked axis.
+    frame, point, points = np.eye(3), np.zeros(3), [np.zeros(3)]
+    for bend, a, b in zip(path.bends, cuts[::2], cuts[1::2], strict=False):
+        if b - a > 1e-9:
+            point = point + frame[:, 0] * (b - a)
+            points.append(point)
+        at, sweep = angles[bend.number]
+        side = math.cos(at) * frame[:, 1] + math.sin(at) * frame[:, 2]
+        axis = np.cross(frame[:, 0], side)
+        middle = point + bend.radius_mm * side
+        k = np.array([[0, -axis[2], axis[1]], [axis[2], 0, -axis[0]], [-axis[1], axis[0], 0]])
+        turn = np.eye(3) + math.sin(sweep) * k + (1 - math.cos(sweep)) * (k @ k)
+        point, frame = middle + turn @ (point - middle), turn @ frame
+        points.append(point)
+    points.append(point + frame[:, 0] * (cuts[-1] - cuts[-2]))
+    drawn = np.array([pieces[0].start, *(p.end for p in pieces)])
+    made = np.array(points)
+    gaps = np.linalg.norm(made[:, None] - made[None], axis=2) - np.linalg.norm(drawn[:, None] - drawn[None], axis=2)
+    assert np.abs(gaps).max() < 1e-6
 
 
 @pytest.mark.parametrize("bad", [{"leg_pitch_mm": 70.0}, {"leg_bend_radius_mm": 1.0}, {"leg_bend_radius_mm": 40.0}])

@@ -131,12 +131,15 @@ def bend_table(path: WirePath) -> list[Block]:
 
 def _work(path: WirePath) -> list[Block]:
     """The work in order."""
-    steps = [say("wire.step_cut", length=number(path.cut_length_mm, 1)), say("wire.step_mark")]
-    for bend in sorted(path.bends, key=lambda b: (b.order, b.number)):
+    length, beyond = number(path.cut_length_mm + 2 * path.beyond_mm, 1), number(path.beyond_mm, 1)
+    mark = say("wire.step_mark_beyond", beyond=beyond) if path.beyond_mm else say("wire.step_mark")
+    steps = [say("wire.step_cut", length=length), mark]
+    for place, (bend, turn_deg) in enumerate(path.work()):
+        turn = say("wire.turn", plane=number(turn_deg, 1)) if turn_deg else say("wire.no_turn")
         steps.append(
             say(
                 "wire.step_bend", number=bend.number, angle=number(bend.angle_deg, 1),
-                mandrel=number(bend.mandrel_mm), plane=number(bend.plane_deg, 1),
+                mandrel=number(bend.mandrel_mm), turn=turn if place else "",
             )
         )  # fmt: skip
     steps += [say("wire.step_check"), say("wire.step_end", preparation=path.end_preparation)]
