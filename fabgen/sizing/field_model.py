@@ -14,7 +14,6 @@ Depends on: stock, theory, fields, sizing.records.
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -33,7 +32,6 @@ from fabgen.theory.skin import lining_impedance_ohm, metal_impedance_ohm
 SWEEP_STEP = 0.005
 SWEEP_ERROR = 0.03
 """Error of the reflection that a sweep may keep; the self-check has the same limit."""
-MOST_SWEEP_SOLVES = 30
 MU0_OVER_TWO_PI = 2e-7
 WITNESSES = 10
 """Currents spread over the structure that a sweep follows besides impedance and axial field."""
@@ -170,12 +168,11 @@ class FieldModel:
         return SurfaceImpedance(complex(can), complex(metal * share))
 
     def sweep(self, sizes: Sizes, start_mhz: float, stop_mhz: float, capacitor_pf: float) -> FieldSweep:
-        """Impedance and axial field over a band by at most 15 full solves, or 30 where sharp resonances need them."""
+        """Impedance and axial field over a band by at most 15 full solves."""
         geometry = feed_geometry(sizes, self.edges_per_wavelength)
         solver = self._solver(geometry)
         middle = 0.5 * (start_mhz + stop_mhz)
 
-        @cache
         def sample(x: float) -> tuple[NDArray[np.float64], NDArray[np.complex128]]:
             frequency = x * self.target_mhz
             step = SWEEP_STEP if frequency < middle else -SWEEP_STEP
@@ -192,9 +189,6 @@ class FieldModel:
 
         band = start_mhz / self.target_mhz, stop_mhz / self.target_mhz
         result = adaptive_sweep(sample, *band, reflection, 1.0)
-        while result.error_estimate > SWEEP_ERROR and result.solves < MOST_SWEEP_SOLVES:
-            # The frequencies of the last turn come first again and are remembered.
-            result = adaptive_sweep(sample, *band, reflection, 1.0, most=result.solves + 1)
         return FieldSweep(result, self.target_mhz)
 
     def _quantities(self, solution: FieldSolution) -> list[complex]:
