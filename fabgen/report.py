@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 from fabgen.checks.records import Finding
 from fabgen.job import AsWritten, Job
-from fabgen.sizing.records import BENCH_LIMIT_DB, CanTrial, Feed, Sizes
+from fabgen.sizing.records import BENCH_LIMIT_DB, CanTrial, CapacitorPart, Feed, Sizes
 from fabgen.units import INCH_MM
 
 if TYPE_CHECKING:
@@ -54,7 +54,16 @@ def size_report(feed: Feed) -> str:
         (
             ("resonance", f"+-{settings.resonance_uncertainty_mhz:.2g} MHz", "from a second mesh"),
             ("return loss", _least_loss(feed), "from a second mesh"),
-            ("yield", f"{feed.yields.before_trimming:.0%}", f"{feed.yields.after_trimming:.0%} after trimming"),
+            (
+                f"yield of {_wished(feed.job)}",
+                f"{feed.yields.before_trimming:.0%}",
+                f"{feed.yields.after_trimming:.0%} after trimming",
+            ),
+            (
+                "-20 to +50 degC",
+                f"{feed.yields.drift_mhz_cold:+.2g} to {feed.yields.drift_mhz_hot:+.2g} MHz",
+                "by expansion",
+            ),
         ),
     )
     lines += ["", *(f"Remark: {remark}" for remark in feed.remarks)] if feed.remarks else []
@@ -132,14 +141,35 @@ def _size_rows(sizes: Sizes) -> list[tuple[str, ...]]:
 
 def _capacitor_rows(feed: Feed) -> list[tuple[str, ...]]:
     part = feed.capacitor
-    return [
+    rows: list[tuple[str, ...]] = [
         (
             "value",
-            f"{feed.sizes.series_capacitor_pf:.2f} pF",
-            f"trims {part.minimum_pf:.2f} to {part.maximum_pf:.2f} pF",
+            f"{_picofarads(feed.sizes.series_capacitor_pf)} pF",
+            f"trims {_picofarads(part.minimum_pf)} to {_picofarads(part.maximum_pf)} pF",
         ),
         ("form", part.form, f"overlap {part.overlap_mm:.1f} mm, {part.pf_per_mm:.3f} pF per mm"),
+        _insulation_row(part),
     ]
+    power = feed.job.wishes.transmit_w
+    if power > 0:
+        rows.append(("voltage", f"{part.peak_voltage_v:.0f} V peak", f"at {power:g} W"))
+    return rows
+
+
+def _wished(job: Job) -> str:
+    band = job.wishes.bandwidth_mhz
+    return f"{job.wishes.return_loss_db:g} dB" + (f" over {band:g} MHz" if band else "")
+
+
+def _picofarads(value: float) -> str:
+    """The digits that the sizing keeps: hundredths, thousandths below half a picofarad."""
+    return f"{value:.2f}" if value >= 0.5 else f"{value:.3f}"
+
+
+def _insulation_row(part: CapacitorPart) -> tuple[str, str, str]:
+    if part.form == "sleeve":
+        return ("PTFE", f"{part.outer_mm:.2f} mm outside", f"on wire of {part.inner_mm:.2f} mm, in brass tube")
+    return ("PTFE", f"{part.film_mm:g} mm film", f"between plates {part.plate_width_mm:.2f} mm wide")
 
 
 def _predicted_rows(feed: Feed) -> list[tuple[str, ...]]:

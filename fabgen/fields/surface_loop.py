@@ -149,6 +149,12 @@ def _ring_nodes(loop: LoopGeometry, counts: LoopCounts, y: FloatArray) -> FloatA
     step = (math.pi - phi_out) / cells
     stretch = (step / 2) / math.sin(step / 2)
     rho = (loop.radius_m + across_positions(counts.across) * loop.band_m / 2) * stretch
+    # The meshed strips are wider than the sheet's, so bars that fit the drawn ring need not fit this one.
+    if y[-1] >= rho[0]:
+        raise GeometryError(
+            f"the bars reach {1e3 * y[-1]:.2f} mm from the middle, past the ring's inner edge at {1e3 * rho[0]:.2f} mm "
+            "as computed; make the strip narrower or the leg pitch smaller"
+        )
     nodes = np.zeros((len(rho), len(y) + cells, 3))
     nodes[..., 2] = loop.height_m
     nodes[:, : len(y), 0] = np.sqrt(rho[:, None] ** 2 - y[None, :] ** 2)

@@ -78,8 +78,9 @@ def bore_range(job: Job) -> BoreRange:
     high, reason = min(_upper_limits(job))
     if high < low:
         raise NoSolutionError(
-            f"{reason} allows a bore of {high:.0f} mm, but below {low:.0f} mm the can is cut off at "
-            f"{job.target.frequency_mhz:g} MHz; use a larger one, or another make of can"
+            f"{reason} allows a bore of {high:.0f} mm, but TE11 is cut off below {_cutoff_bore_mm(job):.0f} mm at "
+            f"{job.target.frequency_mhz:g} MHz, and {low:.0f} mm is the least with a margin; use a larger one, or "
+            "another make of can"
         )
     return BoreRange(low, high, reason)
 

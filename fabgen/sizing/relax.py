@@ -83,8 +83,11 @@ def _relaxations(job: Job) -> Iterator[tuple[str, str, dict[str, Any]]]:
         wire = typical_wire_mm(wavelength)
         change = {"form": "wire", "wire_mm": wire, "sheet_mm": None, "strip_width_mm": None, "metal": "cu-etp"}
         yield f"use a loop of {wire:g} mm wire", "loop", {**change, "temper": None, "bend_radius_mm": None}
-    yield "fix no size at all", "fixed", dict.fromkeys(job.fixed.model_dump())
-    yield 'use can.make = "turned"', "can", {"make": "turned"}
+    fixed = job.fixed.model_dump()
+    if sum(value is not None for value in fixed.values()) > 1:
+        yield "fix no size at all", "fixed", dict.fromkeys(fixed)
+    if job.can.make != "turned":
+        yield 'use can.make = "turned"', "can", {"make": "turned"}
 
 
 def _with(job: Job, section: str, changes: dict[str, Any]) -> Job:

@@ -216,6 +216,10 @@ def _neighbour_remarks(job: Job) -> tuple[str, ...]:
     )
 
 
+def _broader(job: Job) -> str:
+    return "" if job.wishes.selectivity == "broad" else " or a broader selectivity"
+
+
 def _band_remark(job: Job, predicted: Predicted) -> tuple[str, ...]:
     """Why a wished band is not covered."""
     wanted = job.wishes.bandwidth_mhz
@@ -223,6 +227,6 @@ def _band_remark(job: Job, predicted: Predicted) -> tuple[str, ...]:
         return ()
     return (
         f"The band wished is {wanted:g} MHz at {job.wishes.return_loss_db:g} dB; this loop covers "
-        f"{predicted.bandwidth_mhz:.1f} MHz. One loop with one capacitor has one resonance; a lower return loss or "
-        "a broader selectivity widens the band.",
+        f"{predicted.bandwidth_mhz:.1f} MHz. One loop with one capacitor has one resonance; a lower return loss"
+        f"{_broader(job)} widens the band.",
     )

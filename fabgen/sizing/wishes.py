@@ -86,8 +86,16 @@ def choose_loop(setting: Setting, solver: CountingSolver, progress: Progress) ->
         if _worst(reached) > _worst(found):
             best, found = trial, reached
         place += step
-    missed = tuple(f"{m.text}; no loop between sharp and broad does better" for m in found if m.margin_db < 0)
-    return replace(best, remarks=(*best.remarks, *missed))
+    return replace(best, remarks=(*best.remarks, *_shortfalls(found, "sharp" if sharper else "broad")))
+
+
+def _shortfalls(found: tuple[Margin, ...], end: str) -> tuple[str, ...]:
+    """What is missed. With several wishes one may be met better elsewhere, at the cost of another."""
+    if len(found) == 1:
+        reason = f"no loop from the wished selectivity to the {end} end does better"
+    else:
+        reason = f"of all these wishes together, no loop towards the {end} end misses the worst by less"
+    return tuple(f"{m.text}; {reason}" for m in found if m.margin_db < 0)
 
 
 def _worst(found: tuple[Margin, ...]) -> float:

@@ -146,3 +146,12 @@ def test_a_tab_shorter_than_nothing_is_refused() -> None:
     short = replace(feed, loop=replace(feed.loop, leg_x_m=feed.loop.radius_m - feed.loop.band_m / 2))
     with pytest.raises(GeometryError, match="too short to be computed; make the ring's strip narrower"):
         feed_mesh(short, plan_mesh(feed, WAVE, 10))
+
+
+def test_bars_past_the_inner_edge_of_the_meshed_ring_are_refused() -> None:
+    feed = a_feed("sheet")
+    loop = feed.loop
+    reach = loop.leg_pitch_m / 2 + loop.leg_band_m / 2
+    wide = replace(feed, loop=replace(loop, band_m=2.2 * (loop.radius_m - reach)))
+    with pytest.raises(GeometryError, match="past the ring's inner edge at"):
+        feed_mesh(wide, plan_mesh(feed, WAVE, 10))

@@ -46,3 +46,17 @@ def test_other_changes_are_named_as_they_are() -> None:
     data["can"]["choke"] = True
     text = nearest_that_works(Job.model_validate(data), Silent(), find)
     assert text == "The nearest job that works: set can.choke = false"
+
+
+def test_a_change_that_changes_nothing_is_not_tried() -> None:
+    told: list[str] = []
+
+    class Listener(Silent):
+        def step(self, text: str) -> None:
+            told.append(text)
+
+    def find(job: Job, tell: Progress) -> None:
+        raise NoSolutionError("no room")
+
+    assert nearest_that_works(wire_job(1.0), Listener(), find).startswith("No nearby job")
+    assert not [text for text in told if "fix no size" in text or "turned" in text]

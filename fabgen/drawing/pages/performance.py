@@ -6,6 +6,7 @@ Depends on: drawing.plot, sizing.records.
 from __future__ import annotations
 
 import math
+from bisect import bisect_left, bisect_right
 
 from fabgen.drawing import plot
 from fabgen.drawing.flow import COLUMN_WIDTH_MM, Block, beside, gap
@@ -38,8 +39,8 @@ def reflection_plot(feed: Feed, width: float = 86.0, height: float = 62.0) -> Bl
     half = max(0.06 * f0, 3 * shift, 1.5 * feed.predicted.bandwidth_mhz)
     axes = Axes(width, height, (f0 - half, f0 + half), (FLOOR_DB, 0.0))
     grid = [f0 - half + 2 * half * i / 240 for i in range(241)]
-    lower = [min(_at(fs, db, f + d) for d in _shifts(shift)) for f in grid]
-    upper = [max(_at(fs, db, f + d) for d in _shifts(shift)) for f in grid]
+    lower = [min(_within(fs, db, f, shift)) for f in grid]
+    upper = [max(_within(fs, db, f, shift)) for f in grid]
     items = [
         *plot.band(axes, grid, lower, upper),
         *plot.frame(axes, say("plot.frequency"), say("plot.reflection")),
@@ -57,8 +58,10 @@ def reflection_plot(feed: Feed, width: float = 86.0, height: float = 62.0) -> Bl
     return plot.as_block(items, say("plot.reflection_title"))
 
 
-def _shifts(half: float) -> list[float]:
-    return [half * k / 10 for k in range(-10, 11)]
+def _within(fs: list[float], values: list[float], f: float, half: float) -> list[float]:
+    """Values from f - half to f + half: both ends and every node between, so that no dip falls between two of them."""
+    nodes = values[bisect_left(fs, f - half) : bisect_right(fs, f + half)]
+    return [_at(fs, values, f - half), *nodes, _at(fs, values, f + half)]
 
 
 def _at(fs: list[float], values: list[float], f: float) -> float:
@@ -123,7 +126,9 @@ def pattern_plot(feed: Feed, width: float = 150.0, height: float = 62.0) -> Bloc
         name, role = _plane(c)
         items += plot.curve(axes, c.theta_deg, c.co_dbi, role)
         entries.append((role, say("plot.co", plane=name)))
-    for c, role in zip(cuts, ("curve3", "centre"), strict=False):
+    # The feed is its own mirror image in the H-plane, so no cross-polar field is seen there.
+    crossed = [c for c in cuts if c.phi_deg != 0.0]
+    for c, role in zip(crossed, ("curve3", "centre"), strict=False):
         items += plot.curve(axes, c.theta_deg, c.cross_dbi, role)
         entries.append((role, say("plot.cross", plane=_plane(c)[0])))
     edge = edge_deg(feed)
