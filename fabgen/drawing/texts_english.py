@@ -200,6 +200,7 @@ ENGLISH: dict[str, str] = {
     "solid.width": "Width",
     "solid.slots_head": "Slots: middles of the round ends (mm, in the frame of the feed)",
     "solid.holes_head": "Hole table (mm, in the frame of the feed)",
+    "solid.tool_holes_head": "Hole table (mm, in the frame of the model file)",
     "solid.cross_head": "Cross holes: middle, axis, diameter (mm, in the frame of the feed)",
     "view.across_flats": "AF",
     "general.purpose_head": "What it is",

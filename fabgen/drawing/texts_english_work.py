@@ -114,6 +114,10 @@ WORK: dict[str, str] = {
     "step.wall.tube.join": (
         "solder, weld, or silver-filled epoxy without a gap all round: current crosses this joint everywhere."
     ),
+    "step.wall.tube-bond.join": (
+        "this metal takes no soft solder: weld, or silver-filled epoxy without a gap all round: current crosses this "
+        "joint everywhere."
+    ),
     "step.wall.bond.join": (
         "screws or rivets in every tab, bright metal below them; conductive sealant in the corner: current crosses "
         "this joint everywhere."
@@ -203,8 +207,8 @@ WORK: dict[str, str] = {
     "step.loop.do": "Set the loop on the floor with the gap towards +x and fix both feet.",
     "step.loop.tools": "height blocks, square, calliper; iron or screwdriver.",
     "step.loop.wire-bond.join": (
-        "this floor takes no soft solder: solder the feet to a plate of brass or copper screwed to the floor, or "
-        "thread the feet and set a nut on both sides of the floor."
+        "this floor takes no soft solder: the feet are threaded with a nut on both sides of the floor, or soldered to "
+        "a plate of brass screwed to it, as the end of the wire schedule says."
     ),
     "step.loop.foil-wire.join": "solder both feet to the foil all round, iron hot and time short: the plastic softens.",
     "step.loop.paint-wire.join": (

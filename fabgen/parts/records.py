@@ -59,6 +59,11 @@ class WirePath:
     end_preparation: str
     beyond_mm: float = 0.0
 
+    @property
+    def piece_length_mm(self) -> float:
+        """Length of the piece to cut from stock, with what is left beyond both ends of the schedule."""
+        return self.cut_length_mm + 2 * self.beyond_mm
+
     def work(self) -> tuple[tuple[WireBend, float], ...]:
         """The bends in order of work, each with the turn in degrees, over -180 to 180, from the one bent before it.
 

@@ -83,7 +83,7 @@ def _line(part: Part, process: str, feed: Feed, files: Collection[str] | None) -
         cut = length_mm(flat.outline) + math.fsum(length_mm(hole) for hole in flat.holes)
         pierces = 1 + len(flat.holes)
     elif part.wire is not None:
-        cut = part.wire.cut_length_mm
+        cut = part.wire.piece_length_mm
     bends = len(flat.folds) if flat is not None else len(part.wire.bends) if part.wire is not None else 0
     named = tuple(name for name in _files(part, process, feed) if files is None or name in files)
     box = _box(part, process)
@@ -96,7 +96,7 @@ def _box(part: Part, process: str) -> tuple[float | None, float | None, float | 
         x0, y0, x1, y1 = bounds_mm(part.flat.outline)
         return x1 - x0, y1 - y0, part.flat.thickness_mm
     if part.wire is not None:
-        return part.wire.cut_length_mm, part.wire.diameter_mm, part.wire.diameter_mm
+        return part.wire.piece_length_mm, part.wire.diameter_mm, part.wire.diameter_mm
     body = part.print_solid if process in {"print", "plate"} else part.solid if process == "turn" else None
     if body is None:
         return None, None, None

@@ -353,3 +353,45 @@ def test_the_step_of_the_lining_shows_the_can_and_both_foils() -> None:
     title = next((s, t) for s in pages for t in s.texts if t.text.endswith("Lining"))
     level = [i for i in title[0].items if isinstance(i, Line) and i.role == "new" and abs(i.y0 - title[1].y) < 70]
     assert len(level) > 20
+
+
+def test_neighbouring_tiles_carry_the_same_joining_lines() -> None:
+    from fabgen.drawing.model import Line
+    from fabgen.drawing.pages.base import Context
+    from fabgen.drawing.pages.truescale import OVERLAP_MM, Template, _draft
+
+    context = Context(feed_of("wire-rolled"), (), (), (), (), (), PAPERS["A4"])
+    made = _draft(context, Template("large", "x", (Line(0, 0, 400, 600),)))
+    across: dict[float, int] = {}
+    upright: dict[float, int] = {}
+    for page in made.pages:
+        (view,) = page.views
+        for line in page.items:
+            if isinstance(line, Line) and line.role == "fine":
+                y, x = round(line.y0 - view.origin[1], 3), round(line.x0 - view.origin[0], 3)
+                if line.y0 == line.y1:
+                    across[y] = across.get(y, 0) + 1
+                    assert min(view.box.y1 - line.y0, line.y0 - view.box.y0) == pytest.approx(OVERLAP_MM / 2)
+                else:
+                    upright[x] = upright.get(x, 0) + 1
+    # 3 x 3 tiles: two joints each way, at one place of the drawing, each on both tiles of three pairs.
+    assert len(made.pages) == 9
+    assert list(across.values()) == [6, 6]
+    assert list(upright.values()) == [6, 6]
+
+
+def test_a_tube_of_aluminium_is_not_to_be_soldered() -> None:
+    pages = [s for s in book_of("satellite-1690") if s.kind == "assembly"]
+    words = " ".join(_words(pages).split())
+    assert "takes no soft solder: weld" in words
+    assert "solder, weld" not in words
+
+
+def test_the_wire_is_cut_with_what_its_threads_need() -> None:
+    book = book_of("s-band-3400")
+    (wire,) = [p.wire for p in parts_of("s-band-3400") if p.wire is not None]
+    assert wire.beyond_mm > 0  # aluminium: nuts instead of solder
+    cells = [c for s in book for t in s.tables if t.name in {"parts", "stock"} for r in t.rows for c in r]
+    length = f"{wire.cut_length_mm + 2 * wire.beyond_mm:.1f} long"
+    assert sum(c.endswith(length) for c in cells) == 2
+    assert sum(f"cut it to {length[:-5]} mm" in _words([s]).replace("  ", " ") for s in book) == 1

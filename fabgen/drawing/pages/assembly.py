@@ -96,11 +96,12 @@ def _text(context: Context, n: int, step: Step) -> Block:
 
 
 def _key(context: Context, kind: str, field: str) -> str:
-    """The most particular text: by make and form, form and joint, make, form, joint; then the general one."""
+    """The most particular text: by make and form, by one of them and the joint, by one alone; then the general."""
     job = context.feed.job
     make, form = job.can.make, job.loop.form
     joint = "solder" if make == "printed" or tables.metal(job.can.metal).solderable else "bond"
-    for variant in (_special(context, kind), f"{make}-{form}", f"{form}-{joint}", make, form, joint):
+    particular = (_special(context, kind), f"{make}-{form}", f"{make}-{joint}", f"{form}-{joint}")
+    for variant in (*particular, make, form, joint):
         key = f"step.{kind}.{variant}.{field}"
         if has(key):
             return key

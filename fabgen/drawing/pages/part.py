@@ -144,7 +144,12 @@ def _tables(part: Part) -> list[Block]:
     if part.flat is not None:
         return flat_tables(part.flat)
     shape = _made_shape(part)
-    return solid_tables(shape) if shape is not None else []
+    return solid_tables(shape, is_tool(part)) if shape is not None else []
+
+
+def is_tool(part: Part) -> bool:
+    """True for a bending form: it is drawn where it is printed, not where it stands in the feed."""
+    return part.key.startswith("jig")
 
 
 def _made_shape(part: Part) -> Any | None:
@@ -364,14 +369,15 @@ def flat_tables(flat: FlatPattern) -> list[Block]:
     return blocks
 
 
-def solid_tables(shape: Any) -> list[Block]:
-    """Holes of a solid, by the feed's own coordinates."""
+def solid_tables(shape: Any, tool: bool = False) -> list[Block]:
+    """Holes of a solid, by the feed's own coordinates; those of a tool by the coordinates of its model file."""
     m = solid_view.measured(shape)
     blocks: list[Block] = []
     rows = solid_view.hole_rows(m)
     if rows:
         head = (say("flat.hole"), "x", "y", say("flat.diameter"), say("solid.from"), say("solid.to"))
-        blocks += [heading(say("solid.holes_head"), 2.5), *side_by_side("holes", head, rows)]
+        title = say("solid.tool_holes_head" if tool else "solid.holes_head")
+        blocks += [heading(title, 2.5), *side_by_side("holes", head, rows)]
     slots = solid_view.slot_rows(m)
     if slots:
         ends = (say("solid.slot"), "x1", "y1", "x2", "y2", say("solid.width"), say("solid.from"), say("solid.to"))

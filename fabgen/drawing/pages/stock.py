@@ -92,7 +92,7 @@ def _middle(curve: Curve) -> Point:
 def cut_size(part: Part) -> str:
     """What to cut from stock: sheet blank, wire length, or the finished box."""
     if part.wire is not None:
-        return say("stock.wire", diameter=number(part.wire.diameter_mm), length=number(part.wire.cut_length_mm, 1))
+        return say("stock.wire", diameter=number(part.wire.diameter_mm), length=number(part.wire.piece_length_mm, 1))
     if part.flat is not None:
         x0, y0, x1, y1 = bounds_mm(part.flat.outline)
         return f"{number(x1 - x0, 1)} × {number(y1 - y0, 1)} × {number(part.flat.thickness_mm, 3)}"

@@ -195,7 +195,8 @@ def _edge_marks(area: Box, at: tuple[int, int], of: tuple[int, int]) -> list[Ite
     half = OVERLAP_MM / 2
     items: list[Item] = []
     xs = ([area.x0 + half] if at[0] > 0 else []) + ([area.x1 - half] if at[0] < of[0] - 1 else [])
-    ys = ([area.y0 + half] if at[1] > 0 else []) + ([area.y1 - half] if at[1] < of[1] - 1 else [])
+    # Rows count from the top: the tile before this one lies above it.
+    ys = ([area.y1 - half] if at[1] > 0 else []) + ([area.y0 + half] if at[1] < of[1] - 1 else [])
     for x in xs:
         items.append(Line(x, area.y0, x, area.y1, "fine"))
         for y in (area.y0 + area.height * 0.25, area.y0 + area.height * 0.75):

@@ -131,7 +131,7 @@ def bend_table(path: WirePath) -> list[Block]:
 
 def _work(path: WirePath) -> list[Block]:
     """The work in order."""
-    length, beyond = number(path.cut_length_mm + 2 * path.beyond_mm, 1), number(path.beyond_mm, 1)
+    length, beyond = number(path.piece_length_mm, 1), number(path.beyond_mm, 1)
     mark = say("wire.step_mark_beyond", beyond=beyond) if path.beyond_mm else say("wire.step_mark")
     steps = [say("wire.step_cut", length=length), mark]
     for place, (bend, turn_deg) in enumerate(path.work()):
