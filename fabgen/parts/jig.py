@@ -21,7 +21,7 @@ Loop form, seen from above::
 The bars are bent first, both to the same side, on the leg form; then the wire, bars up, is wound round the loop
 form. Mandrels allow for spring-back (theory.springback). Forms larger than the bed come in pieces (jig_split).
 
-Depends on: errors, stock, parts (contour, jig_split, kernel, loop_wire, records), sizing.records.
+Depends on: errors, stock, parts (contour, jig_split, kernel, loop_wire, print_rules, records), sizing.records.
 """
 
 from __future__ import annotations
@@ -40,6 +40,7 @@ from fabgen.parts.contour import Circle, Contour, Outline, Vertex, area_mm2, bou
 from fabgen.parts.jig_split import Knob
 from fabgen.parts.kernel import once
 from fabgen.parts.loop_wire import bend_to_deg, wire_path
+from fabgen.parts.print_rules import print_rules
 from fabgen.parts.records import Part, WireBend, WirePath
 from fabgen.sizing.records import Feed
 from fabgen.stock import tables
@@ -115,7 +116,7 @@ def _plastic(
         colour=plastic.colour,
         quantity=quantity,
         sizes=sizes,
-        tolerance="+-0.2 mm",
+        tolerance=f"+-{print_rules(feed).tolerance_mm:g} mm",
         finish="as printed",
         print_solid=once(solid),
         mass_kg=volume_mm3 * 1e-9 * plastic.density_kg_per_m3,

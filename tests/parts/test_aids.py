@@ -348,3 +348,11 @@ def test_no_aid_stands_in_the_assembly() -> None:
         aids = (*bend_strip(feed), *bending_jig(feed), *foil_patterns(feed))
         assert aids
         assert all(part.solid is None for part in aids)
+
+
+def test_bending_forms_have_the_tolerance_of_print() -> None:
+    feed = sample_feed("wire", "rolled")
+    wide = {"print_tolerance_mm": 0.45}
+    job = feed.job.model_copy(update={"overrides": {**feed.job.overrides, **wide}})
+    assert {p.tolerance for p in bending_jig(feed)} == {"+-0.3 mm"}
+    assert {p.tolerance for p in bending_jig(dataclasses.replace(feed, job=job))} == {"+-0.45 mm"}
