@@ -132,11 +132,12 @@ def _pack_findings(arguments: argparse.Namespace) -> tuple[str, Sequence[Finding
     from fabgen.checks.readback import findings_of_pack
     from fabgen.resources import time_limit
     from fabgen.writers.sheets_back import sheets_findings
+    from fabgen.writers.tables_back import tables_findings
 
     with time_limit(arguments.time_limit), _display(arguments) as display:
         display.step("reading the pack back")
         pack = read_pack(arguments.job)
-        found = findings_of_pack(pack, solids=True)
+        found = (*findings_of_pack(pack, solids=True), *tables_findings(pack))
         display.step("drawing the sheets anew to compare them")
         return f"pack {arguments.job}", (*found, *sheets_findings(pack))
 

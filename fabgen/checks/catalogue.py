@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import sys
 
-from fabgen.checks.pack_register import PACK_CODES, SHEETS_CODE, SHEETS_TITLE, SOURCE
+from fabgen.checks.pack_register import PACK_CODES, SHEETS_CODE, SHEETS_TITLE, SOURCE, TABLES_CODE, TABLES_TITLE
 from fabgen.checks.readback import LOADED
 from fabgen.checks.registry import GROUPS, Check, all_checks, source_text
 from fabgen.checks.solid import SOLID_CODES
@@ -35,6 +35,7 @@ def catalogue_text() -> str:
         if group == "CONS":
             lines += [f"| {code} | stop | {title} |  | {SOURCE} |" for code, (title, _) in sorted(PACK_CODES.items())]
             lines.append(f"| {SHEETS_CODE} | stop | {SHEETS_TITLE} |  | {SOURCE} |")
+            lines.append(f"| {TABLES_CODE} | stop | {TABLES_TITLE} |  | {SOURCE} |")
             lines += [f"| {c} | {level} | {title} |  | {SOLID_SOURCE} |" for c, (level, title) in SOLID_CODES.items()]
         lines.append("")
     lines += ["## Limits", "", "| key | value | meaning | source |", "|---|---|---|---|"]

@@ -15,6 +15,11 @@ PACK_CODES: dict[str, tuple[str, PackCheck]] = {}
 SOURCE = "the pack's own files"
 SHEETS_CODE = "CONS-213"
 SHEETS_TITLE = "Every text of the sheets against the sheets drawn anew from the record (`check PACK`)."
+TABLES_CODE = "CONS-214"
+TABLES_TITLE = (
+    "Every cell of parts.csv, findings.csv and the bend tables and every line of the order notes against those written "
+    "anew from the record (`check PACK`)."
+)
 SOLID_CODES = frozenset({"CONS-208"})
 """Checks that read solids with the CAD kernel (seconds)."""
 

@@ -230,7 +230,7 @@ def meshes_agree(pack: Pack) -> Iterator[Fault]:
         size = [b - a for a, b in zip(low, high, strict=True)]
         if abs(low[2]) > BOX_MM:
             yield differs(path.name, "bed", f"z = {low[2]:.2f} mm", "z = 0", "the part does not stand on the bed")
-        if size[2] > bed[2] or sorted(size[:2]) > sorted(bed[:2]):
+        if size[2] > bed[2] or any(a > b for a, b in zip(sorted(size[:2]), sorted(bed[:2]), strict=True)):
             fits = f"{bed[0]:g} x {bed[1]:g} x {bed[2]:g} mm"
             yield differs(path.name, "size", " x ".join(f"{s:.1f}" for s in size), fits, "larger than the bed")
         if volume <= 0:

@@ -22,6 +22,7 @@ from fabgen.folder import CHECKSUM_KEY, record_checksum
 from fabgen.pack import PackOptions, write_pack
 from fabgen.writers.pdf_text import page_texts
 from fabgen.writers.sheets_back import sheets_findings
+from fabgen.writers.tables_back import tables_findings
 from tests.samples import sample_feed
 
 pytestmark = [pytest.mark.slow, pytest.mark.thorough]
@@ -76,6 +77,7 @@ def copied(pack: Path, tmp_path: Path) -> Path:
 def test_the_pack_itself_passes(whole: Path) -> None:
     assert check_pack(whole, solids=True) == ()
     assert sheets_findings(read_pack(whole)) == ()
+    assert tables_findings(read_pack(whole)) == ()
 
 
 def test_every_number_of_the_record_is_under_its_checksum(whole: Path, tmp_path: Path) -> None:
@@ -195,7 +197,7 @@ def test_a_changed_file_is_found_by_checksum_and_by_content(whole: Path, tmp_pat
     CHANGES[name](folder)
     assert "CONS-201" in {f.code for f in check_pack(folder)}
     fitted(folder)
-    found = check_pack(folder, solids=True)
+    found = (*check_pack(folder, solids=True), *tables_findings(read_pack(folder)))
     assert found
     assert not {"CONS-201", "CONS-211"} & {f.code for f in found}
 

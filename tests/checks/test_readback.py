@@ -26,6 +26,7 @@ from fabgen.job import Job
 from fabgen.pack import PackOptions, write_pack
 from fabgen.sizing.records import Feed
 from fabgen.sizing.tolerances import deviations
+from fabgen.writers.tables_back import tables_findings
 from tests.samples import sample_capacitor, sample_feed, sample_sizes
 
 FLAT_GROUPS = ("tables", "bend", "cut")
@@ -181,6 +182,10 @@ WIRE_CHANGES: dict[str, tuple[Callable[[Path], None], str]] = {
     "mark in the schedule": (replace_text("bend/loop_wire_schedule.csv", ",28.965,", ",29.965,"), "CONS-105"),
     "cut length in the schedule": (replace_text("bend/loop_wire_schedule.csv", ",261.6,", ",262.6,"), "CONS-105"),
     "an STL": (longer_stl, "CONS-206"),
+    "a bed too low, and wide enough": (
+        record(lambda d: d["job"]["limits"].update(bed_mm=[220.0, 220.0, 60.0])), "CONS-206"),
+    "a bed too narrow for the longer side only": (
+        record(lambda d: d["job"]["limits"].update(bed_mm=[200.0, 200.0, 250.0])), "CONS-206"),
 }
 
 
@@ -317,6 +322,7 @@ def passes_read_back(feed: Feed) -> None:
             return
         event("written")
         assert check_pack(folder) == ()
+        assert tables_findings(read_pack(folder)) == ()
 
 
 @settings(max_examples=15, deadline=None, suppress_health_check=[HealthCheck.too_slow], derandomize=True)

@@ -15,6 +15,7 @@ from fabgen.parts.build import build_parts
 from fabgen.progress import Silent
 from fabgen.sizing.size_feed import size_feed
 from fabgen.writers.sheets_back import sheets_findings
+from fabgen.writers.tables_back import tables_findings
 from tests.examples import ROOT
 
 TEMPLATES = sorted((ROOT / "templates").glob("*.toml"))
@@ -30,6 +31,7 @@ def test_a_real_pack_passes_its_own_checks(template: Path, tmp_path: Path) -> No
     pack = read_pack(tmp_path / "pack")
     assert findings_of_pack(pack, solids=True) == ()
     assert sheets_findings(pack) == ()
+    assert tables_findings(pack) == ()
     seams = pack.feed.predicted.wall_current.seams
     # what the dominant mode alone would give: next to nothing in the E-plane, the most on the gap's side and opposite
     for seam in seams:
