@@ -45,11 +45,10 @@ def test_the_yield_is_told_with_the_wish_that_it_counts() -> None:
 
 
 def test_no_dip_falls_between_two_curves_of_the_tolerance_band() -> None:
-    # A shift far wider than the dip: where the dip may lie, the band is open down to the plot's floor, so its lower edge
+    # A shift far wider than the dip: where the dip may lie, the band is open down to the floor, so its lower edge
     # is seen in two pieces, left and right, besides the upper edge.
     feed = template_feed("hydrogen-wire")
-    first = feed.sensitivities[0]
-    row = replace(first, resonance_mhz_per_mm=0.04 * feed.job.target.frequency_mhz / first.tolerance_mm)
+    row = replace(feed.sensitivities[0], effect_mhz=0.1 * feed.job.target.frequency_mhz)
     plot = reflection_plot(replace(feed, sensitivities=(row,)))
     edges = [item for item in plot.items if isinstance(item, Polyline) and item.role == "curve3"]
     assert len(edges) == 3
