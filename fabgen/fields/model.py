@@ -288,9 +288,12 @@ def _quickly_solved(matrix: ComplexArray, right: NDArray[Any]) -> tuple[Symmetri
     Where the refinement does not settle, factors in double precision.
     """
     factors = SymmetricFactors(matrix.astype(np.complex64))
-    currents = _refined(factors, matrix, np.zeros(len(right), dtype=np.complex128), right)
-    if _residual(matrix, currents, right)[1] < REFINED_RESIDUAL:
-        return factors, currents
+    currents = np.zeros(len(right), dtype=np.complex128)
+    for _ in range(2 * REFINING_TURNS):
+        left, error = _residual(matrix, currents, right)
+        if error < REFINED_RESIDUAL:
+            return factors, currents
+        currents = currents + factors.solve(left)
     factors = SymmetricFactors(matrix.copy())
     return factors, factors.solve(right)
 

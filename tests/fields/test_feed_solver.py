@@ -84,6 +84,17 @@ def test_block_elimination_equals_full_solve(form: str, can: dict[str, object]) 
     assert kept.impedance_ohm == pytest.approx(full.impedance_ohm, rel=1e-8)
 
 
+@pytest.mark.parametrize("ratio", [0.3, 1.0, 2.19])
+def test_a_pair_equals_two_solves(ratio: float) -> None:
+    feed = a_feed()
+    solver = FeedSolver(plan_mesh(feed, WAVE, 12))
+    pair = solver.solve_pair(feed, ratio * TARGET_HZ, 0.004)
+    for found in pair:
+        alone = solver.solve(feed, found.frequency_hz).impedance_ohm
+        assert found.impedance_ohm == pytest.approx(alone, rel=1e-7)
+        assert found.residual < 1e-9
+
+
 def test_changed_loop_with_kept_can_equals_fresh_solve() -> None:
     feed = a_feed("wire")
     plan = plan_mesh(feed, WAVE, 12)
