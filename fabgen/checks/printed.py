@@ -10,7 +10,7 @@ from dataclasses import dataclass
 
 from fabgen.checks.registry import Context, Fault, check, source_text
 from fabgen.checks.texts import down, mm, up
-from fabgen.parts.can_printed import ledge_of
+from fabgen.parts.can_printed import ledge_of, one_piece_bed_mm
 from fabgen.parts.contour import bounds_mm
 from fabgen.parts.floor_holes import floor_holes
 from fabgen.parts.kernel import teardrop_roof_mm
@@ -69,7 +69,10 @@ def in_pieces(context: Context) -> Iterator[Fault]:
         if len(pieces) < 2:
             continue
         crossing = _largest_current(context, key)
-        width = context.sizes.can_bore_mm + 2 * context.sizes.wall_mm
+        larger = ""
+        if key == "can":
+            side, height = one_piece_bed_mm(context.feed)
+            larger = f"; a bed of {up(side, 10):g} mm and {up(height, 10):g} mm of height takes it in one piece"
         bed = min(context.job.limits.bed_mm[:2])
         yield Fault(
             part=key,
@@ -78,7 +81,7 @@ def in_pieces(context: Context) -> Iterator[Fault]:
             limit=f"bed {bed:g} mm",
             message=f"{key} is larger than the bed and comes in {len(pieces)} pieces; up to {crossing:.2f} A/m for 1 W "
             "at the port cross the joints of its lining",
-            cure=f"line over every joint with foil or paint; a bed of {up(width + 30, 10):g} mm takes it in one piece",
+            cure=f"line over every joint with foil or paint{larger}",
         )
 
 

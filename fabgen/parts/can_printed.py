@@ -154,7 +154,7 @@ def can_printed(feed: Feed) -> tuple[Part, ...]:
         volume_mm3=shell_volume_mm3(body, holes, flange_holes) - _insert_volume(len(at)),
         joint=joint,
         whole=whole,
-        tied_by="the screwed choke ring",
+        tied_by="the screwed choke ring" if at else "a strip of glass cloth laid in epoxy under the floor",
     )
     parts = [*printed_parts(printed), *ear_fasteners(printed)]
     if at and body.ledge is not None:
@@ -166,6 +166,14 @@ def can_split(feed: Feed) -> Split:
     """How the can is cut for the bed."""
     rules = print_rules(feed)
     return plan_split(_envelope(feed, body_of(feed), rules), rules)
+
+
+def one_piece_bed_mm(feed: Feed) -> tuple[float, float]:
+    """Side and height of the least bed that takes the can in one piece."""
+    rules = print_rules(feed)
+    envelope = _envelope(feed, body_of(feed), rules)
+    height = envelope.top_mm - envelope.bottom_mm
+    return 2 * (envelope.edge_radius_mm + rules.margin_mm), height + rules.margin_mm
 
 
 def _ear_top(body: Body) -> float:

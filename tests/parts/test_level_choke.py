@@ -8,10 +8,12 @@ import pytest
 
 from fabgen.errors import GeometryError, NotCoveredError
 from fabgen.parts.build import build_parts
+from fabgen.parts.can_printed import can_printed, can_split, one_piece_bed_mm
 from fabgen.parts.can_sheet import can_wall, choke_wall
 from fabgen.parts.wall_strip import tab_holes
 from fabgen.sizing.records import Feed
 from fabgen.stock.joints import least_choke_floor_mm, nearest_choke_floor_mm
+from tests.parts.feeds import with_bed
 from tests.samples import sample_feed
 
 
@@ -58,6 +60,15 @@ def test_level_choke_is_one_piece_in_plastic_and_from_bar(make: str) -> None:
     feed = with_choke_floor(sample_feed("sheet", make, frequency_mhz=2000.0, choke=True), 0.0)
     keys = {p.key for p in build_parts(feed)}
     assert not {"choke", "choke-1"} & keys
+
+
+def test_pieces_of_a_level_choke_name_no_ring_that_is_not_there_and_the_bed_that_takes_them_whole() -> None:
+    feed = with_choke_floor(sample_feed("wire", "printed", choke=True), 0.0)
+    side, height = one_piece_bed_mm(feed)
+    pieces = can_printed(with_bed(feed, (side - 1.0, side - 1.0, height)))
+    assert len(pieces) > 1
+    assert not any("choke ring" in note for part in pieces for note in part.notes)
+    assert can_split(with_bed(feed, (side, side, height))).sectors == 1
 
 
 @pytest.mark.parametrize("make", ["rolled", "folded", "tube", "printed", "turned"])
