@@ -5,19 +5,23 @@ from __future__ import annotations
 import dataclasses
 import json
 import math
+from pathlib import Path
 from typing import Any
 
 import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
+from fabgen.cli import main
 from fabgen.errors import FabgenError, JobError, NoSolutionError, NumericalError
 from fabgen.job import Job
+from fabgen.progress import Progress
 from fabgen.sizing.front import selectivity_front
-from fabgen.sizing.records import Feed
+from fabgen.sizing.records import Feed, Sizes
 from fabgen.sizing.size_feed import size_feed
+from tests.examples import ROOT
 from tests.samples import sample_job
-from tests.sizing.toy_solver import ToySolution, ToySolver
+from tests.sizing.toy_solver import ToySolution, ToySolver, ToySweep
 
 
 def job_with(form: str = "wire", make: str = "turned", frequency_mhz: float = 1420.406, **sections: Any) -> Job:
@@ -253,6 +257,41 @@ class Unbalanced(ToySolver):
 def test_failed_self_check_stops_with_its_number() -> None:
     with pytest.raises(NumericalError, match=r"power balance 0\.2"):
         size_feed(job_with(), make_solver=Unbalanced)
+
+
+@pytest.mark.parametrize(
+    ("fault", "words"),
+    [
+        ({"power_balance": 0.02}, "power balance 0.02 (limit 0.01)"),
+        ({"power_balance": -0.02}, "power balance 0.02 (limit 0.01)"),
+        ({"residual": 1e-3}, "residual 0.001 (limit 1e-06)"),
+        ({"residual": math.nan}, "residual nan (limit 1e-06)"),
+        ({"condition": math.inf}, "condition inf (limit 1e+09)"),
+        ({"largest_edge_wavelengths": 0.21}, "largest edge 0.21 (limit 0.2)"),
+        (None, "sweep error 0.5"),
+    ],
+    ids=["radiates too little", "radiates too much", "residual", "no residual", "condition", "edge", "sweep"],
+)
+def test_a_bad_solver_stops_the_pack(
+    fault: dict[str, Any] | None, words: str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    class Bad(ToySolver):
+        def solve(self, sizes: Sizes, frequency_mhz: float) -> ToySolution:
+            return dataclasses.replace(super().solve(sizes, frequency_mhz), **(fault or {}))
+
+        def sweep(self, sizes: Sizes, start_mhz: float, stop_mhz: float, target_mhz: float) -> ToySweep:
+            right = super().sweep(sizes, start_mhz, stop_mhz, target_mhz)
+            return right if fault else dataclasses.replace(right, error_estimate=0.5)
+
+    def with_bad_solver(job: Job, progress: Progress) -> Feed:
+        return size_feed(job, progress, Bad)
+
+    monkeypatch.setattr("fabgen.sizing.size_feed.size_feed", with_bad_solver)
+    job = str(ROOT / "templates" / "hydrogen-wire.toml")
+    assert main(["pack", job, "-o", str(tmp_path / "pack"), "--quiet", "--no-cache"]) == 6
+    assert words in capsys.readouterr().err
+    assert not list(tmp_path.iterdir())
 
 
 def test_front_has_eight_points_that_trade_rejection() -> None:
