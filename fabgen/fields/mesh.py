@@ -5,6 +5,7 @@ Depends on: errors.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -93,9 +94,11 @@ def _representatives(points: FloatArray, tolerance_m: float) -> IntArray:
 def check_mesh(mesh: Mesh, wavelength_m: float, connected: bool = True) -> None:
     """Refuse a mesh that cannot be computed with.
 
-    Raises GeometryError for non-finite points, triangles without area, an edge longer than lambda/5 and, where
-    ``connected``, for pieces that do not hang together.
+    Raises GeometryError for a wavelength that is no finite number above zero, non-finite points, triangles without
+    area, an edge longer than lambda/5 and, where ``connected``, for pieces that do not hang together.
     """
+    if not (math.isfinite(wavelength_m) and wavelength_m > 0):
+        raise GeometryError(f"the wavelength is {wavelength_m:g} m; a finite number above zero is needed")
     if not np.isfinite(mesh.vertices_m).all():
         raise GeometryError("the mesh has points that are not finite numbers; check the sizes given")
     areas = mesh.areas_m2()

@@ -155,3 +155,10 @@ def test_bars_past_the_inner_edge_of_the_meshed_ring_are_refused() -> None:
     wide = replace(feed, loop=replace(loop, band_m=2.2 * (loop.radius_m - reach)))
     with pytest.raises(GeometryError, match="past the ring's inner edge at"):
         feed_mesh(wide, plan_mesh(feed, WAVE, 10))
+
+
+@pytest.mark.parametrize("frequency_hz", [math.nan, math.inf, -1e9])
+def test_frequency_that_is_no_positive_number_is_refused(frequency_hz: float) -> None:
+    feed = a_feed()
+    with pytest.raises(GeometryError, match="a finite number above zero is needed"):
+        FeedSolver(plan_mesh(feed, WAVE, 8)).solve(feed, frequency_hz)
