@@ -43,20 +43,6 @@ def coplanar_strips_ohm(gap_mm: float, width_mm: float) -> float:
     return float(FREE_SPACE_OHM * ellipk(k * k) / ellipkm1(k * k))
 
 
-def strip_width_for_two_wires_mm(pitch_mm: float, diameter_mm: float) -> float:
-    """Width of two coplanar strips, centres at the wires' centres, that have the impedance of the two wires, mm.
-
-    Wide pitch gives 2 d, the strip of four radii; closer wires need a narrower strip, since the strips' facing
-    edges attract current more. Found by bisection to 1e-12 of the pitch."""
-    wanted = two_wire_ohm(pitch_mm, diameter_mm)
-    low, high = 1e-9 * pitch_mm, pitch_mm * (1 - 1e-9)
-    while high - low > 1e-12 * pitch_mm:
-        width = 0.5 * (low + high)
-        # Wider strips have a narrower gap: the impedance falls.
-        low, high = (width, high) if coplanar_strips_ohm(pitch_mm - width, width) > wanted else (low, width)
-    return 0.5 * (low + high)
-
-
 def coax_ohm(outer_mm: float, inner_mm: float, relative_permittivity: float = 1.0) -> float:
     """Impedance of a coaxial line, eta ln(D/d) / (2 pi sqrt(er)), ohm. ``outer_mm`` above ``inner_mm``."""
     require_positive(outer_mm=outer_mm, inner_mm=inner_mm, relative_permittivity=relative_permittivity)
