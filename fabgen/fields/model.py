@@ -46,6 +46,7 @@ SYMMETRY_PLANES = (1,)
 KEPT_CANS = 4
 REFINED_RESIDUAL = 1e-10
 """Residual at which a refined solution is as good as a factorised one."""
+REFUSED_RESIDUAL = 1e-6
 REFINING_TURNS, REFINING_STEPS, REFINING_GAIN = 4, 10, 1e-5
 
 
@@ -172,7 +173,7 @@ class FeedSolver:
 
         ``step`` at most about 0.01. One factorisation serves both, which gives a sweep slopes at little cost. No can
         is kept. Where a resonance is so sharp that the refinement does not settle, the second is factorised too. Raises
-        as ``solve``.
+        as ``solve``, and NumericalError where the residual stays above 1e-6.
         """
         surface = surface or SurfaceImpedance()
         ready = self._feeds.recall(feed, lambda: self._prepare(feed))
@@ -188,7 +189,7 @@ class FeedSolver:
         if _residual(matrix, currents, drive)[1] > REFINED_RESIDUAL:
             _, currents = _quickly_solved(matrix, drive)
         second = _solution(ready, top, surface, currents, drive, math.nan, matrix)
-        return first, second
+        return _settled(first), _settled(second)
 
     def _whole(
         self, feed: FeedGeometry, ready: _Prepared, frequency_hz: float, surface: SurfaceImpedance
@@ -315,6 +316,16 @@ def _refined(
         change, _ = gmres(system, left, M=inverse, rtol=REFINING_GAIN, restart=REFINING_STEPS, maxiter=1)
         currents = currents + change
     return currents
+
+
+def _settled(solution: FieldSolution) -> FieldSolution:
+    """The solution, unless the factors were no good: nobody else looks at the residuals of a sweep."""
+    if not solution.residual <= REFUSED_RESIDUAL:
+        raise NumericalError(
+            f"the field at {solution.frequency_hz / 1e6:.1f} MHz has a residual of {solution.residual:.1e}; "
+            f"{REFUSED_RESIDUAL:g} is allowed: change the sizes a little"
+        )
+    return solution
 
 
 def _solution(

@@ -9,7 +9,8 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from fabgen.errors import GeometryError
+from fabgen.errors import GeometryError, NumericalError
+from fabgen.fields.factors import SymmetricFactors
 from fabgen.fields.functions import edge_functions
 from fabgen.fields.geometry import SPEED_OF_LIGHT, CanGeometry, ChokeGeometry, FeedGeometry
 from fabgen.fields.mesh import CHOKE, WALL, single
@@ -162,3 +163,14 @@ def test_frequency_that_is_no_positive_number_is_refused(frequency_hz: float) ->
     feed = a_feed()
     with pytest.raises(GeometryError, match="a finite number above zero is needed"):
         FeedSolver(plan_mesh(feed, WAVE, 8)).solve(feed, frequency_hz)
+
+
+def test_factors_that_are_no_good_stop_a_sweep(monkeypatch: pytest.MonkeyPatch) -> None:
+    class Spoilt(SymmetricFactors):
+        def solve(self, right: np.ndarray) -> np.ndarray:
+            return np.ones_like(super().solve(right))
+
+    monkeypatch.setattr("fabgen.fields.model.SymmetricFactors", Spoilt)
+    feed = a_feed()
+    with pytest.raises(NumericalError, match="has a residual of"):
+        FeedSolver(plan_mesh(feed, WAVE, 8)).solve_pair(feed, TARGET_HZ, 0.005)
