@@ -8,6 +8,7 @@ Depends on: drawing.model, drawing.overlap, drawing.fonts.
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
@@ -332,8 +333,9 @@ def marks(
 
 def _mark(label: str, at: Point, occupied: Occupied, height: float = 1.8) -> Text | None:
     width, high = text_width_mm(label, height), height * (1 + DESCENT)
-    for reach in (1.0, 1.8, 2.8, 4.0):
-        for k in (1, 3, 5, 7, 0, 2, 4, 6):
+    # The eighths of a turn at every reach, and only then those between them.
+    for ways in ((1, 3, 5, 7, 0, 2, 4, 6), (0.5, 1.5, 2.5, 3.5, 4.5, 5.5, 6.5, 7.5)):
+        for reach, k in itertools.product((1.0, 1.8, 2.8, 4.0), ways):
             c, s = math.cos(k * math.pi / 4), math.sin(k * math.pi / 4)
             x = at[0] + c * (reach + width / 2)
             y = at[1] + s * (reach + high / 2) - high / 2 + DESCENT * height

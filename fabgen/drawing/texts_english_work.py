@@ -173,8 +173,8 @@ WORK: dict[str, str] = {
     "step.choke.tools": "height gauge or blocks, clamps.",
     "step.choke.join": "continuous contact of the ring's floor to the can all round.",
     "step.choke.printed.do": (
-        "Line the ring's floor and wall and the can's wall inside the ring as in the step before. Set the ring on the "
-        "can and screw it down."
+        "Set the ring on the can. Line the can's wall inside it, the ring's wall, then its floor over both laps, as in "
+        "the step before. Screw the ring down through the lining."
     ),
     "step.choke.printed.tools": "screwdriver or hexagon key, what the lining needs.",
     "step.choke.printed.caution": "as for the lining.",

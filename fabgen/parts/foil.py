@@ -1,4 +1,5 @@
-"""Foil for a printed can: a disc for the floor and a strip for the wall, as they are cut flat.
+"""Foil for a printed can: a disc for the floor and a strip for the wall, as they are cut flat; for a choke a ring
+for its floor, with the holes of the screws below it, and strips for its wall and for the can's wall inside it.
 
 Strip, seen from the side that shows in the can::
 
@@ -10,15 +11,16 @@ Strip, seen from the side that shows in the can::
          '-\\  /-\\  /-\\  /-\\  /-\\  /-\\  /-\\  /-\\  /-\\ /'  --- turned in on the floor, LAP, notched
 
 The strip's beginning lies on the E-plane (phi = 90 degrees). The disc goes on the notched lap and is soldered or
-burnished to it all round.
+burnished to it all round. The can's outer strip turns its lap out instead: slit in place of notched, since it opens.
 
-Depends on: errors, stock, parts (contour, floor_holes, records), sizing.records.
+Depends on: errors, stock, parts (can_printed, contour, floor_holes, records), sizing.records.
 """
 
 from __future__ import annotations
 
 import math
 
+from fabgen.parts.can_printed import CHOKE_SCREW, body_of, choke_screw_points
 from fabgen.parts.contour import Circle, Contour, Outline, Vertex, area_mm2, tidied
 from fabgen.parts.floor_holes import floor_holes
 from fabgen.parts.records import FlatPattern, Part, Process
@@ -27,22 +29,31 @@ from fabgen.stock import tables
 from fabgen.stock.records import Lining
 
 OVERLAP_MM = 10.0
-LAP_MM = 8.0
+LAP_MM = 10.0
 RIM_MM = 3.0
 NOTCH_PITCH_MM = 20.0
-"""Overlaps and notches that a hand can lay without folds. Common practice, no source."""
+SLIT_MM = 0.5
+"""Overlaps, notches and slits that a hand can lay without folds. Common practice, no source."""
 
 
 def foil_patterns(feed: Feed) -> tuple[Part, ...]:
-    """Disc and strip of a printed can lined with foil; nothing for other makes and linings."""
+    """Discs and strips of a printed can lined with foil; nothing for other makes and linings."""
     lining = tables.lining(feed.job.can.lining)
     if feed.job.can.make != "printed" or lining.kind != "foil":
         return ()
-    parts = [_disc(feed, lining), _strip(feed, lining, "foil-wall", feed.sizes.can_bore_mm, feed.sizes.can_depth_mm)]
-    choke = feed.sizes.choke
+    sizes, choke = feed.sizes, feed.sizes.choke
+    parts = [_disc(feed, lining), _strip(feed, lining, "foil-wall", sizes.can_bore_mm, sizes.can_depth_mm)]
     if choke is not None:
-        parts.append(_strip(feed, lining, "foil-choke-wall", choke.bore_mm, choke.depth_mm))
+        parts += [
+            _ring(feed, lining, choke.bore_mm),
+            _strip(feed, lining, "foil-choke-wall", choke.bore_mm, choke.depth_mm),
+            _strip(feed, lining, "foil-choke-can", _can_outer_mm(feed), sizes.can_depth_mm - choke.floor_z_mm),
+        ]
     return tuple(parts)
+
+
+def _can_outer_mm(feed: Feed) -> float:
+    return 2 * body_of(feed).outer_radius_mm
 
 
 def _foil(feed: Feed, lining: Lining, key: str, name: str, flat: FlatPattern, sizes: tuple[tuple[str, float], ...],
@@ -80,12 +91,40 @@ def _disc(feed: Feed, lining: Lining) -> Part:
     )  # fmt: skip
 
 
+def _ring(feed: Feed, lining: Lining, bore_mm: float) -> Part:
+    """The choke's floor between the can and the choke's wall, its screws' holes in it."""
+    inner, clear = _can_outer_mm(feed), tables.screw(CHOKE_SCREW).clearance_medium_mm
+    at = choke_screw_points(feed, body_of(feed))
+    holes: tuple[Outline, ...] = (Circle(0.0, 0.0, inner), *(Circle(x, y, clear) for x, y in at))
+    flat = FlatPattern(Circle(0.0, 0.0, bore_mm), holes, (), lining.thickness_mm, "inside")
+    return _foil(
+        feed, lining, "foil-choke-floor", "foil for the choke's floor", flat,
+        (("choke_bore_mm", bore_mm), ("inner_mm", inner)),
+        "slide over the can onto the laps of both strips and solder or burnish all round, inside and outside",
+    )  # fmt: skip
+
+
+STRIPS = {
+    "foil-wall": ("foil for the wall", "begin at +y (E-plane); turn the lap in on the floor and the rest over the rim"),
+    "foil-choke-wall": (
+        "foil for the choke's wall",
+        "begin at +y (E-plane); turn the lap in on the floor and the rest over the rim",
+    ),
+    "foil-choke-can": (
+        "foil for the can inside the choke",
+        "round the outside of the can, begin at +y (E-plane); turn the lap out on the choke's floor and the rest over "
+        "the rim, onto the foil of the bore",
+    ),
+}
+
+
 def _strip(feed: Feed, lining: Lining, key: str, bore_mm: float, depth_mm: float) -> Part:
     length = math.pi * bore_mm + OVERLAP_MM
     count = max(6, round(length / NOTCH_PITCH_MM))
     pitch = length / count
-    # The turned-in lap is shorter inside by 2 pi LAP: each notch takes its share, and a little more.
-    half = math.pi * LAP_MM / count + 0.5
+    # The turned-in lap is shorter inside by 2 pi LAP: each notch takes its share, and a little more. A lap that is
+    # turned out grows longer: slits open.
+    half = SLIT_MM / 2 if key == "foil-choke-can" else math.pi * LAP_MM / count + 0.5
     edge = [Vertex(0.0, -LAP_MM)]
     for i in range(count):
         x = pitch * (i + 0.5)
@@ -93,7 +132,5 @@ def _strip(feed: Feed, lining: Lining, key: str, bore_mm: float, depth_mm: float
     edge += [Vertex(length, -LAP_MM), Vertex(length, depth_mm + RIM_MM), Vertex(0.0, depth_mm + RIM_MM)]
     flat = FlatPattern(tidied(Contour(tuple(edge))), (), (), lining.thickness_mm, "inside")
     sizes = (("length_mm", length), ("height_mm", depth_mm + RIM_MM + LAP_MM), ("overlap_mm", OVERLAP_MM))
-    return _foil(
-        feed, lining, key, "foil for the wall" if key == "foil-wall" else "foil for the choke's wall", flat, sizes,
-        "begin at +y (E-plane); turn the lap in on the floor and the rest over the rim",
-    )  # fmt: skip
+    name, note = STRIPS[key]
+    return _foil(feed, lining, key, name, flat, sizes, note)

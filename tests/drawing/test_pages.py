@@ -284,6 +284,7 @@ def test_the_foil_of_a_choke_goes_in_with_its_ring_and_is_hatched() -> None:
     feed, parts = _lined("copper-foil-35", choke=True)
     joined = {p.key: s.kind for s in steps(parts) for p in s.parts}
     assert (joined["foil-wall"], joined["foil-choke-wall"]) == ("lining", "choke")
+    assert joined["foil-choke-floor"] == joined["foil-choke-can"] == "choke"
     s = feed.sizes
     assert s.choke is not None
     lines = lined("foil-choke-wall", s, s.can_bore_mm + 2 * s.wall_mm, ABOVE_EYE)
@@ -395,3 +396,43 @@ def test_the_wire_is_cut_with_what_its_threads_need() -> None:
     length = f"{wire.cut_length_mm + 2 * wire.beyond_mm:.1f} long"
     assert sum(c.endswith(length) for c in cells) == 2
     assert sum(f"cut it to {length[:-5]} mm" in _words([s]).replace("  ", " ") for s in book) == 1
+
+
+def test_crosses_of_joints_keep_off_holes() -> None:
+    from fabgen.drawing.model import Arc, Line
+    from fabgen.drawing.pages.base import Context
+    from fabgen.drawing.pages.truescale import CLEAR_MM, Template, _draft
+
+    context = Context(feed_of("wire-rolled"), (), (), (), (), (), PAPERS["A4"])
+    frame = Line(0, 0, 150, 400)
+    (first, _) = _draft(context, Template("large", "x", (frame,))).pages
+    found = [i for i in first.items if isinstance(i, Arc)]
+    (view,) = first.views
+    hole = Arc(found[0].cx - view.origin[0] + 3, found[0].cy - view.origin[1] + 1, 1.6, 1.6)
+    places = []
+    for page in _draft(context, Template("large", "x", (frame, hole))).pages:
+        (view,) = page.views
+        arcs = [i for i in page.items if isinstance(i, Arc) and i.rx == 2]
+        places.append([(round(i.cx - view.origin[0], 3), round(i.cy - view.origin[1], 3)) for i in arcs])
+    assert places[0] == places[1]
+    assert len(places[0]) == 2
+    assert all(math.dist(p, (hole.cx, hole.cy)) > CLEAR_MM for p in places[0])
+
+
+def test_foil_in_a_choke_has_its_pages_and_lines_in_the_picture() -> None:
+    from fabgen.drawing.pages.lining import lined
+    from fabgen.drawing.pages.steps import ABOVE_EYE
+
+    feed, parts = _lined("copper-foil-35", choke=True)
+    made = sheets(feed, parts, ())
+    for key in ("foil-choke-floor", "foil-choke-wall", "foil-choke-can"):
+        assert {"part", "true"} <= {s.kind for s in made if s.part_key == key}
+    assert not [c for s in made for c in clashes(s)]
+    s, n = feed.sizes, ABOVE_EYE.towards_eye
+    outer = s.can_bore_mm / 2 + s.wall_mm
+    lines = lined("foil-choke-can", s, 2 * outer, ABOVE_EYE)
+    assert len(lines) > 10
+    for line in lines:  # the upper end of each is on the picture of the can's rim, on the side of the eye
+        top = max(line.y0, line.y1) - s.can_depth_mm * math.hypot(n[0], n[1])
+        assert (line.x0 / outer) ** 2 + (top / (outer * n[2])) ** 2 == pytest.approx(1.0, abs=1e-6)
+        assert top < 0

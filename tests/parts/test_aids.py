@@ -14,7 +14,7 @@ import pytest
 import shapely
 
 from fabgen.drawing.nesting import nest_items
-from fabgen.errors import GeometryError
+from fabgen.errors import GeometryError, JobError
 from fabgen.job_reader import parse_job, read_job
 from fabgen.parts.bend_rule import chosen_k, rule_text
 from fabgen.parts.bend_strip import STRIP_LENGTH_MM, bend_strip
@@ -74,8 +74,31 @@ def test_the_users_own_k_rules_the_patterns() -> None:
     assert chosen_k(feed.job.limits, temper, 1.0, 1.0) == pytest.approx(0.325)
     handbook = feed.job.limits.model_copy(update={"bend_rule": "handbook"})
     assert chosen_k(handbook, temper, 1.0, 1.0) == temper.handbook_k
-    with pytest.raises(Exception, match="test_bend_k"):
-        chosen_k(limits.model_copy(update={"test_bend_k": None}), temper, 1.0, 1.0)
+    both = limits.model_copy(update={"can_test_bend_k": 0.38})
+    assert (chosen_k(both, temper, 1.5, 1.5), chosen_k(both, temper, 1.5, 1.5, can=True)) == (0.44, 0.38)
+    assert chosen_k(limits, temper, 1.5, 1.5, can=True) == 0.44
+
+
+def test_each_strip_names_the_key_of_its_own_sheet() -> None:
+    """A loop of brass in a rolled can of another sheet: two strips, two values."""
+    job = parse_job(JOB + 'bend_rule = "test-bend"\ntest_bend_k = 0.41\ncan_test_bend_k = 0.37')
+    feed = dataclasses.replace(sample_feed("sheet", "rolled"), job=job)
+    strips = bend_strip(feed)
+    keys = {dict(p.sizes)["k_factor"]: " ".join(p.notes) for p in strips}
+    assert set(keys) == {0.41, 0.37}
+    assert "limits.test_bend_k" in keys[0.41]
+    assert "limits.can_test_bend_k" in keys[0.37]
+
+
+@pytest.mark.parametrize(
+    ("limits", "words"),
+    [('bend_rule = "test-bend"', "is not given; bend the test strip"),
+     ("test_bend_k = 0.4", "'din6935', which does not use it"),
+     ('bend_rule = "handbook"\ncan_test_bend_k = 0.4', "'handbook', which does not use it")],
+)  # fmt: skip
+def test_a_rule_and_its_k_are_refused_apart(limits: str, words: str) -> None:
+    with pytest.raises(JobError, match=words):
+        parse_job(JOB + limits)
 
 
 JOB = """
@@ -283,16 +306,16 @@ def test_every_template_of_wire_gets_both_forms_on_its_bed(name: str) -> None:
 def test_foil_covers_bore_depth_and_laps_and_is_for_printed_cans_only() -> None:
     feed = sample_feed("wire", "printed", choke=True)
     parts = {p.key: p for p in foil_patterns(feed)}
-    assert set(parts) == {"foil-floor", "foil-wall", "foil-choke-wall"}
+    assert set(parts) == {"foil-floor", "foil-wall", "foil-choke-floor", "foil-choke-wall", "foil-choke-can"}
     wall = parts["foil-wall"].flat
     assert wall is not None
     x0, y0, x1, y1 = bounds_mm(wall.outline)
     assert x1 - x0 == pytest.approx(math.pi * feed.sizes.can_bore_mm + 10.0)
-    assert y1 - y0 == pytest.approx(feed.sizes.can_depth_mm + 11.0)
+    assert y1 - y0 == pytest.approx(feed.sizes.can_depth_mm + 13.0)
     # The notched lap still closes when it is turned in: its edge is no longer than the smaller circle.
     edge = sum(abs(b.x_mm - a.x_mm) for a, b in zip(wall.outline.vertices, wall.outline.vertices[1:], strict=False)  # type: ignore[union-attr]
-               if a.y_mm == b.y_mm == -8.0)  # fmt: skip
-    assert edge <= math.pi * (feed.sizes.can_bore_mm - 16.0) + 10.0
+               if a.y_mm == b.y_mm == -10.0)  # fmt: skip
+    assert edge <= math.pi * (feed.sizes.can_bore_mm - 20.0) + 10.0
     disc = parts["foil-floor"].flat
     assert disc is not None
     assert isinstance(disc.outline, Circle)
@@ -356,3 +379,25 @@ def test_bending_forms_have_the_tolerance_of_print() -> None:
     job = feed.job.model_copy(update={"overrides": {**feed.job.overrides, **wide}})
     assert {p.tolerance for p in bending_jig(feed)} == {"+-0.3 mm"}
     assert {p.tolerance for p in bending_jig(dataclasses.replace(feed, job=job))} == {"+-0.45 mm"}
+
+
+def test_foil_of_a_choke_covers_its_floor_and_the_can_inside_it() -> None:
+    feed = sample_feed("wire", "printed", choke=True)
+    choke, parts = feed.sizes.choke, {p.key: p for p in foil_patterns(feed)}
+    printed = {p.key: p for p in build_parts(feed)}
+    assert choke is not None
+    floor, can = parts["foil-choke-floor"].flat, parts["foil-choke-can"].flat
+    assert floor is not None
+    assert can is not None
+    # What the solids leave open: from the can's outer face to the choke's bore, from its floor to the can's rim.
+    inner, *screws = floor.holes
+    assert isinstance(floor.outline, Circle)
+    assert isinstance(inner, Circle)
+    assert floor.outline.diameter_mm == choke.bore_mm
+    outer = dict(parts["foil-choke-floor"].sizes)["inner_mm"]
+    assert outer == inner.diameter_mm == pytest.approx(feed.sizes.can_bore_mm + 2 * feed.sizes.wall_mm, abs=0.3)
+    ring = [s for key, s in printed.items() if key == "screw-choke-floor"]
+    assert len(screws) == sum(s.quantity for s in ring)
+    x0, y0, x1, y1 = bounds_mm(can.outline)
+    assert x1 - x0 == pytest.approx(math.pi * outer + 10.0)
+    assert y1 - y0 == pytest.approx(feed.sizes.can_depth_mm - choke.floor_z_mm + 13.0)

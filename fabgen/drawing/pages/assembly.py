@@ -19,6 +19,7 @@ from fabgen.stock import tables
 PICTURE_MM = 78.0
 PICTURE_HEIGHT_MM = 62.0
 TEXT_MM = 85.0
+CHOKE_FOILS = ("foil-choke-floor", "foil-choke-wall", "foil-choke-can")
 WHOLE = {"loop", "lining"}  # steps that need the whole floor to show which way things point
 
 
@@ -75,10 +76,11 @@ def _lined(context: Context, view: StepView) -> list[tuple[str, tuple[Curve, ...
     keys = [p.key for p in view.step.parts if p.key.startswith("foil")]
     if is_coated(context.feed):
         ring = any(step.step.kind == "choke" for step in context.steps)
-        choke = ["foil-choke-wall"] if (view.step.kind == "choke") == ring else []
+        choke = list(CHOKE_FOILS) if (view.step.kind == "choke") == ring else []
         keys = {"lining": ["foil-floor", "foil-wall", *choke], "choke": choke}.get(view.step.kind, [])
     outer = sizes.can_bore_mm + 2 * sizes.wall_mm
-    return [(str(numbers.get(key, "")), lined(key, sizes, outer, ABOVE_EYE)) for key in keys]
+    faces = [(str(numbers.get(key, "")), lined(key, sizes, outer, ABOVE_EYE)) for key in keys]
+    return [(label, lines) for label, lines in faces if lines]  # a low choke may hide its floor from the eye
 
 
 def _text(context: Context, n: int, step: Step) -> Block:

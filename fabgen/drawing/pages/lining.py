@@ -76,6 +76,7 @@ def one_digit(value: float) -> str:
 
 def lined(key: str, sizes: Sizes, can_outer_mm: float, eye: Direction) -> tuple[Line, ...]:
     """The lines of one lined face, by the key of the foil that covers it; nothing for another key."""
+    post = (can_outer_mm / 2, sizes.can_depth_mm)
     match key, sizes.choke:
         case "foil-floor", _:
             return lined_floor(sizes.can_bore_mm, sizes.can_depth_mm, eye)
@@ -83,7 +84,13 @@ def lined(key: str, sizes: Sizes, can_outer_mm: float, eye: Direction) -> tuple[
             return lined_wall(sizes.can_bore_mm, sizes.can_depth_mm, eye)
         case "foil-choke-wall", choke if choke is not None:
             rim = choke.floor_z_mm + choke.depth_mm
-            return _uprights(choke.bore_mm / 2, choke.floor_z_mm, rim, eye, (can_outer_mm / 2, sizes.can_depth_mm))
+            return _uprights(choke.bore_mm / 2, choke.floor_z_mm, rim, eye, post)
+        case "foil-choke-can", choke if choke is not None:
+            rim = choke.floor_z_mm + choke.depth_mm
+            return _outside(post, choke.floor_z_mm, (choke.bore_mm / 2, rim), eye)
+        case "foil-choke-floor", choke if choke is not None:
+            rim = choke.floor_z_mm + choke.depth_mm
+            return _spokes(post, choke.floor_z_mm, (choke.bore_mm / 2, rim), eye)
     return ()
 
 
@@ -106,6 +113,33 @@ def _uprights(
         seen = [z for z in heights if _clear(x, y, z, r, rim, eye) and not _behind(x, y, z, post, eye)]
         if seen and seen[0] < rim:
             lines.append(_line(eye.flat((x, y, seen[0])), eye.flat((x, y, rim))))
+    return tuple(lines)
+
+
+def _outside(post: tuple[float, float], low: float, ring: tuple[float, float], eye: Direction) -> tuple[Line, ...]:
+    """Upright lines on the outside of what stands in the middle, radius and height in ``post``, as far as ``eye`` sees
+    them over a ring of radius and rim ``ring``."""
+    (r, high), lines = post, []
+    for i in range(round(360 / STEP_DEG)):
+        x, y = _on_circle(r, STEP_DEG * i)
+        if x * eye.towards_eye[0] + y * eye.towards_eye[1] <= 0:
+            continue
+        heights = [low + (high - low) * k / PIECES for k in range(PIECES + 1)]
+        seen = [z for z in heights if z >= ring[1] or _clear(x, y, z, *ring, eye)]
+        if seen and seen[0] < high:
+            lines.append(_line(eye.flat((x, y, seen[0])), eye.flat((x, y, high))))
+    return tuple(lines)
+
+
+def _spokes(post: tuple[float, float], level: float, ring: tuple[float, float], eye: Direction) -> tuple[Line, ...]:
+    """Lines outwards on the floor between post and ring, as far as ``eye`` sees them."""
+    lines: list[Line] = []
+    for i in range(round(360 / STEP_DEG)):
+        steps = [post[0] + (ring[0] - post[0]) * k / PIECES for k in range(PIECES + 1)]
+        points = [_on_circle(r, STEP_DEG * i) for r in steps]
+        seen = [p for p in points if _clear(*p, level, *ring, eye) and not _behind(*p, level, post, eye)]
+        if len(seen) > 1:
+            lines.append(_line(eye.flat((*seen[0], level)), eye.flat((*seen[-1], level))))
     return tuple(lines)
 
 

@@ -27,6 +27,8 @@ BAR_MM = 100.0
 STRIP_MM = 13.0  # along the left and lower edge, for the bars
 HEAD_MM = 13.0
 MOST_TILES = 12
+CLEAR_MM = 12.0  # from a cross on a joint to the middle of any hole
+SHARES = (0.25, 0.75, 0.4, 0.6, 0.15, 0.85)  # where crosses may stand along a joint
 PLATE_SHARE = 0.32  # thinner than this share of its width, a part is a plate: its edge shows nothing
 
 
@@ -185,12 +187,12 @@ def _tile(paper: Paper, t: Template, area: Box, at: tuple[int, int], of: tuple[i
     last = f"{chr(64 + of[1])}{of[0]}"
     page = _frame_page(paper, say("true.tile", tile=name, first="A1", last=last))
     page.items += clipped(moved(t.items, dx, dy), area)
-    page.items += _edge_marks(area, at, of)
+    page.items += _edge_marks(area, at, of, moved(t.items, dx, dy))
     page.views.append(View(t.title, 1.0, (dx, dy), area))
     return page
 
 
-def _edge_marks(area: Box, at: tuple[int, int], of: tuple[int, int]) -> list[Item]:
+def _edge_marks(area: Box, at: tuple[int, int], of: tuple[int, int], drawn: tuple[Item, ...]) -> list[Item]:
     """Crosses in the overlap that fall on each other when neighbouring tiles lie right, and the cutting edge."""
     half = OVERLAP_MM / 2
     items: list[Item] = []
@@ -199,13 +201,23 @@ def _edge_marks(area: Box, at: tuple[int, int], of: tuple[int, int]) -> list[Ite
     ys = ([area.y1 - half] if at[1] > 0 else []) + ([area.y0 + half] if at[1] < of[1] - 1 else [])
     for x in xs:
         items.append(Line(x, area.y0, x, area.y1, "fine"))
-        for y in (area.y0 + area.height * 0.25, area.y0 + area.height * 0.75):
+        for _, y in _free([(x, area.y0 + area.height * share) for share in SHARES], drawn):
             items += _cross(x, y)
     for y in ys:
         items.append(Line(area.x0, y, area.x1, y, "fine"))
-        for x in (area.x0 + area.width * 0.25, area.x0 + area.width * 0.75):
+        for x, _ in _free([(area.x0 + area.width * share, y) for share in SHARES], drawn):
             items += _cross(x, y)
     return items
+
+
+def _free(points: list[Point], drawn: tuple[Item, ...]) -> list[Point]:
+    """The first two points where no hole is near that a cross could be mistaken for; without them, the first two.
+
+    Both tiles of a joint see the same items around it and so choose the same points.
+    """
+    holes = [(i.cx, i.cy) for i in drawn if isinstance(i, Arc) and max(i.rx, i.ry) < CLEAR_MM]
+    free = [p for p in points if all(math.dist(p, hole) > CLEAR_MM for hole in holes)]
+    return (free if len(free) > 1 else points)[:2]
 
 
 def _cross(x: float, y: float) -> list[Item]:
