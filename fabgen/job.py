@@ -107,6 +107,7 @@ class Limits(Section):
     tolerance_class: Literal["f", "m", "c"] = "m"
     bend_rule: Literal["din6935", "handbook", "test-bend"] = "din6935"
     test_bend_k: float | None = Field(default=None, ge=0, le=1)
+    can_test_bend_k: float | None = Field(default=None, ge=0, le=1)
     corner_radius_mm: float = Field(default=0.5, ge=0, le=5)
     environment: Literal["outdoor", "sheltered", "indoor"] = "outdoor"
     paper: Literal["A4", "A3", "letter", "tabloid"] = "A4"
@@ -206,6 +207,23 @@ def contradictions(job: Job) -> Iterator[str]:
     yield from _loop_against_wavelength(job)
     yield from _fixed_sizes(job)
     yield from _can(job)
+    yield from _bend_rule(job.limits)
+
+
+def _bend_rule(limits: Limits) -> Iterator[str]:
+    if limits.bend_rule == "test-bend":
+        if limits.test_bend_k is None:
+            yield (
+                "limits.bend_rule is 'test-bend' but limits.test_bend_k is not given; bend the test strip of the pack "
+                "and enter its K, or use bend_rule = \"din6935\""
+            )
+    else:
+        for name in ("test_bend_k", "can_test_bend_k"):
+            if getattr(limits, name) is not None:
+                yield (
+                    f"limits.{name} is given but limits.bend_rule is '{limits.bend_rule}', which does not use it; "
+                    f'write bend_rule = "test-bend", or take {name} out'
+                )
 
 
 def _loop_stock(job: Job) -> Iterator[str]:

@@ -60,6 +60,7 @@ MEANINGS = {
     "limits.tolerance_class": "general tolerance after ISO 2768-1",
     "limits.bend_rule": "bend allowance: DIN 6935, handbook constants, or your own test bend",
     "limits.test_bend_k": "K of your test bend (neutral line at R + K t)",
+    "limits.can_test_bend_k": "K of the can's sheet where it is another than the loop's",
     "limits.corner_radius_mm": "least radius of an inner corner",
     "limits.environment": "where the feed stands, for corrosion and weather",
     "limits.paper": "paper of the sheets",

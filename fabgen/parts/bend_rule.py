@@ -16,18 +16,15 @@ from fabgen.theory.bending import din_k_factor
 DEFINITION = "K: neutral fibre at R + K t from the bend's centre; DIN 6935 k = 2 K"
 
 
-def chosen_k(limits: Limits, temper: Temper, inside_radius_mm: float, thickness_mm: float) -> float:
-    """K for one bend by the job's ``limits.bend_rule``.
-
-    Raises JobError when the rule is "test-bend" and ``limits.test_bend_k`` is missing.
-    """
+def chosen_k(
+    limits: Limits, temper: Temper, inside_radius_mm: float, thickness_mm: float, *, can: bool = False
+) -> float:
+    """K for one bend by the job's ``limits.bend_rule``; ``can``: of the can's sheet, which may have a K of its own."""
     if limits.bend_rule == "test-bend":
-        if limits.test_bend_k is None:
-            raise JobError(
-                "limits.bend_rule is 'test-bend' but limits.test_bend_k is not given; bend the test strip and "
-                "enter its K, or use bend_rule = 'din6935'"
-            )
-        return limits.test_bend_k
+        own = limits.can_test_bend_k if can and limits.can_test_bend_k is not None else limits.test_bend_k
+        if own is None:
+            raise JobError("limits.bend_rule is 'test-bend' but limits.test_bend_k is not given")
+        return own
     if limits.bend_rule == "handbook":
         return temper.handbook_k
     return din_k_factor(inside_radius_mm, thickness_mm)

@@ -12,7 +12,8 @@ Measure the legs a and b to the outside, then with t and the inside radius r:
     deduction = a + b - STRIP_LENGTH
     K = ((2 (r + t) - deduction) * 2 / pi - r) / t        (theory.bending.k_from_test_bend)
 
-and enter it as limits.test_bend_k with limits.bend_rule = "test-bend".
+and enter it as limits.test_bend_k with limits.bend_rule = "test-bend"; that of the can's sheet as
+limits.can_test_bend_k where the loop has another sheet.
 
 Depends on: errors, stock, parts (bend_rule, contour, folding, kernel, making), sizing.records, theory.bending.
 """
@@ -55,14 +56,16 @@ def bend_strip(feed: Feed) -> tuple[Part, ...]:
         sheets = (s.wall_mm, s.floor_mm) if s.choke else (s.wall_mm,)
         for t in sheets:
             strips.setdefault((job.can.metal, job.can.temper, t), fold_radius_mm(feed, t))
+    loops = (job.loop.metal, job.loop.temper, s.sheet_mm)
     return tuple(
-        _strip(feed, (metal, temper), t, radius, number)
+        _strip(feed, (metal, temper), t, radius, number, s.sheet_mm is not None and (metal, temper, t) != loops)
         for number, ((metal, temper, t), radius) in enumerate(strips.items(), start=1)
     )
 
 
-def _strip(feed: Feed, stock: tuple[str, str | None], t: float, radius: float, number: int) -> Part:
-    k = chosen_k(feed.job.limits, tables.temper(*stock), radius, t)
+def _strip(feed: Feed, stock: tuple[str, str | None], t: float, radius: float, number: int, can: bool) -> Part:
+    k = chosen_k(feed.job.limits, tables.temper(*stock), radius, t, can=can)
+    key = "can_test_bend_k" if can else "test_bend_k"
     bend = Bend(90.0, radius, k)
     leg = (STRIP_LENGTH_MM - allowance_mm(bend, t)) / 2
     first = box_face(STRIP_WIDTH_MM, leg)
@@ -86,7 +89,7 @@ def _strip(feed: Feed, stock: tuple[str, str | None], t: float, radius: float, n
         notes=(
             f"fold by 90 degrees at the middle over R = {radius:g} mm; both legs should be {expected:.2f} mm outside",
             f"measure legs a and b outside: K = ((2 (R + t) - (a + b - {STRIP_LENGTH_MM:g})) 2/pi - R) / t; "
-            "enter it as limits.test_bend_k with limits.bend_rule = 'test-bend'",
+            f"enter it as limits.{key} with limits.bend_rule = 'test-bend'",
             rule_text(feed.job.limits),
         ),
     )  # fmt: skip

@@ -65,7 +65,7 @@ def wall_plan(
     t = feed.sizes.wall_mm
     inside = fold_radius_mm(feed, t)
     temper = tables.temper(feed.job.can.metal, feed.job.can.temper)
-    bends = _Bends(inside, chosen_k(feed.job.limits, temper, inside, t), t + SEAM_GAP_MM)
+    bends = _Bends(inside, chosen_k(feed.job.limits, temper, inside, t, can=True), t + SEAM_GAP_MM)
     screw = joint_screw(bore_mm)
     overlap = 4 * screw.clearance_medium_mm
     flats = feed.sizes.can_flats
@@ -167,10 +167,8 @@ def tab_shape(feed: Feed, screw: Screw, t: float) -> TabShape:
     from_bend = max(hole / 2 + tables.limit("hole_to_fold_thicknesses", limit).value * t, screw.head_mm / 2 + 0.5)
     least = tables.limit("flange_min_thicknesses", limit).value * t - inside - t
     length = max(from_bend + max(edge, screw.head_mm / 2), least)
-    return TabShape(
-        max(2 * edge, screw.head_mm), inside, chosen_k(feed.job.limits, temper, inside, t), hole, from_bend, length,
-        relief, screw.key,
-    )
+    k = chosen_k(feed.job.limits, temper, inside, t, can=True)
+    return TabShape(max(2 * edge, screw.head_mm), inside, k, hole, from_bend, length, relief, screw.key)
 
 
 def _tab_places(feed: Feed, path: StripPath, seam: Seam, tab: TabShape) -> tuple[float, ...]:
