@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 import json
 import math
+import re
 import shutil
 import tempfile
 from collections.abc import Callable
@@ -245,6 +246,22 @@ def test_solids_are_read_back_on_request(tmp_path: Path) -> None:
     assert {("loop.step", "radius of the loop"), ("can-tube.step", "radius of the bore")} <= found
     record(lambda d: d["parts"][0].update(mass_kg=2 * d["parts"][0]["mass_kg"]))(folder)
     assert "CONS-208" in {f.code for f in check_pack(folder, solids=True)}
+
+
+def test_a_corner_off_its_edges_is_found(tmp_path: Path) -> None:
+    # volume, area and box stay: the kernel takes the edges and bridges the gap
+    folder = tmp_path / "pack"
+    write_pack(sample_feed("wire", "tube"), folder, PackOptions(only=("tables", "model")))
+    path = folder / "model" / "loop.step"
+    text = path.read_text(encoding="ascii")
+    corners = re.findall(r"VERTEX_POINT\('[^']*',#(\d+)\)", text)
+    point = re.search(rf"#{corners[len(corners) // 2]} ?= ?CARTESIAN_POINT\('[^']*',\(([^)]*)\)\)", text)
+    assert point is not None
+    x, y, z = point[1].split(",")
+    moved = f"{text[: point.start(1)]}{x},{y},{float(z) + 0.05:.6f}{text[point.end(1) :]}"
+    path.write_text(moved, encoding="ascii")
+    found = [(f.part, f.feature) for f in check_pack(folder, solids=True) if f.code == "CONS-208"]
+    assert ("loop.step", "corner") in found
 
 
 def test_an_accepted_stop_is_not_told_again(tmp_path: Path) -> None:
