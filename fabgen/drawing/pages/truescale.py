@@ -27,7 +27,7 @@ BAR_MM = 100.0
 STRIP_MM = 13.0  # along the left and lower edge, for the bars
 HEAD_MM = 13.0
 MOST_TILES = 12
-CLEAR_MM = 12.0  # from a cross on a joint to the middle of any hole
+CLEAR_MM = 8.0  # from a cross on a joint to the middle of any hole
 SHARES = (0.25, 0.75, 0.4, 0.6, 0.15, 0.85)  # where crosses may stand along a joint
 PLATE_SHARE = 0.32  # thinner than this share of its width, a part is a plate: its edge shows nothing
 
@@ -211,13 +211,13 @@ def _edge_marks(area: Box, at: tuple[int, int], of: tuple[int, int], drawn: tupl
 
 
 def _free(points: list[Point], drawn: tuple[Item, ...]) -> list[Point]:
-    """The first two points where no hole is near that a cross could be mistaken for; without them, the first two.
+    """The first two points, those first where no hole is near that a cross could be mistaken for.
 
     Both tiles of a joint see the same items around it and so choose the same points.
     """
     holes = [(i.cx, i.cy) for i in drawn if isinstance(i, Arc) and max(i.rx, i.ry) < CLEAR_MM]
     free = [p for p in points if all(math.dist(p, hole) > CLEAR_MM for hole in holes)]
-    return (free if len(free) > 1 else points)[:2]
+    return [*free, *(p for p in points if p not in free)][:2]
 
 
 def _cross(x: float, y: float) -> list[Item]:
