@@ -173,6 +173,10 @@ WORK: dict[str, str] = {
     "step.choke.tools": "height gauge or blocks, clamps.",
     "step.choke.join": "continuous contact of the ring's floor to the can all round.",
     "step.choke.printed.do": (
+        "Line the ring's floor and wall and the can's wall inside the ring as in the step before. Set the ring on the "
+        "can and screw it down."
+    ),
+    "step.choke.foil.do": (
         "Set the ring on the can. Line the can's wall inside it, the ring's wall, then its floor over both laps, as in "
         "the step before. Screw the ring down through the lining."
     ),

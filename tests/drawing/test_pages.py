@@ -428,6 +428,7 @@ def test_foil_in_a_choke_has_its_pages_and_lines_in_the_picture() -> None:
     for key in ("foil-choke-floor", "foil-choke-wall", "foil-choke-can"):
         assert {"part", "true"} <= {s.kind for s in made if s.part_key == key}
     assert not [c for s in made for c in clashes(s)]
+    assert "floor over both laps" in " ".join(_words([x for x in made if x.kind == "assembly"]).split())
     s, n = feed.sizes, ABOVE_EYE.towards_eye
     outer = s.can_bore_mm / 2 + s.wall_mm
     lines = lined("foil-choke-can", s, 2 * outer, ABOVE_EYE)

@@ -123,7 +123,7 @@ def _special(context: Context, kind: str) -> str:
         return "soldered"
     if job.can.make == "printed" and kind in {"lining", "loop", "choke"}:
         lining = tables.lining(job.can.lining).kind
-        return {"lining": lining, "loop": f"{lining}-{job.loop.form}", "choke": "printed"}[kind]
+        return {"lining": lining, "loop": f"{lining}-{job.loop.form}", "choke": lining}[kind]
     return "level" if kind == "choke" and _on_the_floor(context) else ""
 
 
