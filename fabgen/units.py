@@ -74,6 +74,8 @@ def _parse(text: str, quantity: Quantity) -> float:
     sign, number, unit = match.groups()
     if not unit:
         raise JobError(f"{shown} is in quotes but has no unit; write the bare number or add one of: {words}")
+    if unit.startswith(","):
+        raise JobError(f"{shown} has a comma; write the decimals after a point, and no commas between thousands")
     value = (-1 if sign == "-" else 1) * _unit_value(number, unit, quantity, shown, words)
     if not math.isfinite(value):
         raise JobError(f"{shown} is not a finite number")

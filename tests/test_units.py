@@ -94,3 +94,10 @@ def test_wavelength_of_the_hydrogen_line() -> None:
 
 def test_both_systems_are_shown() -> None:
     assert show_both_mm(25.4) == "25.40 mm (1.000 in)"
+
+
+@pytest.mark.parametrize("text", ["1,42 GHz", "1,420 MHz", "4,5 mm"])
+def test_a_comma_in_a_number_is_told_as_such(text: str) -> None:
+    read = parse_length_mm if text.endswith("mm") else parse_frequency_mhz
+    with pytest.raises(JobError, match="has a comma; write the decimals after a point"):
+        read(text)
