@@ -60,7 +60,7 @@ def test_six_awg_sizes_double_the_diameter_within_half_a_percent() -> None:
     assert awg_mm(12) / awg_mm(18) == pytest.approx(92 ** (6 / 39), rel=1e-12)
 
 
-@pytest.mark.parametrize("text", ["", "12", "mm", "12 parsec", "1/0 in", "1e999 mm", "nan mm", "x" * 5000, "1,5 mm"])
+@pytest.mark.parametrize("text", ["", "12", "mm", "12 parsec", "1/0 in", "1e999 mm", "nan mm", "x" * 5000])
 def test_a_length_without_meaning_names_the_allowed_units(text: str) -> None:
     with pytest.raises(JobError) as caught:
         parse_length_mm(text)
