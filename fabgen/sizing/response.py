@@ -51,9 +51,14 @@ def sweep_frequencies(target_mhz: float) -> Real:
 
 
 def reflections(impedance_ohm: Complex, capacitor_pf: float, frequency_mhz: Real) -> Complex:
-    """Reflection at the cable after the series capacitor, one value per frequency."""
+    """Reflection at the cable after the series capacitor, one value per frequency.
+
+    No feed reflects more than it gets: where the interpolation over frequency says so, by less than its own error,
+    the magnitude is one.
+    """
     total = impedance_ohm - 1j * 1e6 / (2 * math.pi * frequency_mhz * capacitor_pf)
-    return np.asarray((total - LINE_OHM) / (total + LINE_OHM), dtype=np.complex128)
+    found = (total - LINE_OHM) / (total + LINE_OHM)
+    return np.asarray(found / np.maximum(np.abs(found), 1.0), dtype=np.complex128)
 
 
 def realised_gain_dbi(

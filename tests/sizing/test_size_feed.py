@@ -8,6 +8,7 @@ import math
 from pathlib import Path
 from typing import Any
 
+import numpy as np
 import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
@@ -18,6 +19,7 @@ from fabgen.job import Job
 from fabgen.progress import Progress
 from fabgen.sizing.front import selectivity_front
 from fabgen.sizing.records import Feed, Sizes
+from fabgen.sizing.response import reflections
 from fabgen.sizing.size_feed import size_feed
 from tests.examples import ROOT
 from tests.samples import sample_job
@@ -182,6 +184,14 @@ def test_selectivity_moves_the_loop() -> None:
     sharp, broad = (sized(job_with(wishes={"selectivity": s})) for s in ("sharp", "broad"))
     assert sharp.sizes.loop_diameter_mm < broad.sizes.loop_diameter_mm
     assert sharp.sizes.loop_height_mm < broad.sizes.loop_height_mm
+
+
+def test_no_reflection_is_above_one() -> None:
+    frequency = np.array([900.0, 1000.0])
+    found = reflections(np.array([-0.002 - 300j, 50 + 40j]), 1.0, frequency)
+    assert np.abs(found[0]) <= 1.0
+    total = 50 + 40j - 1j * 1e6 / (2 * np.pi * 1000.0)
+    assert found[1] == pytest.approx((total - 50) / (total + 50))
 
 
 def test_band_that_cannot_be_covered_is_said() -> None:
