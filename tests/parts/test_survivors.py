@@ -145,7 +145,7 @@ def test_the_wire_lies_between_fence_and_block() -> None:
     assert fence[2] < 0
     # the stop closes the end of the channel, where the wire's straight piece ends
     assert stop[2] == pytest.approx(fence[0])
-    assert 0 <= -leg.start_mm - stop[2] < 0.5
+    assert 0 <= -(leg.start_mm + path.beyond_mm) - stop[2] < 0.5
     assert stop[1] <= fence[1]
     assert stop[3] >= block[1]
 
