@@ -43,7 +43,7 @@ class SymmetricFactors:
 
     def __init__(self, matrix: ComplexArray) -> None:
         self._factors = matrix
-        self._blocks = [slice(i, min(i + BLOCK, len(matrix))) for i in range(0, len(matrix), BLOCK)]
+        self._blocks = _blocks(len(matrix))
         self._inverse: list[ComplexArray] = []
         try:
             with ThreadPoolExecutor(SHARES) as pool:
@@ -60,18 +60,14 @@ class SymmetricFactors:
             if block.start:
                 a[rows, block] -= a[rows, before] @ a[before, block]
 
-        def scale(rows: slice) -> None:
+        def below(rows: slice) -> None:
+            subtract(rows)
             a[block, rows] = a[rows, block].T
             a[rows, block] = a[rows, block] @ inverse
 
         subtract(block)
         inverse: ComplexArray = np.asarray(np.linalg.inv(a[block, block]), dtype=a.dtype)
         self._inverse.append(inverse)
-
-        def below(rows: slice) -> None:
-            subtract(rows)
-            scale(rows)
-
         _in_shares(pool, below, block.stop, len(a))
 
     def solve(self, right: NDArray[Any]) -> ComplexArray:
@@ -125,8 +121,12 @@ def less_product(matrix: ComplexArray, left: ComplexArray, right: ComplexArray) 
         matrix[: block.start, block] = matrix[block, : block.start].T
 
     with ThreadPoolExecutor(SHARES) as pool:
-        list(pool.map(rows, [slice(i, min(i + BLOCK, len(matrix))) for i in range(0, len(matrix), BLOCK)]))
+        list(pool.map(rows, _blocks(len(matrix))))
     return matrix
+
+
+def _blocks(count: int) -> list[slice]:
+    return [slice(i, min(i + BLOCK, count)) for i in range(0, count, BLOCK)]
 
 
 def _in_shares(pool: ThreadPoolExecutor, work: Callable[[slice], None], start: int, stop: int) -> None:

@@ -186,9 +186,10 @@ class FeedSolver:
         del matrix  # makes room for the next one
         matrix = self._whole(feed, ready, top, surface)
         currents = _refined(factors, matrix, currents, drive)
-        if _residual(matrix, currents, drive)[1] > REFINED_RESIDUAL:
-            _, currents = _quickly_solved(matrix, drive)
         second = _solution(ready, top, surface, currents, drive, math.nan, matrix)
+        if second.residual > REFINED_RESIDUAL:
+            _, currents = _quickly_solved(matrix, drive)
+            second = _solution(ready, top, surface, currents, drive, math.nan, matrix)
         return _settled(first), _settled(second)
 
     def _whole(

@@ -16,23 +16,13 @@ from fabgen.sizing.field_solver import FieldSolver
 from fabgen.sizing.layout import loop_stock
 from fabgen.sizing.match import reflection
 from fabgen.sizing.records import CapacitorPart, Sizes
-from fabgen.sizing.thermal import Bench, capacitance_ratio, drift
-from fabgen.sizing.tolerances import Deviation, FittedModel, fit_model
+from fabgen.sizing.thermal import capacitance_ratio, drift
+from fabgen.sizing.tolerances import fit_model
 from fabgen.sizing.trial import CanShape, Setting
 from fabgen.stock import tables
 from tests.samples import sample_job, sample_sizes
+from tests.sizing.fitted import BENCH, JOB, MODEL, SIZES, TARGET
 
-JOB = sample_job("wire", "turned")
-SIZES = replace(sample_sizes(JOB), series_capacitor_pf=1.0)
-TARGET = JOB.target.frequency_mhz
-REACTANCE = 1e6 / (2 * math.pi * TARGET * 1.0)
-MODEL = FittedModel(
-    (Deviation("tap_height_mm", 0.2, 0.2), Deviation("can_bore_mm", 0.5, 0.5)),
-    complex(50, REACTANCE),
-    np.array([2 + 1j, 0.5j]),
-    np.array([0.0j, 0.0j]),
-)
-BENCH = Bench(np.array([TARGET]), np.array([MODEL.impedance_ohm]), TARGET, 20.0, 2.0)
 SLEEVE, PLATES = (
     capacitor_part(form, 1.0, TARGET, coax=tables.coax("rg402"), plate_width_mm=3.8, transmit_w=0.0)
     for form in ("sleeve", "plates")

@@ -14,10 +14,7 @@ from fabgen.sizing.capacitor_part import capacitor_part
 from fabgen.sizing.layout import loop_stock
 from fabgen.sizing.records import Response
 from fabgen.sizing.response import band_of, realised_gain_dbi, sweep_frequencies
-from fabgen.sizing.thermal import Bench
 from fabgen.sizing.tolerances import (
-    Deviation,
-    FittedModel,
     deviations,
     fit_model,
     sensitivities,
@@ -28,19 +25,9 @@ from fabgen.sizing.trial import CanShape, Setting
 from fabgen.sizing.yields import model_error, trimmed_return_loss, worst_return_loss
 from fabgen.stock import tables
 from tests.samples import sample_job, sample_sizes
+from tests.sizing.fitted import BENCH, JOB, MODEL, REACTANCE, SIZES, TARGET
 from tests.sizing.toy_solver import ToySolver
 
-JOB = sample_job("wire", "turned")
-SIZES = replace(sample_sizes(JOB), series_capacitor_pf=1.0)
-TARGET = JOB.target.frequency_mhz
-REACTANCE = 1e6 / (2 * math.pi * TARGET * 1.0)
-MODEL = FittedModel(
-    (Deviation("tap_height_mm", 0.2, 0.2), Deviation("can_bore_mm", 0.5, 0.5)),
-    complex(50, REACTANCE),
-    np.array([2 + 1j, 0.5j]),
-    np.array([0.0j, 0.0j]),
-)
-BENCH = Bench(np.array([TARGET]), np.array([MODEL.impedance_ohm]), TARGET, 20.0, 2.0)
 PART = capacitor_part("sleeve", 1.0, TARGET, coax=tables.coax("rg402"), plate_width_mm=3.0, transmit_w=0.0)
 
 
